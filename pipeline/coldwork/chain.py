@@ -1,0 +1,342 @@
+"""The one chain: mean hardness, flow stress, dislocation stress, density, energy.
+
+Written once, over values that are either plain arrays or `Measured`. First
+order, interval ends, Monte Carlo, `estimate` and calibration all run it. It
+has two halves that meet at the dislocation stress, because the interval of a
+density is taken in that stress (`interval`). SI throughout; a quantity is
+called by the column that it will be published in.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from functools import reduce
+from operator import add
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from coldwork.formulas.baseline import HALL_PETCH_STRESS
+from coldwork.formulas.line_energy import (
+    CORE_RADIUS,
+    ENERGY_FACTOR,
+    LINE_ENERGY,
+    OUTER_RADIUS,
+    mean_cos2,
+)
+from coldwork.formulas.pressure import (
+    BRINELL_PROJECTED_PRESSURE,
+    BRINELL_STRAIN,
+    PROJECTED_PRESSURE,
+)
+from coldwork.formulas.stored_energy import (
+    STORED_ENERGY,
+    STORED_ENERGY_MOLAR,
+    STORED_ENERGY_SPECIFIC,
+    STORED_FRACTION,
+    TEMPERATURE_RISE,
+)
+from coldwork.formulas.tabor import TABOR_FLOW_STRESS
+from coldwork.formulas.taylor import MEAN_SPACING, TAYLOR_DENSITY, TAYLOR_DENSITY_FROM_SLOPE
+from coldwork.formulas.unwinding import UNWOUND_STRESS
+from coldwork.inputs.method import Laws
+from coldwork.measured import Value, apply, select, value_of
+from coldwork.rules.forces import SCALES
+
+__all__ = ["Start", "Strength", "energy", "line", "strength"]
+
+_MISSING: Final = np.float64(np.nan)
+
+
+@dataclass(frozen=True)
+class Start:
+    """What a slice of n coupons brings to the chain.
+
+    Attributes
+    ----------
+    mean : Value, shape (n,)
+        Mean hardness (force over the area that its scale is defined by), or
+        mean flow stress, corrected for the tester. [Pa]
+    scale : ndarray of int8, shape (n,)
+        `HV`, `HBW` or `HK`; -1 where there is none.
+    force : ndarray, shape (n,)
+        Nominal test force. [N]
+    ball : ndarray, shape (n,)
+        Ball diameter, NaN but for HBW. [m]
+    grain_size : Value, shape (n,)
+        Prior grain size, NaN where it is not known. [m]
+    plastic_work : ndarray, shape (n,)
+        Work of the prior deformation, NaN where it is not known. [J/m^3]
+    plastic_strain : float
+        The strain whose stress the flow route reports. [1]
+    """
+
+    mean: Value
+    scale: NDArray[np.int8]
+    force: NDArray[np.float64]
+    ball: NDArray[np.float64]
+    grain_size: Value
+    plastic_work: NDArray[np.float64]
+    plastic_strain: float
+
+
+@dataclass(frozen=True)
+class Strength:
+    """The first half's outcome, all in the state at `test_strain` but for the first three.
+
+    Attributes
+    ----------
+    pressure : Value or None
+        Mean indentation pressure; None by the flow route. [Pa]
+    indented_stress : Value
+        Flow stress as tested, the indent's own strain included. [Pa]
+    excess : Value
+        That less the baseline, before unwinding. [Pa]
+    flow_stress, baseline_stress, dislocation_stress : Value
+        As their columns say. [Pa]
+    strain : Value
+        What the test itself added: the indent's representative strain. [1]
+    test_strain : ndarray, shape (n,)
+        Plastic strain of the test in the state that the row describes. [1]
+    unwound : ndarray of bool, shape (n,)
+        Where the indent's own hardening was taken out.
+    """
+
+    pressure: Value | None
+    indented_stress: Value
+    excess: Value
+    flow_stress: Value
+    baseline_stress: Value
+    dislocation_stress: Value
+    strain: Value
+    test_strain: NDArray[np.float64]
+    unwound: NDArray[np.bool_]
+
+
+def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
+    """Go from the mean of the readings to the dislocation stress (relations 1, 2, 4, 6).
+
+    Parameters
+    ----------
+    laws : Laws
+        The choices that the sheet names.
+    inputs : mapping of str to Value
+        Inputs by their name in the sheet. [SI]
+    start : Start
+        The slice of coupons.
+
+    Returns
+    -------
+    Strength
+        Arrays of shape (n,).
+    """
+    n = start.scale.shape[0]
+    baseline = _baseline(laws, inputs, start.grain_size)
+    if laws.route == "flow":
+        stress = start.mean - baseline
+        held = np.full(n, start.plastic_strain)
+        nothing = np.zeros(n, dtype=bool)
+        return Strength(
+            None, start.mean, stress, start.mean, baseline, stress, 0.0, held, nothing
+        )
+    present = {s: k for k, s in enumerate(SCALES) if bool((start.scale == k).any())}
+    pressure = select(start.scale, {k: _pressure(laws, s, start) for s, k in present.items()})
+    strain = select(start.scale, {k: _strain(inputs, s, start) for s, k in present.items()})
+    indented = apply(
+        TABOR_FLOW_STRESS,
+        pressure=pressure,
+        intercept=_by_scale(inputs, start.scale, "intercept_mpa"),
+        constraint_factor=_by_scale(inputs, start.scale, "constraint_factor"),
+    )
+    excess = indented - baseline
+    if not laws.unwinding:
+        held = np.broadcast_to(value_of(strain), (n,))
+        nothing = np.zeros(n, dtype=bool)
+        return Strength(
+            pressure, indented, excess, indented, baseline, excess, strain, held, nothing
+        )
+    saturation = inputs["indentation.saturation_stress_mpa"]
+    stress = apply(
+        UNWOUND_STRESS,
+        stress=excess,
+        initial_hardening=inputs["indentation.initial_hardening_mpa"],
+        saturation_stress=saturation,
+        strain=strain,
+    )
+    unwound = value_of(excess) < value_of(saturation)
+    held = np.where(unwound, 0.0, value_of(strain))
+    flow = stress + baseline
+    return Strength(pressure, indented, excess, flow, baseline, stress, strain, held, unwound)
+
+
+def energy(
+    laws: Laws, inputs: Mapping[str, Value], stress: Value, start: Start
+) -> dict[str, Value]:
+    """Go from a dislocation stress to density and stored energy (relations 5, 7, 8, 9).
+
+    Parameters
+    ----------
+    laws : Laws
+        The choices that the sheet names.
+    inputs : mapping of str to Value
+        Inputs by their name in the sheet. [SI]
+    stress : Value, shape (n,)
+        Dislocation stress; NaN where there is none to speak of. [Pa]
+    start : Start
+        The slice of coupons.
+
+    Returns
+    -------
+    dict of str to Value
+        By column name: density, spacing, line energy, stored energies,
+        temperature rise, stored fraction, and `radius_ratio` (R / r0). What a
+        missing constant forbids is NaN. [SI]
+    """
+    return line(laws, inputs, _density(laws, inputs, stress), start)
+
+
+def line(
+    laws: Laws, inputs: Mapping[str, Value], density: Value, start: Start
+) -> dict[str, Value]:
+    """Go from a dislocation density to stored energy (relations 7, 8, 9).
+
+    The part of `energy` below relation 5, for where a density is given.
+
+    Parameters
+    ----------
+    laws, inputs, start
+        As for `energy`.
+    density : Value, shape (n,)
+        Dislocation density. [1/m^2]
+
+    Returns
+    -------
+    dict of str to Value
+        As `energy` gives. [SI]
+    """
+    spacing = apply(MEAN_SPACING, density=density)
+    burgers = inputs["material.burgers_vector_nm"]
+    shear = inputs["material.shear_modulus_gpa"]
+    outer = apply(
+        OUTER_RADIUS,
+        length=_outer_length(laws, inputs, spacing, start),
+        factor=inputs["line_energy.outer_radius_factor"],
+    )
+    core = apply(
+        CORE_RADIUS, multiple=inputs["line_energy.core_radius_b"], burgers_vector=burgers
+    )
+    per_line = apply(
+        LINE_ENERGY,
+        energy_factor=apply(
+            ENERGY_FACTOR,
+            shear_modulus=shear,
+            poisson_ratio=inputs["material.poisson_ratio"],
+            mean_cos2=_mean_cos2(laws),
+        ),
+        burgers_vector=burgers,
+        outer_radius=outer,
+        core_radius=core,
+        shear_modulus=shear,
+        core_energy=inputs["line_energy.core_energy"],
+    )
+    stored = apply(STORED_ENERGY, density=density, line_energy=per_line)
+    mass = inputs["material.mass_density_kg_per_m3"]
+    return {
+        "dislocation_density_per_m2": density,
+        "mean_spacing_nm": spacing,
+        "line_energy_j_per_m": per_line,
+        "stored_energy_j_per_m3": stored,
+        "stored_energy_j_per_mol": apply(
+            STORED_ENERGY_MOLAR,
+            stored_energy=stored,
+            molar_mass=inputs.get("material.molar_mass_g_per_mol", _MISSING),
+            mass_density=mass,
+        ),
+        "stored_energy_j_per_g": apply(
+            STORED_ENERGY_SPECIFIC, stored_energy=stored, mass_density=mass
+        ),
+        "temperature_rise_k": apply(
+            TEMPERATURE_RISE,
+            stored_energy=stored,
+            mass_density=mass,
+            heat_capacity=inputs.get("material.heat_capacity_j_per_kg_k", _MISSING),
+        ),
+        "stored_fraction_of_work": apply(
+            STORED_FRACTION, stored_energy=stored, plastic_work=start.plastic_work
+        ),
+        "radius_ratio": value_of(outer) / value_of(core),
+    }
+
+
+def _baseline(laws: Laws, inputs: Mapping[str, Value], grain_size: Value) -> Value:
+    if laws.baseline == "given":
+        return inputs["strength.baseline_mpa"]
+    parts = [v for name, v in inputs.items() if name.startswith("strength.terms_mpa.")]
+    if "strength.friction_mpa" in inputs:
+        parts.append(inputs["strength.friction_mpa"])
+    if "strength.hall_petch_mpa_m05" in inputs:
+        coefficient = inputs["strength.hall_petch_mpa_m05"]
+        parts.append(apply(HALL_PETCH_STRESS, grain_size=grain_size, coefficient=coefficient))
+    return reduce(add, parts)
+
+
+def _prefix(scale: str) -> str:
+    return "indentation" if scale == "HV" else f"indentation.{scale}"
+
+
+def _by_scale(inputs: Mapping[str, Value], scale: NDArray[np.int8], key: str) -> Value:
+    by_code = {k: inputs.get(f"{_prefix(s)}.{key}", _MISSING) for k, s in enumerate(SCALES)}
+    return select(scale, by_code)
+
+
+def _pressure(laws: Laws, scale: str, start: Start) -> Value:
+    if scale == "HBW" and laws.area[scale] == "projected":
+        return apply(
+            BRINELL_PROJECTED_PRESSURE, hardness=start.mean, force=start.force, ball=start.ball
+        )
+    if scale == "HV" and laws.area[scale] == "projected":
+        return apply(PROJECTED_PRESSURE, hardness=start.mean)
+    return start.mean
+
+
+def _strain(inputs: Mapping[str, Value], scale: str, start: Start) -> Value:
+    given = inputs.get(f"{_prefix(scale)}.representative_strain", _MISSING)
+    if scale == "HBW" and "indentation.HBW.strain_ratio" in inputs:
+        return apply(
+            BRINELL_STRAIN,
+            hardness=start.mean,
+            force=start.force,
+            ball=start.ball,
+            strain_ratio=inputs["indentation.HBW.strain_ratio"],
+        )
+    return given
+
+
+def _density(laws: Laws, inputs: Mapping[str, Value], stress: Value) -> Value:
+    if laws.taylor == "slope":
+        slope = inputs["hardening.slope_n_per_m"]
+        return apply(TAYLOR_DENSITY_FROM_SLOPE, stress=stress, slope=slope)
+    return apply(
+        TAYLOR_DENSITY,
+        stress=stress,
+        taylor_factor=inputs["hardening.taylor_factor"],
+        coefficient=inputs["hardening.coefficient"],
+        shear_modulus=inputs["material.shear_modulus_gpa"],
+        burgers_vector=inputs["material.burgers_vector_nm"],
+    )
+
+
+def _outer_length(
+    laws: Laws, inputs: Mapping[str, Value], spacing: Value, start: Start
+) -> Value:
+    if laws.outer_radius == "spacing":
+        return spacing
+    if laws.outer_radius == "half-spacing":
+        return 0.5 * spacing
+    if laws.outer_radius == "grain":
+        return start.grain_size
+    return inputs["line_energy.outer_radius_nm"]
+
+
+def _mean_cos2(laws: Laws) -> float:
+    return 0.5 if laws.uniform_mix else float(mean_cos2(laws.angles_deg, laws.fractions))

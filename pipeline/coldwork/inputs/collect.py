@@ -1,0 +1,151 @@
+"""Gather the numbers that a method uses: from the sheet, the library or the defaults."""
+
+from collections.abc import Iterator, Mapping
+from typing import Final
+
+from coldwork.inputs.causes import Causes
+from coldwork.inputs.keys import TERMS, KeyName, default_of, number_specs, schema_of, spec_of
+from coldwork.inputs.method import Laws
+from coldwork.inputs.numbers import Given, to_given
+from coldwork.inputs.words import listed, nearest
+from coldwork.materials import Material
+from coldwork.materials import load as load_material
+from coldwork.materials import names as material_names
+
+__all__ = ["given_numbers", "material_of", "refuse_missing_constants", "used_numbers"]
+
+_OPTIONAL_CONSTANTS: Final = ("molar_mass_g_per_mol", "heat_capacity_j_per_kg_k")
+_NEEDED_CONSTANTS: Final = (
+    "shear_modulus_gpa",
+    "poisson_ratio",
+    "burgers_vector_nm",
+    "mass_density_kg_per_m3",
+)
+
+
+def given_numbers(causes: Causes) -> dict[KeyName, Given]:
+    """Read every number with uncertainty that the sheet, or what it builds on, gives."""
+    found = {}
+    for key, raw in _written(causes):
+        spec = spec_of(key)
+        if spec is None:
+            continue
+        given = to_given(causes, key, raw, spec, causes.sheet.origin(key))
+        if given is not None:
+            found[key] = given
+    return found
+
+
+def _written(causes: Causes) -> Iterator[tuple[KeyName, object]]:
+    keys = list(number_specs())
+    terms = _at(causes.sheet.tables, TERMS)
+    if isinstance(terms, dict):
+        named = [name for name in terms if _is_a_name(name)]
+        keys += [(*TERMS, name) for name in named]
+        for name in set(terms) - set(named):
+            causes.add(
+                (*TERMS, name),
+                "this name cannot be",
+                "A term's name has letters, digits, _ and -, at most 60 of them.",
+                "Write another.",
+            )
+    for key in keys:
+        raw = _at(causes.sheet.tables, key)
+        if raw is not None:
+            yield key, raw
+
+
+def _is_a_name(text: str) -> bool:
+    bare = text.replace("_", "").replace("-", "")
+    return 0 < len(text) <= 60 and text.isascii() and (bare.isalnum() or not bare)
+
+
+def _at(tables: Mapping[str, object], key: KeyName) -> object:
+    at: object = tables
+    for name in key:
+        at = at.get(name) if isinstance(at, Mapping) else None
+    return at
+
+
+def material_of(causes: Causes) -> Material | None:
+    """Give the library's entry for the sheet's metal, None if it has none."""
+    name = _at(causes.sheet.tables, ("material", "name"))
+    known = isinstance(name, str) and name in material_names()
+    return load_material(str(name)) if known else None
+
+
+def refuse_missing_constants(causes: Causes, material: Material | None) -> None:
+    """Refuse a metal that neither the library nor the sheet knows enough of."""
+    section = causes.sheet.tables.get("material")
+    name = section.get("name") if isinstance(section, dict) else None
+    if material is not None or not isinstance(section, dict) or not isinstance(name, str):
+        return
+    missing = [key for key in _NEEDED_CONSTANTS if key not in section]
+    if missing:
+        causes.add(
+            ("material", "name"),
+            f"the library has no '{name}' and the sheet does not give {listed(missing)}",
+            "A metal comes from the library, or with every constant that the method needs.",
+            nearest(name, material_names()),
+        )
+
+
+def used_numbers(
+    causes: Causes, laws: Laws, given: Mapping[KeyName, Given], material: Material | None
+) -> dict[str, Given]:
+    """Give every number that the laws use, by its name and in the schema's order.
+
+    Parameters
+    ----------
+    causes : Causes
+        Without any: the sheet fits.
+    laws : Laws
+        What is used.
+    given : mapping of tuple to Given
+        What the sheet gives.
+    material : Material or None
+        What the library gives.
+
+    Returns
+    -------
+    dict of str to Given
+        A constant that nobody gives is left out.
+    """
+    used = {}
+    for key in _used_keys(laws, given):
+        number = given.get(key) or _from_library(causes, key, material) or _default(causes, key)
+        if number is not None:
+            used[number.input.name] = number
+    return used
+
+
+def _used_keys(laws: Laws, given: Mapping[KeyName, Given]) -> list[KeyName]:
+    unused: set[KeyName] = set()
+    if laws.taylor == "slope":
+        unused |= {("hardening", "taylor_factor"), ("hardening", "coefficient")}
+    if ("indentation", "HBW", "representative_strain") in given:
+        unused.add(("indentation", "HBW", "strain_ratio"))
+    keys = [*number_specs(), *(key for key in given if key[:2] == TERMS)]
+    return [
+        key
+        for key in keys
+        if key not in unused and (laws.route == "indent" or key[0] != "indentation")
+    ]
+
+
+def _from_library(causes: Causes, key: KeyName, material: Material | None) -> Given | None:
+    spec = spec_of(key)
+    if material is None or spec is None or key[0] != "material" or key[1] not in material.values:
+        return None
+    entry = material.values[key[1]]
+    raw = {"value": entry.value, "u": entry.u, "source": entry.source}
+    return to_given(causes, key, raw, spec, "library")
+
+
+def _default(causes: Causes, key: KeyName) -> Given | None:
+    raw, spec = default_of(key), spec_of(key)
+    if raw is None or spec is None:
+        return None
+    table = raw if isinstance(raw, dict) else {"value": raw}
+    source = str(schema_of(key).get("source", "common practice"))
+    return to_given(causes, key, table | {"source": source}, spec, "default")

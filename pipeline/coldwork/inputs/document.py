@@ -1,0 +1,180 @@
+"""The content of ``method.json``: everything besides the readings that results depend on."""
+
+from collections.abc import Iterator, Mapping
+from dataclasses import asdict
+from importlib.metadata import version
+from math import isfinite
+from pathlib import Path
+from typing import Any, Final
+
+import coldwork
+from coldwork.contracts import document
+from coldwork.formulas.unwinding import hardening_constants
+from coldwork.inputs.keys import number_specs, schema_of
+from coldwork.inputs.laws import choice
+from coldwork.inputs.method import Method, Tester
+from coldwork.inputs.numbers import Given
+
+__all__ = ["method_document"]
+
+_COMPUTING: Final = ("numpy", "scipy", "pyarrow")
+_SECTIONS: Final = {
+    "uncertainty": ("method", "coverage", "repeatability"),
+    "temperature": ("test_c", "reference_c"),
+    "flow": ("plastic_strain", "repeatability_rel"),
+    "indentation": ("size_effect", "resolution_um"),
+    "output": ("tables", "detail"),
+}
+
+
+def method_document(
+    method: Method, tables: Mapping[str, Any], numbers: Mapping[str, Given]
+) -> dict[str, object]:
+    """Give the content of ``method.json``.
+
+    Parameters
+    ----------
+    method : Method
+        The method, complete but for its document.
+    tables : mapping
+        The sheet's content, which fits.
+    numbers : mapping of str to Given
+        The inputs with their values as written.
+
+    Returns
+    -------
+    dict
+        As the schema of the document has it: text, finite numbers, truth
+        values, None, lists and dicts. Values stand in the units of their keys.
+    """
+    sections = {
+        name: {key: choice(tables, name, key) for key in keys} for name, keys in _SECTIONS.items()
+    }
+    inputs = {name: _number(given) for name, given in numbers.items()}
+    inputs |= {tester.bias.name: _bias(tester) for tester in method.testers}
+    return {
+        "schema_version": document("method")["version"],
+        "batch_id": method.batch_id,
+        "laboratory": method.laboratory,
+        "operator": method.operator,
+        "timezone": method.timezone,
+        "material": {
+            "name": method.material,
+            "lattice": method.lattice,
+            "edge_distance_d": method.edge_distance_d,
+            "centre_distance_d": method.centre_distance_d,
+        },
+        "sheets": [{"path": path, "sha256": digest} for path, digest in method.sheets],
+        "laws": _laws(method),
+        "inputs": inputs,
+        "testers": [_tester(tester) for tester in method.testers],
+        "limits": [asdict(limit) for limit in method.limits],
+        **sections,
+        "files": _files(method),
+        "defaults": list(_defaults(method, tables, numbers)),
+        "derived": _derived(method),
+        "versions": {"coldwork": coldwork.__version__}
+        | {name: version(name) for name in _COMPUTING},
+    }
+
+
+def _laws(method: Method) -> dict[str, object]:
+    laws = method.laws
+    return asdict(laws) | {
+        "area": dict(laws.area),
+        "angles_deg": list(laws.angles_deg),
+        "fractions": list(laws.fractions),
+    }
+
+
+def _number(given: Given) -> dict[str, object]:
+    found = given.input
+    freedom = found.degrees_of_freedom
+    return {
+        "value": given.value,
+        "u": given.u,
+        "unit": found.unit,
+        "shape": found.shape,
+        "factor": found.factor,
+        "shared": found.shared,
+        "degrees_of_freedom": freedom if isfinite(freedom) else None,
+        "source": found.source or None,
+        "origin": found.origin,
+    }
+
+
+def _bias(tester: Tester) -> dict[str, object]:
+    return _number(Given(tester.bias, tester.bias.value, tester.bias.u))
+
+
+def _tester(tester: Tester) -> dict[str, object]:
+    return {
+        "id": tester.id,
+        "bias_rel": tester.bias.value,
+        "u_rel": tester.bias.u,
+        "valid_until": tester.valid_until.isoformat() if tester.valid_until else None,
+    }
+
+
+def _files(method: Method) -> dict[str, object]:
+    def names(paths: tuple[Path, ...]) -> list[str]:
+        return [path.relative_to(method.folder).as_posix() for path in paths]
+
+    taken_out = (method.exclusions,) if method.exclusions else ()
+    return {
+        "coupons": names(method.coupons),
+        "indents": names(method.indents),
+        "flow_stress": names(method.flow_stress),
+        "exclusions": names(taken_out),
+    }
+
+
+def _defaults(
+    method: Method, tables: Mapping[str, Any], numbers: Mapping[str, Given]
+) -> Iterator[str]:
+    for name, given in numbers.items():
+        if given.input.origin == "default":
+            yield name
+    unread = "flow" if method.laws.route == "indent" else "indentation"
+    for key in _choices((), schema_of(())):
+        if key[0] != unread and not _is_said(tables, key):
+            yield ".".join(key)
+    for limit in tables.get("limits", []):
+        for name, inner in schema_of(("limits", 0)).get("properties", {}).items():
+            of_its_rule = name != "at_least" or limit.get("rule") == "probability"
+            if "default" in inner and name not in limit and of_its_rule:
+                yield f"limits.{limit['id']}.{name}"
+
+
+def _choices(path: tuple[str, ...], schema: Mapping[str, Any]) -> Iterator[tuple[str, ...]]:
+    for name, inner in schema.get("properties", {}).items():
+        key = (*path, name)
+        if "default" in inner and key not in number_specs():
+            yield key
+        elif inner.get("type") == "object":
+            yield from _choices(key, inner)
+
+
+def _is_said(tables: Mapping[str, Any], key: tuple[str, ...]) -> bool:
+    at: Any = tables
+    for name in key:
+        at = at.get(name) if isinstance(at, Mapping) else None
+    return at is not None
+
+
+def _derived(method: Method) -> dict[str, object]:
+    values = {name: found.value for name, found in method.inputs.items()}
+    if not method.laws.unwinding:
+        return {"k1_per_m": None, "k2": None}
+    slope = values.get("hardening.slope_n_per_m") or (
+        values["hardening.taylor_factor"]
+        * values["hardening.coefficient"]
+        * values["material.shear_modulus_gpa"]
+        * values["material.burgers_vector_nm"]
+    )
+    k1, k2 = hardening_constants(
+        values["indentation.initial_hardening_mpa"],
+        values["indentation.saturation_stress_mpa"],
+        slope,
+    )
+    return {"k1_per_m": k1, "k2": k2}

@@ -1,0 +1,75 @@
+"""The choices of a sheet by name, and what a schema cannot say about them."""
+
+from collections.abc import Mapping
+from math import fsum
+from typing import Any, Final
+
+from coldwork.inputs.causes import Causes
+from coldwork.inputs.keys import default_of
+from coldwork.inputs.method import Laws
+from coldwork.inputs.numbers import as_number
+
+__all__ = ["choice", "laws_of", "refuse_bad_mix"]
+
+_SUM_TOLERANCE: Final = 1e-9
+
+
+def choice(tables: Mapping[str, Any], *key: str) -> Any:  # noqa: ANN401  # whatever TOML can hold
+    """Give a key's value, its default if nobody said it, None if it has none either."""
+    at: Any = tables
+    for name in key:
+        at = at.get(name) if isinstance(at, Mapping) else None
+    return default_of(key) if at is None else at
+
+
+def refuse_bad_mix(causes: Causes) -> None:
+    """Refuse fractions of line length that do not sum to 1."""
+    section = causes.sheet.tables.get("character")
+    if causes.within(("character",)) or not isinstance(section, dict):
+        return
+    mix = section.get("mix")
+    if mix == "uniform":
+        return
+    parts = [entry["fraction"] for entry in mix] if mix else list(section.values())
+    total = fsum(number for number in map(as_number, parts) if number is not None)
+    if abs(total - 1.0) > _SUM_TOLERANCE:
+        causes.add(
+            ("character", "mix") if mix else ("character",),
+            f"the fractions sum to {total:.12g}",
+            "They are shares of the whole line length and sum to 1.",
+            "Mend them; write as many digits as it takes, such as 0.3333333333.",
+        )
+
+
+def laws_of(tables: Mapping[str, Any]) -> Laws:
+    """Read the choices of a sheet that fits its schema."""
+    strength, character = tables["strength"], tables["character"]
+    indentation, hardening = tables.get("indentation", {}), tables.get("hardening", {})
+    route = strength["route"]
+    angles, fractions = _mix(character)
+    return Laws(
+        route=route,
+        area={
+            "HV": choice(tables, "indentation", "area"),
+            "HBW": choice(tables, "indentation", "HBW", "area"),
+            "HK": choice(tables, "indentation", "HK", "area"),
+        },
+        unwinding=route == "indent" and "initial_hardening_mpa" in indentation,
+        baseline="given" if "baseline_mpa" in strength else "parts",
+        taylor="slope" if "slope_n_per_m" in hardening else "constant",
+        elasticity=choice(tables, "line_energy", "elasticity"),
+        outer_radius=choice(tables, "line_energy", "outer_radius"),
+        angles_deg=angles,
+        fractions=fractions,
+        uniform_mix=character.get("mix") == "uniform",
+    )
+
+
+def _mix(character: Mapping[str, Any]) -> tuple[tuple[float, ...], tuple[float, ...]]:
+    mix = character.get("mix")
+    if mix == "uniform":
+        return (), ()
+    if mix is None:
+        return (0.0, 90.0), (float(character.get("screw", 0)), float(character.get("edge", 0)))
+    angles = tuple(float(entry["angle_deg"]) for entry in mix)
+    return angles, tuple(float(entry["fraction"]) for entry in mix)

@@ -1,0 +1,190 @@
+"""The method that a batch is worked by: laws by name, inputs by name, limits.
+
+Frozen and plain: nothing here reads a file. `coldwork.inputs.sheet` makes it.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from datetime import date
+from pathlib import Path
+
+from coldwork.inputs.quantity import Input
+
+__all__ = ["Laws", "Limit", "Method", "Tester"]
+
+
+@dataclass(frozen=True)
+class Laws:
+    """The choices that the sheet makes by name; no physical constants.
+
+    Attributes
+    ----------
+    route : str
+        ``indent`` or ``flow``.
+    area : mapping of str to str
+        Scale (``HV``, ``HBW``, ``HK``) to the area that its pressure is taken
+        over, ``contact`` or ``projected``.
+    unwinding : bool
+        Whether theta_0 and sigma_s were given, so that the indent's own strain
+        is taken out.
+    baseline : str
+        ``given`` as one number, or ``parts``.
+    taylor : str
+        ``constant`` alpha, or ``slope`` where M alpha G b was given as one.
+    elasticity : str
+        ``isotropic``.
+    outer_radius : str
+        ``spacing``, ``half-spacing``, ``grain`` or ``fixed``.
+    angles_deg, fractions : tuple of float
+        The character mix; empty if `uniform_mix`. [deg], [1]
+    uniform_mix : bool
+        Whether every angle is alike.
+    """
+
+    route: str
+    area: Mapping[str, str]
+    unwinding: bool
+    baseline: str
+    taylor: str
+    elasticity: str
+    outer_radius: str
+    angles_deg: tuple[float, ...]
+    fractions: tuple[float, ...]
+    uniform_mix: bool
+
+
+@dataclass(frozen=True)
+class Tester:
+    """A hardness tester or testing machine with what its calibration found.
+
+    Attributes
+    ----------
+    id : str
+        Its name as the readings give it.
+    bias : Input
+        How much too high it reads, relative. [1]
+    valid_until : date or None
+        Last day of its calibration, if one was said.
+    """
+
+    id: str
+    bias: Input
+    valid_until: date | None
+
+
+@dataclass(frozen=True)
+class Limit:
+    """A limit that coupons are held against.
+
+    Attributes
+    ----------
+    id : str
+        Its name.
+    quantity : str
+        Column of the results' ``coupons.csv``.
+    lower, upper : float or None
+        At least one of them. [unit of the quantity's column]
+    rule : str
+        ``guarded``, ``probability`` or ``simple``.
+    basis : str
+        ``total``, or ``own`` for limits set with this same method and constants.
+    at_least : float or None
+        For ``probability``: conforming from here. [1]
+    max_relative_u : float or None
+        For ``simple``: largest standard uncertainty over value. [1]
+    """
+
+    id: str
+    quantity: str
+    lower: float | None
+    upper: float | None
+    rule: str
+    basis: str
+    at_least: float | None
+    max_relative_u: float | None
+
+
+@dataclass(frozen=True)
+class Method:
+    """Everything that a batch sheet says, checked and complete.
+
+    Attributes
+    ----------
+    folder : Path
+        The batch folder.
+    batch_id : str
+        One path component.
+    laboratory, operator : str or None
+        As written.
+    timezone : str
+        Zone of times that name none.
+    material : str
+        Library entry or new name.
+    lattice : str or None
+        ``fcc``, ``bcc`` or ``hcp``.
+    edge_distance_d, centre_distance_d : float
+        Least distance of an indent from an edge and from the next indent, in
+        mean diagonals. [1]
+    coupons, indents, flow_stress : tuple of Path
+        The tables' files in order, all inside the batch folder.
+    exclusions : Path or None
+        The readings that a person takes out.
+    laws : Laws
+        The choices by name.
+    inputs : mapping of str to Input
+        Every number that the laws use, exact ones too, and ``tester:ID``.
+    testers : tuple of Tester
+        In the sheet's order.
+    limits : tuple of Limit
+        In the sheet's order.
+    plastic_strain : float
+        The state that the flow route reports. [1]
+    repeatability_rel : float or None
+        Of one flow-stress point, where points are not repeated. [1]
+    resolution : float or None
+        Of a diagonal. [m]
+    repeatability : str
+        ``pooled`` or ``own``.
+    coverage : float
+        Probability that an interval is meant to hold. [1]
+    test_temperature, reference_temperature : float
+        Where a reading does not say, and where the shear modulus holds. [K]
+    tables : tuple of str
+        ``csv`` and ``parquet`` as asked.
+    detail : str
+        ``full`` or ``summary``.
+    sheets : tuple of (str, str)
+        Path as the sheet names it, and SHA-256, of ``batch.toml`` and of what
+        it builds on.
+    document : mapping of str to object
+        Content of ``method.json``, ready to dump.
+    """
+
+    folder: Path
+    batch_id: str
+    laboratory: str | None
+    operator: str | None
+    timezone: str
+    material: str
+    lattice: str | None
+    edge_distance_d: float
+    centre_distance_d: float
+    coupons: tuple[Path, ...]
+    indents: tuple[Path, ...]
+    flow_stress: tuple[Path, ...]
+    exclusions: Path | None
+    laws: Laws
+    inputs: Mapping[str, Input]
+    testers: tuple[Tester, ...]
+    limits: tuple[Limit, ...]
+    plastic_strain: float
+    repeatability_rel: float | None
+    resolution: float | None
+    repeatability: str
+    coverage: float
+    test_temperature: float
+    reference_temperature: float
+    tables: tuple[str, ...]
+    detail: str
+    sheets: tuple[tuple[str, str], ...]
+    document: Mapping[str, object]

@@ -1,0 +1,125 @@
+"""Read ``batch.toml`` into a frozen method, or refuse the batch with every cause at once."""
+
+from dataclasses import replace
+from pathlib import Path
+from typing import Any, Final
+
+from coldwork.errors import BatchRefused
+from coldwork.inputs.causes import Causes
+from coldwork.inputs.collect import (
+    given_numbers,
+    material_of,
+    refuse_missing_constants,
+    used_numbers,
+)
+from coldwork.inputs.document import method_document
+from coldwork.inputs.identity import refuse_bad_identity
+from coldwork.inputs.laws import choice, laws_of, refuse_bad_mix
+from coldwork.inputs.limits import limits_of, refuse_bad_limits, refuse_bad_testers, testers_of
+from coldwork.inputs.method import Method
+from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
+from coldwork.inputs.source import read_sheet
+from coldwork.inputs.structure import refuse_misfits
+from coldwork.inputs.tables import tables_of
+from coldwork.inputs.unbuilt import refuse_unbuilt
+from coldwork.materials import Material
+from coldwork.units import to_si
+
+__all__ = ["read_method"]
+
+_SPACING: Final = {"edge_distance_d": 3.0, "centre_distance_d": 6.0}  # ISO 6507-1, light metals
+
+
+def read_method(folder: Path) -> Method:
+    """Read a batch folder's sheet.
+
+    Parameters
+    ----------
+    folder : Path
+        The batch folder.
+
+    Returns
+    -------
+    Method
+        Checked and complete; the files that it names exist.
+
+    Raises
+    ------
+    BatchRefused
+        With everything that is wrong with the sheet: where it stands, the rule
+        that it breaks, the nearest known name, and how to mend it.
+    """
+    folder = Path(folder)
+    sheet = read_sheet(folder)
+    causes = Causes(sheet)
+    refuse_unreal_numbers(causes)
+    refuse_unbuilt(causes)
+    given = given_numbers(causes)
+    material = material_of(causes)
+    refuse_bad_identity(causes)
+    refuse_misfits(causes)
+    refuse_missing_constants(causes, material)
+    refuse_bad_mix(causes)
+    refuse_bad_testers(causes)
+    refuse_bad_limits(causes)
+    home = folder.resolve()
+    files = tables_of(causes, home)
+    if causes.found:
+        raise BatchRefused(str(folder), causes.all())
+    laws = laws_of(sheet.tables)
+    numbers = used_numbers(causes, laws, given, material)
+    method = _method(causes, home, material, files, numbers)
+    return replace(method, document=method_document(method, sheet.tables, numbers))
+
+
+def _method(
+    causes: Causes,
+    folder: Path,
+    material: Material | None,
+    files: dict[str, tuple[Path, ...]],
+    numbers: dict[str, Given],
+) -> Method:
+    sheet = causes.sheet
+    tables: dict[str, Any] = sheet.tables
+    batch = tables["batch"]
+    testers = testers_of(tables, sheet.origin(("testers",)))
+    inputs = {name: given.input for name, given in numbers.items()}
+    inputs |= {tester.bias.name: tester.bias for tester in testers}
+    resolution = as_number(choice(tables, "indentation", "resolution_um"))
+    return Method(
+        folder=folder,
+        batch_id=batch["id"],
+        laboratory=batch.get("laboratory"),
+        operator=batch.get("operator"),
+        timezone=choice(tables, "batch", "timezone"),
+        material=tables["material"]["name"],
+        lattice=tables["material"].get("lattice", material.lattice if material else None),
+        edge_distance_d=_spacing(tables, material, "edge_distance_d"),
+        centre_distance_d=_spacing(tables, material, "centre_distance_d"),
+        coupons=files["coupons"],
+        indents=files.get("indents", ()),
+        flow_stress=files.get("flow_stress", ()),
+        exclusions=files["exclusions"][0] if "exclusions" in files else None,
+        laws=laws_of(tables),
+        inputs=inputs,
+        testers=testers,
+        limits=limits_of(tables),
+        plastic_strain=float(choice(tables, "flow", "plastic_strain")),
+        repeatability_rel=as_number(choice(tables, "flow", "repeatability_rel")),
+        resolution=None if resolution is None else float(to_si(resolution, "um")),
+        repeatability=choice(tables, "uncertainty", "repeatability"),
+        coverage=float(choice(tables, "uncertainty", "coverage")),
+        test_temperature=float(to_si(choice(tables, "temperature", "test_c"), "Cel")),
+        reference_temperature=float(to_si(choice(tables, "temperature", "reference_c"), "Cel")),
+        tables=tuple(choice(tables, "output", "tables")),
+        detail=choice(tables, "output", "detail"),
+        sheets=sheet.digests,
+        document={},
+    )
+
+
+def _spacing(tables: dict[str, Any], material: Material | None, key: str) -> float:
+    said = as_number(tables["material"].get(key))
+    if said is not None:
+        return said
+    return material.values[key].value if material else _SPACING[key]

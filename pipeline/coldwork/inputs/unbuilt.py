@@ -1,0 +1,175 @@
+"""Choices that a sheet may come to offer and that do not work yet, refused by name.
+
+Each has a sentence of its own, so that nobody looks for a spelling mistake
+where there is none. What is refused is cut out, and the checks that follow see
+the sheet without it.
+"""
+
+from collections.abc import Mapping
+from typing import Any, Final
+
+from coldwork.inputs.causes import Causes
+from coldwork.inputs.numbers import as_number
+from coldwork.inputs.positions import KeyPath
+from coldwork.inputs.words import shown
+
+__all__ = ["refuse_unbuilt"]
+
+_CHOICES: Final[Mapping[KeyPath, Mapping[str, str]]] = {
+    ("strength", "route"): {
+        "both": "Comparing the indent and the flow route of one coupon is not built yet.",
+    },
+    ("hardening", "law"): {
+        "logarithmic": "The logarithmic law, in which alpha falls with density, is not built yet.",
+    },
+    ("line_energy", "elasticity"): {
+        "anisotropic": "Line energy from anisotropic elasticity is not built yet.",
+    },
+    ("uncertainty", "method"): {
+        "monte-carlo": "Uncertainty by Monte Carlo is not built yet.",
+    },
+}
+_SIZE_EFFECTS: Final[Mapping[str, str]] = {
+    "fitted": "Fitting the indentation size effect over several forces is not built yet.",
+    "length": "The indentation size effect from a characteristic depth is not built yet.",
+    "strength": "The indentation size effect from a size strength is not built yet.",
+}
+_KEYS: Final[Mapping[KeyPath, str]] = {
+    ("hardening", "reference_density_per_m2"): (
+        "A reference density belongs to the logarithmic law, which is not built yet."
+    ),
+    ("line_energy", "slip_system"): (
+        "A slip system belongs to anisotropic elasticity, which is not built yet."
+    ),
+    ("strength", "obstacle_mpa"): "Joining an obstacle stress by an exponent is not built yet.",
+    ("uncertainty", "draws"): "Draws belong to Monte Carlo, which is not built yet.",
+    ("uncertainty", "seed"): "A seed belongs to Monte Carlo, which is not built yet.",
+    ("strength", "baseline_from_coupon"): "A baseline from a coupon is not built yet.",
+    ("files", "layout"): "Instrument layouts are not built yet; tables come in the tidy form.",
+    ("files", "layouts"): "Instrument layouts are not built yet; tables come in the tidy form.",
+    ("files", "tensile"): "Tensile records are not built yet; give points in flow_stress.",
+    ("files", "curves"): "Whole flow curves are not built yet; give points in flow_stress.",
+    ("layout",): "Instrument layouts are not built yet; tables come in the tidy form.",
+    ("layouts",): "Instrument layouts are not built yet; tables come in the tidy form.",
+    ("tensile",): "Reducing tensile records is not built yet; give points in flow_stress.",
+    ("curves",): "Whole flow curves are not built yet; give points in flow_stress.",
+    ("calibration",): "Constants from a calibration are not built yet; give them as numbers.",
+    ("calibrations",): "Constants from a calibration are not built yet; give them as numbers.",
+}
+_CONSTANTS: Final[Mapping[str, str]] = {
+    "shear_modulus_slope": "correcting the modulus for temperature",
+    "melting_point_k": "correcting the modulus for temperature",
+    **dict.fromkeys(
+        ("c11_gpa", "c12_gpa", "c13_gpa", "c33_gpa", "c44_gpa"), "anisotropic elasticity"
+    ),
+    "boundary_energy_j_per_m2": "recrystallisation",
+    "stacking_fault_energy_j_per_m2": "recovery and recrystallisation",
+}
+_DEPTH_KEYS: Final[Mapping[str, str]] = {
+    "characteristic_depth_um": "length",
+    "size_strength_gpa2_um": "strength",
+}
+_ORIGINS: Final[Mapping[str, str]] = {
+    "from_coupon": "A value that is taken from a coupon is not built yet.",
+    "calibration": "A value that is taken from a calibration is not built yet.",
+    "from_calibration": "A value that is taken from a calibration is not built yet.",
+    "from": "A value that is taken from elsewhere is not built yet.",
+}
+
+
+def refuse_unbuilt(causes: Causes) -> None:
+    """Refuse, each by its own name, the choices that do not work yet; cut them out."""
+    for path, choices in _CHOICES.items():
+        _refuse_choice(causes, path, choices)
+    for path, why in _KEYS.items():
+        _refuse_key(causes, path, why)
+    for key, job in _CONSTANTS.items():
+        why = f"It belongs to {job}, which is not built yet."
+        _refuse_key(causes, ("material", key), why)
+    _refuse_size_effects(causes)
+    _refuse_exponent(causes)
+    _refuse_values_from_elsewhere(causes)
+    _refuse_tables_of_files(causes)
+    _refuse_temperature_correction(causes)
+
+
+def _table(causes: Causes, path: KeyPath) -> dict[Any, Any]:
+    at: object = causes.sheet.tables
+    for part in path:
+        at = at.get(part) if isinstance(at, dict) else None
+    return at if isinstance(at, dict) else {}
+
+
+def _refuse_choice(causes: Causes, path: KeyPath, choices: Mapping[str, str]) -> None:
+    table = _table(causes, path[:-1])
+    value = table.get(path[-1])
+    if isinstance(value, str) and value in choices:
+        causes.add(path, f"{shown(value)} cannot be chosen", choices[value], "Choose another.")
+        del table[path[-1]]
+
+
+def _refuse_key(causes: Causes, path: KeyPath, why: str) -> None:
+    table = _table(causes, path[:-1])
+    if path[-1] in table:
+        causes.add(path, f"{path[-1]} cannot be used", why, "Take it out.")
+        del table[path[-1]]
+
+
+def _refuse_size_effects(causes: Causes) -> None:
+    for section in (("indentation",), ("indentation", "HBW"), ("indentation", "HK")):
+        _refuse_choice(causes, (*section, "size_effect"), _SIZE_EFFECTS)
+        if _table(causes, section).get("size_effect") == "none":
+            del _table(causes, section)["size_effect"]  # said where it need not be
+        for key, choice in _DEPTH_KEYS.items():
+            _refuse_key(causes, (*section, key), _SIZE_EFFECTS[choice])
+
+
+def _refuse_exponent(causes: Causes) -> None:
+    table = _table(causes, ("strength",))
+    exponent = as_number(table.get("superposition_exponent"))
+    if exponent is None:
+        return
+    if exponent != 1.0:
+        causes.add(
+            ("strength", "superposition_exponent"),
+            f"{exponent:g} cannot be used",
+            "Superposition by an exponent other than 1 is not built yet.",
+            "Leave the key out, or write 1.",
+        )
+    del table["superposition_exponent"]  # as 1 it says what holds anyway
+
+
+def _refuse_values_from_elsewhere(causes: Causes) -> None:
+    for section, keys in causes.sheet.tables.items():
+        for key, value in list(keys.items()) if isinstance(keys, dict) else ():
+            for part in (part for part in _ORIGINS if isinstance(value, dict) and part in value):
+                causes.add(
+                    (section, key), f"{part} cannot be used", _ORIGINS[part], "Give the number."
+                )
+
+
+def _refuse_tables_of_files(causes: Causes) -> None:
+    files = _table(causes, ("files",))
+    for key, value in list(files.items()):
+        entries = value if isinstance(value, list) else [value]
+        if any(isinstance(entry, dict) and "layout" in entry for entry in entries):
+            causes.add(
+                ("files", key),
+                "a layout cannot be used",
+                "Instrument layouts are not built yet; tables come in the tidy form.",
+                "Turn the export into the tidy form and name that file.",
+            )
+            del files[key]
+
+
+def _refuse_temperature_correction(causes: Causes) -> None:
+    table = _table(causes, ("temperature",))
+    test, reference = (as_number(table.get(key, 23.0)) for key in ("test_c", "reference_c"))
+    if test is None or reference is None or test == reference:
+        return
+    causes.add(
+        ("temperature", "test_c" if "test_c" in table else "reference_c"),
+        f"the tests ran at {test:g} C and the shear modulus holds at {reference:g} C",
+        "Correcting the modulus for temperature is not built yet.",
+        "Give the modulus at the temperature of the test, and both keys the same number.",
+    )

@@ -1,0 +1,354 @@
+"""Tables of readings as a stream of blocks that hold usable rows alone.
+
+Every other row goes to `SetAside` on the way, with the first of its faults in the
+contract's order of columns and a word on the others.
+"""
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from coldwork.contracts import Field
+from coldwork.errors import BatchRefused, Cause
+from coldwork.intake.cells import column_of, take, take_or_null
+from coldwork.intake.column import Column, Fault, read_column
+from coldwork.intake.coupons import Coupons
+from coldwork.intake.exclusions import Exclusions
+from coldwork.intake.files import BLOCK_BYTES, SourceFile, TableFiles
+from coldwork.intake.row_checks import filled_scale, indent_faults
+from coldwork.intake.set_aside import SetAside
+from coldwork.intake.text import TableText, TextBlock
+from coldwork.rules import reasons
+
+__all__ = ["ReadingBlock", "ReadingStream", "read_readings"]
+
+_ID: Final = "coupon_id"
+_NUMBERS: Final = {"indents": "indent_no", "flow_stress": "reading_no"}
+
+
+@dataclass(frozen=True)
+class ReadingBlock:
+    """Usable readings of one file, n of them, in the file's order.
+
+    Attributes
+    ----------
+    file : int
+        Which of the stream's files.
+    lines : ndarray of int64, shape (n,)
+        Line of each.
+    coupon : ndarray of int32, shape (n,)
+        Place of its coupon in coupons.csv.
+    number : ndarray of int64, shape (n,)
+        ``indent_no`` or ``reading_no``.
+    floats : mapping of str to ndarray of float64, shape (n,)
+        The number columns that the file has, by name; NaN where absent. [contract's unit]
+    texts : mapping of str to pyarrow.StringArray, n texts
+        The text and time columns that the file has, by name, empty where absent; for
+        indents always ``scale``, ``HV`` where absent.
+    times : ndarray of int64, shape (n,), or None
+        ``measured_at`` since 1970-01-01T00:00Z, `times.ABSENT` where absent; None if
+        the file has no such column. [us]
+    raw : pyarrow.RecordBatch, n rows
+        The cells as written, columns in the file's order.
+    """
+
+    file: int
+    lines: NDArray[np.int64]
+    coupon: NDArray[np.int32]
+    number: NDArray[np.int64]
+    floats: Mapping[str, NDArray[np.float64]]
+    texts: Mapping[str, pa.StringArray]
+    times: NDArray[np.int64] | None
+    raw: pa.RecordBatch
+
+
+@dataclass(frozen=True)
+class _Typed:
+    """A block after its cells were read and its faults were found."""
+
+    text: TextBlock
+    columns: Mapping[str, Column]
+    scale: pa.StringArray | None
+    coupon: NDArray[np.int32]
+    exclusion: NDArray[np.intp]
+    faults: list[Fault]
+
+    @property
+    def faulty(self) -> NDArray[np.bool_]:
+        bad = np.zeros(len(self.text.lines), dtype=np.bool_)
+        for fault in self.faults:
+            bad |= fault.rows
+        return bad
+
+
+class ReadingStream:
+    """The readings of a batch, block by block; see `read_readings`.
+
+    Iterating anew reads the files anew. Whoever does so restarts the `SetAside` first.
+
+    Attributes
+    ----------
+    seen : ndarray of bool, shape (exclusions,)
+        Which exclusions met a reading, once the end was reached.
+    """
+
+    def __init__(
+        self,
+        files: TableFiles,
+        coupons: Coupons,
+        exclusions: Exclusions,
+        set_aside: SetAside,
+        zone: str,
+        *,
+        block_bytes: int = BLOCK_BYTES,
+    ) -> None:
+        self._files = files
+        self._coupons = coupons
+        self._exclusions = exclusions
+        self._set_aside = set_aside
+        self._zone = zone
+        self._block_bytes = block_bytes
+        self._table = files.contract.table
+        self._number = _NUMBERS[self._table]
+        self._fields = [_loosened(field) for field in files.contract.fields]
+        self._digests: dict[int, str] = {}
+        self._sizes: dict[int, int] = {}
+        self._rows: dict[int, int] = {}
+        self.seen = np.zeros(len(exclusions), dtype=np.bool_)
+
+    def __iter__(self) -> Iterator[ReadingBlock]:
+        """Read all files from front to back.
+
+        Raises
+        ------
+        BatchRefused
+            At the end, with all that is wrong with the files as wholes.
+        """
+        self.seen[:] = False
+        causes: list[Cause] = []
+        for file in range(len(self._files.paths)):
+            self._rows[file] = 0
+            text = TableText(self._files, file, self._block_bytes)
+            try:
+                for block in text:
+                    self._rows[file] += len(block.lines) + len(block.torn)
+                    if not causes:
+                        yield self._usable(block)
+            except BatchRefused as refused:
+                causes += refused.causes
+            else:
+                causes += self._compared(file, text)
+        if causes:
+            raise BatchRefused(str(self._files.folder), causes)
+
+    @property
+    def sources(self) -> list[SourceFile]:
+        """What was read so far; rows that were set aside later on are counted as such."""
+        found = []
+        for file, sha256 in self._digests.items():
+            name, rows = self._files.names[file], self._rows[file]
+            aside = self._set_aside.count_in(self._table, name)
+            size = self._sizes[file]
+            found.append(SourceFile(name, self._table, sha256, size, rows, rows - aside, aside))
+        return found
+
+    def unmatched(self) -> list[Cause]:
+        """Say which exclusions matched no reading, once the end was reached."""
+        return self._exclusions.unmatched(self.seen)
+
+    def _compared(self, file: int, text: TableText) -> list[Cause]:
+        """Note what a file was; refuse one that was something else the last time."""
+        before = self._digests.setdefault(file, text.sha256)
+        self._sizes[file] = text.size
+        if before == text.sha256:
+            return []
+        what, why = "changed between two passes", "What was read would be neither."
+        mend = "Wait until whatever writes it has finished, then run the batch again."
+        return [Cause(self._files.names[file], what, why, mend)]
+
+    def _usable(self, block: TextBlock) -> ReadingBlock:
+        typed = self._typed(block)
+        self._put_torn_aside(block)
+        if not typed.faults:
+            return self._block(typed)
+        bad = typed.faulty
+        self._put_aside(typed, np.flatnonzero(bad))
+        return _kept(self._block(typed), ~bad)
+
+    def _typed(self, block: TextBlock) -> _Typed:
+        columns = {
+            field.name: read_column(field, column_of(block.cells, field.name), self._zone)
+            for field in self._fields
+            if field.name in block.cells.schema.names
+        }
+        coupon = self._coupons.index(columns[_ID].text)
+        number = _integers(columns[self._number])
+        exclusion = self._exclusions.find(coupon, number)
+        self.seen[exclusion[exclusion >= 0]] = True
+        scale = None
+        unlisted = (coupon < 0) & ~columns[_ID].absent
+        faults = [
+            Fault(reasons.UNLISTED_COUPON, _ID, unlisted, self._unlisted_hint),
+            Fault(reasons.EXCLUDED, self._number, exclusion >= 0),
+        ]
+        if self._table == "indents":
+            scale = filled_scale(columns, len(block.lines))
+            faults += indent_faults(columns, scale)
+        faults += [fault for column in columns.values() for fault in column.faults]
+        found = [fault for fault in faults if fault.rows.any()]
+        places = {name: place for place, name in enumerate(columns)}
+        found.sort(key=lambda fault: places.get(fault.column, -1))
+        return _Typed(block, columns, scale, coupon, exclusion, found)
+
+    def _block(self, typed: _Typed) -> ReadingBlock:
+        columns = typed.columns
+        floats, texts = {}, {}
+        for name, column in columns.items():
+            if column.field.type == "number":
+                floats[name] = np.asarray(column.values, dtype=np.float64)
+            elif column.field.text and name != _ID:
+                texts[name] = column.text
+        if typed.scale is not None:
+            texts["scale"] = typed.scale
+        times = _integers(columns["measured_at"]) if "measured_at" in columns else None
+        return ReadingBlock(
+            file=typed.text.file,
+            lines=typed.text.lines,
+            coupon=typed.coupon,
+            number=_integers(columns[self._number]),
+            floats=floats,
+            texts=texts,
+            times=times,
+            raw=typed.text.cells,
+        )
+
+    def _put_torn_aside(self, block: TextBlock) -> None:
+        if not block.torn:
+            return
+        self._set_aside.add(
+            reasons.ROW_WIDTH,
+            table=self._table,
+            file=self._files.names[block.file],
+            lines=[row.line for row in block.torn],
+            column="",
+            raw=[row.text for row in block.torn],
+            hint=[_width_hint(row.found, row.expected) for row in block.torn],
+        )
+
+    def _put_aside(self, typed: _Typed, rows: NDArray[np.intp]) -> None:
+        """Set rows aside, each for the first of its faults."""
+        left = rows
+        for place, fault in enumerate(typed.faults):
+            hit = fault.rows[left]
+            here, left = left[hit], left[~hit]
+            if not here.size:
+                continue
+            later = typed.faults[place + 1 :]
+            exclusion = typed.exclusion[here]
+            raw = _raw(typed, fault.column, here)
+            self._set_aside.add(
+                fault.reason,
+                table=self._table,
+                file=self._files.names[typed.text.file],
+                lines=typed.text.lines[here],
+                column=fault.column,
+                raw=raw,
+                coupon=typed.coupon[here],
+                coupon_ids=typed.columns[_ID].text.take(here),
+                reading_no=_integers(typed.columns[self._number])[here],
+                hint=[fault.hint(cell) or None for cell in raw] if fault.hint else None,
+                also=_also(typed, later, here),
+                excluded_by=take_or_null(self._exclusions.by, exclusion),
+                excluded_at=take_or_null(self._exclusions.at, exclusion),
+                excluded_because=take_or_null(self._exclusions.because, exclusion),
+            )
+
+    def _unlisted_hint(self, raw: str) -> str:
+        alike = self._coupons.lookup.alike(raw.removeprefix("'"))
+        if alike is None:
+            return ""
+        return f"coupons.csv lists {alike!r}: spaces, capitals and leading zeros count"
+
+
+def read_readings(
+    files: TableFiles,
+    coupons: Coupons,
+    exclusions: Exclusions,
+    set_aside: SetAside,
+    zone: str,
+    *,
+    block_bytes: int = BLOCK_BYTES,
+) -> ReadingStream:
+    """Read the files that hold readings, as a stream.
+
+    Parameters
+    ----------
+    files : TableFiles
+        They and their contract, ``in/indents`` or ``in/flow_stress``.
+    coupons : Coupons
+        The batch's coupons.
+    exclusions : Exclusions
+        The readings that were taken out.
+    set_aside : SetAside
+        Where rows go that cannot be used.
+    zone : str
+        IANA name of the zone in which a time without one is meant.
+    block_bytes : int, optional
+        How much is read at once. [byte]
+
+    Returns
+    -------
+    ReadingStream
+        Blocks in the order of the files and their lines, as many as were read, some of
+        them without a row. Memory does not grow with the files, but for what is set aside.
+    """
+    return ReadingStream(files, coupons, exclusions, set_aside, zone, block_bytes=block_bytes)
+
+
+def _loosened(field: Field) -> Field:
+    """Leave the form of coupons' names to coupons.csv: a name that is listed there has it."""
+    return replace(field, pattern=None, max_length=None) if field.name == _ID else field
+
+
+def _integers(column: Column) -> NDArray[np.int64]:
+    return np.asarray(column.values, dtype=np.int64)
+
+
+def _raw(typed: _Typed, column: str, rows: NDArray[np.intp]) -> list[str]:
+    cells = typed.text.cells
+    if column not in cells.schema.names:  # such as ball_mm where a file has none
+        return [""] * len(rows)
+    return take(column_of(cells, column), rows)
+
+
+def _also(typed: _Typed, faults: list[Fault], rows: NDArray[np.intp]) -> list[str | None] | None:
+    """Name the further faults of each row: column, rule and raw cell."""
+    words: list[list[str]] = [[] for _ in rows]
+    for fault in faults:
+        places = np.flatnonzero(fault.rows[rows])
+        for place, cell in zip(places, _raw(typed, fault.column, rows[places]), strict=True):
+            words[place].append(f"{fault.column}: {fault.reason.id} ({cell!r})")
+    return ["; ".join(each) or None for each in words] if any(words) else None
+
+
+def _width_hint(found: int, expected: int) -> str:
+    more = "an unquoted comma or a decimal comma" if found > expected else "a missing comma"
+    return f"{found} cells where the header has {expected}: look for {more}"
+
+
+def _kept(block: ReadingBlock, rows: NDArray[np.bool_]) -> ReadingBlock:
+    mask = pa.array(rows)
+    return ReadingBlock(
+        file=block.file,
+        lines=block.lines[rows],
+        coupon=block.coupon[rows],
+        number=block.number[rows],
+        floats={name: values[rows] for name, values in block.floats.items()},
+        texts={name: texts.filter(mask) for name, texts in block.texts.items()},
+        times=None if block.times is None else block.times[rows],
+        raw=block.raw.filter(mask),
+    )

@@ -1,0 +1,119 @@
+"""What a row of readings must hold as a whole, beyond what each of its cells must."""
+
+from collections.abc import Mapping
+from typing import Final
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from coldwork.formulas.hardness import brinell_diameter, brinell_hardness
+from coldwork.intake.cells import replaced, same_as
+from coldwork.intake.column import Column, Fault
+from coldwork.rules import reasons
+from coldwork.units import to_si
+
+__all__ = ["DEFAULT_SCALE", "filled_scale", "indent_faults"]
+
+DEFAULT_SCALE: Final = "HV"
+
+
+def filled_scale(columns: Mapping[str, Column], rows: int) -> pa.StringArray:
+    """Give the scale of each row, `DEFAULT_SCALE` where the cell is empty or there is no column.
+
+    Parameters
+    ----------
+    columns : mapping of str to Column
+        The columns of a block.
+    rows : int
+        How many rows it has.
+
+    Returns
+    -------
+    pyarrow.StringArray, `rows` texts
+    """
+    scale = columns.get("scale")
+    if scale is None:
+        return pa.repeat(DEFAULT_SCALE, rows)
+    return replaced(scale.text, scale.absent, DEFAULT_SCALE)
+
+
+def indent_faults(columns: Mapping[str, Column], scale: pa.StringArray) -> list[Fault]:
+    """Find indents that lack what their scale is computed from, or that no ball can make.
+
+    Parameters
+    ----------
+    columns : mapping of str to Column
+        The columns of a block of n rows.
+    scale : pyarrow.StringArray, n texts
+        From `filled_scale`.
+
+    Returns
+    -------
+    list of Fault
+        ``required-empty`` in the first column that would have helped, ``ball-missing`` and
+        ``impossible-indent``.
+    """
+    faults = _sizeless(columns, scale)
+    if "scale" in columns:
+        brinell = same_as(scale, "HBW")
+        if brinell.any():
+            faults += _ball_faults(columns, brinell)
+    return faults
+
+
+def _sizeless(columns: Mapping[str, Column], scale: pa.StringArray) -> list[Fault]:
+    """Rows with neither a hardness nor the diagonals that their scale is read by."""
+    count = len(scale)
+    lacks_1, lacks_2 = (_absent(columns, name, count) for name in ("d1_um", "d2_um"))
+    if lacks_2.any() and "scale" in columns:
+        lacks_2 &= ~same_as(scale, "HK")
+    lacks = (lacks_1 | lacks_2) & _absent(columns, "hardness", count)
+    if not lacks.any():
+        return []
+    if "d1_um" not in columns:
+        return [Fault(reasons.REQUIRED_EMPTY, "hardness", lacks)]
+    return [
+        Fault(reasons.REQUIRED_EMPTY, "d1_um", lacks & lacks_1),
+        Fault(reasons.REQUIRED_EMPTY, "d2_um", lacks & ~lacks_1),
+    ]
+
+
+def _ball_faults(columns: Mapping[str, Column], brinell: NDArray[np.bool_]) -> list[Fault]:
+    missing = brinell & _absent(columns, "ball_mm", len(brinell))
+    rows = np.flatnonzero(brinell & ~missing)
+    impossible = np.zeros(len(brinell), dtype=np.bool_)
+    impossible[rows] = _impossible(columns, rows)
+    column = "d1_um" if "d1_um" in columns else "hardness"
+    return [
+        Fault(reasons.BALL_MISSING, "ball_mm", missing),
+        Fault(reasons.IMPOSSIBLE_INDENT, column, impossible),
+    ]
+
+
+def _impossible(columns: Mapping[str, Column], rows: NDArray[np.intp]) -> NDArray[np.bool_]:
+    """Whether no ball can make the indents of `rows`; False where a number is missing or bad."""
+    force, ball, d1, d2, hardness = (
+        _si(columns, name, rows) for name in ("force_n", "ball_mm", "d1_um", "d2_um", "hardness")
+    )
+    measured = np.isfinite(d1) & np.isfinite(d2)
+    lost = np.where(
+        measured,
+        np.isnan(brinell_hardness(force, d1, d2, ball)),
+        np.isnan(brinell_diameter(force, hardness, ball)) & np.isfinite(hardness),
+    )
+    return lost & np.isfinite(force) & np.isfinite(ball)
+
+
+def _si(columns: Mapping[str, Column], name: str, rows: NDArray[np.intp]) -> NDArray[np.float64]:
+    """Values of a column in SI, NaN where there is none or it is not sound."""
+    column = columns.get(name)
+    if column is None or column.values is None:
+        return np.full(len(rows), np.nan)
+    values = np.where(column.faulty[rows], np.nan, column.values[rows])
+    return to_si(values, column.field.unit or "1")
+
+
+def _absent(columns: Mapping[str, Column], name: str, rows: int) -> NDArray[np.bool_]:
+    column = columns.get(name)
+    return np.ones(rows, dtype=np.bool_) if column is None else column.absent

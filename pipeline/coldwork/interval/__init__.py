@@ -1,0 +1,1 @@
+"""From sensitivities to uncertainty: own, shared, intervals, budget, lots."""

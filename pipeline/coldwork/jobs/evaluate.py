@@ -1,0 +1,205 @@
+"""One slice of coupons through chain and interval: mean of the readings to quantities."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from coldwork.chain import Start, Strength, strength
+from coldwork.inputs.method import Method
+from coldwork.intake.coupons import Coupons
+from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_ends
+from coldwork.interval.reach import LATE, Reach
+from coldwork.measured import Measured, Value
+from coldwork.reduce.reduced import Reduced
+from coldwork.scatter import Repeatability
+
+__all__ = [
+    "GRAIN",
+    "QUANTITIES",
+    "REPEATABILITY",
+    "STRENGTHS",
+    "Evaluated",
+    "evaluate",
+    "inputs_of",
+    "quantities_of",
+]
+
+REPEATABILITY: Final = "repeatability"  # name of the input that the readings' scatter makes
+GRAIN: Final = "grain_size_um"  # and of that which a coupon's grain size makes
+STRENGTHS: Final = (
+    "hardness",
+    "flow_stress_mpa",
+    "baseline_stress_mpa",
+    "dislocation_stress_mpa",
+)
+QUANTITIES: Final = (*STRENGTHS, *LATE)
+
+
+@dataclass(frozen=True)
+class Evaluated:
+    """What a slice of n coupons comes to. SI, arrays of shape (n,).
+
+    Attributes
+    ----------
+    start : Start
+        What the chain began with.
+    strength : Strength
+        The first half of the chain.
+    reach : Reach
+        The second half, ready to be asked for ends and probabilities.
+    results : mapping of str to Measured
+        Every quantity by column name.
+    combined : mapping of str to Combined
+        Their uncertainties.
+    ends : mapping of str to Ends
+        Their intervals at the method's coverage.
+    spreads : mapping of str to Spread
+        Every input's uncertainty, the coupons' own ones included.
+    """
+
+    start: Start
+    strength: Strength
+    reach: Reach
+    results: Mapping[str, Measured]
+    combined: Mapping[str, Combined]
+    ends: Mapping[str, Ends]
+    spreads: Mapping[str, Spread]
+
+    @property
+    def stress(self) -> Measured:
+        """The dislocation stress. [Pa]"""
+        return self.reach.stress
+
+
+def inputs_of(method: Method) -> tuple[dict[str, Value], dict[str, Spread]]:
+    """Make the chain's inputs from the method's: `Measured` where they are uncertain.
+
+    Parameters
+    ----------
+    method : Method
+        The batch's method.
+
+    Returns
+    -------
+    dict of str to Value
+        By name; testers are left out, they act on the mean. [SI]
+    dict of str to Spread
+        The uncertainty of each, testers too.
+    """
+    values: dict[str, Value] = {}
+    spreads: dict[str, Spread] = {}
+    for name, x in method.inputs.items():
+        spreads[name] = Spread(x.u, x.shared, x.degrees_of_freedom)
+        if not name.startswith("tester:"):
+            exact = np.float64(x.value)
+            values[name] = Measured.of_input(name, x.value) if x.u > 0.0 else exact
+    return values, spreads
+
+
+def start_of(
+    method: Method, coupons: Coupons, reduced: Reduced, scatter: Repeatability, rows: slice
+) -> tuple[Start, dict[str, Spread]]:
+    """Make what a slice of coupons brings to the chain, and the spread of its own inputs."""
+    mean = reduced.mean[rows]
+    slopes: dict[str, NDArray[np.float64]] = {REPEATABILITY: np.asarray(1.0)}
+    for tester in method.testers:
+        share = reduced.shares[tester.id][rows]
+        if tester.bias.u > 0.0 and share.any():
+            slopes[tester.bias.name] = -mean * share / (1.0 + tester.bias.value)
+    own = {
+        REPEATABILITY: Spread(
+            scatter.u[rows], shared=False, degrees_of_freedom=scatter.degrees_of_freedom[rows]
+        )
+    }
+    grain: Value = coupons.grain_size[rows]
+    u_grain = np.nan_to_num(coupons.u_grain_size[rows])
+    if u_grain.any():
+        grain = Measured.of_input(GRAIN, coupons.grain_size[rows])
+        own[GRAIN] = Spread(u_grain, shared=False, degrees_of_freedom=np.inf)
+    work = coupons.prior_plastic_work[rows]
+    if method.laws.route == "indent" and not method.laws.unwinding:
+        work = np.full(work.shape, np.nan)  # the state includes the indent's own strain
+    start = Start(
+        Measured(mean, slopes),
+        reduced.scale[rows],
+        reduced.force[rows],
+        reduced.ball[rows],
+        grain,
+        work,
+        method.plastic_strain,
+    )
+    return start, own
+
+
+def evaluate(
+    method: Method,
+    inputs: Mapping[str, Value],
+    spreads: Mapping[str, Spread],
+    start: Start,
+) -> Evaluated:
+    """Run a slice of coupons through the chain and take the intervals.
+
+    Parameters
+    ----------
+    method : Method
+        Laws and coverage.
+    inputs : mapping of str to Value
+        From `inputs_of`. [SI]
+    spreads : mapping of str to Spread
+        Of every input, the coupons' own ones included.
+    start : Start
+        The slice.
+
+    Returns
+    -------
+    Evaluated
+        Everything about the slice, SI.
+    """
+    half = strength(method.laws, inputs, start)
+    n = start.scale.shape[0]
+    stress = _measured(half.dislocation_stress, n)
+    reach = Reach(method.laws, inputs, spreads, start, stress)
+    results = _strengths(method, start, half, n) | reach.results
+    return quantities_of(method, start, half, reach, results, spreads)
+
+
+def quantities_of(
+    method: Method,
+    start: Start,
+    half: Strength,
+    reach: Reach,
+    results: Mapping[str, Measured],
+    spreads: Mapping[str, Spread],
+) -> Evaluated:
+    """Take the uncertainty and the interval of every quantity. [SI]"""
+    probability = (1.0 + method.coverage) / 2.0
+    combined: dict[str, Combined] = {}
+    ends: dict[str, Ends] = {}
+    for name, result in results.items():
+        if name in LATE:
+            combined[name] = reach.combined[name]
+            ends[name] = reach.interval(name, probability)
+        else:
+            combined[name] = combine(result, spreads)
+            ends[name] = strength_ends(result.value, combined[name], probability)
+    return Evaluated(start, half, reach, results, combined, ends, spreads)
+
+
+def _strengths(method: Method, start: Start, half: Strength, n: int) -> dict[str, Measured]:
+    found = {
+        "flow_stress_mpa": half.flow_stress,
+        "baseline_stress_mpa": half.baseline_stress,
+        "dislocation_stress_mpa": half.dislocation_stress,
+    }
+    if method.laws.route == "indent":
+        found = {"hardness": start.mean, **found}
+    return {name: _measured(x, n) for name, x in found.items()}
+
+
+def _measured(x: Value, n: int) -> Measured:
+    if isinstance(x, Measured):
+        return Measured(np.broadcast_to(x.value, (n,)), x.sensitivities)
+    return Measured(np.broadcast_to(np.asarray(x, dtype=np.float64), (n,)))

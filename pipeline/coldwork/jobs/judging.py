@@ -1,0 +1,231 @@
+"""Limits held against a slice of coupons: what is known of each, and the decisions."""
+
+from collections.abc import Mapping, Sequence
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from coldwork import units
+from coldwork.inputs.method import Limit, Method
+from coldwork.interval.combine import (
+    Combined,
+    Ends,
+    combine,
+    strength_ends,
+    strength_probability_above,
+)
+from coldwork.interval.reach import LATE, Reach
+from coldwork.jobs.evaluate import Evaluated
+from coldwork.jobs.figures import Figures, emptied
+from coldwork.jobs.tables import unit_of
+from coldwork.judge.coupon_rules import State, judge_coupons
+from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
+from coldwork.measured import value_of
+from coldwork.reduce.reduced import Reduced
+from coldwork.rules.findings import Findings
+
+__all__ = ["decide_slice", "decisions_table", "find_in_slice"]
+
+_Floats = NDArray[np.float64]
+
+
+def find_in_slice(
+    findings: Findings,
+    method: Method,
+    reduced: Reduced,
+    thickness: _Floats,
+    u_mean: _Floats,
+    evaluated: Evaluated,
+    rows: slice,
+) -> None:
+    """Hold a slice of coupons against the rules that look at their results.
+
+    Parameters
+    ----------
+    findings : Findings
+        Where it is told.
+    method, reduced
+        The batch.
+    thickness : ndarray, shape (n,)
+        Of the slice's coupons. [m]
+    u_mean : ndarray, shape (n,)
+        Standard uncertainty of the mean reading. [Pa]
+    evaluated : Evaluated
+        The slice.
+    rows : slice
+        Its place in the batch.
+    """
+    saturation = method.inputs.get("indentation.saturation_stress_mpa")
+    results, half = evaluated.results, evaluated.strength
+    judge_coupons(
+        findings,
+        State(
+            coupon=np.arange(rows.start, rows.stop),
+            route=method.laws.route,
+            readings_used=reduced.used[rows],
+            repeatability=u_mean,
+            scale=reduced.scale[rows],
+            thickness=thickness,
+            mean_diagonal=reduced.mean_diagonal[rows],
+            ball=reduced.ball[rows],
+            stress=evaluated.stress.value,
+            u_stress=evaluated.reach.u_stress.u,
+            upper_stress_end=evaluated.ends["dislocation_stress_mpa"].upper,
+            unwinding=method.laws.unwinding,
+            unwound=half.unwound,
+            indented_stress=value_of(half.excess),
+            saturation_stress=np.nan if saturation is None else saturation.value,
+            density=results["dislocation_density_per_m2"].value,
+            radius_ratio=evaluated.reach.radius_ratio,
+            stored_fraction=results["stored_fraction_of_work"].value,
+        ),
+    )
+
+
+def decide_slice(
+    method: Method,
+    evaluated: Evaluated,
+    figures: Mapping[str, Figures],
+    bits: NDArray[np.uint64],
+) -> list[Decided]:
+    """Decide every limit on a slice of coupons.
+
+    Parameters
+    ----------
+    method : Method
+        Limits and coverage.
+    evaluated : Evaluated
+        The slice.
+    figures : mapping of str to Figures
+        Its quantities, emptied where errors say so. [SI]
+    bits : ndarray of uint64, shape (n,)
+        Findings of its coupons.
+
+    Returns
+    -------
+    list of Decided
+        In the sheet's order of limits.
+    """
+    return [
+        decide(limit, _evidence(limit, method, evaluated, figures[limit.quantity], bits))
+        for limit in method.limits
+        if limit.quantity in figures
+    ]
+
+
+def decisions_table(
+    method: Method,
+    ids: pa.StringArray,
+    figures: Mapping[str, Figures],
+    decided: Sequence[Decided],
+) -> pa.Table:
+    """Build a slice of ``decisions.csv``: every limit on every coupon.
+
+    Parameters
+    ----------
+    method : Method
+        The limits.
+    ids : pyarrow.StringArray of n
+        The coupons.
+    figures : mapping of str to Figures
+        Their quantities. [SI]
+    decided : sequence of Decided
+        From `decide_slice`.
+
+    Returns
+    -------
+    pyarrow.Table
+        Coupon by coupon, in the sheet's order of limits within each.
+    """
+    n, limits = len(ids), [x for x in method.limits if x.quantity in figures]
+    parts = []
+    for limit, one in zip(limits, decided, strict=True):
+        unit, found = unit_of(limit.quantity), figures[limit.quantity]
+
+        def same(x: str | float | None, kind: pa.DataType) -> pa.Array:
+            return pa.nulls(n, kind) if x is None else pa.repeat(pa.scalar(x, kind), n)
+
+        parts.append(
+            pa.table(
+                {
+                    "coupon_id": ids,
+                    "limit_id": same(limit.id, pa.string()),
+                    "quantity": same(limit.quantity, pa.string()),
+                    "value": pa.array(units.from_si(found.result.value, unit)),
+                    "u": pa.array(units.from_si(found.combined.u, unit)),
+                    "lower_limit": same(limit.lower, pa.float64()),
+                    "upper_limit": same(limit.upper, pa.float64()),
+                    "bound": pa.array(one.bound),
+                    "rule": same(limit.rule, pa.string()),
+                    "basis": same(limit.basis, pa.string()),
+                    "coverage": same(method.coverage, pa.float64()),
+                    "probability": pa.array(one.probability),
+                    "decision": decision_texts(one.code),
+                    "reason": one.reason,
+                }
+            )
+        )
+    table = pa.concat_tables(parts)
+    order = np.arange(n * len(parts)).reshape(len(parts), n).T.ravel()
+    return table.take(pa.array(order))
+
+
+def _evidence(
+    limit: Limit,
+    method: Method,
+    evaluated: Evaluated,
+    found: Figures,
+    bits: NDArray[np.uint64],
+) -> Evidence:
+    unit = unit_of(limit.quantity)
+    own = limit.basis == "own"
+    reach = evaluated.reach.with_shared_exact() if own else evaluated.reach
+    combined = found.combined
+    if own and limit.quantity in LATE:
+        combined = reach.combined[limit.quantity]
+    elif own:
+        combined = combine(found.result, evaluated.spreads, own_only=True)
+    bounds = _one_sided(limit.quantity, found, combined, reach, method.coverage)
+    half = evaluated.strength
+    with_indent = np.zeros(bits.shape, dtype=bool)
+    if method.laws.route == "indent":
+        with_indent = ~half.unwound
+    value = units.from_si(found.result.value, unit)
+    return Evidence(
+        value=value,
+        u=np.where(np.isnan(value), np.nan, units.from_si(combined.u, unit)),
+        lower_bound=units.from_si(bounds.lower, unit),
+        upper_bound=units.from_si(bounds.upper, unit),
+        above_lower=_above(limit.lower, limit.quantity, unit, found, combined, reach),
+        above_upper=_above(limit.upper, limit.quantity, unit, found, combined, reach),
+        blocked=emptied(limit.quantity, bits, ends=True),
+        with_indent=with_indent,
+        coverage=method.coverage,
+        unit=unit,
+    )
+
+
+def _one_sided(
+    quantity: str, found: Figures, combined: Combined, reach: Reach, coverage: float
+) -> Ends:
+    if quantity in LATE:
+        return reach.interval(quantity, coverage)
+    return strength_ends(found.result.value, combined, coverage)
+
+
+def _above(
+    limit: float | None,
+    quantity: str,
+    unit: str,
+    found: Figures,
+    combined: Combined,
+    reach: Reach,
+) -> _Floats:
+    value = found.result.value
+    if limit is None:
+        return np.full(value.shape, np.nan)
+    si = float(units.to_si(limit, unit))
+    if quantity in LATE:
+        return reach.probability_above(quantity, si)
+    return strength_probability_above(value, combined, si)

@@ -1,0 +1,111 @@
+"""The library of metals in words, and as data for a program."""
+
+from collections.abc import Iterator
+from dataclasses import asdict
+from textwrap import wrap
+from typing import Any, Final
+
+from coldwork import materials
+from coldwork.materials import LibraryValue, Material
+
+__all__ = ["as_json", "detail", "table"]
+
+_WIDTH: Final = 100  # characters
+_COLUMNS: Final = {
+    "shear_modulus_gpa": "G, GPa",
+    "poisson_ratio": "nu",
+    "burgers_vector_nm": "b, nm",
+    "mass_density_kg_per_m3": "density, kg/m3",
+    "molar_mass_g_per_mol": "g/mol",
+}
+
+
+def table() -> str:
+    """List the metals of the library, a line each.
+
+    Returns
+    -------
+    str
+        Name, lattice and the constants that every method needs, each with its
+        standard uncertainty; lines of at most 100 characters.
+    """
+    rows = [["name", "lattice", *_COLUMNS.values()]]
+    for name in materials.names():
+        metal = materials.load(name)
+        rows.append([name, metal.lattice, *(_short(metal, key) for key in _COLUMNS)])
+    widths = [max(len(row[i]) for row in rows) for i in range(len(rows[0]))]
+    lines = [
+        "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip()
+        for row in rows
+    ]
+    return "\n".join([*lines, "", "`coldwork materials NAME` shows one of them with its sources."])
+
+
+def detail(name: str) -> str:
+    """Describe one metal: every constant with its uncertainty and source.
+
+    Parameters
+    ----------
+    name : str
+        Name in the library.
+
+    Returns
+    -------
+    str
+        Lines of at most 100 characters.
+
+    Raises
+    ------
+    UsageError
+        If the library has no such metal; the message names the nearest.
+    """
+    return "\n".join(_lines(materials.load(name)))
+
+
+def as_json(name: str | None = None) -> dict[str, Any]:
+    """Give one metal, or all of them, as data.
+
+    Parameters
+    ----------
+    name : str, optional
+        Name in the library; all of it without one.
+
+    Returns
+    -------
+    dict
+        ``materials``, by name: title, lattice, note, and each constant with
+        value, u, unit, source and whether the number was seen.
+
+    Raises
+    ------
+    UsageError
+        If the library has no such metal; the message names the nearest.
+    """
+    wanted = materials.names() if name is None else (name,)
+    return {"materials": {each: asdict(materials.load(each)) for each in wanted}}
+
+
+def _short(metal: Material, key: str) -> str:
+    entry = metal.values.get(key)
+    return "" if entry is None else f"{entry.value:.10g} ± {entry.u:g}"
+
+
+def _lines(metal: Material) -> Iterator[str]:
+    yield f"{metal.name}: {metal.title} ({metal.lattice})"
+    if metal.note:
+        yield from wrap(metal.note, _WIDTH)
+    for key, entry in metal.values.items():
+        yield ""
+        yield f"  {key} = {_with_u(entry)}"
+        yield from wrap(
+            f"{'Seen' if entry.seen else 'Not seen'}: {entry.source}.",
+            _WIDTH,
+            initial_indent="    ",
+            subsequent_indent="    ",
+        )
+
+
+def _with_u(entry: LibraryValue) -> str:
+    spread = f" ± {entry.u:g}" if entry.u else ""
+    unit = "" if entry.unit == "1" else f" {entry.unit}"
+    return f"{entry.value:.10g}{spread}{unit}"

@@ -1,0 +1,284 @@
+"""The main job, stage by stage: a batch folder in, its results out, whole or not at all."""
+
+import getpass
+import platform
+import socket
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import suppress
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from hashlib import sha256
+from pathlib import Path
+from typing import Final
+
+import numpy as np
+import pyarrow as pa
+
+from coldwork import contracts
+from coldwork.inputs.method import Method
+from coldwork.inputs.sheet import read_method
+from coldwork.jobs.drawing import Drawing
+from coldwork.jobs.gather import Gathered, gather
+from coldwork.jobs.kept import KeptReadings
+from coldwork.jobs.lots import Lots
+from coldwork.jobs.slices import Sliced, work_slice
+from coldwork.judge.evidence import DECISIONS
+from coldwork.results.documents import dump
+from coldwork.results.records import Common, Slice, build, seal
+from coldwork.results.tables import TableWriter
+from coldwork.results.target import Target, open_target
+from coldwork.rules import RULES
+from coldwork.rules.rule import Level
+
+__all__ = ["Outcome", "run"]
+
+Progress = Callable[[str], None]
+
+_SLICE: Final = 1 << 15  # coupons that are worked at once
+_FULL_SLICE: Final = 1 << 10  # the same where records are written, which are large
+_ALWAYS: Final = ("coupons", "decisions", "flags", "lots", "set_aside")
+_FULL: Final = ("quantities", "budget", "readings")
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """What a run came to.
+
+    Attributes
+    ----------
+    path : Path
+        Where the results stand.
+    batch_id : str
+        The batch.
+    coupons, readings_read, readings_used, readings_set_aside : int
+        Counts; used and set aside together are those read.
+    decisions : mapping of str to int
+        Coupons by decision.
+    errors : int
+        Coupons with a finding that empties something.
+    plots : str
+        What was drawn, or why nothing was.
+    """
+
+    path: Path
+    batch_id: str
+    coupons: int
+    readings_read: int
+    readings_used: int
+    readings_set_aside: int
+    decisions: Mapping[str, int]
+    errors: int
+    plots: str
+
+    @property
+    def attention(self) -> dict[str, int]:
+        """What asks for a person, by the word that `--accept` takes, with its count."""
+        asking = {
+            "set-aside": self.readings_set_aside,
+            "undecided": self.decisions["undecided"],
+            "non-conforming": self.decisions["non-conforming"],
+            "errors": self.errors,
+        }
+        return {word: count for word, count in asking.items() if count}
+
+
+def run(
+    folder: Path,
+    into: Path,
+    *,
+    replace: bool = False,
+    reason: str | None = None,
+    plots: bool = True,
+    progress: Progress | None = None,
+) -> Outcome:
+    """Process a batch.
+
+    Parameters
+    ----------
+    folder : Path
+        The batch folder.
+    into : Path
+        Where results go, in a folder of the batch's id.
+    replace : bool, optional
+        Whether an existing result may move to ``replaced/``.
+    reason : str, optional
+        Why; required with `replace`.
+    plots : bool, optional
+        Whether to draw.
+    progress : callable, optional
+        Is told what is being done.
+
+    Returns
+    -------
+    Outcome
+        Counts, and where the results stand.
+
+    Raises
+    ------
+    BatchRefused
+        If the batch cannot be trusted as a whole; nothing is written.
+    ResultsNotWritten
+        If the results cannot be put there; nothing is left behind.
+    """
+    tell = progress or _silent
+    started = datetime.now(UTC)
+    method = read_method(folder)
+    with open_target(into, method.batch_id, replace=replace, reason=reason) as target:
+        full = method.detail == "full"
+        tell("reading")
+        batch, kept = gather(method, keep=target.scratch / "readings.arrow" if full else None)
+        drawing = Drawing(batch, wanted=plots)
+        lots = Lots(batch)
+        writers = {
+            name: target.table(name, method.tables) for name in (*_ALWAYS, *(_FULL if full else ()))
+        }
+        method_json = dump("method", method.document)
+        target.write("method.json", method_json)
+        _work(batch, kept, target, writers, drawing, lots, sha256(method_json).hexdigest(), tell)
+        decisions = lots.write(writers["lots"])
+        for writer in writers.values():
+            writer.close()
+        tell("drawing" if drawing.wanted else "writing")
+        for name, data in drawing.files():
+            target.write(name, data)
+        path = target.commit(_manifest(batch, target, started))
+    return Outcome(
+        path=path,
+        batch_id=method.batch_id,
+        coupons=len(batch.coupons),
+        readings_read=batch.readings_read,
+        readings_used=int(batch.reduced.used.sum()),
+        readings_set_aside=batch.set_aside.count,
+        decisions=decisions,
+        errors=_errors(batch),
+        plots=drawing.said,
+    )
+
+
+def _work(
+    batch: Gathered,
+    kept: KeptReadings | None,
+    target: Target,
+    writers: Mapping[str, TableWriter],
+    drawing: Drawing,
+    lots: Lots,
+    method_sha256: str,
+    tell: Progress,
+) -> None:
+    """Work the coupons slice by slice, and write what each slice comes to."""
+    records = None if kept is None else target.lines("records.jsonl")
+    inputs = batch.method.document["inputs"]
+    assert isinstance(inputs, dict)  # noqa: S101 - what the schema of method.json promises
+    common = Common(batch.method.batch_id, method_sha256, inputs)
+    aside = batch.set_aside.table()
+    writers["set_aside"].write(aside)
+    drawing.add("set_aside", aside)
+    done = 0
+    for rows in _slices(len(batch.coupons), _FULL_SLICE if kept else _SLICE):
+        part = work_slice(batch, rows, kept)
+        lots.add(part)
+        shas = pa.nulls(part.n, pa.string())
+        if records is not None:
+            sealed = [seal(record) for record in build(common, _record_slice(batch, part, aside))]
+            records.write([one.line for one in sealed])
+            shas = pa.array([one.sha256 for one in sealed], pa.string())
+        for name, table in part.tables(shas).items():
+            if name in writers:
+                writers[name].write(table)
+                drawing.add(name, table)
+        done += part.n
+        tell(f"computing, {done} of {len(batch.coupons)} coupons")
+    for piece in batch.findings.slices(batch.coupons.ids, batch.coupons.lot_ids):
+        writers["flags"].write(piece)
+        drawing.add("flags", piece)
+    if records is not None:
+        records.close()
+
+
+def _record_slice(batch: Gathered, part: Sliced, aside: pa.Table) -> Slice:
+    rows = part.rows
+    paths = [source.path for source in batch.coupons.sources]
+    tables = part.tables(pa.nulls(part.n, pa.string()))
+    return Slice(
+        coupons=tables["coupons"],
+        files=[paths[i] for i in batch.coupons.file[rows]],
+        lines=batch.coupons.line[rows].tolist(),
+        raw=batch.coupons.raw[rows],
+        readings=tables["readings"],
+        raw_readings=part.raw_readings,
+        set_aside=aside,
+        quantities=tables["quantities"],
+        flags=part.flags(),
+        decisions=tables["decisions"],
+        repeatability=part.repeatability(),
+        steps=part.steps(),
+    )
+
+
+def _slices(n: int, size: int) -> Iterator[slice]:
+    for begin in range(0, n, size):
+        yield slice(begin, min(begin + size, n))
+
+
+def _manifest(batch: Gathered, target: Target, started: datetime) -> dict[str, object]:
+    method = batch.method
+    sheets = [
+        {
+            "path": name,
+            "table": "sheet",
+            "sha256": digest,
+            "bytes": (method.folder / name).stat().st_size,
+            "rows_read": 0,
+            "rows_used": 0,
+            "rows_set_aside": 0,
+        }
+        for name, digest in method.sheets
+    ]
+    tables = [
+        {
+            "path": s.path,
+            "table": s.table,
+            "sha256": s.sha256,
+            "bytes": s.bytes,
+            "rows_read": s.rows_read,
+            "rows_used": s.rows_used,
+            "rows_set_aside": s.rows_set_aside,
+        }
+        for s in batch.sources
+    ]
+    user = "unknown"
+    with suppress(KeyError, OSError):  # an account without a name
+        user = getpass.getuser()
+    return {
+        "schema_version": contracts.document("manifest")["version"],
+        "batch_id": method.batch_id,
+        "inputs": [*sheets, *tables],
+        "outputs": [
+            {"path": o.path, "sha256": o.sha256, "bytes": o.size, "rows": o.rows}
+            for o in target.outputs
+        ],
+        "reconciled": {
+            "readings_read": batch.readings_read,
+            "readings_used": int(batch.reduced.used.sum()),
+            "readings_set_aside": batch.set_aside.count,
+            "coupons": len(batch.coupons),
+        },
+        "replaced": None,
+        "run": {
+            "started_at": started.isoformat(),
+            "finished_at": datetime.now(UTC).isoformat(),
+            "host": socket.gethostname(),
+            "user": user,
+            "python": platform.python_version(),
+            "platform": platform.platform(),
+        },
+    }
+
+
+def _errors(batch: Gathered) -> int:
+    word = sum(1 << i for i, rule in enumerate(RULES) if rule.level is Level.ERROR)
+    return int(np.count_nonzero(batch.findings.bits & np.uint64(word)))
+
+
+def _silent(_words: str) -> None:
+    pass

@@ -1,0 +1,222 @@
+"""One slice of coupons worked: chain, rules, decisions, and the tables that come of it."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from coldwork import contracts
+from coldwork.interval.combine import Spread
+from coldwork.jobs.evaluate import (
+    GRAIN,
+    REPEATABILITY,
+    Evaluated,
+    evaluate,
+    inputs_of,
+    start_of,
+)
+from coldwork.jobs.figures import Figures, figures_of
+from coldwork.jobs.gather import Gathered
+from coldwork.jobs.judging import decide_slice, decisions_table, find_in_slice
+from coldwork.jobs.kept import KeptReadings
+from coldwork.jobs.steps import repeatability_of, steps_of
+from coldwork.jobs.tables import budget_table, coupons_table, quantities_table
+from coldwork.judge.decisions import Decided, Worst, decision_texts, worst
+from coldwork.measured import value_of
+from coldwork.results.records import Step
+
+__all__ = ["Sliced", "work_slice"]
+
+
+@dataclass(frozen=True)
+class Sliced:
+    """A slice of n coupons, worked.
+
+    Attributes
+    ----------
+    batch : Gathered
+        The batch.
+    rows : slice
+        The slice's place in it.
+    evaluated : Evaluated
+        Chain and intervals, before errors empty anything. [SI]
+    figures : mapping of str to Figures
+        Quantities as they may be published. [SI]
+    decided : list of Decided
+        Every limit.
+    worst : Worst
+        The coupons' decisions.
+    kept : pyarrow.Table or None
+        Their readings, where those are kept.
+    """
+
+    batch: Gathered
+    rows: slice
+    evaluated: Evaluated
+    figures: Mapping[str, Figures]
+    decided: list[Decided]
+    worst: Worst
+    kept: pa.Table | None
+
+    @property
+    def n(self) -> int:
+        """Number of coupons."""
+        return int(self.rows.stop - self.rows.start)
+
+    @property
+    def ids(self) -> pa.StringArray:
+        """Their names."""
+        return self.batch.coupons.ids[self.rows]
+
+    @property
+    def spreads(self) -> Mapping[str, Spread]:
+        """Uncertainty of every input. [SI]"""
+        return self.evaluated.spreads
+
+    def tables(self, shas: pa.Array) -> dict[str, pa.Table]:
+        """Give the published tables of the slice.
+
+        Parameters
+        ----------
+        shas : pyarrow.Array of n texts
+            Digests of the coupons' records, null without records.
+
+        Returns
+        -------
+        dict of str to pyarrow.Table
+            By name; readings, quantities and budget only where readings are kept.
+        """
+        coupons = self._coupons
+        place = coupons.column_names.index("record_sha256")
+        found = {
+            "coupons": coupons.set_column(place, "record_sha256", shas),
+            "decisions": self._decisions,
+        }
+        return found | self._details
+
+    @cached_property
+    def _coupons(self) -> pa.Table:
+        batch, worst_one = self.batch, self.worst
+        names = pa.array([limit.id for limit in batch.method.limits], pa.string())
+        deciding = pa.array(worst_one.limit.astype(np.int64), mask=worst_one.limit < 0)
+        rest = {
+            "readings_set_aside": pa.array(batch.set_aside.per_coupon[self.rows]),
+            "decision": decision_texts(worst_one.code),
+            "deciding_limit": names.take(deciding),
+            "conformance_probability": pa.array(worst_one.probability),
+            "flags": batch.findings.text(self.rows),
+            "record_sha256": pa.nulls(self.n, pa.string()),
+        }
+        return coupons_table(
+            batch.method,
+            batch.coupons,
+            batch.reduced,
+            self.rows,
+            self.figures,
+            self._test_strain,
+            batch.findings.bits[self.rows],
+            rest,
+        )
+
+    @cached_property
+    def _decisions(self) -> pa.Table:
+        if not self.decided:
+            return _empty("decisions")
+        return decisions_table(self.batch.method, self.ids, self.figures, self.decided)
+
+    @cached_property
+    def _details(self) -> dict[str, pa.Table]:
+        if self.kept is None:
+            return {}
+        batch = self.batch
+        own = {
+            REPEATABILITY: value_of(self.evaluated.start.mean),
+            GRAIN: batch.coupons.grain_size[self.rows],
+        }
+        return {
+            "readings": KeptReadings.published(
+                self.kept, batch.coupons, batch.method.laws.route, list(batch.files)
+            ),
+            "quantities": quantities_table(batch.method, batch.coupons, self.rows, self.figures),
+            "budget": budget_table(
+                batch.method, batch.coupons, self.rows, self.figures, self.spreads, own
+            ),
+        }
+
+    @property
+    def raw_readings(self) -> pa.Table:
+        """The readings' cells as written, row for row with the table of readings."""
+        return KeptReadings.raw(self.kept) if self.kept is not None else pa.table({})
+
+    def flags(self) -> pa.Table:
+        """Give the findings on the slice's coupons."""
+        coupons = self.batch.coupons
+        return self.batch.findings.of(self.rows, coupons.ids, coupons.lot_ids)
+
+    def repeatability(self) -> list[dict[str, object]]:
+        """Tell what each coupon's scatter was judged by."""
+        unit = "MPa" if self.batch.method.laws.route == "flow" else "kgf/mm2"
+        return repeatability_of(self.batch.scatter, self.rows, unit)
+
+    def steps(self) -> list[Step]:
+        """Tell the chain step by step."""
+        return steps_of(self.batch.method, self.evaluated)
+
+    @property
+    def _test_strain(self) -> NDArray[np.float64]:
+        strain = self.evaluated.strength.test_strain
+        return np.where(np.isnan(value_of(self.evaluated.start.mean)), np.nan, strain)
+
+
+def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -> Sliced:
+    """Work a slice of coupons.
+
+    Parameters
+    ----------
+    batch : Gathered
+        The batch; what rules find on the slice goes to its findings.
+    rows : slice
+        Which coupons.
+    kept : KeptReadings, optional
+        Their readings, where those are kept.
+
+    Returns
+    -------
+    Sliced
+        The slice.
+    """
+    method = batch.method
+    inputs, spreads = inputs_of(method)
+    start, own = start_of(method, batch.coupons, batch.reduced, batch.scatter, rows)
+    evaluated = evaluate(method, inputs, {**spreads, **own}, start)
+    find_in_slice(
+        batch.findings,
+        method,
+        batch.reduced,
+        batch.coupons.thickness[rows],
+        batch.scatter.u[rows],
+        evaluated,
+        rows,
+    )
+    bits = batch.findings.bits[rows]
+    figures = figures_of(evaluated, bits)
+    decided = decide_slice(method, evaluated, figures, bits)
+    n = int(rows.stop - rows.start)
+    return Sliced(
+        batch,
+        rows,
+        evaluated,
+        figures,
+        decided,
+        worst(decided, n),
+        None if kept is None else kept.of(rows),
+    )
+
+
+def _empty(name: str) -> pa.Table:
+    fields = contracts.load(f"out/{name}").fields
+    kinds = {"number": pa.float64(), "integer": pa.int64()}
+    return pa.table({f.name: pa.array([], kinds.get(f.type, pa.string())) for f in fields})

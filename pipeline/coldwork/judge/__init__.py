@@ -1,0 +1,1 @@
+"""Coupon and batch rules to flags; limits to decisions."""

@@ -1,0 +1,250 @@
+"""Rules that look at coupons, told to the findings a slice of coupons at a time.
+
+Rules about what was read (`outlying-reading`, `mixed-forces`, testers) fire where readings
+are reduced, `scatter` where they are pooled.
+"""
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from coldwork import units
+from coldwork.inputs.method import Method
+from coldwork.intake.coupons import Coupons
+from coldwork.rules import coupon as rules
+from coldwork.rules.findings import Findings
+from coldwork.rules.forces import SCALES
+from coldwork.rules.rule import Rule
+from coldwork.rules.spacing import least_thickness_ratio, too_thin
+
+__all__ = ["State", "judge_coupon_cells", "judge_coupons", "judge_scales"]
+
+FloatArray = NDArray[np.float64]
+BoolArray = NDArray[np.bool_]
+
+_GRAIN_COLUMNS: Final = ("grain_size_um", "u_grain_size_um")
+
+
+@dataclass(frozen=True)
+class State:
+    """What a slice of n coupons came to: SI, arrays of shape (n,), NaN where there is nothing.
+
+    Attributes
+    ----------
+    coupon : ndarray of int
+        Index of each coupon in the batch.
+    route : str
+        ``indent`` or ``flow``.
+    readings_used : ndarray of int64
+        Readings used. [1]
+    repeatability : ndarray of float64
+        Standard uncertainty of the mean reading, NaN where nothing tells it. [Pa]
+    scale : ndarray of int8
+        0 HV, 1 HBW, 2 HK, -1 where there is none.
+    thickness, mean_diagonal, ball : ndarray of float64
+        Of the coupon, of its indents, of the ball. [m]
+    stress, u_stress, upper_stress_end : ndarray of float64
+        Dislocation stress in the state that is reported, its standard uncertainty, and
+        the upper end of its interval. [Pa]
+    unwinding : bool
+        Whether the method takes the indent's own strain out.
+    unwound : ndarray of bool
+        Where it was taken out.
+    indented_stress : ndarray of float64
+        Dislocation stress as tested, before unwinding. [Pa]
+    saturation_stress : float
+        That of the method, NaN where it does not unwind. [Pa]
+    density : ndarray of float64
+        Dislocation density. [1/m^2]
+    radius_ratio : ndarray of float64
+        Outer over core radius. [1]
+    stored_fraction : ndarray of float64
+        Stored energy over plastic work. [1]
+    """
+
+    coupon: NDArray[np.int64] | NDArray[np.int32]
+    route: str
+    readings_used: NDArray[np.int64]
+    repeatability: FloatArray
+    scale: NDArray[np.int8]
+    thickness: FloatArray
+    mean_diagonal: FloatArray
+    ball: FloatArray
+    stress: FloatArray
+    u_stress: FloatArray
+    upper_stress_end: FloatArray
+    unwinding: bool
+    unwound: BoolArray
+    indented_stress: FloatArray
+    saturation_stress: float
+    density: FloatArray
+    radius_ratio: FloatArray
+    stored_fraction: FloatArray
+
+
+def judge_coupons(findings: Findings, state: State) -> None:
+    """Hold a slice of coupons against every rule that looks at a coupon's results.
+
+    Parameters
+    ----------
+    findings : Findings
+        Where it is told.
+    state : State
+        The slice.
+    """
+    _readings(findings, state)
+    _thickness(findings, state)
+    _stress(findings, state)
+    _indent_strain(findings, state)
+    _density(findings, state)
+    _energy(findings, state)
+
+
+def judge_scales(findings: Findings, method: Method, scale: NDArray[np.int8]) -> None:
+    """Find coupons whose scale the sheet gives no constants for.
+
+    A scale needs a constraint factor, and a strain where the indent is unwound.
+
+    Parameters
+    ----------
+    findings : Findings
+        Where it is told.
+    method : Method
+        The batch's method; by the flow route there is nothing to find.
+    scale : ndarray of int8, shape (coupons,)
+        0 HV, 1 HBW, 2 HK, -1 where there is none.
+    """
+    if method.laws.route != "indent":
+        return
+    for code, name in enumerate(SCALES):
+        prefix = "indentation" if name == "HV" else f"indentation.{name}"
+        strains = (f"{prefix}.representative_strain", f"{prefix}.strain_ratio")
+        able = f"{prefix}.constraint_factor" in method.inputs
+        if method.laws.unwinding:
+            able = able and any(key in method.inputs for key in strains)
+        if not able:
+            where = np.flatnonzero(scale == code)
+            findings.add(
+                rules.SCALE_WITHOUT_CONSTANTS, where, detail=f"the sheet has no [{prefix}] for it"
+            )
+
+
+def judge_coupon_cells(findings: Findings, method: Method, coupons: Coupons) -> None:
+    """Judge cells of coupons.csv that cannot be read or that the method misses.
+
+    Parameters
+    ----------
+    findings : Findings
+        Where it is told.
+    method : Method
+        Says whether a grain size is needed, and for what.
+    coupons : Coupons
+        The coupons with their bad cells.
+    """
+    parts = method.laws.baseline == "parts" and "strength.hall_petch_mpa_m05" in method.inputs
+    bad_rule, missing_rule = rules.BAD_COUPON_CELL, None
+    if parts:
+        bad_rule, missing_rule = rules.BAD_COUPON_CELL_NEEDED, rules.GRAIN_SIZE_MISSING
+    elif method.laws.outer_radius == "grain":
+        bad_rule = rules.BAD_COUPON_CELL_NEEDED_RADIUS
+        missing_rule = rules.GRAIN_SIZE_MISSING_RADIUS
+    for rule, needed in ((bad_rule, True), (rules.BAD_COUPON_CELL, False)):
+        cells = [c for c in coupons.bad_cells if (c.column in _GRAIN_COLUMNS) == needed]
+        where = np.array([c.coupon for c in cells], dtype=np.int64)
+        paths = [coupons.sources[coupons.file[i]].path for i in where]
+        told = [f"{c.column} holds {c.raw!r}: {c.hint}" for c in cells]
+        findings.add(
+            rule,
+            where,
+            file=pa.array(paths, pa.string()),
+            line=coupons.line[where],
+            detail=pa.array(told, pa.string()),
+        )
+    if missing_rule is not None:
+        missing = np.isnan(coupons.grain_size) & ~findings.has(bad_rule)
+        findings.add(missing_rule, np.flatnonzero(missing))
+
+
+def _note(
+    findings: Findings,
+    state: State,
+    rule: Rule,
+    fired: BoolArray,
+    value: FloatArray | None = None,
+    limit: FloatArray | float | None = None,
+) -> None:
+    rows = np.flatnonzero(fired)
+    if rows.size == 0:
+        return
+    found = None if value is None else value[rows]
+    held = limit[rows] if isinstance(limit, np.ndarray) else limit
+    findings.add(rule, state.coupon[rows], value=found, limit=held)
+
+
+def _readings(findings: Findings, state: State) -> None:
+    """Too few readings; points of a flow curve are not repeats, and are not counted."""
+    count = state.readings_used.astype(np.float64)
+    none = count == 0.0
+    _note(findings, state, rules.NO_READINGS, none, count)
+    if state.route == "indent":
+        few = ~none & rules.FEW_READINGS.below(count)
+        _note(findings, state, rules.FEW_READINGS, few, count)
+        under = ~none & ~few & rules.UNDER_FIVE_READINGS.below(count)
+        _note(findings, state, rules.UNDER_FIVE_READINGS, under, count)
+    _note(findings, state, rules.NO_REPEATABILITY, ~none & np.isnan(state.repeatability))
+
+
+def _thickness(findings: Findings, state: State) -> None:
+    least = least_thickness_ratio(state.scale, state.mean_diagonal, state.ball)
+    fired, value = too_thin(state.thickness, state.mean_diagonal, least)
+    _note(findings, state, rules.THIN_COUPON, fired, value, least)
+
+
+def _stress(findings: Findings, state: State) -> None:
+    stress = units.from_si(state.stress, "MPa")
+    end = units.from_si(state.upper_stress_end, "MPa")
+    below = state.stress <= 0.0
+    _note(findings, state, rules.BELOW_BASELINE, below, stress)
+    contradicted = below & (state.upper_stress_end <= 0.0)
+    _note(findings, state, rules.BASELINE_CONTRADICTED, contradicted, end)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        relative = state.u_stress / state.stress
+    weak = ~below & (relative >= (rules.WEAK_SIGNAL.limit or 0.0))
+    _note(findings, state, rules.WEAK_SIGNAL, weak, relative)
+
+
+def _indent_strain(findings: Findings, state: State) -> None:
+    if state.route != "indent":
+        return
+    strong = np.isfinite(state.indented_stress)
+    if not state.unwinding:
+        _note(findings, state, rules.INDENT_ADDS_STRAIN, strong)
+        return
+    value = units.from_si(state.indented_stress, "MPa")
+    limit = float(units.from_si(state.saturation_stress, "MPa"))
+    _note(findings, state, rules.ABOVE_SATURATION, strong & ~state.unwound, value, limit)
+
+
+def _density(findings: Findings, state: State) -> None:
+    density = state.density
+    high = rules.DENSITY_IMPOSSIBLE.above(density)
+    low = rules.DENSITY_TOO_LOW.below(density)
+    _note(findings, state, rules.DENSITY_IMPOSSIBLE, high, density)
+    _note(findings, state, rules.DENSITY_TOO_LOW, low, density)
+    unusual = rules.DENSITY_UNUSUAL.outside(density) & ~high & ~low
+    _note(findings, state, rules.DENSITY_UNUSUAL, unusual, density)
+
+
+def _energy(findings: Findings, state: State) -> None:
+    ratio, fraction = state.radius_ratio, state.stored_fraction
+    none = ratio <= (rules.NO_LINE_ENERGY.limit or 0.0)
+    _note(findings, state, rules.NO_LINE_ENERGY, none, ratio)
+    few = ~none & rules.FEW_CORE_RADII.below(ratio)
+    _note(findings, state, rules.FEW_CORE_RADII, few, ratio)
+    impossible = rules.STORED_FRACTION_IMPOSSIBLE.above(fraction)
+    _note(findings, state, rules.STORED_FRACTION_IMPOSSIBLE, impossible, fraction)
+    unusual = rules.STORED_FRACTION_UNUSUAL.outside(fraction) & ~impossible
+    _note(findings, state, rules.STORED_FRACTION_UNUSUAL, unusual, fraction)

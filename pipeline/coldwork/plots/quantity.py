@@ -1,0 +1,151 @@
+"""Names, units and scales of the quantities on a plot's axes."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from math import floor, log10
+
+import numpy as np
+from matplotlib.axes import Axes
+from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullFormatter, ScalarFormatter
+
+from coldwork.plots.columns import FloatArray
+from coldwork.plots.names import shown
+
+__all__ = ["Scale", "heading", "robust_limits", "scale_of"]
+
+_HEADINGS = {
+    "hardness": ("Hardness", "kgf/mm²"),
+    "flow_stress_mpa": ("Flow stress", "MPa"),
+    "baseline_stress_mpa": ("Baseline stress", "MPa"),
+    "dislocation_stress_mpa": ("Dislocation stress", "MPa"),
+    "dislocation_density_per_m2": ("Dislocation density", "m⁻²"),
+    "mean_spacing_nm": ("Mean spacing of dislocations", "nm"),
+    "line_energy_j_per_m": ("Line energy", "J/m"),
+    "stored_energy_j_per_m3": ("Stored energy in dislocations", "J/m³"),
+    "stored_energy_j_per_mol": ("Stored energy in dislocations", "J/mol"),
+    "stored_energy_j_per_g": ("Stored energy in dislocations", "J/g"),
+    "temperature_rise_k": ("Temperature rise if the stored energy were released", "K"),
+    "stored_fraction_of_work": ("Stored fraction of the plastic work", "1"),
+}
+_SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
+_WIDE = 100.0  # largest over smallest value from which an axis is logarithmic
+
+
+@dataclass(frozen=True)
+class Scale:
+    """The axis of one quantity, the same on every page.
+
+    Attributes
+    ----------
+    label : str
+        Heading and unit.
+    factor : float
+        What the column's values are multiplied by on the axis. [1]
+    low, high : float
+        Ends of the axis. [column's unit times `factor`]
+    logarithmic : bool
+        Whether equal steps are equal ratios.
+    """
+
+    label: str
+    factor: float
+    low: float
+    high: float
+    logarithmic: bool = False
+
+    def on(self, axes: Axes, *, upright: bool = False, ticks: int = 8) -> None:
+        """Set a panel's horizontal axis, or its upright one, to this scale."""
+        axis = axes.yaxis if upright else axes.xaxis
+        if self.logarithmic:
+            (axes.set_yscale if upright else axes.set_xscale)("log")
+            axis.set_major_locator(LogLocator(numticks=ticks + 1))
+            axis.set_major_formatter(FuncFormatter(lambda x, _: f"10{_superscript(log10(x))}"))
+            axis.set_minor_formatter(NullFormatter())
+        else:
+            axis.set_major_locator(MaxNLocator(ticks, steps=[1, 2, 2.5, 5, 10]))
+            axis.set_major_formatter(ScalarFormatter(useOffset=False, useMathText=False))
+        (axes.set_ylim if upright else axes.set_xlim)(self.low, self.high)
+
+
+def heading(column: str) -> tuple[str, str]:
+    """Give the heading and the unit of a published column."""
+    return _HEADINGS.get(column, (shown(column), ""))
+
+
+def scale_of(column: str, values: Sequence[FloatArray], *, detail: str = "") -> Scale:
+    """Fit an axis to a quantity.
+
+    Parameters
+    ----------
+    column : str
+        The quantity's column in `coupons.csv`.
+    values : sequence of ndarray
+        Everything that has to stand on the axis. [the column's unit]
+    detail : str
+        What follows the heading, such as the hardness scale.
+
+    Returns
+    -------
+    Scale
+        Logarithmic where positive values span more than a hundredfold; else
+        from zero where zero is near.
+    """
+    title, unit = heading(column)
+    title = f"{title} {detail}".strip()
+    everything = np.concatenate([np.ravel(x) for x in values]) if values else np.empty(0)
+    everything = everything[np.isfinite(everything)]
+    positive = everything[everything > 0.0]
+    if not positive.size:
+        positive = np.ones(1)
+    high = float(positive.max())
+    if high / float(np.percentile(positive, 2.0)) > _WIDE and not (everything < 0.0).any():
+        low = max(float(positive.min()), high / 1e5)
+        return Scale(f"{title} [{unit}]", 1.0, low / 1.4, high * 1.4, logarithmic=True)
+    power = floor(log10(high)) if high >= 1e5 or high < 1e-2 else 0
+    factor = 10.0**-power
+    low, high = _ends(everything * factor if everything.size else positive)
+    unit = f"10{_superscript(power)} {unit}".strip() if power else unit
+    return Scale(f"{title} [{unit}]" if unit else title, factor, low, high)
+
+
+def robust_limits(values: FloatArray, always: FloatArray) -> tuple[float, float]:
+    """Give the ends of an axis that one wild value does not spoil.
+
+    Parameters
+    ----------
+    values : ndarray, shape (n,)
+        Points; what lies more than four times as far out as 95 in 100 of them
+        is drawn at the edge.
+    always : ndarray, shape (m,)
+        What must lie inside.
+
+    Returns
+    -------
+    tuple of float
+        The two ends. [the unit of `values`]
+    """
+    good = values[np.isfinite(values)]
+    must = always[np.isfinite(always)]
+    if good.size:
+        low, middle, high = np.percentile(good, [2.5, 50.0, 97.5])
+        inside = (good >= middle - 4.0 * (middle - low)) & (good <= middle + 4.0 * (high - middle))
+        must = np.concatenate([must, good[inside], [low, high]])
+    if not must.size:
+        return 0.0, 1.0
+    return _padded(float(must.min()), float(must.max()))
+
+
+def _ends(values: FloatArray) -> tuple[float, float]:
+    low, high = _padded(float(values.min()), float(values.max()))
+    if 0.0 <= values.min() < 0.4 * values.max():
+        low = 0.0
+    return low, high
+
+
+def _padded(low: float, high: float) -> tuple[float, float]:
+    room = 0.05 * (high - low) or 0.05 * abs(high) or 1.0
+    return low - room, high + room
+
+
+def _superscript(power: float) -> str:
+    return str(round(power)).translate(_SUPERSCRIPTS)

@@ -1,0 +1,229 @@
+"""Readings of each coupon, with their mean and its interval."""
+
+from collections import Counter
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from matplotlib.artist import Artist
+from matplotlib.figure import Figure
+from numpy.typing import NDArray
+
+from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
+from coldwork.plots.context import Context
+from coldwork.plots.quantity import Scale, heading, robust_limits, scale_of
+from coldwork.plots.rows import MOST_COUPONS, Page, Panel, Rows, Strip, row_pages
+from coldwork.plots.sheet import Sheet
+from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key, spans_of, why_missing
+from coldwork.plots.style import GREY, INK, PAPER, Mark, house
+
+__all__ = ["draw"]
+
+_READING = Mark("o", 3.3, PAPER, INK, 0.6)
+_FLAGGED = Mark("^", 4.4, PAPER, INK, 0.8)
+_ELSEWHERE = Mark("o", 1.6, GREY, GREY, 0.0)
+_SET_ASIDE = Mark("x", 4.2, INK, INK, 1.0)
+_BEYOND = (Mark("<", 4.6, INK), Mark(">", 4.6, INK))
+_UP, _DOWN = -0.17, 0.2  # of readings and of the mean, off the row's line [rows]
+_MANY = 2000  # readings above which they are drawn as pixels
+
+
+@dataclass(frozen=True)
+class _Points:
+    """Readings as they stand on the plot.
+
+    Attributes
+    ----------
+    coupon : ndarray of intp, shape (m,)
+        Place of its coupon.
+    value : ndarray, shape (m,)
+        The reading. [kgf/mm² or MPa]
+    kind : ndarray of intp, shape (m,)
+        Index into `_KINDS`.
+    """
+
+    coupon: NDArray[np.intp]
+    value: FloatArray
+    kind: NDArray[np.intp]
+
+
+_KINDS = (
+    (_READING, "reading"),
+    (_FLAGGED, "reading with a flag"),
+    (_ELSEWHERE, "point of the curve at another strain"),
+    (_SET_ASIDE, "set aside, at its own value"),
+)
+
+
+def draw(frames: Frames, context: Context) -> list[Figure]:
+    """Draw the readings of each coupon, one set of pages for each hardness scale.
+
+    Parameters
+    ----------
+    frames : mapping of str to DataFrame
+        `coupons`, `readings` and `set_aside`.
+    context : Context
+        The batch.
+
+    Returns
+    -------
+    list of Figure
+        Pages in order; none where no reading was used.
+    """
+    column = "hardness" if context.route == "indent" else "flow_stress_mpa"
+    coupons = frame_of(frames, "coupons")
+    if not 0 < len(coupons) <= MOST_COUPONS:
+        return []
+    with house():
+        rows = Rows.of(frames)
+        points = _points(frames, rows, column)
+        if not (points.kind != len(_KINDS) - 1).any():
+            return []
+        spans = spans_of(frames, rows.ids, column)
+        words = _remarks(frames, rows, why_missing(frames, spans))
+        scales = _scales(coupons_scales=texts(coupons, "hardness_scale"), route=context.route)
+        figures: list[Figure] = []
+        for scale in dict.fromkeys(scales):
+            chosen = np.flatnonzero(np.array(scales) == scale)
+            subject = _Subject(frames, context, rows, column, scale)
+            figures += subject.pages(points, spans, words, chosen)
+        return figures
+
+
+@dataclass(frozen=True)
+class _Subject:
+    frames: Frames
+    context: Context
+    rows: Rows
+    column: str
+    scale: str
+
+    def pages(
+        self, points: _Points, spans: Spans, words: list[str], chosen: NDArray[np.intp]
+    ) -> Iterator[Figure]:
+        here = np.isin(points.coupon, chosen)
+        points = _Points(points.coupon[here], points.value[here], points.kind[here])
+        own = spans.at(chosen)
+        ends = np.concatenate([own.value, own.lower, own.upper])
+        drawn = points.value[points.kind != len(_KINDS) - 1]
+        scale = scale_of(self.column, [np.array(robust_limits(drawn, ends))], detail=self.scale)
+        relative = _relative(spans)
+        away = 100.0 * (points.value / spans.value[points.coupon] - 1.0)
+        away[points.kind == 2] = np.nan
+        span_ends = np.concatenate([relative.at(chosen).lower, relative.at(chosen).upper])
+        low, high = robust_limits(away[points.kind < 2], span_ends)
+        percent = Scale("Deviation from the coupon's mean [%]", 1.0, low, high)
+        beyond = _outside(points.value, scale) | _outside(away, percent)
+        key = self._key(points, own, bool((beyond & (points.kind < 3)).any()))
+        sheet = Sheet(self._title(), self.context, self._facts(points, chosen), key, self._notes())
+        panels = [Panel(scale.label), Panel(percent.label, 1.25)]
+        for page in row_pages(sheet, self.rows, chosen, panels, [Strip("remarks", words)]):
+            _fill(page, 0, scale, points, points.value, spans)
+            _fill(page, 1, percent, points, away, relative)
+            yield page.figure
+
+    def _title(self) -> str:
+        name, _ = heading(self.column)
+        return f"Readings of each coupon: {name.lower()} {self.scale}".rstrip()
+
+    def _facts(self, points: _Points, chosen: NDArray[np.intp]) -> list[str]:
+        used = int((points.kind < 3).sum())
+        return [f"{len(chosen)} coupons", f"{used} readings used"]
+
+    def _key(self, points: _Points, spans: Spans, beyond: bool) -> list[tuple[Artist, str]]:
+        found: list[tuple[Artist, str]] = [
+            (mark.sample(), label)
+            for kind, (mark, label) in enumerate(_KINDS)
+            if (points.kind == kind).any()
+        ]
+        if beyond:
+            found.append((_BEYOND[1].sample(), "reading beyond the axis"))
+        found.append((MEAN.sample(), "mean"))
+        return found + span_key(spans, self.context)
+
+    def _notes(self) -> list[str]:
+        notes = [
+            "Each row shows its readings above the line and their mean with its interval below it; "
+            "on the right the same as deviations from that mean."
+        ]
+        set_aside = frame_of(self.frames, "set_aside")
+        homeless = int((aligned(self.rows.ids, texts(set_aside, "coupon_id")) < 0).sum())
+        if homeless:
+            plural = "s" if homeless > 1 else ""
+            notes.append(f"{homeless} row{plural} set aside belong to no coupon of this batch.")
+        return notes
+
+
+def _fill(
+    page: Page, panel: int, scale: Scale, points: _Points, values: FloatArray, spans: Spans
+) -> None:
+    axes = page.panels[panel]
+    scale.on(axes, ticks=7)
+    row_of = np.full(int(points.coupon.max(initial=page.places.max())) + 1, -1)
+    row_of[page.places] = np.arange(len(page.places))
+    rows = row_of[points.coupon]
+    x = values * scale.factor
+    here = (rows >= 0) & np.isfinite(x)
+    raster = page.raster or int(here.sum()) > _MANY
+    if panel:
+        axes.axvline(0.0, color=GREY, linewidth=0.6)
+    for kind, (mark, _) in enumerate(_KINDS):
+        mine = here & (points.kind == kind)
+        inside = mine & ~_outside(values, scale)
+        mark.put(axes, x[inside], rows[inside] + _UP, raster=raster)
+        if kind < 3:
+            for end, edge in ((0, scale.low), (1, scale.high)):
+                out = mine & ((x < scale.low) if end == 0 else (x > scale.high))
+                _BEYOND[end].put(axes, np.full(out.sum(), edge), rows[out] + _UP)
+    shown = spans.at(page.places).times(scale.factor)
+    lines = np.arange(len(page.places), dtype=np.float64) + _DOWN
+    draw_spans(axes, shown, lines, raster=raster)
+    known = np.isfinite(shown.value)
+    MEAN.put(axes, shown.value[known], lines[known], raster=raster)
+
+
+def _points(frames: Frames, rows: Rows, column: str) -> _Points:
+    readings, set_aside = frame_of(frames, "readings"), frame_of(frames, "set_aside")
+    weight = numbers(readings, "weight")
+    flagged = np.array([bool(flag) for flag in texts(readings, "flags")], dtype=np.bool_)
+    kind = np.where(weight == 0.0, 2, np.where(flagged, 1, 0))
+    own = set_aside[set_aside["column"] == column] if "column" in set_aside else set_aside[:0]
+    coupon = aligned(rows.ids, [*texts(readings, "coupon_id"), *texts(own, "coupon_id")])
+    value = np.concatenate([numbers(readings, column), numbers(own, "raw")])
+    kinds = np.concatenate([kind, np.full(len(own), len(_KINDS) - 1)])
+    keep = (coupon >= 0) & np.isfinite(value)
+    return _Points(coupon[keep], value[keep], kinds[keep])
+
+
+def _relative(spans: Spans) -> Spans:
+    away = spans.times(100.0 / np.where(spans.value == 0.0, np.nan, spans.value))
+    return Spans(away.value - 100.0, away.lower - 100.0, away.upper - 100.0, spans.own)
+
+
+def _outside(values: FloatArray, scale: Scale) -> NDArray[np.bool_]:
+    x = values * scale.factor
+    return (x < scale.low) | (x > scale.high)
+
+
+def _scales(coupons_scales: list[str], route: str) -> list[str]:
+    if route != "indent":
+        return [""] * len(coupons_scales)
+    counts = Counter(filter(None, coupons_scales))
+    usual = counts.most_common(1)[0][0] if counts else ""
+    return [scale or usual for scale in coupons_scales]
+
+
+def _remarks(frames: Frames, rows: Rows, missing: list[str]) -> list[str]:
+    set_aside = frame_of(frames, "set_aside")
+    rules: dict[int, Counter[str]] = {}
+    places = aligned(rows.ids, texts(set_aside, "coupon_id"))
+    for place, rule in zip(places, texts(set_aside, "rule"), strict=True):
+        rules.setdefault(int(place), Counter())[rule] += 1
+    words = []
+    for i, gap in enumerate(missing):
+        counts = rules.get(i, Counter())
+        several = len(counts) > 1
+        told = ", ".join(f"{rule} {n}" if several else rule for rule, n in counts.items())
+        aside = f"× {counts.total()} set aside: {told}" if counts else ""
+        words.append("; ".join(filter(None, [gap, aside])))
+    return words

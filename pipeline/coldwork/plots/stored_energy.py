@@ -1,0 +1,222 @@
+"""Stored energy, or what else has limits, against those limits with the decisions."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from matplotlib.artist import Artist
+from matplotlib.axes import Axes
+from matplotlib.figure import Figure
+
+from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
+from coldwork.plots.context import Context
+from coldwork.plots.names import fitted, shown
+from coldwork.plots.quantity import Scale, heading, scale_of
+from coldwork.plots.rows import MOST_COUPONS, Page, Panel, Rows, Strip, row_pages
+from coldwork.plots.sheet import Sheet
+from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key, spans_of, why_missing
+from coldwork.plots.style import BLUE, GREY, INK, PAPER, RED, Dashes, Mark, Sizes, house
+
+__all__ = ["draw"]
+
+_USUAL = "stored_energy_j_per_g"
+_DECISIONS = {  # the gravest first: mark, sign beside the word
+    "non-conforming": (Mark("s", 5.0, RED, INK, 0.8), "■"),
+    "undecided": (Mark("D", 5.0, PAPER, INK, 0.9), "◇"),
+    "conforming": (Mark("o", 5.2, BLUE, INK, 0.8), "●"),
+}
+_BOUND = Mark("|", 9.0, INK, INK, 1.8)
+_DASHES: tuple[Dashes, ...] = ("-", (0, (6, 2)), (0, (6, 2, 1.5, 2)), (0, (1.5, 1.5)))
+
+
+@dataclass(frozen=True)
+class _Verdicts:
+    """The gravest decision on each coupon about one quantity; shape (n,) each."""
+
+    decision: list[str]
+    bound: FloatArray
+    words: list[str]
+
+
+def draw(frames: Frames, context: Context) -> list[Figure]:
+    """Draw each quantity that has a limit, or the stored energy where none has.
+
+    Parameters
+    ----------
+    frames : mapping of str to DataFrame
+        `coupons` and `decisions`.
+    context : Context
+        The batch with its limits.
+
+    Returns
+    -------
+    list of Figure
+        Pages in order, for each quantity in the order of the limits.
+    """
+    if not 0 < len(frame_of(frames, "coupons")) <= MOST_COUPONS:
+        return []
+    with house():
+        rows = Rows.of(frames)
+        limited = list(dict.fromkeys(str(limit["quantity"]) for limit in context.limits))
+        figures: list[Figure] = []
+        for column in limited or [_USUAL]:
+            figures += _pages(frames, context, rows, column)
+        return figures
+
+
+def _pages(frames: Frames, context: Context, rows: Rows, column: str) -> list[Figure]:
+    spans = spans_of(frames, rows.ids, column)
+    if not (np.isfinite(spans.value) | spans.one_sided).any():
+        return []
+    limits = [limit for limit in context.limits if limit["quantity"] == column]
+    verdicts = _verdicts(frames, rows, column, several=len(limits) > 1)
+    ends = np.array([end for limit in limits for end in _ends(limit)], dtype=np.float64)
+    scale = scale_of(column, [spans.value, spans.lower, spans.upper, verdicts.bound, ends])
+    name, unit = heading(column)
+    key = _key(spans, context, verdicts)
+    key += [(_line(i), _told(limit, unit)) for i, limit in enumerate(limits)]
+    sheet = Sheet(
+        f"{name} of each coupon" + (", against its limits" if limits else ""),
+        context,
+        [f"{len(rows.ids)} coupons", *([] if limits else ["no limit in the batch sheet"])],
+        key,
+        _notes(column, context, verdicts),
+    )
+    strips = [
+        Strip("decision and probability", verdicts.words),
+        Strip("remarks", why_missing(frames, spans)),
+    ]
+    everyone = np.arange(len(rows.ids))
+    figures = []
+    for page in row_pages(sheet, rows, everyone, [Panel(scale.label)], strips):
+        axes = page.panels[0]
+        scale.on(axes)
+        for i, limit in enumerate(limits):
+            _draw_limit(axes, limit, scale, i)
+        _fill(page, spans.at(page.places).times(scale.factor), verdicts, scale)
+        figures.append(page.figure)
+    return figures
+
+
+def _fill(page: Page, spans: Spans, verdicts: _Verdicts, scale: Scale) -> None:
+    axes = page.panels[0]
+    lines = np.arange(len(page.places), dtype=np.float64)
+    draw_spans(axes, spans, lines, raster=page.raster)
+    bound = verdicts.bound[page.places] * scale.factor
+    known = np.isfinite(bound)
+    _BOUND.put(axes, bound[known], lines[known], raster=page.raster)
+    decisions = np.array([verdicts.decision[i] for i in page.places])
+    for word, (mark, _) in _DECISIONS.items():
+        mine = (decisions == word) & np.isfinite(spans.value)
+        mark.put(axes, spans.value[mine], lines[mine], raster=page.raster)
+    rest = ~np.isin(decisions, list(_DECISIONS)) & np.isfinite(spans.value)
+    MEAN.put(axes, spans.value[rest], lines[rest], raster=page.raster)
+
+
+def _verdicts(frames: Frames, rows: Rows, column: str, *, several: bool) -> _Verdicts:
+    n = len(rows.ids)
+    decision, bound, words = [""] * n, np.full(n, np.nan), [""] * n
+    every = frame_of(frames, "decisions")
+    mine = every[every["quantity"] == column] if "quantity" in every else every
+    gravity = {word: i for i, word in enumerate(_DECISIONS)}
+    gravity[""] = len(gravity)
+    entries = zip(
+        aligned(rows.ids, texts(mine, "coupon_id")),
+        texts(mine, "decision"),
+        numbers(mine, "bound"),
+        numbers(mine, "probability"),
+        texts(mine, "limit_id"),
+        strict=True,
+    )
+    for place, word, end, probability, limit in entries:
+        if place < 0 or word not in gravity or gravity[word] >= gravity[decision[place]]:
+            continue
+        decision[place], bound[place] = word, end
+        chance = "" if np.isnan(probability) else f" {_chance(probability)}"
+        name = f" ({limit})" if several else ""
+        words[place] = f"{_DECISIONS[word][1]} {word}{chance}{name}"
+    return _Verdicts(decision, bound, words)
+
+
+def _chance(probability: float) -> str:
+    if 0.995 <= probability < 1.0:
+        return "> 0.99"
+    if 0.0 < probability < 0.005:
+        return "< 0.01"
+    return f"{probability:.2f}"
+
+
+def _ends(limit: Mapping[str, object]) -> list[float]:
+    ends = [limit.get("lower"), limit.get("upper")]
+    return [float(end) for end in ends if isinstance(end, int | float)]
+
+
+def _told(limit: Mapping[str, object], unit: str) -> str:
+    lower, upper = limit.get("lower"), limit.get("upper")
+    if isinstance(lower, int | float) and isinstance(upper, int | float):
+        window = f"from {lower:g} to {upper:g}"
+    else:
+        window = f"at least {lower:g}" if isinstance(lower, int | float) else f"at most {upper:g}"
+    rule, basis = (str(limit.get(name) or "") for name in ("rule", "basis"))
+    name = fitted(shown(str(limit["id"])), Sizes.words, 3.0)
+    how = ", ".join(filter(None, [rule, f"basis {basis}" if basis else ""]))
+    return f"limit {name}: {window} {unit}" + (f" ({how})" if how else "")
+
+
+def _line(i: int) -> Artist:
+    return Mark("", 0.0, INK, INK).sample(1.3, _DASHES[i % len(_DASHES)])
+
+
+def _draw_limit(axes: Axes, limit: Mapping[str, object], scale: Scale, i: int) -> None:
+    """Draw the ends of a limit, hatched on the side that does not conform."""
+    across = axes.get_xaxis_transform()
+    for name, side in (("lower", -1.0), ("upper", 1.0)):
+        end = limit.get(name)
+        if not isinstance(end, int | float):
+            continue
+        x = end * scale.factor
+        axes.axvline(x, color=INK, linewidth=1.3, linestyle=_DASHES[i % len(_DASHES)], zorder=1.5)
+        outside = (
+            x * (scale.high / scale.low) ** (0.012 * side)
+            if scale.logarithmic
+            else x + 0.012 * side * (scale.high - scale.low)
+        )
+        axes.fill_betweenx(
+            [0.0, 1.0],
+            x,
+            outside,
+            transform=across,
+            facecolor="none",
+            edgecolor=GREY,
+            hatch="/////",
+            linewidth=0.0,
+            zorder=1.0,
+        )
+
+
+def _key(spans: Spans, context: Context, verdicts: _Verdicts) -> list[tuple[Artist, str]]:
+    valued = np.isfinite(spans.value)
+    seen = {word for word, known in zip(verdicts.decision, valued, strict=True) if known}
+    found: list[tuple[Artist, str]] = [
+        (mark.sample(), word) for word, (mark, _) in reversed(_DECISIONS.items()) if word in seen
+    ]
+    if seen - set(_DECISIONS):
+        found.append((MEAN.sample(), "value, no decision" if context.limits else "value"))
+    if np.isfinite(verdicts.bound).any():
+        found.append((_BOUND.sample(), "one-sided bound that decided"))
+    return found + span_key(spans, context)
+
+
+def _notes(column: str, context: Context, verdicts: _Verdicts) -> list[str]:
+    notes = []
+    if any(verdicts.words):
+        notes.append(
+            "The number beside a decision is the probability that belongs to the limit; "
+            "the hatched side of a limit does not conform."
+        )
+    if column.startswith("stored_energy"):
+        notes.append(
+            "Stored energy in dislocations only: calorimetry finds more, "
+            "since point defects and stacking faults also release heat."
+        )
+    return [*notes, context.note] if context.note else notes

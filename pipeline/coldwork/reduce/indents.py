@@ -1,0 +1,215 @@
+"""Indents of whole coupons to mean hardness, with the rules that look at readings."""
+
+from collections.abc import Callable
+from typing import Final
+
+import numpy as np
+import pyarrow.compute as pc
+import pyarrow as pa
+from numpy.typing import NDArray
+
+from coldwork import units
+from coldwork.formulas.hardness import (
+    brinell_diameter,
+    brinell_hardness,
+    knoop_diagonal,
+    knoop_hardness,
+    vickers_diagonal,
+    vickers_hardness,
+)
+from coldwork.inputs.method import Method
+from coldwork.reduce.marks import Marks
+from coldwork.reduce.readings import Readings
+from coldwork.reduce.reduced import ReadingResults, Reduced
+from coldwork.reduce.testers import corrected, note_testers
+from coldwork.rules import coupon as coupon_rules
+from coldwork.rules import reading as rules
+from coldwork.rules.forces import HBW, HK, HV, SCALES, force_not_nominal, nominal_force
+from coldwork.rules.spacing import centres_too_near, edge_too_near
+from coldwork.statistics.outliers import grubbs_critical
+
+__all__ = ["reduce_indents"]
+
+_Floats = NDArray[np.float64]
+_SAME: Final = 1e-9  # two nominal forces, or balls, are one within this [1]
+
+
+def reduce_indents(
+    readings: Readings, method: Method, reduced: Reduced, marks: Marks
+) -> ReadingResults:
+    """Reduce a stretch of indents; fill the rows of its coupons.
+
+    Parameters
+    ----------
+    readings : Readings
+        Whole coupons.
+    method : Method
+        Testers and distances.
+    reduced : Reduced
+        The batch's table; the rows of these coupons are written.
+    marks : Marks
+        Where findings on these readings and their coupons go.
+
+    Returns
+    -------
+    ReadingResults
+        What each reading came to.
+    """
+    scale = _scale_codes(readings)
+    force = units.to_si(readings.column("force_n"), "N")
+    ball = units.to_si(readings.column("ball_mm"), "mm")
+    hardness, diagonal = _hardness(readings, scale, force, ball, marks)
+    nominal = nominal_force(scale, force, ball)
+    _note_readings(readings, method, marks, scale, force, ball, diagonal)
+    value, tester = corrected(readings, method, hardness)
+    note_testers(readings, method, tester, marks)
+    starts = readings.starts
+    count = np.diff(np.append(starts, len(readings)))
+    rows = readings.coupon[starts]
+    mean = np.add.reduceat(value, starts) / count
+    deviation = value - np.repeat(mean, count)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        sd = np.sqrt(np.add.reduceat(deviation**2, starts) / (count - 1))
+        sd = np.where(count > 1, sd, np.nan)
+        critical = np.repeat(grubbs_critical(count), count)
+        distance = np.abs(deviation) / np.repeat(sd, count)
+    marks.note(rules.OUTLYING_READING, distance > critical, distance, critical)
+    reduced.used[rows] = count
+    reduced.repeats[rows] = count
+    reduced.effective[rows] = count
+    reduced.sd[rows] = sd
+    reduced.mean[rows] = mean
+    reduced.scale[rows] = scale[starts]
+    reduced.force[rows] = nominal[starts]
+    reduced.ball[rows] = np.where(scale[starts] == HBW, ball[starts], np.nan)
+    reduced.mean_diagonal[rows] = np.add.reduceat(diagonal, starts) / count
+    for name, share in reduced.shares.items():
+        part = np.where(tester == list(reduced.shares).index(name), value, 0.0)
+        share[rows] = np.add.reduceat(part, starts) / (mean * count)
+    _refuse_mixtures(reduced, marks, rows, starts, count, scale, nominal, ball)
+    return ReadingResults(
+        scale=scale,
+        force=nominal,
+        mean_diagonal=diagonal,
+        strength=value,
+        plastic_strain=np.full(len(readings), np.nan),
+        weight=np.repeat(1.0 / count, count),
+        marks=marks.bits,
+    )
+
+
+def _scale_codes(readings: Readings) -> NDArray[np.int8]:
+    text = readings.texts.get("scale")
+    if text is None:
+        return np.full(len(readings), HV, dtype=np.int8)
+    codes = pc.index_in(text, value_set=pa.array(SCALES)).fill_null(HV)
+    return codes.to_numpy(zero_copy_only=False).astype(np.int8)
+
+
+def _hardness(
+    readings: Readings,
+    scale: NDArray[np.int8],
+    force: _Floats,
+    ball: _Floats,
+    marks: Marks,
+) -> tuple[_Floats, _Floats]:
+    """Hardness and mean diagonal of each reading, from diagonals where there are any. [Pa], [m]"""
+    d1 = units.to_si(readings.column("d1_um"), "um")
+    d2 = units.to_si(readings.column("d2_um"), "um")
+    given = units.to_si(readings.column("hardness"), "kgf/mm2")
+    hardness = np.full(len(readings), np.nan)
+    diagonal = np.full(len(readings), np.nan)
+    for code in np.unique(scale):
+        on = scale == code
+        whole = bool(on.all())
+        rows = slice(None) if whole else np.flatnonzero(on)
+        measured, back = _forms(int(code), force[rows], ball[rows])
+        h = measured(d1[rows], d2[rows])
+        d = d1[rows] if code == HK else (d1[rows] + d2[rows]) / 2.0
+        known = np.isfinite(h)
+        if not known.all():
+            h = np.where(known, h, given[rows])
+            d = np.where(known, d, back(h))
+        hardness[rows], diagonal[rows] = h, d
+    both = np.isfinite(given) & np.isfinite(d1)
+    if both.any():
+        fired, value = rules.hardness_contradicts(given, hardness)
+        marks.note(rules.HARDNESS_CONTRADICTS_DIAGONALS, fired & both, value)
+    fired, value = rules.unequal_diagonals(d1, d2)
+    marks.note(rules.UNEQUAL_DIAGONALS, fired & (scale != HK), value)
+    return hardness, diagonal
+
+
+def _forms(
+    code: int, force: _Floats, ball: _Floats
+) -> tuple[Callable[[_Floats, _Floats], _Floats], Callable[[_Floats], _Floats]]:
+    """The scale's hardness from two lengths, and its mean diagonal from the hardness."""
+    if code == HBW:
+        return (
+            lambda a, b: brinell_hardness(force, a, b, ball),
+            lambda h: brinell_diameter(force, h, ball),
+        )
+    if code == HK:
+        return lambda a, _: knoop_hardness(force, a), lambda h: knoop_diagonal(force, h)
+    return lambda a, b: vickers_hardness(force, a, b), lambda h: vickers_diagonal(force, h)
+
+
+def _note_readings(
+    readings: Readings,
+    method: Method,
+    marks: Marks,
+    scale: NDArray[np.int8],
+    force: _Floats,
+    ball: _Floats,
+    diagonal: _Floats,
+) -> None:
+    marks.note(rules.FORCE_NOT_NOMINAL, *force_not_nominal(scale, force, ball))
+    marks.note(rules.SMALL_DIAGONAL, *rules.too_small(diagonal))
+    if "edge_mm" in readings.floats:
+        edge = units.to_si(readings.column("edge_mm"), "mm")
+        ratio = method.edge_distance_d
+        marks.note(rules.EDGE_DISTANCE, *edge_too_near(edge, diagonal, ratio), ratio)
+    if "x_mm" in readings.floats and "y_mm" in readings.floats:
+        x = units.to_si(readings.column("x_mm"), "mm")
+        y = units.to_si(readings.column("y_mm"), "mm")
+        ratio = method.centre_distance_d
+        fired = centres_too_near(x, y, diagonal, readings.coupon, ratio)
+        marks.note(rules.CENTRE_DISTANCE, *fired, ratio)
+    if "dwell_s" in readings.floats:
+        marks.note(rules.DWELL_TIME, *rules.dwell_outside(readings.column("dwell_s")))
+    if "temperature_c" in readings.floats:
+        kelvin = units.to_si(readings.column("temperature_c"), "Cel")
+        marks.note(rules.TEST_TEMPERATURE, *rules.temperature_outside(kelvin))
+
+
+def _refuse_mixtures(
+    reduced: Reduced,
+    marks: Marks,
+    rows: NDArray[np.int32],
+    starts: NDArray[np.intp],
+    count: NDArray[np.intp],
+    scale: NDArray[np.int8],
+    nominal: _Floats,
+    ball: _Floats,
+) -> None:
+    """Take the mean away where readings of one coupon have no common one."""
+
+    def differs(x: NDArray[np.generic], tolerance: float) -> NDArray[np.bool_]:
+        first = np.repeat(x[starts], count).astype(float)
+        with np.errstate(invalid="ignore"):
+            apart = np.abs(x.astype(float) - first) > tolerance * np.abs(first)
+        return np.logical_or.reduceat(apart, starts)
+
+    scales = differs(scale, 0.0)
+    sized = np.where(scale == HBW, ball, 0.0)
+    forces = (differs(nominal, _SAME) | differs(sized, _SAME)) & ~scales
+    for rule, mixed in (
+        (coupon_rules.MIXED_SCALES, scales),
+        (coupon_rules.MIXED_FORCES, forces),
+    ):
+        bad = rows[mixed]
+        if bad.size:
+            marks.note_coupons(rule, bad)
+            reduced.mean[bad] = np.nan
+            reduced.sd[bad] = np.nan
+            reduced.scale[bad] = np.int8(-1)

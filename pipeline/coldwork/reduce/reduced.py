@@ -1,0 +1,98 @@
+"""What the readings of each coupon come to: the table that all later stages work on."""
+
+from dataclasses import dataclass
+from typing import Self
+
+import numpy as np
+from numpy.typing import NDArray
+
+__all__ = ["ReadingResults", "Reduced"]
+
+
+@dataclass
+class Reduced:
+    """One row per coupon of ``coupons.csv``, in its order, filled as readings stream by.
+
+    Attributes
+    ----------
+    used : ndarray of int64, shape (n,)
+        Readings used.
+    mean : ndarray, shape (n,)
+        Mean hardness or flow stress, corrected for the tester's bias. [Pa]
+    sd : ndarray, shape (n,)
+        Standard deviation of the repeats, NaN below two. [Pa]
+    repeats : ndarray of int64, shape (n,)
+        Readings that are repeats of one another: the degrees of freedom of `sd` plus 1.
+    effective : ndarray, shape (n,)
+        The number n that divides the variance of one reading in that of the
+        mean: the repeats, or less between two points of a flow curve. [1]
+    scale : ndarray of int8, shape (n,)
+        Hardness scale, -1 where there is none.
+    force, ball, mean_diagonal : ndarray, shape (n,)
+        Nominal force, ball diameter, mean diagonal or diameter. [N], [m], [m]
+    shares : dict of str to ndarray, shape (n,)
+        Share of the mean that was read on each tester with a calibration. [1]
+    """
+
+    used: NDArray[np.int64]
+    mean: NDArray[np.float64]
+    sd: NDArray[np.float64]
+    repeats: NDArray[np.int64]
+    effective: NDArray[np.float64]
+    scale: NDArray[np.int8]
+    force: NDArray[np.float64]
+    ball: NDArray[np.float64]
+    mean_diagonal: NDArray[np.float64]
+    shares: dict[str, NDArray[np.float64]]
+
+    @classmethod
+    def empty(cls, coupons: int, testers: tuple[str, ...]) -> Self:
+        """Make the table of coupons that have no reading yet."""
+
+        def blank() -> NDArray[np.float64]:
+            return np.full(coupons, np.nan)
+
+        return cls(
+            used=np.zeros(coupons, dtype=np.int64),
+            mean=blank(),
+            sd=blank(),
+            repeats=np.zeros(coupons, dtype=np.int64),
+            effective=blank(),
+            scale=np.full(coupons, -1, dtype=np.int8),
+            force=blank(),
+            ball=blank(),
+            mean_diagonal=blank(),
+            shares={name: np.zeros(coupons) for name in testers},
+        )
+
+    def __len__(self) -> int:
+        return int(self.used.shape[0])
+
+
+@dataclass(frozen=True)
+class ReadingResults:
+    """What each reading of a stretch came to, all of shape (n,), NaN where it does not apply.
+
+    Attributes
+    ----------
+    scale : ndarray of int8
+        Hardness scale, -1 by the flow route.
+    force, mean_diagonal : ndarray
+        Nominal test force, mean diagonal. [N], [m]
+    strength : ndarray
+        Hardness or flow stress, corrected for the tester's bias. [Pa]
+    plastic_strain : ndarray
+        Of a point of a flow curve. [1]
+    weight : ndarray
+        Share of the reading in its coupon's mean. [1]
+    marks : ndarray of uint64
+        Which rules fired on it: bit i stands for ``RULES[i]``.
+    """
+
+    scale: NDArray[np.int8]
+    force: NDArray[np.float64]
+    mean_diagonal: NDArray[np.float64]
+    strength: NDArray[np.float64]
+    plastic_strain: NDArray[np.float64]
+    weight: NDArray[np.float64]
+    marks: NDArray[np.uint64]

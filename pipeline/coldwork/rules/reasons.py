@@ -1,0 +1,104 @@
+"""Why readings are set aside. A reading is set aside by one of these and never dropped."""
+
+from typing import Final
+
+from coldwork.rules.rule import Reason
+
+__all__ = [
+    "BAD_TIME",
+    "BALL_MISSING",
+    "EXCLUDED",
+    "IMPOSSIBLE_INDENT",
+    "NOT_A_NUMBER",
+    "OUT_OF_RANGE",
+    "REASONS",
+    "REPEATED_READING",
+    "REQUIRED_EMPTY",
+    "ROW_WIDTH",
+    "UNKNOWN_SCALE",
+    "UNLISTED_COUPON",
+]
+
+_GRAMMAR: Final = "number grammar of the in-tables (README)"
+_TIDY: Final = "contract of the table"
+
+ROW_WIDTH: Final = Reason(
+    "row-width",
+    "the row has more or fewer cells than the header",
+    "look for a missing or an unquoted comma in this row",
+    _TIDY,
+)
+UNLISTED_COUPON: Final = Reason(
+    "unlisted-coupon",
+    "the coupon is not listed in coupons.csv",
+    "add the coupon to coupons.csv, or correct its name here",
+    _TIDY,
+)
+REQUIRED_EMPTY: Final = Reason(
+    "required-empty",
+    "a cell that must be filled is empty",
+    "fill the cell; an indent needs its hardness, or the diagonals that its scale is read by",
+    _TIDY,
+)
+NOT_A_NUMBER: Final = Reason(
+    "not-a-number",
+    "the cell is not a number",
+    "write a plain decimal number such as 183.1, -0.5 or 1.2E-4, without unit or separator",
+    _GRAMMAR,
+)
+OUT_OF_RANGE: Final = Reason(
+    "out-of-range",
+    "the number is outside the range that the contract allows",
+    "check the unit of the column and the decimal point",
+    _TIDY,
+)
+BAD_TIME: Final = Reason(
+    "bad-time",
+    "the time is not an ISO 8601 time that exists once in its zone",
+    "write it as 2026-07-31T14:05:00+02:00",
+    "ISO 8601-1:2019",
+)
+UNKNOWN_SCALE: Final = Reason(
+    "unknown-scale",
+    "the hardness scale is not HV, HBW or HK",
+    "write HV, HBW or HK; the force stands in its own column",
+    "ISO 6507-1, ISO 6506-1, ISO 4545-1",
+)
+BALL_MISSING: Final = Reason(
+    "ball-missing",
+    "a Brinell reading has no ball diameter",
+    "fill ball_mm",
+    "ISO 6506-1, definition of HBW",
+)
+IMPOSSIBLE_INDENT: Final = Reason(
+    "impossible-indent",
+    "the ball cannot have made this indent: it is as wide as the ball or wider",
+    "check ball_mm, the diameters and the force",
+    "ISO 6506-1, definition of HBW (the indent is a cap of the ball)",
+)
+EXCLUDED: Final = Reason(
+    "excluded",
+    "a named person took the reading out",
+    "see exclusions.csv for the person, the time and the reason",
+    "exclusions.csv of the batch",
+)
+REPEATED_READING: Final = Reason(
+    "repeated-reading",
+    "the coupon already has a reading of this number",
+    "number the readings of a coupon without repeats; the first one was used",
+    _TIDY,
+)
+
+REASONS: Final = (
+    ROW_WIDTH,
+    UNLISTED_COUPON,
+    REQUIRED_EMPTY,
+    NOT_A_NUMBER,
+    OUT_OF_RANGE,
+    BAD_TIME,
+    UNKNOWN_SCALE,
+    BALL_MISSING,
+    IMPOSSIBLE_INDENT,
+    EXCLUDED,
+    REPEATED_READING,
+)

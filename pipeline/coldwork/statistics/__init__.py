@@ -1,0 +1,1 @@
+"""Student, pooling, outlying values and rounding: arrays only, like the formulas."""

@@ -1,0 +1,206 @@
+"""Does the 95 % interval hold? Simulated batches of one coupon, every input redrawn.
+
+Each batch sees inputs that are off the truth by what their uncertainties allow, and a scatter
+that is itself estimated from seven readings of five coupons. Counted is how often the interval
+misses the true value, below and above. Wanted are 93.5 to 97 % in all and 1 to 4 % in a tail.
+On the baseline an interval without an upper end (`baseline-contradicted`) is a miss.
+
+    python tests/benchmarks/coverage.py [batches]
+"""
+
+import sys
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from coldwork.chain import Start, energy, strength
+from coldwork.inputs.method import Laws
+from coldwork.interval.combine import Spread
+from coldwork.interval.reach import Reach
+from coldwork.measured import Measured, Value
+
+SEED: Final = 20261
+FREEDOM: Final = 30  # of the pooled scatter: five coupons of seven readings
+QUANTITIES: Final = (
+    "dislocation_density_per_m2",
+    "line_energy_j_per_m",
+    "stored_energy_j_per_m3",
+    "stored_energy_j_per_g",
+)
+LAWS: Final = Laws(
+    route="indent",
+    area={"HV": "contact", "HBW": "projected", "HK": "projected"},
+    unwinding=True,
+    baseline="given",
+    taylor="constant",
+    elasticity="isotropic",
+    outer_radius="spacing",
+    angles_deg=(0.0, 90.0),
+    fractions=(0.5, 0.5),
+    uniform_mix=False,
+)
+NORMAL: Final = {  # true value, standard uncertainty; SI. Copper, as in the sample data
+    "strength.baseline_mpa": (50e6, 5e6),
+    "indentation.constraint_factor": (3.0, 0.06),
+    "indentation.intercept_mpa": (0.0, 0.0),
+    "indentation.representative_strain": (0.08, 0.003),
+    "indentation.initial_hardening_mpa": (1700e6, 60e6),
+    "indentation.saturation_stress_mpa": (320e6, 10e6),
+    "hardening.taylor_factor": (3.06, 0.10),
+    "material.shear_modulus_gpa": (44e9, 1.5e9),
+    "material.poisson_ratio": (0.34, 0.01),
+    "material.burgers_vector_nm": (0.2556e-9, 0.0),
+    "material.mass_density_kg_per_m3": (8960.0, 20.0),
+    "material.molar_mass_g_per_mol": (0.063546, 0.0),
+    "material.heat_capacity_j_per_kg_k": (385.0, 4.0),
+    "line_energy.core_energy": (0.0, 0.0),
+}
+LOGNORMAL: Final = {  # true value, one standard deviation as a factor
+    "hardening.coefficient": (0.30, 1.2),
+    "line_energy.outer_radius_factor": (1.0, 1.5),
+    "line_energy.core_radius_b": (1.0, 1.6),
+}
+CALIBRATION: Final = np.array([[4e6, 0.0], [-0.7, 0.55]])  # Cholesky factor: baseline, slope
+
+
+@dataclass(frozen=True)
+class Case:
+    """One situation: how the stress lies to its uncertainty, and by which laws."""
+
+    name: str
+    stress: float  # true dislocation stress, unwound where it is unwound [Pa]
+    laws: Laws
+    relative_s: float = 0.01
+    scale: float = 1.0  # on the uncertainty of everything before the stress
+    calibrated: bool = False
+
+
+def main() -> None:
+    """Print coverage and tails of every case."""
+    batches = int(sys.argv[1]) if len(sys.argv) > 1 else 20_000
+    rng = np.random.default_rng(SEED)
+    plain = replace(LAWS, unwinding=False)
+    by_slope = replace(plain, taylor="slope", route="flow")
+    cases = [
+        Case("far, unwound", 284e6, LAWS),
+        Case("near, unwound", 40e6, LAWS),
+        Case("at u(s)/s about 1, unwound", 12e6, LAWS),
+        Case("on the baseline, unwound", 0.0, LAWS),
+        Case("far, as indented", 300e6, plain),
+        Case("near, as indented", 25e6, plain),
+        Case("on the baseline, as indented", 0.0, plain),
+        Case("far, calibrated", 300e6, by_slope, calibrated=True),
+        Case("near, calibrated", 20e6, by_slope, calibrated=True),
+        Case("on the baseline, calibrated", 0.0, by_slope, calibrated=True),
+        Case("far, exact inputs before s", 284e6, LAWS, scale=0.02),
+    ]
+    print(f"{batches} batches a case; seed {SEED}")
+    head = "case", "quantity", "u(s)/s", "covered", "below", "above", "verdict"
+    print("{:30s} {:28s} {:>7s} {:>8s} {:>7s} {:>7s}  {}".format(*head))
+    bad = 0
+    for case in cases:
+        for name, ratio, covered, below, above in simulate(case, batches, rng):
+            good = 0.935 <= covered <= 0.97 and max(below, above) <= 0.04
+            good &= case.stress == 0.0 or min(below, above) >= 0.01
+            bad += not good
+            print(
+                f"{case.name:30s} {name:28s} {ratio:7.3f} {covered:8.2%} {below:7.2%} {above:7.2%}"
+                f"  {'as wanted' if good else 'OUTSIDE'}"
+            )
+    print(f"{bad} outside what is wanted")
+    sys.exit(bad > 0)
+
+
+def simulate(
+    case: Case, batches: int, rng: np.random.Generator
+) -> list[tuple[str, float, float, float, float]]:
+    """Coverage of each quantity in one case: name, u(s)/s, covered, truth below, truth above."""
+    truth = {**{k: v for k, (v, _) in NORMAL.items()}, **{k: v for k, (v, _) in LOGNORMAL.items()}}
+    truth["hardening.slope_n_per_m"] = 18.0
+    spreads: dict[str, Spread] = {}
+    inputs: dict[str, Value] = {}
+    for name, (value, u) in NORMAL.items():
+        early = name.startswith(("strength", "indentation"))
+        size = u * (case.scale if early else 1.0)
+        spread(name, value + size * rng.standard_normal(batches), size, inputs, spreads)
+    for name, (value, factor) in LOGNORMAL.items():
+        seen = value * np.exp(np.log(factor) * rng.standard_normal(batches))
+        spread(name, seen, seen * np.log(factor), inputs, spreads)
+    if case.calibrated:
+        calibrate(truth, inputs, spreads, rng.standard_normal((2, batches)))
+    true_mean = forward(case, truth)
+    u_true = case.relative_s * true_mean / np.sqrt(7)
+    mean = true_mean + u_true * rng.standard_normal(batches)
+    u_seen = u_true * np.sqrt(rng.chisquare(FREEDOM, batches) / FREEDOM)
+    spreads["repeatability"] = Spread(u_seen, shared=False, degrees_of_freedom=float(FREEDOM))
+    start = begin(Measured(mean, {"repeatability": np.asarray(1.0)}), batches)
+    half = strength(case.laws, inputs, start)
+    assert isinstance(half.dislocation_stress, Measured)
+    reach = Reach(case.laws, inputs, spreads, start, half.dislocation_stress)
+    exact = {k: np.asarray(v) for k, v in truth.items()}
+    true = energy(case.laws, exact, np.array([case.stress or np.nan]), begin(mean[:1], 1))
+    rows = []
+    for name in QUANTITIES:
+        if case.stress == 0.0 and name == "line_energy_j_per_m":
+            continue
+        y = 0.0 if case.stress == 0.0 else float(np.asarray(true[name])[0])
+        ends = reach.interval(name, 0.975)
+        empty = np.isnan(ends.upper) & ~reach.present
+        above = (y > ends.upper) | empty
+        below = y < ends.lower
+        ratio = float(np.median(reach.u_stress.u)) / case.stress if case.stress else np.inf
+        rows.append((name, ratio, 1 - np.mean(above | below), np.mean(below), np.mean(above)))
+    return rows
+
+
+def spread(
+    name: str,
+    seen: NDArray[np.float64],
+    u: float | NDArray[np.float64],
+    inputs: dict[str, Value],
+    spreads: dict[str, Spread],
+) -> None:
+    """Put one input as a batch sees it."""
+    inputs[name] = Measured.of_input(name, seen) if np.any(u) else seen
+    spreads[name] = Spread(u, shared=True, degrees_of_freedom=np.inf)
+
+
+def calibrate(
+    truth: dict[str, float],
+    inputs: dict[str, Value],
+    spreads: dict[str, Spread],
+    z: NDArray[np.float64],
+) -> None:
+    """Baseline and slope from one calibration: correlated, as two independent components."""
+    off = CALIBRATION @ z
+    for row, name in enumerate(("strength.baseline_mpa", "hardening.slope_n_per_m")):
+        parts = {f"calibration:C:{i + 1}": np.asarray(CALIBRATION[row, i]) for i in range(2)}
+        inputs[name] = Measured(truth[name] + off[row], parts)
+    for i in range(2):
+        spreads[f"calibration:C:{i + 1}"] = Spread(1.0, shared=True, degrees_of_freedom=np.inf)
+
+
+def forward(case: Case, truth: dict[str, float]) -> float:
+    """The mean reading that the true stress gives: the chain's first half, backwards."""
+    stress = case.stress
+    if case.laws.unwinding:
+        theta, sigma = (
+            truth["indentation.initial_hardening_mpa"],
+            truth["indentation.saturation_stress_mpa"],
+        )
+        decay = np.exp(-theta * truth["indentation.representative_strain"] / sigma)
+        stress = sigma + (stress - sigma) * decay
+    flow = stress + truth["strength.baseline_mpa"]
+    return float(flow * (truth["indentation.constraint_factor"] if case.laws.route == "indent" else 1.0))
+
+
+def begin(mean: Value, n: int) -> Start:
+    """A slice of coupons of which only the mean matters."""
+    blank = np.full(n, np.nan)
+    return Start(mean, np.zeros(n, dtype=np.int8), blank, blank, blank, blank, 0.0)
+
+
+if __name__ == "__main__":
+    main()
