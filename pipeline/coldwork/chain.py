@@ -22,6 +22,7 @@ from coldwork.formulas.line_energy import (
     ENERGY_FACTOR,
     LINE_ENERGY,
     OUTER_RADIUS,
+    UNIFORM_MEAN_COS2,
     mean_cos2,
 )
 from coldwork.formulas.pressure import (
@@ -42,6 +43,7 @@ from coldwork.formulas.unwinding import UNWOUND_STRESS
 from coldwork.inputs.method import Laws
 from coldwork.measured import Value, apply, select, value_of
 from coldwork.rules.forces import SCALES
+from coldwork.units import to_si
 
 __all__ = ["Start", "Strength", "energy", "line", "strength"]
 
@@ -339,4 +341,6 @@ def _outer_length(
 
 
 def _mean_cos2(laws: Laws) -> float:
-    return 0.5 if laws.uniform_mix else float(mean_cos2(laws.angles_deg, laws.fractions))
+    if laws.uniform_mix:
+        return UNIFORM_MEAN_COS2
+    return mean_cos2(to_si(laws.angles_deg, "deg"), laws.fractions)

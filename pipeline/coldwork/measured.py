@@ -41,7 +41,7 @@ class Measured:
     @classmethod
     def of_input(cls, name: str, value: float | NDArray[np.float64]) -> Measured:
         """Make the value of an input itself, whose sensitivity to itself is 1."""
-        return cls(np.asarray(value, dtype=np.float64), {name: np.float64(1.0)})
+        return cls(np.asarray(value, dtype=np.float64), {name: np.asarray(1.0)})
 
     def __add__(self, other: Value) -> Measured:
         return _combine(self.value + value_of(other), [(1.0, self), (1.0, other)])

@@ -5,6 +5,7 @@ from copy import deepcopy
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
 
 from coldwork import contracts, units
@@ -81,11 +82,6 @@ UNITS = {  # what the suffix of a column's name promises
     "_j_per_mol": "J/mol",
     "_j_per_g": "J/g",
 }
-FIELDS = [
-    pytest.param(name, field, id=f"{name}.{field.name}")
-    for name in contracts.names()
-    for field in contracts.load(name).fields
-]
 
 
 def _schema(name: str) -> dict[str, Any]:
@@ -120,30 +116,32 @@ def test_what_goes_out_always_has_every_column() -> None:
     assert contract.required_columns == contract.columns
 
 
-@pytest.mark.parametrize(("name", "field"), FIELDS)
-def test_a_column_says_what_a_person_needs(name: str, field: contracts.Field) -> None:
-    assert field.title
-    assert field.description.endswith(".")
-    assert field.source, name
-    assert (field.unit is not None) == (field.type in ("number", "integer"))
+@pytest.mark.parametrize("name", contracts.names())
+def test_each_column_says_what_a_person_needs(name: str) -> None:
+    for field in contracts.load(name).fields:
+        assert field.title, field.name
+        assert field.description.endswith("."), field.name
+        assert field.source, field.name
+        assert (field.unit is not None) == (field.type in ("number", "integer")), field.name
 
 
-@pytest.mark.parametrize(("name", "field"), FIELDS)
-def test_a_unit_is_known_or_named_by_a_column(name: str, field: contracts.Field) -> None:
-    if field.unit is None:
-        return
-    if "{" in field.unit:
-        told = field.unit.replace("{", "").replace("}", "").split("/")
-        assert set(told) <= set(contracts.load(name).columns)
-    else:
-        assert units.to_si(1.0, field.unit) is not None
+@pytest.mark.parametrize("name", contracts.names())
+def test_each_unit_is_known_or_named_by_a_column(name: str) -> None:
+    contract = contracts.load(name)
+    for unit in {field.unit for field in contract.fields if field.unit is not None}:
+        if "{" in unit:
+            told = unit.replace("{", "").replace("}", "").split("/")
+            assert set(told) <= set(contract.columns)
+        else:
+            assert np.isfinite(units.to_si(1.0, unit))
 
 
-@pytest.mark.parametrize(("name", "field"), FIELDS)
-def test_a_suffix_keeps_its_promise(name: str, field: contracts.Field) -> None:
-    ends = [end for end in UNITS if field.name.endswith(end)]
-    if ends and field.type == "number":
-        assert field.unit == UNITS[max(ends, key=len)], name
+@pytest.mark.parametrize("name", contracts.names())
+def test_each_suffix_keeps_its_promise(name: str) -> None:
+    for field in contracts.load(name).fields:
+        ends = [end for end in UNITS if field.name.endswith(end)]
+        if ends and field.type == "number":
+            assert field.unit == UNITS[max(ends, key=len)], field.name
 
 
 @pytest.mark.parametrize("name", contracts.names())

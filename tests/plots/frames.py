@@ -199,6 +199,7 @@ def _coupons(
 
 def _set_aside(ids: list[str]) -> pd.DataFrame:
     rows = [(1, "not-a-number", "d1_um", "1,5"), (1, "excluded", "hardness", "55.1")]
+    rows = [(i % len(ids), *rest) for i, *rest in rows]
     rows += [(2 % len(ids), "row-width", "", "a;b;c")]
     frame = pd.DataFrame(
         [(ids[i], 9, rule, column, raw) for i, rule, column, raw in rows],
@@ -250,7 +251,7 @@ def _decisions(coupons: pd.DataFrame) -> pd.DataFrame:
             "limit_id": "anneal-window",
             "quantity": name,
             "bound": bound,
-            "probability": np.clip(0.5 + (y - low) / (4 * u), 0.0004, 0.9993),
+            "probability": np.clip(0.5 + np.minimum(y - low, high - y) / (4 * u), 0.0004, 0.9993),
             "decision": decision,
         }
     )

@@ -174,7 +174,7 @@ def test_findings_on_a_hundred_thousand_coupons() -> None:
     findings = Findings(n)
     every = np.arange(n)
     for step, rule in enumerate(RULES, 1):
-        findings.add(rule, every[::step], value=every[::step] * 1.0)
+        findings.add(rule, every[::step], value=every[::step])
     names = pa.array([f"c{i}" for i in range(n)])
     table = findings.table(names, names)
     assert table.num_rows == sum(len(every[::step]) for step in range(1, len(RULES) + 1))

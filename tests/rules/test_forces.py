@@ -79,7 +79,7 @@ def test_knoop_forces_are_those_of_its_own_table() -> None:
 def test_a_force_may_be_one_per_cent_off(force: float, fired: bool) -> None:
     found, value = force_not_nominal(codes(HV), np.array([force]), np.array([np.nan]))
     assert found[0] == fired
-    assert_allclose(value, force / 98.0665 - 1.0, rtol=1e-12)
+    assert_allclose(value, force / 98.0665 - 1.0, rtol=0.0, atol=1e-15)
 
 
 def test_a_force_in_the_wrong_unit_fires() -> None:
@@ -111,8 +111,8 @@ def test_no_readings_have_no_names() -> None:
     assert len(force_labels(np.empty(0, dtype=np.int8), none, none)) == 0
 
 
-def test_names_of_a_million_coupons_of_two_scales() -> None:
-    n = 1_000_000
+def test_names_of_many_coupons_of_two_scales() -> None:
+    n = 200_000
     scale = np.tile(np.array([HV, HBW], dtype=np.int8), n // 2)
     force = np.where(scale == HV, 98.0665, 7354.9875)
     labels = force_labels(scale, force, np.full(n, 5e-3))

@@ -37,8 +37,8 @@ def test_distance_between_centres_counts_in_the_larger_diagonal() -> None:
 
 
 def test_exactly_three_diagonals_are_enough() -> None:
-    x = np.arange(5) * 0.3e-3
-    fired, _ = centres_too_near(x, x * 0, np.full(5, 1e-4), np.zeros(5, dtype=np.int64), 3.0)
+    x = np.arange(5.0) * 0.3e-3
+    fired, _ = centres_too_near(x, np.zeros(5), np.full(5, 1e-4), np.zeros(5, dtype=np.int64), 3.0)
     assert not fired.any()
 
 
@@ -87,7 +87,7 @@ def test_agrees_with_comparing_every_pair(stretch: tuple[float, float]) -> None:
 
 def test_a_map_of_many_indents_and_a_file_without_places_are_no_trouble() -> None:
     side = 200
-    x, y = (v.ravel() * 1e-4 for v in np.meshgrid(np.arange(side), np.arange(side)))
+    x, y = (v.ravel() * 1e-4 for v in np.meshgrid(*[np.arange(float(side))] * 2))
     coupon, d = np.zeros(side**2, dtype=np.int64), np.full(side**2, 1e-4 / 3.1)
     assert not centres_too_near(x, y, d, coupon, 3.0)[0].any()
     fired, value = centres_too_near(x * 0.0, y * 0.0, d, coupon, 3.0)

@@ -32,8 +32,8 @@ def test_cochran_at_1_percent(groups: int, readings: int, critical: float) -> No
 
 @pytest.mark.parametrize("row", COCHRAN["rows"], ids=lambda row: f"{row[0]}-groups")
 def test_cochran_table(row: list[float]) -> None:
-    # The approximation by F is a bound from above; the table is the same to four digits but
-    # for few groups of one degree of freedom or of many.
+    # To three digits, as ISO 5725-2 prints them; the fourth of the old table was worked out
+    # by other approximations than by F, chiefly at 16 and 36 degrees of freedom.
     computed = [
         cochran_critical(int(row[0]), nu + 1, COCHRAN["significance"])
         for nu in COCHRAN["degrees_of_freedom"]

@@ -21,6 +21,7 @@ from numpy.typing import NDArray
 from pandas.api.extensions import ExtensionDtype
 from pandera.errors import SchemaErrors
 
+from coldwork.contracts.arrays import shape_problems
 from coldwork.contracts.checks import CHECKS, Check
 from coldwork.contracts.contract import Contract, Field
 
@@ -53,10 +54,11 @@ def frame(contract: Contract, table: pa.Table) -> pd.DataFrame:
         int64 where they are required and as nullable Int64 where not. An empty
         text stays one. A column of another type is left as Arrow gives it.
     """
-    series = {
-        name: _series(contract, name, table.column(i)) for i, name in enumerate(table.column_names)
-    }
-    return pd.DataFrame(series, index=pd.RangeIndex(table.num_rows))
+    names = table.column_names
+    series = {i: _series(contract, name, table.column(i)) for i, name in enumerate(names)}
+    made = pd.DataFrame(series, index=pd.RangeIndex(table.num_rows))
+    made.columns = pd.Index(names, dtype="str")  # by place until here: a name may stand twice
+    return made
 
 
 @cache
@@ -105,8 +107,10 @@ def check(contract: Contract, data: pd.DataFrame) -> list[str]:
     list of str
         What is wrong, at most 50 sentences; empty where nothing is.
     """
+    if not data.columns.is_unique:
+        return shape_problems(contract, data.columns)
     try:
-        schema(contract).validate(data, lazy=True)
+        schema(contract).validate(data.reset_index(drop=True), lazy=True)
     except SchemaErrors as found:
         return _report(found.failure_cases, len(data))
     return []
@@ -188,15 +192,17 @@ def _cross(named: Check, contract: Contract) -> pandera.Check:
 
 
 def _report(failures: pd.DataFrame, rows: int) -> list[str]:
+    statements = {check.statement: f"check {check.id}" for check in CHECKS.values()}
     problems = []
-    told = failures.assign(
-        column=failures["column"].astype(object).where(failures["column"].notna(), "")
-    )
-    for (column, rule), group in told.groupby(["column", "check"], sort=False, dropna=False):
-        case = str(group["failure_case"].iloc[0])[:_LONGEST_SHOWN]
-        indices = group["index"].dropna()
-        where = f" of {rows} rows, first row {int(indices.iloc[0]) + 1}" if len(indices) else ""
-        problems.append(f"column {column}: {rule}: {len(group)}{where}: {case}")
+    # A cross-column check fails once for each column of a row: it is told once.
+    where = failures["check"].map(statements)
+    where = where.where(where.notna(), "column " + failures["column"].fillna("").astype("str"))
+    for (place, rule), group in failures.groupby([where, "check"], sort=False):
+        indices = group["index"].dropna().unique()
+        first = f", first row {int(indices.min()) + 1}" if len(indices) else ""
+        count = f": {len(indices)} of {rows} rows" if len(indices) else ""
+        case = "" if rule in statements else f": {group['failure_case'].iloc[0]}"[:_LONGEST_SHOWN]
+        problems.append(f"{place}: {rule}{count}{first}{case}")
     if len(problems) > _MOST_PROBLEMS:
         more = len(problems) - _MOST_PROBLEMS
         problems = [*problems[:_MOST_PROBLEMS], f"and {more} more"]

@@ -132,6 +132,7 @@ class _Scan:
     def _open_table(self, line: int) -> None:
         path: KeyPath = ()
         for name in self.key[:-1]:
+            self.lines.setdefault((*path, name), line)
             path = self._entered((*path, name))
         path = (*path, self.key[-1])
         if self.header > 1:

@@ -18,14 +18,14 @@ from coldwork.inputs.laws import choice, laws_of, refuse_bad_mix
 from coldwork.inputs.limits import limits_of, refuse_bad_limits, refuse_bad_testers, testers_of
 from coldwork.inputs.method import Method
 from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
-from coldwork.inputs.source import read_sheet
+from coldwork.inputs.source import Sheet, read_sheet
 from coldwork.inputs.structure import refuse_misfits
 from coldwork.inputs.tables import tables_of
 from coldwork.inputs.unbuilt import refuse_unbuilt
 from coldwork.materials import Material
 from coldwork.units import to_si
 
-__all__ = ["read_method"]
+__all__ = ["method_of", "read_method"]
 
 _SPACING: Final = {"edge_distance_d": 3.0, "centre_distance_d": 6.0}  # ISO 6507-1, light metals
 
@@ -50,7 +50,31 @@ def read_method(folder: Path) -> Method:
         that it breaks, the nearest known name, and how to mend it.
     """
     folder = Path(folder)
-    sheet = read_sheet(folder)
+    return method_of(read_sheet(folder), folder)
+
+
+def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
+    """Check a sheet and make its method.
+
+    Parameters
+    ----------
+    sheet : Sheet
+        From `read_sheet`, or made of options.
+    folder : Path
+        The batch folder.
+    with_files : bool, optional
+        Whether the files that it names are looked for; the method has none otherwise.
+
+    Returns
+    -------
+    Method
+        Checked and complete.
+
+    Raises
+    ------
+    BatchRefused
+        As `read_method`.
+    """
     causes = Causes(sheet)
     refuse_unreal_numbers(causes)
     refuse_unbuilt(causes)
@@ -63,7 +87,7 @@ def read_method(folder: Path) -> Method:
     refuse_bad_testers(causes)
     refuse_bad_limits(causes)
     home = folder.resolve()
-    files = tables_of(causes, home)
+    files = tables_of(causes, home) if with_files else {}
     if causes.found:
         raise BatchRefused(str(folder), causes.all())
     laws = laws_of(sheet.tables)
@@ -96,7 +120,7 @@ def _method(
         lattice=tables["material"].get("lattice", material.lattice if material else None),
         edge_distance_d=_spacing(tables, material, "edge_distance_d"),
         centre_distance_d=_spacing(tables, material, "centre_distance_d"),
-        coupons=files["coupons"],
+        coupons=files.get("coupons", ()),
         indents=files.get("indents", ()),
         flow_stress=files.get("flow_stress", ()),
         exclusions=files["exclusions"][0] if "exclusions" in files else None,

@@ -127,16 +127,14 @@ def _refuse_size_effects(causes: Causes) -> None:
 def _refuse_exponent(causes: Causes) -> None:
     table = _table(causes, ("strength",))
     exponent = as_number(table.get("superposition_exponent"))
-    if exponent is None:
-        return
-    if exponent != 1.0:
+    if exponent is not None and exponent != 1.0:
         causes.add(
             ("strength", "superposition_exponent"),
             f"{exponent:g} cannot be used",
             "Superposition by an exponent other than 1 is not built yet.",
             "Leave the key out, or write 1.",
         )
-    del table["superposition_exponent"]  # as 1 it says what holds anyway
+        del table["superposition_exponent"]
 
 
 def _refuse_values_from_elsewhere(causes: Causes) -> None:

@@ -16,7 +16,7 @@ __all__ = ["split_cells", "with_clean_quotes"]
 _QUOTE: Final = ord('"')
 _COMMA: Final = ord(",")
 _FEED: Final = ord("\n")
-_CELL: Final = re.compile(r'"((?:[^"]|"")*)"([^,]*)|([^",][^,]*|)')
+_CELL: Final = re.compile(r'"((?:[^"]|"")*+)"([^,]*)|([^",][^,]*|(?!"))')
 
 
 def with_clean_quotes(data: bytes) -> tuple[bytes, int | None]:

@@ -210,6 +210,7 @@ class Reach:
         if not isinstance(late, Measured):
             return m, np.zeros_like(m)
         covariance = np.zeros(np.shape(late.value))
+        slope = late.sensitivities.get(PIVOT, np.asarray(0.0))
         for name_, c in late.sensitivities.items():
             if name_ == PIVOT or name_ not in self.stress.sensitivities:
                 continue
@@ -218,7 +219,7 @@ class Reach:
                 covariance = covariance + c * self.stress.sensitivities[name_] * spread.u**2
         with np.errstate(invalid="ignore", divide="ignore"):
             r = covariance / (late.value * m * self.u_stress.u)
-        r = np.where(np.isfinite(r), r, 0.0) * np.sign(late.sensitivities[PIVOT])
+        r = np.where(np.isfinite(r), r, 0.0) * np.sign(slope)
         return m, np.clip(r, -1.0, 1.0)
 
     def _at(self, stress: NDArray[np.float64], name: str) -> NDArray[np.float64]:
@@ -228,7 +229,7 @@ class Reach:
         """Replace the sensitivity to s by those to what s came from."""
         if not isinstance(late, Measured):
             return Measured(late)
-        slope = late.sensitivities[PIVOT]
+        slope = late.sensitivities.get(PIVOT, np.asarray(0.0))
         total = {name: c for name, c in late.sensitivities.items() if name != PIVOT}
         for name, c in self.stress.sensitivities.items():
             step = slope * c
@@ -294,6 +295,8 @@ def _take_value(x: Value, rows: NDArray[np.intp]) -> Value:
     if not isinstance(x, Measured):
         plain = np.asarray(x)
         return plain[rows] if plain.ndim else plain
+    if not x.value.ndim:
+        return x
     picked = {n: c[rows] if np.ndim(c) else c for n, c in x.sensitivities.items()}
     return Measured(x.value[rows], picked)
 

@@ -119,7 +119,9 @@ def start_of(
     if u_grain.any():
         grain = Measured.of_input(GRAIN, coupons.grain_size[rows])
         own[GRAIN] = Spread(u_grain, shared=False, degrees_of_freedom=np.inf)
-    work = coupons.prior_plastic_work[rows]
+    work = np.where(  # an annealed coupon's work is 0, and no fraction of it is stored
+        coupons.prior_plastic_work[rows] > 0.0, coupons.prior_plastic_work[rows], np.nan
+    )
     if method.laws.route == "indent" and not method.laws.unwinding:
         work = np.full(work.shape, np.nan)  # the state includes the indent's own strain
     start = Start(

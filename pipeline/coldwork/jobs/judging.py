@@ -1,6 +1,7 @@
 """Limits held against a slice of coupons: what is known of each, and the decisions."""
 
 from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 
 import numpy as np
 import pyarrow as pa
@@ -25,7 +26,7 @@ from coldwork.measured import value_of
 from coldwork.reduce.reduced import Reduced
 from coldwork.rules.findings import Findings
 
-__all__ = ["decide_slice", "decisions_table", "find_in_slice"]
+__all__ = ["Held", "decide_slice", "decisions_table", "find_in_slice"]
 
 _Floats = NDArray[np.float64]
 
@@ -56,6 +57,7 @@ def find_in_slice(
     rows : slice
         Its place in the batch.
     """
+    known = np.isfinite(reduced.mean[rows])
     saturation = method.inputs.get("indentation.saturation_stress_mpa")
     results, half = evaluated.results, evaluated.strength
     judge_coupons(
@@ -64,7 +66,7 @@ def find_in_slice(
             coupon=np.arange(rows.start, rows.stop),
             route=method.laws.route,
             readings_used=reduced.used[rows],
-            repeatability=u_mean,
+            repeatability=np.where(known, u_mean, 0.0),  # without a mean it has none to lack
             scale=reduced.scale[rows],
             thickness=thickness,
             mean_diagonal=reduced.mean_diagonal[rows],
@@ -83,12 +85,31 @@ def find_in_slice(
     )
 
 
+@dataclass(frozen=True)
+class Held:
+    """One limit held against a slice of coupons.
+
+    Attributes
+    ----------
+    limit : Limit
+        The limit.
+    evidence : Evidence
+        What is known of the quantity, on the limit's basis and in its unit.
+    decided : Decided
+        What follows.
+    """
+
+    limit: Limit
+    evidence: Evidence
+    decided: Decided
+
+
 def decide_slice(
     method: Method,
     evaluated: Evaluated,
     figures: Mapping[str, Figures],
     bits: NDArray[np.uint64],
-) -> list[Decided]:
+) -> list[Held]:
     """Decide every limit on a slice of coupons.
 
     Parameters
@@ -104,56 +125,53 @@ def decide_slice(
 
     Returns
     -------
-    list of Decided
-        In the sheet's order of limits.
+    list of Held
+        In the sheet's order of limits; one on a quantity that the route does not have
+        is left out.
     """
-    return [
-        decide(limit, _evidence(limit, method, evaluated, figures[limit.quantity], bits))
-        for limit in method.limits
-        if limit.quantity in figures
-    ]
+    held = []
+    for limit in method.limits:
+        if limit.quantity in figures:
+            evidence = _evidence(limit, method, evaluated, figures[limit.quantity], bits)
+            held.append(Held(limit, evidence, decide(limit, evidence)))
+    return held
 
 
 def decisions_table(
-    method: Method,
-    ids: pa.StringArray,
-    figures: Mapping[str, Figures],
-    decided: Sequence[Decided],
+    method: Method, ids: pa.StringArray, decided: Sequence[Held]
 ) -> pa.Table:
     """Build a slice of ``decisions.csv``: every limit on every coupon.
 
     Parameters
     ----------
     method : Method
-        The limits.
+        For its coverage.
     ids : pyarrow.StringArray of n
         The coupons.
-    figures : mapping of str to Figures
-        Their quantities. [SI]
-    decided : sequence of Decided
-        From `decide_slice`.
+    decided : sequence of Held
+        From `decide_slice`; at least one.
 
     Returns
     -------
     pyarrow.Table
         Coupon by coupon, in the sheet's order of limits within each.
     """
-    n, limits = len(ids), [x for x in method.limits if x.quantity in figures]
+    n = len(ids)
+
+    def same(x: str | float | None, kind: pa.DataType) -> pa.Array:
+        return pa.nulls(n, kind) if x is None else pa.repeat(pa.scalar(x, kind), n)
+
     parts = []
-    for limit, one in zip(limits, decided, strict=True):
-        unit, found = unit_of(limit.quantity), figures[limit.quantity]
-
-        def same(x: str | float | None, kind: pa.DataType) -> pa.Array:
-            return pa.nulls(n, kind) if x is None else pa.repeat(pa.scalar(x, kind), n)
-
+    for held in decided:
+        limit, one = held.limit, held.decided
         parts.append(
             pa.table(
                 {
                     "coupon_id": ids,
                     "limit_id": same(limit.id, pa.string()),
                     "quantity": same(limit.quantity, pa.string()),
-                    "value": pa.array(units.from_si(found.result.value, unit)),
-                    "u": pa.array(units.from_si(found.combined.u, unit)),
+                    "value": pa.array(held.evidence.value),
+                    "u": pa.array(held.evidence.u),
                     "lower_limit": same(limit.lower, pa.float64()),
                     "upper_limit": same(limit.upper, pa.float64()),
                     "bound": pa.array(one.bound),

@@ -7,6 +7,7 @@ from typing import Any, Final
 
 from coldwork import materials
 from coldwork.materials import LibraryValue, Material
+from coldwork.statistics.rounding import rounded
 
 __all__ = ["as_json", "detail", "table"]
 
@@ -16,7 +17,6 @@ _COLUMNS: Final = {
     "poisson_ratio": "nu",
     "burgers_vector_nm": "b, nm",
     "mass_density_kg_per_m3": "density, kg/m3",
-    "molar_mass_g_per_mol": "g/mol",
 }
 
 
@@ -87,7 +87,10 @@ def as_json(name: str | None = None) -> dict[str, Any]:
 
 def _short(metal: Material, key: str) -> str:
     entry = metal.values.get(key)
-    return "" if entry is None else f"{entry.value:.10g} ± {entry.u:g}"
+    if entry is None:
+        return ""
+    value, u = rounded(entry.value, entry.u)
+    return f"{value} ± {u}"
 
 
 def _lines(metal: Material) -> Iterator[str]:
@@ -97,11 +100,13 @@ def _lines(metal: Material) -> Iterator[str]:
     for key, entry in metal.values.items():
         yield ""
         yield f"  {key} = {_with_u(entry)}"
+        seen = "" if entry.seen else " The number itself was not seen."
         yield from wrap(
-            f"{'Seen' if entry.seen else 'Not seen'}: {entry.source}.",
+            f"Source: {entry.source}.{seen}",
             _WIDTH,
             initial_indent="    ",
             subsequent_indent="    ",
+            break_on_hyphens=False,
         )
 
 

@@ -20,11 +20,11 @@ from coldwork.jobs.evaluate import (
 )
 from coldwork.jobs.figures import Figures, figures_of
 from coldwork.jobs.gather import Gathered
-from coldwork.jobs.judging import decide_slice, decisions_table, find_in_slice
+from coldwork.jobs.judging import Held, decide_slice, decisions_table, find_in_slice
 from coldwork.jobs.kept import KeptReadings
 from coldwork.jobs.steps import repeatability_of, steps_of
 from coldwork.jobs.tables import budget_table, coupons_table, quantities_table
-from coldwork.judge.decisions import Decided, Worst, decision_texts, worst
+from coldwork.judge.decisions import Worst, decision_texts, worst
 from coldwork.measured import value_of
 from coldwork.results.records import Step
 
@@ -45,7 +45,7 @@ class Sliced:
         Chain and intervals, before errors empty anything. [SI]
     figures : mapping of str to Figures
         Quantities as they may be published. [SI]
-    decided : list of Decided
+    decided : list of Held
         Every limit.
     worst : Worst
         The coupons' decisions.
@@ -57,7 +57,7 @@ class Sliced:
     rows: slice
     evaluated: Evaluated
     figures: Mapping[str, Figures]
-    decided: list[Decided]
+    decided: list[Held]
     worst: Worst
     kept: pa.Table | None
 
@@ -100,7 +100,7 @@ class Sliced:
     @cached_property
     def _coupons(self) -> pa.Table:
         batch, worst_one = self.batch, self.worst
-        names = pa.array([limit.id for limit in batch.method.limits], pa.string())
+        names = pa.array([held.limit.id for held in self.decided], pa.string())
         deciding = pa.array(worst_one.limit.astype(np.int64), mask=worst_one.limit < 0)
         rest = {
             "readings_set_aside": pa.array(batch.set_aside.per_coupon[self.rows]),
@@ -125,7 +125,7 @@ class Sliced:
     def _decisions(self) -> pa.Table:
         if not self.decided:
             return _empty("decisions")
-        return decisions_table(self.batch.method, self.ids, self.figures, self.decided)
+        return decisions_table(self.batch.method, self.ids, self.decided)
 
     @cached_property
     def _details(self) -> dict[str, pa.Table]:
@@ -211,7 +211,7 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
         evaluated,
         figures,
         decided,
-        worst(decided, n),
+        worst([held.decided for held in decided], n),
         None if kept is None else kept.of(rows),
     )
 

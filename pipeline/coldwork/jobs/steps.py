@@ -8,6 +8,7 @@ from coldwork.inputs.method import Method
 from coldwork.jobs.evaluate import Evaluated
 from coldwork.measured import Value, value_of
 from coldwork.results.records import Step
+from coldwork.rules.forces import SCALES
 from coldwork.scatter import BASES, Repeatability
 
 __all__ = ["repeatability_of", "steps_of"]
@@ -178,7 +179,7 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
             n,
             "pressure less intercept, over the constraint factor: the stress at the coupon's "
             "strain plus the strain of the indent",
-            ("pressure_mpa", *_of_indentation(method, "intercept_mpa", "constraint_factor")),
+            ("pressure_mpa", *_of_indentation(method, evaluated, "intercept_mpa", "constraint_factor")),
         ),
         baseline,
     ]
@@ -211,7 +212,7 @@ def _dislocation_steps(method: Method, evaluated: Evaluated, n: int) -> list[Ste
         inputs = (
             "excess_mpa",
             *_of_indentation(
-                method, "initial_hardening_mpa", "saturation_stress_mpa", "representative_strain",
+                method, evaluated, "initial_hardening_mpa", "saturation_stress_mpa", "representative_strain",
                 "strain_ratio",
             ),
         )
@@ -296,9 +297,14 @@ def _energy_steps(method: Method, evaluated: Evaluated) -> list[Step]:
     ]
 
 
-def _of_indentation(method: Method, *keys: str) -> tuple[str, ...]:
-    return tuple(
-        name
-        for name in method.inputs
-        if name.startswith("indentation.") and name.rpartition(".")[2] in keys
-    )
+def _of_indentation(method: Method, evaluated: Evaluated, *keys: str) -> tuple[str, ...]:
+    """Names of a scale's inputs, for the scales that the slice was read on."""
+    present = {SCALES[code] for code in np.unique(evaluated.start.scale) if code >= 0}
+    found = []
+    for name in method.inputs:
+        section, _, key = name.rpartition(".")
+        scale = section.removeprefix("indentation").removeprefix(".") or "HV"
+        common = key in {"initial_hardening_mpa", "saturation_stress_mpa"}
+        if section.startswith("indentation") and key in keys and (common or scale in present):
+            found.append(name)
+    return tuple(found)

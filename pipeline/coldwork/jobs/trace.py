@@ -140,7 +140,7 @@ def _candidates(names: "Sequence[pa.Array[Any]]", coupon: str) -> list[str]:
     if count > _NAMES_COMPARED:
         start = coupon[: max(1, len(coupon) // 2)]
         names = [some.filter(pc.starts_with(some, start)) for some in names]
-    return [name for some in names for name in some.to_pylist()][:_NAMES_COMPARED]
+    return [str(name) for some in names for name in some.to_pylist()][:_NAMES_COMPARED]
 
 
 def _sealed_record(results: Path, place: int, row: Mapping[str, Any]) -> dict[str, Any]:

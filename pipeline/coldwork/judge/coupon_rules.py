@@ -20,7 +20,7 @@ from coldwork.rules.forces import SCALES
 from coldwork.rules.rule import Rule
 from coldwork.rules.spacing import least_thickness_ratio, too_thin
 
-__all__ = ["State", "judge_coupon_cells", "judge_coupons", "judge_scales"]
+__all__ = ["State", "judge_coupon_cells", "judge_coupons", "judge_scales", "judge_thickness"]
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
@@ -96,7 +96,9 @@ def judge_coupons(findings: Findings, state: State) -> None:
         The slice.
     """
     _readings(findings, state)
-    _thickness(findings, state)
+    judge_thickness(
+        findings, state.coupon, state.thickness, state.scale, state.mean_diagonal, state.ball
+    )
     _stress(findings, state)
     _indent_strain(findings, state)
     _density(findings, state)
@@ -197,10 +199,31 @@ def _readings(findings: Findings, state: State) -> None:
     _note(findings, state, rules.NO_REPEATABILITY, ~none & np.isnan(state.repeatability))
 
 
-def _thickness(findings: Findings, state: State) -> None:
-    least = least_thickness_ratio(state.scale, state.mean_diagonal, state.ball)
-    fired, value = too_thin(state.thickness, state.mean_diagonal, least)
-    _note(findings, state, rules.THIN_COUPON, fired, value, least)
+def judge_thickness(
+    findings: Findings,
+    coupon: NDArray[np.int64] | NDArray[np.int32],
+    thickness: FloatArray,
+    scale: NDArray[np.int8],
+    mean_diagonal: FloatArray,
+    ball: FloatArray,
+) -> None:
+    """Find coupons that are too thin for their indents; nothing need be computed for it.
+
+    Parameters
+    ----------
+    findings : Findings
+        Where it is told.
+    coupon : ndarray of int, shape (n,)
+        Index of each coupon in the batch.
+    thickness, mean_diagonal, ball : ndarray of float64, shape (n,)
+        Of the coupon, of its indents, of the ball. [m]
+    scale : ndarray of int8, shape (n,)
+        0 HV, 1 HBW, 2 HK, -1 where there is none.
+    """
+    least = least_thickness_ratio(scale, mean_diagonal, ball)
+    fired, value = too_thin(thickness, mean_diagonal, least)
+    rows = np.flatnonzero(fired)
+    findings.add(rules.THIN_COUPON, coupon[rows], value=value[rows], limit=least[rows])
 
 
 def _stress(findings: Findings, state: State) -> None:

@@ -57,14 +57,14 @@ class Worst:
     ----------
     code : ndarray of int8, shape (n,)
         Place in `DECISIONS`, -1 where there is no limit.
-    limit : ndarray of int8, shape (n,)
+    limit : ndarray of int32, shape (n,)
         Place of the limit that decided, -1 where there is none.
     probability : ndarray of float64, shape (n,)
         Conformance probability under that limit, NaN where it is not known. [1]
     """
 
     code: Codes
-    limit: NDArray[np.int8]
+    limit: NDArray[np.int32]
     probability: FloatArray
 
 
@@ -155,7 +155,7 @@ def worst(decided: Sequence[Decided], n: int) -> Worst:
         Arrays of shape (n,).
     """
     code = np.full(n, NONE, dtype=np.int8)
-    place = np.full(n, -1, dtype=np.int8)
+    place = np.full(n, -1, dtype=np.int32)
     probability = np.full(n, np.nan)
     for i, one in enumerate(decided):
         graver = severity(one.code) > severity(code)
@@ -163,7 +163,7 @@ def worst(decided: Sequence[Decided], n: int) -> Worst:
         lower = known < np.where(np.isnan(probability), 2.0, probability)
         takes = graver | ((one.code == code) & lower)
         code = np.where(takes, one.code, code)
-        place = np.where(takes, np.int8(i), place)
+        place = np.where(takes, np.int32(i), place)
         probability = np.where(takes, one.probability, probability)
     return Worst(code, place, probability)
 

@@ -121,7 +121,8 @@ def _place(x: FloatArray, u: FloatArray) -> NDArray[np.int64]:
     top = _exponent(leading)
     # 0.0996 has two digits as 0.10: rounding may carry into the next place
     carried = np.rint(leading * _ten(digits - 1 - top)) >= _ten(digits)
-    return np.maximum(top + carried - digits + 1, _exponent(x) - _MOST_DIGITS + 1)
+    place = np.maximum(top + carried - digits + 1, _exponent(x) - _MOST_DIGITS + 1)
+    return np.where((x == 0.0) & ~stated, 0, place)
 
 
 def _exponent(x: FloatArray) -> NDArray[np.int64]:
@@ -142,7 +143,7 @@ def _rounds_to(
     close = np.zeros(x.shape, dtype=np.bool_)
     rounded = _at_place(x, place)
     for other in others:
-        close |= (rounded == _at_place(other, place)) & (x != other)
+        close |= (rounded == _at_place(other, place)) & (x != other) & (x != 0.0)
     return close & (_exponent(x) - place < _MOST_DIGITS)
 
 

@@ -36,7 +36,7 @@ _PREFERRED = (
 _MOST_INPUTS = 14
 _MOST_GROUPS = 12  # conditions beyond which coupons are grouped by their value
 _CLASSES = 5
-_PANELS_A_PAGE = 6
+_PANELS_A_PAGE = 7
 _NAME_ROOM = 2.5  # [inch]
 _ROW, _TITLE, _BELOW = 0.25, 0.56, 0.52  # of an input; above and below the panels [inch]
 _OTHERS = "all others together"
@@ -78,7 +78,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
     Returns
     -------
     list of Figure
-        Pages of up to six conditions; none where no coupon has a budget.
+        Pages of up to seven conditions; none where no coupon has a budget.
     """
     budget = frame_of(frames, "budget")
     column = _chosen(budget)
@@ -135,11 +135,12 @@ def _reduced(table: _Budget) -> _Budget:
     most = np.nanmax(table.share, axis=0)
     order = [int(i) for i in np.argsort(-np.nanmean(table.share, axis=0), kind="stable")]
     told = [i for i in order[:_MOST_INPUTS] if most[i] >= 0.1]
-    rest = [i for i in order if i not in told and most[i] > 0.0]
+    rest = [i for i in order if i not in told]
     inputs, kind = [table.inputs[i] for i in told], [table.kind[i] for i in told]
     share, sign = table.share[:, told], table.sign[told]
-    if rest:
-        share = np.column_stack([share, table.share[:, rest].sum(axis=1)])
+    others = table.share[:, rest].sum(axis=1)
+    if rest and np.nanmax(others) >= 0.1:
+        share = np.column_stack([share, others])
         inputs, kind, sign = [*inputs, _OTHERS], [*kind, ""], np.append(sign, 0)
     return _Budget(inputs, share, kind, sign)
 
@@ -185,7 +186,7 @@ def _figure(
         with np.errstate(divide="ignore", invalid="ignore"):
             relative = float(np.median(100.0 * u[group.members] / values[group.members]))
         title = [f"{size} coupon{'s' if size > 1 else ''}"]
-        title += [f"u {relative:.2g} %"] if np.isfinite(relative) else []
+        title += [f"u {float(f'{relative:.2g}'):g} %"] if np.isfinite(relative) else []
         name = fitted(told_apart([group.name], Sizes.small, wide)[0], Sizes.small, wide)
         axes.set_title("\n".join([name, *title]), fontsize=Sizes.small, loc="left", pad=4.0)
         if not i:
@@ -204,8 +205,7 @@ def _draw_bars(axes: Axes, table: _Budget, group: _Group, end: float) -> None:
     axes.set_xlim(0.0, end)
     axes.set_ylim(len(rows) - 0.5, -0.5)
     axes.xaxis.set_major_locator(MaxNLocator(3 if len(group.members) else 2, steps=[1, 2, 5, 10]))
-    axes.tick_params(axis="y", left=False, labelleft=False)
-    axes.grid(visible=False, axis="y")
+    axes.set_yticks([])
     for row, kind in enumerate(table.kind):
         bar = _bar(kind)
         bar.set_bounds(0.0, row - 0.3, float(mean[row]), 0.6)

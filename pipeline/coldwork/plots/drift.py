@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
-from coldwork.plots.names import told_apart, wrapped
+from coldwork.plots.names import label_lines, told_apart, width
 from coldwork.plots.quantity import Scale, robust_limits
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
 from coldwork.plots.style import BLUE, GREY, INK, PAPER, RED, Mark, Sizes, house
@@ -179,7 +179,7 @@ def _figure(course: _Course, label: str, notes: list[str], context: Context) -> 
         if len(course.testers) > 1 or tester:
             name = tester or "tester not given"
             axes.set_title(name, fontsize=Sizes.words, loc="left", pad=4.0)
-        axes.set_ylabel("\n".join(wrapped(label, Sizes.axis, high)))
+        axes.set_ylabel(_stacked(label, high))
         panels.append(axes)
     if course.clock is not None:
         course.clock.on(panels, wide)
@@ -197,6 +197,12 @@ def _figure(course: _Course, label: str, notes: list[str], context: Context) -> 
     return figure
 
 
+def _stacked(label: str, high: float) -> str:
+    wide = width(label, Sizes.axis)
+    room = high if wide <= high else min(high, 0.65 * wide)
+    return "\n".join(label_lines(label, Sizes.axis, room))
+
+
 def _fill(axes: Axes, course: _Course, panel: int, scale: Scale) -> None:
     axes.axhline(0.0, color=GREY, linewidth=0.7)
     here = course.panel == panel
@@ -206,23 +212,26 @@ def _fill(axes: Axes, course: _Course, panel: int, scale: Scale) -> None:
         mine = here & inside & (course.mark == i)
         _mark(course, i).put(axes, course.x[mine], course.away[mine], raster=raster)
     for mark, edge, out in (
-        (_BELOW, scale.low, course.away < scale.low),
-        (_ABOVE, scale.high, course.away > scale.high),
+        (_BELOW, scale.inside(0), course.away < scale.low),
+        (_ABOVE, scale.inside(1), course.away > scale.high),
     ):
         beyond = here & out
         mark.put(axes, course.x[beyond], np.full(int(beyond.sum()), edge))
     for block in _blocks(course, here):
         level = [float(course.away[block].mean())] * 2
         ends = [float(course.x[block[0]]), float(course.x[block[-1]])]
-        axes.plot(ends, level, color=PAPER, linewidth=_COURSE_WIDTH + 1.6, zorder=3.4)
-        axes.plot(ends, level, color=INK, linewidth=_COURSE_WIDTH, zorder=3.5)
+        order = 3.5 if raster else 2.5
+        axes.plot(ends, level, color=INK, linewidth=_COURSE_WIDTH, zorder=order)
 
 
 def _blocks(course: _Course, here: NDArray[np.bool_]) -> Iterator[NDArray[np.intp]]:
-    """Give stretches of successive readings of a panel, none across a break."""
+    """Give stretches of successive readings of a panel, none across a pause."""
     size = max(_LEAST_BLOCK, int(np.ceil(here.sum() / _BLOCKS)))
-    for sitting in np.unique(course.sitting[here]):
-        members = np.flatnonzero(here & (course.sitting == sitting))
+    readings = np.flatnonzero(here)
+    steps = np.diff(course.x[readings])
+    pause = np.inf if course.clock is None else 10.0 * float(np.median(steps)) if len(steps) else 0.0
+    cuts = (steps > pause) | (np.diff(course.sitting[readings]) > 0)
+    for members in np.split(readings, np.flatnonzero(cuts) + 1):
         if len(members) >= _LEAST_BLOCK // 2:
             yield from np.array_split(members, max(1, round(len(members) / size)))
 

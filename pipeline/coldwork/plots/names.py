@@ -12,7 +12,7 @@ from functools import cache
 from matplotlib.font_manager import findfont
 from matplotlib.ft2font import FT2Font, LoadFlags
 
-__all__ = ["ELLIPSIS", "FONT", "fitted", "shown", "told_apart", "width", "wrapped"]
+__all__ = ["ELLIPSIS", "FONT", "fitted", "label_lines", "shown", "told_apart", "width", "wrapped"]
 
 FONT = "DejaVu Sans"  # comes with matplotlib, so it is the same everywhere
 ELLIPSIS = "…"
@@ -157,6 +157,13 @@ def wrapped(text: str, size: float, room: float) -> list[str]:
             longer = word
         line = fitted(longer, size, room) if longer == word else longer
     return [*lines, line] if line else lines
+
+
+def label_lines(label: str, size: float, room: float) -> list[str]:
+    """Break the label of an axis into lines as `wrapped` does, its unit kept with a word."""
+    name, bracket, unit = label.partition(" [")
+    bound = f"\u00a0[{unit}".replace(" ", "\u00a0") if bracket else ""
+    return wrapped(name + bound, size, room)
 
 
 def _taken(text: str, size: float, room: float) -> str:

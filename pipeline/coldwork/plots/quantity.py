@@ -28,7 +28,7 @@ _HEADINGS = {
     "stored_fraction_of_work": ("Stored fraction of the plastic work", "1"),
 }
 _SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
-_WIDE = 100.0  # largest over smallest value from which an axis is logarithmic
+_WIDE = 50.0  # largest over middle value from which an axis is logarithmic
 
 
 @dataclass(frozen=True)
@@ -53,6 +53,11 @@ class Scale:
     high: float
     logarithmic: bool = False
 
+    def inside(self, end: int) -> float:
+        """Give the place just inside the lower (0) or upper (1) end, for what lies beyond it."""
+        room = 0.02 * (self.high - self.low)
+        return self.high - room if end else self.low + room
+
     def on(self, axes: Axes, *, upright: bool = False, ticks: int = 8) -> None:
         """Set a panel's horizontal axis, or its upright one, to this scale."""
         axis = axes.yaxis if upright else axes.xaxis
@@ -72,7 +77,9 @@ def heading(column: str) -> tuple[str, str]:
     return _HEADINGS.get(column, (shown(column), ""))
 
 
-def scale_of(column: str, values: Sequence[FloatArray], *, detail: str = "") -> Scale:
+def scale_of(
+    column: str, values: Sequence[FloatArray], *, detail: str = "", zero: bool = True
+) -> Scale:
     """Fit an axis to a quantity.
 
     Parameters
@@ -83,12 +90,14 @@ def scale_of(column: str, values: Sequence[FloatArray], *, detail: str = "") -> 
         Everything that has to stand on the axis. [the column's unit]
     detail : str
         What follows the heading, such as the hardness scale.
+    zero : bool
+        Whether the axis begins at zero where zero is near.
 
     Returns
     -------
     Scale
-        Logarithmic where positive values span more than a hundredfold; else
-        from zero where zero is near.
+        Logarithmic where half of the positive values lie below a fiftieth of the
+        largest and none is negative.
     """
     title, unit = heading(column)
     title = f"{title} {detail}".strip()
@@ -98,12 +107,15 @@ def scale_of(column: str, values: Sequence[FloatArray], *, detail: str = "") -> 
     if not positive.size:
         positive = np.ones(1)
     high = float(positive.max())
-    if high / float(np.percentile(positive, 2.0)) > _WIDE and not (everything < 0.0).any():
+    if high / float(np.median(positive)) > _WIDE and not (everything < 0.0).any():
         low = max(float(positive.min()), high / 1e5)
         return Scale(f"{title} [{unit}]", 1.0, low / 1.4, high * 1.4, logarithmic=True)
     power = floor(log10(high)) if high >= 1e5 or high < 1e-2 else 0
     factor = 10.0**-power
-    low, high = _ends(everything * factor if everything.size else positive)
+    on_axis = everything * factor if everything.size else positive
+    low, high = _padded(float(on_axis.min()), float(on_axis.max()))
+    if zero and 0.0 <= on_axis.min() < 0.4 * on_axis.max():
+        low = 0.0
     unit = f"10{_superscript(power)} {unit}".strip() if power else unit
     return Scale(f"{title} [{unit}]" if unit else title, factor, low, high)
 
@@ -114,8 +126,8 @@ def robust_limits(values: FloatArray, always: FloatArray) -> tuple[float, float]
     Parameters
     ----------
     values : ndarray, shape (n,)
-        Points; what lies more than four times as far out as 95 in 100 of them
-        is drawn at the edge.
+        Points; what lies more than three times as far out as 95 in 100 of them
+        is to be drawn at the edge.
     always : ndarray, shape (m,)
         What must lie inside.
 
@@ -128,18 +140,11 @@ def robust_limits(values: FloatArray, always: FloatArray) -> tuple[float, float]
     must = always[np.isfinite(always)]
     if good.size:
         low, middle, high = np.percentile(good, [2.5, 50.0, 97.5])
-        inside = (good >= middle - 4.0 * (middle - low)) & (good <= middle + 4.0 * (high - middle))
+        inside = (good >= middle - 3.0 * (middle - low)) & (good <= middle + 3.0 * (high - middle))
         must = np.concatenate([must, good[inside], [low, high]])
     if not must.size:
         return 0.0, 1.0
     return _padded(float(must.min()), float(must.max()))
-
-
-def _ends(values: FloatArray) -> tuple[float, float]:
-    low, high = _padded(float(values.min()), float(values.max()))
-    if 0.0 <= values.min() < 0.4 * values.max():
-        low = 0.0
-    return low, high
 
 
 def _padded(low: float, high: float) -> tuple[float, float]:

@@ -106,7 +106,7 @@ class _Subject:
         own = spans.at(chosen)
         ends = np.concatenate([own.value, own.lower, own.upper])
         drawn = points.value[points.kind != len(_KINDS) - 1]
-        scale = scale_of(self.column, [np.array(robust_limits(drawn, ends))], detail=self.scale)
+        scale = scale_of(self.column, [np.array(robust_limits(drawn, ends))], detail=self.scale, zero=False)
         relative = _relative(spans)
         away = 100.0 * (points.value / spans.value[points.coupon] - 1.0)
         away[points.kind == 2] = np.nan
@@ -117,7 +117,7 @@ class _Subject:
         key = self._key(points, own, bool((beyond & (points.kind < 3)).any()))
         sheet = Sheet(self._title(), self.context, self._facts(points, chosen), key, self._notes())
         panels = [Panel(scale.label), Panel(percent.label, 1.25)]
-        for page in row_pages(sheet, self.rows, chosen, panels, [Strip("remarks", words)]):
+        for page in row_pages(sheet, self.rows, chosen, panels, [Strip("× set aside, remarks", words)]):
             _fill(page, 0, scale, points, points.value, spans)
             _fill(page, 1, percent, points, away, relative)
             yield page.figure
@@ -149,8 +149,8 @@ class _Subject:
         set_aside = frame_of(self.frames, "set_aside")
         homeless = int((aligned(self.rows.ids, texts(set_aside, "coupon_id")) < 0).sum())
         if homeless:
-            plural = "s" if homeless > 1 else ""
-            notes.append(f"{homeless} row{plural} set aside belong to no coupon of this batch.")
+            rows = "row set aside belongs" if homeless == 1 else "rows set aside belong"
+            notes.append(f"{homeless} {rows} to no coupon of this batch.")
         return notes
 
 
@@ -172,9 +172,9 @@ def _fill(
         inside = mine & ~_outside(values, scale)
         mark.put(axes, x[inside], rows[inside] + _UP, raster=raster)
         if kind < 3:
-            for end, edge in ((0, scale.low), (1, scale.high)):
+            for end in (0, 1):
                 out = mine & ((x < scale.low) if end == 0 else (x > scale.high))
-                _BEYOND[end].put(axes, np.full(out.sum(), edge), rows[out] + _UP)
+                _BEYOND[end].put(axes, np.full(int(out.sum()), scale.inside(end)), rows[out] + _UP)
     shown = spans.at(page.places).times(scale.factor)
     lines = np.arange(len(page.places), dtype=np.float64) + _DOWN
     draw_spans(axes, shown, lines, raster=raster)
@@ -222,8 +222,8 @@ def _remarks(frames: Frames, rows: Rows, missing: list[str]) -> list[str]:
     words = []
     for i, gap in enumerate(missing):
         counts = rules.get(i, Counter())
-        several = len(counts) > 1
-        told = ", ".join(f"{rule} {n}" if several else rule for rule, n in counts.items())
-        aside = f"× {counts.total()} set aside: {told}" if counts else ""
+        numbered = len(counts) > 1 and counts.total() > len(counts)
+        told = ", ".join(f"{rule} {n}" if numbered else rule for rule, n in counts.items())
+        aside = f"× {counts.total()} {told}" if counts else ""
         words.append("; ".join(filter(None, [gap, aside])))
     return words

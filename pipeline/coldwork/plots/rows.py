@@ -14,7 +14,7 @@ from matplotlib.transforms import ScaledTranslation
 from numpy.typing import NDArray
 
 from coldwork.plots.columns import Frames, frame_of, runs, texts
-from coldwork.plots.names import told_apart, width, wrapped
+from coldwork.plots.names import label_lines, told_apart, width
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
 from coldwork.plots.style import FAINT, GREY, INK, Sizes
 
@@ -184,7 +184,6 @@ def _page(
 def _crowd(sheet: Sheet, places: NDArray[np.intp], panels: Sequence[Panel]) -> Page:
     figure, axes = _panels(sheet, len(places), panels, 0.7, 0.1, high=8.0)
     axes[0].set_ylabel("Place of the coupon in the batch's table")
-    axes[0].tick_params(axis="y", left=True, labelleft=True)
     axes[0].yaxis.set_major_locator(MaxNLocator(12, integer=True))
     last = len(places) - 1
     axes[0].yaxis.set_major_formatter(
@@ -204,7 +203,7 @@ def _panels(
     gap = 0.3
     room = WIDTH - 2.0 * EDGE - left - right - gap * (len(panels) - 1) - 0.05
     unit = room / sum(panel.share for panel in panels)
-    labels = [wrapped(panel.label, Sizes.axis, unit * panel.share + 0.1) for panel in panels]
+    labels = [label_lines(panel.label, Sizes.axis, unit * panel.share + 0.1) for panel in panels]
     below = 0.32 + 0.15 * max(map(len, labels))
     each = next(h for most, h in _HEIGHTS if n <= most) if high is None else 0.0
     high = each * n if high is None else high
@@ -213,11 +212,10 @@ def _panels(
     at = EDGE + left
     for panel, lines in zip(panels, labels, strict=True):
         axes.append(add_panel(figure, at, base + below, unit * panel.share, high))
-        axes[-1].grid(visible=False, axis="y")
         axes[-1].set_xlabel("\n".join(lines))
         axes[-1].set_ylim(n - 0.5, -0.5)
         axes[-1].tick_params(axis="x", top=n > _TALL, labeltop=n > _TALL)
-        axes[-1].tick_params(axis="y", left=False, labelleft=False)
+        axes[-1].set_yticks([])
         at += unit * panel.share + gap
     return figure, axes
 

@@ -71,7 +71,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
         figures = []
         for page in row_pages(sheet, rows, np.arange(len(rows.ids)), [Panel(scale.label)], strip):
             scale.on(page.panels[0])
-            data.fill(page, high)
+            data.fill(page, scale)
             figures.append(page.figure)
         return figures
 
@@ -111,8 +111,8 @@ class _Data:
         words = []
         for n, s, left in zip(self.count, self.s, self.left, strict=True):
             count = "none" if np.isnan(n) or n == 0 else f"{n:.0f}"
-            told = " left the pool" if left else ""
-            words.append(f"{count}{told}" if n > 1 and np.isfinite(s) else f"{count}, no scatter")
+            told = ", left the pool" if left else ""
+            words.append(f"{count}{told}" if np.isfinite(s) or n != 1 else f"{count}, no scatter")
         return words
 
     def key(self, high: float) -> list[tuple[Artist, str]]:
@@ -131,18 +131,18 @@ class _Data:
             found.append((line.sample(_LIMIT[1], _LIMIT[0]), "limit for staying in the pool"))
         return found
 
-    def fill(self, page: Page, high: float) -> None:
+    def fill(self, page: Page, scale: Scale) -> None:
         """Draw the coupons of a page."""
         axes, places = page.panels[0], page.places
         _draw_steps(axes, self.pooled[places], *_POOLED)
         _draw_steps(axes, self.limit[places], *_LIMIT)
         s, left = self.s[places], self.left[places]
         lines = np.arange(len(places), dtype=np.float64)
-        inside = np.isfinite(s) & (s <= high)
+        inside = np.isfinite(s) & (s <= scale.high)
         for mark, mine in ((_IN_POOL, inside & ~left), (_LEFT, inside & left)):
             mark.put(axes, s[mine], lines[mine], raster=page.raster)
-        beyond = s > high
-        _BEYOND.put(axes, np.full(int(beyond.sum()), high), lines[beyond], raster=page.raster)
+        beyond = s > scale.high
+        _BEYOND.put(axes, np.full(int(beyond.sum()), scale.inside(1)), lines[beyond], raster=page.raster)
 
 
 def _draw_steps(axes: Axes, values: FloatArray, dashes: Dashes, width: float) -> None:
@@ -151,4 +151,4 @@ def _draw_steps(axes: Axes, values: FloatArray, dashes: Dashes, width: float) ->
         if np.isfinite(values[start]):
             ends = [start - 0.5, stop - 0.5]
             at = [float(values[start])] * 2
-            axes.plot(at, ends, color=INK, linewidth=width, linestyle=dashes, zorder=1.5)
+            axes.plot(at, ends, color=INK, linewidth=width, linestyle=dashes, zorder=1.5, solid_capstyle="butt")

@@ -71,7 +71,7 @@ def open_sheet(sheet: Sheet, inner: float) -> tuple[Figure, float]:
     notes = [line for note in sheet.notes for line in wrapped(note, Sizes.small, room)]
     columns, key_lines = _key_shape([label for _, label in sheet.key], room)
     above_key = _TITLE_HIGH + _FACT_HIGH * len(facts)
-    top = above_key + (_KEY_HIGH * key_lines + 0.12 if key_lines else 0.0)
+    top = above_key + (_KEY_HIGH * key_lines + 0.05 if key_lines else 0.0)
     bottom = 0.12 + _NOTE_HIGH * len(notes)
     height = top + inner + bottom
     figure = Figure(figsize=(WIDTH, height))

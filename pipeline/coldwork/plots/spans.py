@@ -16,9 +16,9 @@ from coldwork.plots.style import GREY, INK, PAPER, Dashes, Mark
 __all__ = ["MEAN", "Spans", "draw_spans", "span_key", "spans_of", "why_missing"]
 
 MEAN = Mark("o", 4.2, INK, PAPER, 0.5)
-_OWN_WIDTH, _TOTAL_WIDTH = 3.4, 0.9
+_OWN_WIDTH, _TOTAL_WIDTH = 4.6, 0.9
 _DASHES: Dashes = (0, (2.0, 1.6))  # of an interval without a value
-_OWN = "#8c8c8c"
+_OWN = "#9a9a9a"
 _REASONS = (  # rule that empties a quantity, and the words for it, the gravest first
     ("no-readings", "no readings"),
     ("mixed-forces", "no value: mixed forces"),

@@ -25,7 +25,7 @@ _DECISIONS = {  # the gravest first: mark, sign beside the word
     "undecided": (Mark("D", 5.0, PAPER, INK, 0.9), "◇"),
     "conforming": (Mark("o", 5.2, BLUE, INK, 0.8), "●"),
 }
-_BOUND = Mark("|", 9.0, INK, INK, 1.8)
+_BOUND = Mark("|", 10.5, INK, INK, 1.4)
 _DASHES: tuple[Dashes, ...] = ("-", (0, (6, 2)), (0, (6, 2, 1.5, 2)), (0, (1.5, 1.5)))
 
 

@@ -70,6 +70,7 @@ _SETTINGS: Final[dict[RcKeyType, Any]] = {
     "legend.fontsize": Sizes.words,
     "legend.frameon": False,
     "savefig.dpi": DOTS_PER_INCH,
+    "text.hinting": "none",
     "svg.fonttype": "path",  # text as outlines: the same on a machine without the font
     "svg.hashsalt": "coldwork",
     "xtick.color": GREY,

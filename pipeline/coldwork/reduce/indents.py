@@ -89,7 +89,7 @@ def reduce_indents(
     _refuse_mixtures(reduced, marks, rows, starts, count, scale, nominal, ball)
     return ReadingResults(
         scale=scale,
-        force=nominal,
+        force=force,
         mean_diagonal=diagonal,
         strength=value,
         plastic_strain=np.full(len(readings), np.nan),

@@ -78,7 +78,7 @@ class ReadingResults:
     scale : ndarray of int8
         Hardness scale, -1 by the flow route.
     force, mean_diagonal : ndarray
-        Nominal test force, mean diagonal. [N], [m]
+        Test force as applied, mean diagonal. [N], [m]
     strength : ndarray
         Hardness or flow stress, corrected for the tester's bias. [Pa]
     plastic_strain : ndarray

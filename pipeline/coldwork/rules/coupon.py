@@ -6,13 +6,21 @@ points of a flow curve fire where readings are reduced.
 
 from typing import Final
 
-from coldwork.rules.columns import (
-    BASELINE_ON,
-    DENSITY_ON,
-    ENERGY_ON,
-    EVERYTHING,
-    FRACTION_ON,
-    STRENGTH_ON,
+from coldwork.rules.coupon_errors import (
+    BAD_COUPON_CELL_NEEDED,
+    BAD_COUPON_CELL_NEEDED_RADIUS,
+    COUPON_ERRORS,
+    DENSITY_IMPOSSIBLE,
+    DENSITY_TOO_LOW,
+    GRAIN_SIZE_MISSING,
+    GRAIN_SIZE_MISSING_RADIUS,
+    MIXED_FORCES,
+    MIXED_SCALES,
+    NO_FLOW_STRESS_AT_STRAIN,
+    NO_LINE_ENERGY,
+    NO_READINGS,
+    SCALE_WITHOUT_CONSTANTS,
+    STORED_FRACTION_IMPOSSIBLE,
 )
 from coldwork.rules.rule import Level, Rule
 
@@ -46,143 +54,6 @@ __all__ = [
     "UNDER_FIVE_READINGS",
     "WEAK_SIGNAL",
 ]
-
-_MEANING: Final = "definition of the quantity"
-
-NO_READINGS: Final = Rule(
-    "no-readings",
-    Level.ERROR,
-    "the coupon has no reading that could be used",
-    1.0,
-    "1",
-    _MEANING,
-    "Nothing was measured, so nothing is reported.",
-    EVERYTHING,
-)
-MIXED_SCALES: Final = Rule(
-    "mixed-scales",
-    Level.ERROR,
-    "the coupon was read on more than one hardness scale",
-    1.0,
-    "1",
-    "ISO 18265:2013, introduction: no conversion between scales holds in general (from memory)",
-    "Numbers of different scales have no common mean and no common constraint factor.",
-    ("hardness", "hardness_scale", *STRENGTH_ON),
-)
-MIXED_FORCES: Final = Rule(
-    "mixed-forces",
-    Level.ERROR,
-    "the coupon was read with more than one nominal force, and no size effect is modelled",
-    1.0,
-    "1",
-    "W. D. Nix, H. Gao, J. Mech. Phys. Solids 46 (1998) 411",
-    "Small indents read harder, so the mean over several forces belongs to none of them.",
-    ("hardness", "hardness_scale", *STRENGTH_ON),
-)
-SCALE_WITHOUT_CONSTANTS: Final = Rule(
-    "scale-without-constants",
-    Level.ERROR,
-    "the batch sheet gives no constants that turn this hardness scale into a flow stress",
-    None,
-    None,
-    "D. Tabor, The Hardness of Metals (1951)",
-    "A constraint factor and a representative strain hold for one scale, not for another.",
-    STRENGTH_ON,
-)
-NO_FLOW_STRESS_AT_STRAIN: Final = Rule(
-    "no-flow-stress-at-strain",
-    Level.ERROR,
-    "no points of the flow curve lie at the stated plastic strain or on both sides of it",
-    None,
-    "1",
-    "common practice",
-    "A flow curve is interpolated and never extrapolated.",
-    STRENGTH_ON,
-)
-BAD_COUPON_CELL_NEEDED: Final = Rule(
-    "bad-coupon-cell-needed",
-    Level.ERROR,
-    "a cell of coupons.csv that the baseline needs cannot be read",
-    None,
-    None,
-    "contract of the table",
-    "The baseline holds a term in this coupon's grain size, so there is no baseline.",
-    BASELINE_ON,
-)
-BAD_COUPON_CELL_NEEDED_RADIUS: Final = Rule(
-    "bad-coupon-cell-needed-radius",
-    Level.ERROR,
-    "a cell of coupons.csv that the outer radius needs cannot be read",
-    None,
-    None,
-    "contract of the table",
-    "The outer radius is this coupon's grain size, so there is no line energy.",
-    ENERGY_ON,
-)
-GRAIN_SIZE_MISSING: Final = Rule(
-    "grain-size-missing",
-    Level.ERROR,
-    "the coupon has no grain size, which the baseline needs",
-    None,
-    None,
-    "E. O. Hall, Proc. Phys. Soc. B 64 (1951) 747; N. J. Petch, J. Iron Steel Inst. 174 (1953) 25",
-    "The baseline holds a term in one over the root of this coupon's grain size.",
-    BASELINE_ON,
-)
-GRAIN_SIZE_MISSING_RADIUS: Final = Rule(
-    "grain-size-missing-radius",
-    Level.ERROR,
-    "the coupon has no grain size, which the outer radius needs",
-    None,
-    None,
-    _MEANING,
-    "The batch sheet takes the grain size as the outer radius of a dislocation's field.",
-    ENERGY_ON,
-)
-DENSITY_IMPOSSIBLE: Final = Rule(
-    "density-impossible",
-    Level.ERROR,
-    "the dislocation density is above what a crystal can hold",
-    1e17,
-    "m-2",
-    "common practice: a mean spacing near ten Burgers vectors is no crystal any more",
-    "Force, unit, baseline or Taylor coefficient must be wrong, so neither the density nor what"
-    " follows from it is reported; the stresses stay, since they show where to look.",
-    DENSITY_ON,
-)
-DENSITY_TOO_LOW: Final = Rule(
-    "density-too-low",
-    Level.ERROR,
-    "the dislocation density is below what a metal holds even when fully annealed",
-    1e10,
-    "m-2",
-    "annealed metals hold 1e10 to 1e12 per m2: D. Hull, D. J. Bacon, Introduction to"
-    " Dislocations (2001)",
-    "The strength cannot be told from the baseline, so no value is reported; the ends stay, as"
-    " for a coupon below its baseline.",
-    DENSITY_ON,
-    ends_stay=True,
-)
-NO_LINE_ENERGY: Final = Rule(
-    "no-line-energy",
-    Level.ERROR,
-    "the outer radius is not larger than the core radius, so there is no line energy",
-    1.0,
-    "1",
-    "J. P. Hirth, J. Lothe, Theory of Dislocations (1982): E goes with ln(R / r0)",
-    "Outside the core there is no elastic field left to hold energy.",
-    ENERGY_ON,
-)
-STORED_FRACTION_IMPOSSIBLE: Final = Rule(
-    "stored-fraction-impossible",
-    Level.ERROR,
-    "more energy is stored than plastic work was done",
-    1.0,
-    "1",
-    "first law of thermodynamics",
-    "Either the work in coupons.csv or the stored energy is wrong, so no energy is reported.",
-    FRACTION_ON,
-)
 
 FEW_READINGS: Final = Rule(
     "few-readings",
@@ -320,19 +191,7 @@ STORED_FRACTION_UNUSUAL: Final = Rule(
 )
 
 COUPON_RULES: Final = (
-    NO_READINGS,
-    MIXED_SCALES,
-    MIXED_FORCES,
-    SCALE_WITHOUT_CONSTANTS,
-    NO_FLOW_STRESS_AT_STRAIN,
-    BAD_COUPON_CELL_NEEDED,
-    BAD_COUPON_CELL_NEEDED_RADIUS,
-    GRAIN_SIZE_MISSING,
-    GRAIN_SIZE_MISSING_RADIUS,
-    DENSITY_IMPOSSIBLE,
-    DENSITY_TOO_LOW,
-    NO_LINE_ENERGY,
-    STORED_FRACTION_IMPOSSIBLE,
+    *COUPON_ERRORS,
     FEW_READINGS,
     THIN_COUPON,
     SCATTER,

@@ -99,7 +99,8 @@ class Findings:
             Number of the reading, where the rule looks at readings.
         value, limit : float or ndarray of float64, shape (n,), optional
             What was found, and the limit if it is not the rule's own. Of a range
-            the end that the value passed is reported. NaN is an empty cell. [rule's unit]
+            the end that the value passed is reported. NaN and infinity are empty
+            cells. [rule's unit]
         file : str or pyarrow.StringArray of length n, optional
             Source file, relative to the batch.
         line : int or ndarray of int, shape (n,), optional
@@ -200,9 +201,7 @@ class Findings:
         parts = list(self.slices(coupon_ids, lot_ids))
         return pa.concat_tables(parts)
 
-    def of(
-        self, rows: slice, coupon_ids: pa.StringArray, lot_ids: pa.StringArray
-    ) -> pa.Table:
+    def of(self, rows: slice, coupon_ids: pa.StringArray, lot_ids: pa.StringArray) -> pa.Table:
         """Give the findings on a slice of coupons and their readings, as `table` does.
 
         Parameters
@@ -312,7 +311,7 @@ def _published(
         return pa.array(x[rows], pa.int64(), mask=x[rows] == _NONE)
 
     def number(x: FloatArray) -> pa.DoubleArray:
-        return pa.array(x[rows], pa.float64(), mask=np.isnan(x[rows]))
+        return pa.array(x[rows], pa.float64(), mask=~np.isfinite(x[rows]))
 
     return pa.table(
         {

@@ -198,8 +198,8 @@ def leave_noisy_out(relative_variances: ArrayLike, degrees_of_freedom: ArrayLike
     Notes
     -----
     Among coupons of equal degrees of freedom the one with the largest variance exceeds
-    the most, so a round looks at one coupon per number of readings. Sums are those of
-    the remaining values from the smallest up, never a difference.
+    the most, so a round looks at one coupon per number of readings. The others' sum is
+    added up from the smallest; a difference is taken only where it loses no digits.
 
     References
     ----------

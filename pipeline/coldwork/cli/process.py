@@ -1,0 +1,141 @@
+"""`coldwork process`."""
+
+import sys
+from enum import StrEnum
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from coldwork.cli.reporting import note, reporting, show, show_json
+from coldwork.errors import ColdworkError, Exit
+
+if TYPE_CHECKING:
+    from coldwork.jobs.run import Outcome
+
+__all__ = ["process"]
+
+
+class Accepted(StrEnum):
+    """What `--accept` can call fine."""
+
+    SET_ASIDE = "set-aside"
+    UNDECIDED = "undecided"
+    NON_CONFORMING = "non-conforming"
+    ERRORS = "errors"
+
+
+def process(
+    batches: Annotated[list[Path], typer.Argument(metavar="BATCH...", help="Batch folders.")],
+    *,
+    into: Annotated[Path, typer.Option("--into", metavar="DIR", help="Folder of all results.")],
+    replace: Annotated[
+        bool, typer.Option("--replace", help="Move an existing result to DIR/replaced/.")
+    ] = False,
+    reason: Annotated[
+        str | None, typer.Option(metavar="TEXT", help="Why it is replaced; goes into the manifest.")
+    ] = None,
+    accept: Annotated[
+        list[Accepted] | None,
+        typer.Option(help="What is fine and need not end with 3; may be repeated."),
+    ] = None,
+    plots: Annotated[bool, typer.Option("--plots/--no-plots", help="Draw the QC plots.")] = True,
+    json: Annotated[bool, typer.Option("--json", help="Outcome for a program to read.")] = False,
+) -> None:
+    """Process batches: every coupon to density, stored energy, uncertainty and decision."""
+    with reporting():
+        if replace != bool(reason and reason.strip()):
+            note("--replace and --reason TEXT go together: say why a result is replaced")
+            raise typer.Exit(Exit.USAGE)
+        from coldwork.jobs.run import run
+
+        fine = {word.value for word in accept or ()}
+        worst, outcomes = Exit.DONE, []
+        for batch in batches:
+            try:
+                outcome = run(
+                    batch, into, replace=replace, reason=reason, plots=plots, progress=_telling(batch)
+                )
+            except ColdworkError as error:
+                if len(batches) == 1:
+                    raise
+                note(str(error))
+                worst = _graver(worst, error.exit)
+                continue
+            outcomes.append(outcome)
+            asks = set(outcome.attention) - fine
+            worst = _graver(worst, Exit.ATTENTION if asks else Exit.DONE)
+            if not json:
+                show(str(outcome.path))
+            note(_words(outcome, asks))
+        if json:
+            show_json([_document(outcome) for outcome in outcomes])
+        if worst is not Exit.DONE:
+            raise typer.Exit(worst)
+
+
+def _graver(a: Exit, b: Exit) -> Exit:
+    """The graver of two exit codes: an internal error, then not written, refused, attention."""
+    order = (Exit.DONE, Exit.ATTENTION, Exit.USAGE, Exit.REFUSED, Exit.NOT_WRITTEN, Exit.INTERNAL)
+    return max(a, b, key=order.index)
+
+
+def _words(outcome: "Outcome", asks: set[str]) -> str:
+    counts = [
+        f"{outcome.coupons} coupons",
+        f"{outcome.readings_read} readings read, {outcome.readings_used} used, "
+        f"{outcome.readings_set_aside} set aside",
+    ]
+    if any(outcome.decisions.values()):
+        counts.append(", ".join(f"{n} {word}" for word, n in outcome.decisions.items()))
+    lines = [f"{outcome.batch_id}: " + "; ".join(counts) + f"; plots: {outcome.plots}"]
+    if asks:
+        told = ", ".join(f"{outcome.attention[word]} {word}" for word in sorted(asks))
+        lines.append(f"{outcome.batch_id}: asks for a person: {told}")
+    return "\n".join(lines)
+
+
+def _document(outcome: "Outcome") -> dict[str, object]:
+    return {
+        "path": str(outcome.path),
+        "batch_id": outcome.batch_id,
+        "coupons": outcome.coupons,
+        "readings": {
+            "read": outcome.readings_read,
+            "used": outcome.readings_used,
+            "set_aside": outcome.readings_set_aside,
+        },
+        "decisions": dict(outcome.decisions),
+        "attention": outcome.attention,
+        "plots": outcome.plots,
+    }
+
+
+def _telling(batch: Path) -> "Teller":
+    return Teller(batch.name)
+
+
+class Teller:
+    """Progress: one line that is written over on a terminal, a plain line now and then elsewhere.
+
+    Parameters
+    ----------
+    name : str
+        What is being worked.
+    """
+
+    def __init__(self, name: str) -> None:
+        from time import monotonic
+
+        self._name = name
+        self._clock = monotonic
+        self._next = monotonic() + 5.0
+        self._terminal = sys.stderr.isatty()
+
+    def __call__(self, words: str) -> None:
+        """Tell what is being done."""
+        if self._terminal:
+            typer.echo(f"\r\x1b[K{self._name}: {words}\r", err=True, nl=False)
+        elif self._clock() >= self._next:
+            self._next = self._clock() + 5.0
+            note(f"{self._name}: {words}")

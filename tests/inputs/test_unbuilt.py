@@ -1,0 +1,109 @@
+"""Choices that do not work yet: each is refused by its own name, never as a misspelling."""
+
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+
+from coldwork.inputs.sheet import read_method
+
+Write = Callable[..., Path]
+Refusals = Callable[..., list[str]]
+
+NOT_YET = "not built yet"
+
+
+@pytest.mark.parametrize(
+    ("section", "line", "words"),
+    [
+        ("hardening", 'law = "logarithmic"', "The logarithmic law"),
+        ("hardening", "reference_density_per_m2 = 1e14", "A reference density"),
+        ("line_energy", 'elasticity = "anisotropic"', "anisotropic elasticity"),
+        ("line_energy", 'slip_system = "{111}<110>"', "A slip system"),
+        ("indentation", 'size_effect = "fitted"', "Fitting the indentation size effect"),
+        ("indentation", 'size_effect = "length"', "from a characteristic depth"),
+        ("indentation", 'size_effect = "strength"', "from a size strength"),
+        ("indentation", "characteristic_depth_um = 1", "from a characteristic depth"),
+        ("indentation", "size_strength_gpa2_um = 1", "from a size strength"),
+        ("indentation.HBW", 'size_effect = "fitted"', "Fitting the indentation size effect"),
+        ("temperature", "test_c = 20.0", "Correcting the modulus for temperature"),
+        ("temperature", "reference_c = 20.0", "Correcting the modulus for temperature"),
+        ("temperature", "test_c = 100\nreference_c = 23", "Correcting the modulus"),
+        ("uncertainty", 'method = "monte-carlo"', "Monte Carlo"),
+        ("uncertainty", "draws = 100000", "Draws belong to Monte Carlo"),
+        ("uncertainty", 'draws = "adaptive"', "Draws belong to Monte Carlo"),
+        ("uncertainty", "seed = 1", "A seed belongs to Monte Carlo"),
+        ("tensile", "gauge_mm = 50", "Reducing tensile records"),
+        ("curves", "smooth = true", "Whole flow curves"),
+        ("layouts", "a = 1", "Instrument layouts"),
+        ("calibration", "a = 1", "Constants from a calibration"),
+    ],
+)
+def test_a_section_asks_for_what_is_not_there_yet(
+    refusals: Refusals, sheet: str, section: str, line: str, words: str
+) -> None:
+    (cause,) = refusals(f"{sheet}\n[{section}]\n{line}\n")
+    assert words in cause
+    assert NOT_YET in cause
+    assert "nearest" not in cause
+    assert "batch.toml, line 2" in cause
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "words"),
+    [
+        ('route = "indent"', 'route = "both"', "Comparing the indent and the flow route"),
+        ("baseline_mpa", "obstacle_mpa = 40.0\nbaseline_mpa", "Joining an obstacle stress"),
+        ("baseline_mpa", "superposition_exponent = 1.5\nbaseline_mpa", "Superposition by"),
+        ("{ value = 50.0, u = 15.0 }", '{ from_coupon = "A0" }', "taken from a coupon"),
+        ("{ value = 50.0, u = 15.0 }", '{ calibration = "C1" }', "taken from a calibration"),
+        ('coupons = "coupons.csv"', 'coupons = "coupons.csv"\nlayout = "x"', "Instrument layouts"),
+        ('"indents.csv"', '{ path = "indents.csv", layout = "x" }', "Instrument layouts"),
+        ('"indents.csv"', '[{ path = "indents.csv", layout = "x" }]', "Instrument layouts"),
+        (
+            'coupons = "coupons.csv"',
+            'coupons = "coupons.csv"\ntensile = "t.csv"',
+            "Tensile records",
+        ),
+        ('coupons = "coupons.csv"', 'coupons = "coupons.csv"\ncurves = "t.csv"', "flow curves"),
+        ("shear_modulus_gpa", "c11_gpa = 168.4\nshear_modulus_gpa", "anisotropic elasticity"),
+        ("shear_modulus_gpa", "melting_point_k = 1358\nshear_modulus_gpa", "for temperature"),
+        ("shear_modulus_gpa", "shear_modulus_slope = -0.5\nshear_modulus_gpa", "for temperature"),
+        (
+            "shear_modulus_gpa",
+            "boundary_energy_j_per_m2 = 0.6\nshear_modulus_gpa",
+            "recrystallisation",
+        ),
+        (
+            "shear_modulus_gpa",
+            "stacking_fault_energy_j_per_m2 = 0.06\nshear_modulus_gpa",
+            "recovery",
+        ),
+    ],
+)
+def test_a_key_asks_for_what_is_not_there_yet(
+    refusals: Refusals, sheet: str, old: str, new: str, words: str
+) -> None:
+    causes = refusals(sheet.replace(old, new, 1))
+    assert any(words in cause and NOT_YET in cause for cause in causes), causes
+
+
+@pytest.mark.parametrize(
+    "more",
+    [
+        "[temperature]\ntest_c = 20\nreference_c = 20.0",
+        "[temperature]\ntest_c = 23.0",
+        "[indentation]\nsize_effect = 'none'",
+        "[indentation.HBW]\nsize_effect = 'none'",
+        "[hardening]\nlaw = 'constant'",
+        "[line_energy]\nelasticity = 'isotropic'",
+        "[uncertainty]\nmethod = 'first-order'",
+    ],
+)
+def test_saying_what_holds_anyway_is_fine(write: Write, sheet: str, more: str) -> None:
+    assert read_method(write(f"{sheet}\n{more}\n")).batch_id == "CS-2026-31"
+
+
+def test_an_exponent_of_one_is_fine(write: Write, sheet: str) -> None:
+    text = sheet.replace("baseline_mpa", "superposition_exponent = 1.0\nbaseline_mpa")
+    assert read_method(write(text)).batch_id == "CS-2026-31"
