@@ -45,7 +45,7 @@ from coldwork.measured import Value, apply, select, value_of
 from coldwork.rules.forces import SCALES
 from coldwork.units import to_si
 
-__all__ = ["Start", "Strength", "energy", "line", "strength"]
+__all__ = ["Start", "Strength", "energy", "energy_per_volume", "line", "strength"]
 
 _MISSING: Final = np.float64(np.nan)
 
@@ -216,6 +216,54 @@ def line(
     dict of str to Value
         As `energy` gives. [SI]
     """
+    found = _per_volume(laws, inputs, density, start)
+    stored = found["stored_energy_j_per_m3"]
+    mass = inputs["material.mass_density_kg_per_m3"]
+    return found | {
+        "stored_energy_j_per_mol": apply(
+            STORED_ENERGY_MOLAR,
+            stored_energy=stored,
+            molar_mass=inputs.get("material.molar_mass_g_per_mol", _MISSING),
+            mass_density=mass,
+        ),
+        "stored_energy_j_per_g": apply(
+            STORED_ENERGY_SPECIFIC, stored_energy=stored, mass_density=mass
+        ),
+        "temperature_rise_k": apply(
+            TEMPERATURE_RISE,
+            stored_energy=stored,
+            mass_density=mass,
+            heat_capacity=inputs.get("material.heat_capacity_j_per_kg_k", _MISSING),
+        ),
+        "stored_fraction_of_work": apply(
+            STORED_FRACTION, stored_energy=stored, plastic_work=start.plastic_work
+        ),
+    }
+
+
+def energy_per_volume(
+    laws: Laws, inputs: Mapping[str, Value], stress: Value, start: Start
+) -> dict[str, Value]:
+    """Do what `energy` does, up to the stored energy per volume.
+
+    All that `energy` gives beyond it goes with it in proportion.
+
+    Parameters
+    ----------
+    laws, inputs, stress, start
+        As for `energy`.
+
+    Returns
+    -------
+    dict of str to Value
+        Density, spacing, line energy, stored energy per volume, `radius_ratio`. [SI]
+    """
+    return _per_volume(laws, inputs, _density(laws, inputs, stress), start)
+
+
+def _per_volume(
+    laws: Laws, inputs: Mapping[str, Value], density: Value, start: Start
+) -> dict[str, Value]:
     spacing = apply(MEAN_SPACING, density=density)
     burgers = inputs["material.burgers_vector_nm"]
     shear = inputs["material.shear_modulus_gpa"]
@@ -241,31 +289,11 @@ def line(
         shear_modulus=shear,
         core_energy=inputs["line_energy.core_energy"],
     )
-    stored = apply(STORED_ENERGY, density=density, line_energy=per_line)
-    mass = inputs["material.mass_density_kg_per_m3"]
     return {
         "dislocation_density_per_m2": density,
         "mean_spacing_nm": spacing,
         "line_energy_j_per_m": per_line,
-        "stored_energy_j_per_m3": stored,
-        "stored_energy_j_per_mol": apply(
-            STORED_ENERGY_MOLAR,
-            stored_energy=stored,
-            molar_mass=inputs.get("material.molar_mass_g_per_mol", _MISSING),
-            mass_density=mass,
-        ),
-        "stored_energy_j_per_g": apply(
-            STORED_ENERGY_SPECIFIC, stored_energy=stored, mass_density=mass
-        ),
-        "temperature_rise_k": apply(
-            TEMPERATURE_RISE,
-            stored_energy=stored,
-            mass_density=mass,
-            heat_capacity=inputs.get("material.heat_capacity_j_per_kg_k", _MISSING),
-        ),
-        "stored_fraction_of_work": apply(
-            STORED_FRACTION, stored_energy=stored, plastic_work=start.plastic_work
-        ),
+        "stored_energy_j_per_m3": apply(STORED_ENERGY, density=density, line_energy=per_line),
         "radius_ratio": value_of(outer) / value_of(core),
     }
 

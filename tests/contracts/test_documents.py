@@ -221,6 +221,7 @@ GOOD: list[dict[str, Any]] = [
     },
     {"batch": {"id": "a"}},
     {"batch": {"id": "Charge 7 (ä)"}},
+    {"batch": {"id": "replaced-2"}},
 ]
 
 
@@ -235,7 +236,11 @@ BAD: list[tuple[dict[str, Any], str]] = [
     ({"batch": {"id": ".."}}, "batch.id"),
     ({"batch": {"id": ""}}, "batch.id"),
     ({"batch": {"id": "a "}}, "batch.id"),
+    ({"batch": {"id": "a\n"}}, "batch.id"),
+    ({"batch": {"id": "a\tb"}}, "batch.id"),
+    ({"batch": {"id": "x" * 121}}, "batch.id"),
     ({"batch": {"id": "replaced"}}, "batch.id"),
+    ({"material": {"name": "copper\n"}}, "material.name"),
     ({"batch": {"id": 31}}, "batch.id"),
     ({"batch": {"id": "a", "colour": "red"}}, "batch"),
     ({"material": {"name": "copper", "shear_modulus_gpa": -44.0}}, "material.shear_modulus_gpa"),

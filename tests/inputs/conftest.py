@@ -2,7 +2,6 @@
 
 from collections.abc import Callable
 from pathlib import Path
-from typing import Any
 
 import pytest
 
@@ -64,7 +63,7 @@ def write(tmp_path: Path) -> Write:
 def refusals(write: Write) -> Refusals:
     """Write a sheet that does not fit and give its causes as text."""
 
-    def causes(text: str | bytes, **more: Any) -> list[str]:
+    def causes(text: str | bytes, **more: str) -> list[str]:
         folder = write(text, **more)
         with pytest.raises(BatchRefused) as refusal:
             read_method(folder)

@@ -10,6 +10,7 @@ from datetime import date, datetime, time
 from pathlib import Path
 from typing import Any
 
+import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
@@ -52,7 +53,7 @@ texts = st.text(
 leaves = st.one_of(
     st.booleans(),
     st.integers(),
-    st.sampled_from([10**400, -(16**4000), 0, 1]),
+    st.sampled_from([10**400, -(10**400), 0, 1]),
     st.floats(),
     st.floats(0, 1),
     texts,
@@ -67,14 +68,12 @@ values = st.recursive(
 )
 
 
-def written(value: Any) -> str:
+def written(value: object) -> str:
     """Write a value as TOML."""
     if isinstance(value, bool):
         return str(value).lower()
     if isinstance(value, str):
         return json.dumps(value, ensure_ascii=False).replace("\x7f", "\\u007f")
-    if isinstance(value, int) and abs(value) > 10**4000:
-        return f"{'-' * (value < 0)}{abs(value):#x}".removeprefix("-")  # TOML has no -0x
     if isinstance(value, float) and not math.isfinite(value):
         return str(value)
     if isinstance(value, list):
@@ -89,25 +88,31 @@ def as_toml(tables: Mapping[str, Any]) -> str:
     return "".join(f"{written(key)} = {written(value)}\n" for key, value in tables.items())
 
 
+def method_or_refusal(folder: Path) -> Method | BatchRefused:
+    try:
+        return read_method(folder)
+    except BatchRefused as refusal:
+        return refusal
+
+
 def read(text: str) -> Method | BatchRefused:
     with tempfile.TemporaryDirectory() as place:
         folder = Path(place)
         for name in ("coupons.csv", "indents.csv", "exclusions.csv"):
             (folder / name).touch()
         (folder / "batch.toml").write_bytes(text.encode())
-        try:
-            method = read_method(folder)
-        except BatchRefused as refusal:
-            assert refusal.causes
-            assert all("\n" not in str(cause) for cause in refusal.causes)
-            return refusal
-        json.dumps(method.document, allow_nan=False)
-        assert all(math.isfinite(i.value) and math.isfinite(i.u) for i in method.inputs.values())
-        return method
+        outcome = method_or_refusal(folder)
+        if isinstance(outcome, BatchRefused):
+            assert outcome.causes
+            assert all("\n" not in str(cause) for cause in outcome.causes)
+            return outcome
+        json.dumps(outcome.document, allow_nan=False)
+        assert all(math.isfinite(i.value) and math.isfinite(i.u) for i in outcome.inputs.values())
+        return outcome
 
 
-def places(tables: Any, path: tuple[str | int, ...] = ()) -> list[tuple[str | int, ...]]:
-    items: list[tuple[str | int, Any]] = []
+def places(tables: object, path: tuple[str | int, ...] = ()) -> list[tuple[str | int, ...]]:
+    items: list[tuple[str | int, object]] = []
     if isinstance(tables, dict):
         items = list(tables.items())
     elif isinstance(tables, list):
@@ -118,7 +123,7 @@ def places(tables: Any, path: tuple[str | int, ...] = ()) -> list[tuple[str | in
 PLACES = [path for path in places(VALID) if path]
 
 
-def changed(path: tuple[str | int, ...], key: str, value: Any, *, add: bool) -> dict[str, Any]:
+def changed(path: tuple[str | int, ...], key: str, value: object, *, add: bool) -> dict[str, Any]:
     tables = deepcopy(VALID)
     at: Any = tables
     for part in path[:-1]:
@@ -136,7 +141,12 @@ def test_the_sheet_that_is_changed_fits() -> None:
 
 @settings(max_examples=400, deadline=None)
 @given(st.sampled_from(PLACES), st.sampled_from(KEYS), values, st.booleans())
-def test_any_value_anywhere(path: tuple[str | int, ...], key: str, value: Any, add: bool) -> None:
+def test_any_value_anywhere(
+    path: tuple[str | int, ...],
+    key: str,
+    value: object,
+    add: bool,
+) -> None:
     read(as_toml(changed(path, key, value, add=add)))
 
 
@@ -146,8 +156,7 @@ def test_any_document(tables: dict[str, Any]) -> None:
     assert isinstance(read(as_toml(tables)), BatchRefused)
 
 
-@settings(max_examples=100, deadline=None)
-@given(st.sampled_from(PLACES))
+@pytest.mark.parametrize("path", PLACES, ids=str)
 def test_any_key_may_be_missing(path: tuple[str | int, ...]) -> None:
     tables = deepcopy(VALID)
     at: Any = tables

@@ -2,6 +2,7 @@
 
 import re
 import tomllib
+from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
@@ -17,8 +18,8 @@ SECTION = re.compile(r"#?\[+([A-Za-z_.]+)\]+$")
 KEY = re.compile(r"#?([a-z0-9_]+) = (.*)$")
 
 
-def keys_of(schema: Any, path: tuple[str, ...] = ()) -> dict[tuple[str, ...], Any]:
-    found = {}
+def keys_of(schema: Mapping[str, Any], path: tuple[str, ...] = ()) -> dict[tuple[str, ...], Any]:
+    found: dict[tuple[str, ...], Any] = {}
     for name, inner in schema.get("properties", {}).items():
         if inner.get("type") == "object" and "properties" in inner:
             found |= keys_of(inner, (*path, name))

@@ -78,7 +78,7 @@ def usable(cells: tuple[str, ...]) -> bool:
     return True
 
 
-@settings(deadline=None, max_examples=150)
+@settings(deadline=None, max_examples=100)
 @given(
     st.lists(row, max_size=30),
     st.lists(st.booleans(), min_size=30, max_size=30),
@@ -91,7 +91,8 @@ def test_rows_read_are_rows_used_and_rows_set_aside(
     out = io.StringIO()
     writer = csv.writer(out, lineterminator=end)
     writer.writerow(COLUMNS)
-    used, aside = [], []
+    used: list[int] = []
+    aside: list[int] = []
     line = 2
     for (*cells, tear), blank in zip(rows, blanks, strict=False):
         out.write(end * blank)
@@ -125,7 +126,7 @@ GOOD = "\n".join(
 ).encode()
 
 
-@settings(deadline=None, max_examples=300)
+@settings(deadline=None, max_examples=200)
 @given(
     st.lists(
         st.tuples(st.integers(0, len(GOOD)), st.integers(0, 12), st.binary(max_size=6)), max_size=4
@@ -149,8 +150,7 @@ def test_damaged_bytes_are_refused_or_accounted_for(
         stream = read_readings(files, coupons, no_exclusions(), kept, "UTC", block_bytes=64)
         try:
             used = sum(len(block.lines) for block in stream)
-        except BatchRefused as refused:
-            assert refused.causes
+        except BatchRefused:  # which is never without a cause, see the tests of text
             return
         # splitlines() of bytes ends lines at LF, CR and CRLF, as this table does
         filled = [

@@ -156,7 +156,7 @@ FAULTS: list[tuple[dict[str, str], str, str]] = [
     (
         {"scale": "HBW", "ball_mm": "1", "hardness": "1", "d1_um": "", "d2_um": ""},
         "impossible-indent",
-        "d1_um",
+        "hardness",
     ),
 ]  # fmt: skip
 

@@ -7,11 +7,16 @@ against these numbers, they only have to look like a batch.
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
+from typing import TypeAlias
+
 import numpy as np
 import pandas as pd
+from numpy.typing import NDArray
 
 from coldwork.plots import Context
 
+FloatArray: TypeAlias = NDArray[np.float64]
+IntArray: TypeAlias = NDArray[np.int64]
 LIMIT: dict[str, object] = {
     "id": "anneal-window",
     "quantity": "stored_energy_j_per_g",
@@ -29,7 +34,10 @@ CONTEXT = Context(
     note="All rows describe the state before the test (test strain 0, the indent's own unwound).",
     timezone="Europe/Berlin",
 )
-LONG = "strip from the second pass of the reversing mill, coil 4711, head end, cut {} of the outer wrap, kept dry, see ledger"
+LONG = (
+    "strip from the second pass of the reversing mill, coil 4711, head end, "
+    "cut {} of the outer wrap, kept dry, see ledger"
+)
 ODD_NAMES = (
     "=7/A ä<b>",
     "NA",
@@ -116,8 +124,8 @@ def batch(
 
 def _readings(
     ids: list[str],
-    truth: np.ndarray[tuple[int], np.dtype[np.float64]],
-    count: np.ndarray[tuple[int], np.dtype[np.int64]],
+    truth: FloatArray,
+    count: IntArray,
     random: np.random.Generator,
     how: tuple[bool, Sequence[str], Sequence[str]],
 ) -> pd.DataFrame:
@@ -137,7 +145,7 @@ def _readings(
     times = [(start + pd.Timedelta(minutes=x)).isoformat() for x in minutes]
     return pd.DataFrame(
         {
-            "coupon_id": [ids[i] for i in place],
+            "coupon_id": [ids[i] for i in place.tolist()],
             "reading_no": number,
             "route": "indent",
             "scale": "HV",
@@ -159,7 +167,7 @@ def _coupons(
     ids: list[str],
     condition: list[str],
     readings: pd.DataFrame,
-    count: np.ndarray[tuple[int], np.dtype[np.int64]],
+    count: IntArray,
 ) -> pd.DataFrame:
     mean = readings.groupby("coupon_id")["hardness"].mean().reindex(ids).to_numpy()
     u_own = mean * 0.01 / np.sqrt(np.maximum(count, 1))
@@ -170,8 +178,8 @@ def _coupons(
     exists = stress > 0.0
     scale = (1.0 / (3.06 * 0.3 * 44e3 * 0.2556e-9)) ** 2
 
-    def density(s: np.ndarray[tuple[int], np.dtype[np.float64]]) -> np.ndarray:  # type: ignore[type-arg]
-        return np.maximum(s, 0.0) ** 2 * scale
+    def density(s: FloatArray) -> FloatArray:
+        return np.asarray(np.maximum(s, 0.0) ** 2 * scale)
 
     late = np.exp(2.0 * 0.37)
     rho = np.where(exists, density(stress), np.nan)
@@ -199,13 +207,14 @@ def _coupons(
 
 def _set_aside(ids: list[str]) -> pd.DataFrame:
     rows = [(1, "not-a-number", "d1_um", "1,5"), (1, "excluded", "hardness", "55.1")]
-    rows = [(i % len(ids), *rest) for i, *rest in rows]
-    rows += [(2 % len(ids), "row-width", "", "a;b;c")]
+    rows += [(2, "row-width", "", "a;b;c")]
     frame = pd.DataFrame(
-        [(ids[i], 9, rule, column, raw) for i, rule, column, raw in rows],
+        [(ids[i % len(ids)], 9, rule, column, raw) for i, rule, column, raw in rows],
         columns=["coupon_id", "reading_no", "rule", "column", "raw"],
     )
-    stray = pd.DataFrame([{"coupon_id": "nowhere", "rule": "unlisted-coupon", "column": "coupon_id"}])
+    stray = pd.DataFrame(
+        [{"coupon_id": "nowhere", "rule": "unlisted-coupon", "column": "coupon_id"}]
+    )
     return pd.concat([frame, stray], ignore_index=True)
 
 
@@ -215,7 +224,9 @@ def _budget(coupons: pd.DataFrame, random: np.random.Generator) -> pd.DataFrame:
     y = valued["stored_energy_j_per_g"].to_numpy()
     raw = {}
     for name, (_, c) in SHARES.items():
-        grows = 0.08 / np.maximum(y, 0.004) if name in {"strength.baseline_mpa", "repeatability"} else 1
+        grows = (
+            0.08 / np.maximum(y, 0.004) if name in {"strength.baseline_mpa", "repeatability"} else 1
+        )
         raw[name] = c * y * grows * random.uniform(0.95, 1.05, len(y))
     total = np.sum([c**2 for c in raw.values()], axis=0)
     for name, c in raw.items():
@@ -236,7 +247,7 @@ def _budget(coupons: pd.DataFrame, random: np.random.Generator) -> pd.DataFrame:
 
 def _decisions(coupons: pd.DataFrame) -> pd.DataFrame:
     name = "stored_energy_j_per_g"
-    low, high = float(str(LIMIT["lower"])), float(str(LIMIT["upper"]))
+    low, high = 0.03, 0.12
     y, u = coupons[name].to_numpy(), coupons[f"u_own_{name}"].to_numpy()
     lower, upper = y - 1.65 * u, y + 1.65 * u
     decision = np.select(
@@ -261,7 +272,7 @@ def _scatter(
     ids: list[str],
     condition: list[str],
     readings: pd.DataFrame,
-    count: np.ndarray[tuple[int], np.dtype[np.int64]],
+    count: IntArray,
 ) -> pd.DataFrame:
     by_coupon = readings.groupby("coupon_id")["hardness"]
     relative = (by_coupon.std() / by_coupon.mean()).reindex(ids).to_numpy()
@@ -274,11 +285,99 @@ def _scatter(
     return frame
 
 
-def _coupons_in(
-    ids: list[str], kind: np.ndarray[tuple[int], np.dtype[np.int64]], *, strains: bool
-) -> pd.DataFrame:
+def _coupons_in(ids: list[str], kind: IntArray, *, strains: bool) -> pd.DataFrame:
     reduction = np.array(REDUCTIONS)[kind] / 100.0
     strain = 2.0 / np.sqrt(3.0) * np.log(1.0 / (1.0 - reduction))
     if len(ids) > 10:
         strain[10] = np.nan
     return pd.DataFrame({"coupon_id": ids, "prior_true_strain": strain if strains else np.nan})
+
+
+def awkward() -> Batch:
+    """Make a batch of twelve in which everything that can be missing is."""
+    made = batch(12, odd=True)
+    coupons = made.frames["coupons"].copy()
+    for name in ("dislocation_density_per_m2", "stored_energy_j_per_g"):
+        value, lower, upper = (
+            coupons.columns.get_loc(f"{p}{name}") for p in ("", "lower_", "upper_")
+        )
+        coupons.iloc[1, value] = np.nan  # below the baseline: an upper end only
+        coupons.iloc[1, lower] = 0.0
+        coupons.iloc[1, upper] = 0.3 * coupons.iloc[8, value]
+        coupons.iloc[2, [value, upper]] = np.nan  # not even that
+        coupons.iloc[5, [lower, upper]] = np.nan  # nothing to judge the scatter by
+        coupons.iloc[6, upper] = np.nan  # one reading: the interval has no end
+    coupons.loc[1, "flags"] = "below-baseline"
+    coupons.loc[2, "flags"] = "below-baseline;baseline-contradicted"
+    coupons.loc[4, ["hardness", "lower_hardness", "upper_hardness"]] = np.nan
+    coupons.loc[4, "flags"] = "mixed-forces"
+    coupons.loc[9:, "hardness_scale"] = "HBW2.5/62.5"
+    coupons.loc[7, "condition"] = (
+        "drawn through seven dies with an anneal between the fourth and the fifth"
+    )
+    limits = (
+        LIMIT,
+        {**LIMIT, "id": "floor", "lower": 0.01, "upper": None, "rule": "simple"},
+        {
+            **LIMIT,
+            "id": "roof <&> $",
+            "lower": None,
+            "upper": 0.2,
+            "rule": "probability",
+            "basis": "total",
+        },
+        {"id": "dense", "quantity": "dislocation_density_per_m2", "lower": 1e14, "upper": None},
+    )
+    decisions = made.frames["decisions"]
+    floor = decisions.assign(limit_id="floor", decision="conforming", bound=np.nan)
+    frames = {**made.frames, "coupons": coupons, "decisions": pd.concat([decisions, floor])}
+    return Batch(
+        frames,
+        replace(CONTEXT, limits=limits, batch_id="B-" + "long-" * 40, material="Cu-30Zn $x$"),
+    )
+
+
+def flow(n: int = 6) -> Batch:
+    """Make a batch of flow curves: points at several strains, one of them repeated."""
+    random = np.random.default_rng(n)
+    ids = [f"SW-{i}" for i in range(n)]
+    stress = np.array([230.0, 430.0, 540.0, 660.0, 850.0, 1010.0])[np.arange(n) % 6]
+    strains = [0.001, 0.002, 0.002, 0.002, 0.005, 0.01]
+    rows = [
+        (
+            ids[i],
+            k + 1,
+            stress[i] * (1.0 + 4.0 * (e - 0.002)) + random.normal(0.0, 4.0),
+            e,
+            float(e == 0.002),
+        )
+        for i in range(n)
+        for k, e in enumerate(strains)
+    ]
+    readings = pd.DataFrame(
+        rows, columns=["coupon_id", "reading_no", "flow_stress_mpa", "plastic_strain", "weight"]
+    )
+    mean = (
+        readings[readings["weight"] > 0].groupby("coupon_id")["flow_stress_mpa"].mean().to_numpy()
+    )
+    rho = ((mean - 150.0) / (2.75 * 0.3 * 82e3 * 0.2482e-9)) ** 2
+    coupons = pd.DataFrame(
+        {"coupon_id": ids, "condition": [f"drawn {i}" for i in range(n)], "flags": ""}
+    )
+    for name, y, u_own, u in (
+        ("flow_stress_mpa", mean, 3.0, 3.0),
+        ("dislocation_density_per_m2", rho, 0.04 * rho, 0.4 * rho),
+        ("stored_energy_j_per_mol", 1.9e-14 * rho, 0.07e-14 * rho, 0.7e-14 * rho),
+    ):
+        coupons[name], coupons[f"u_own_{name}"], coupons[f"u_{name}"] = y, u_own, u
+        coupons[f"lower_{name}"] = y * np.exp(-2 * u / y)
+        coupons[f"upper_{name}"] = y * np.exp(2 * u / y)
+    limit = {
+        **LIMIT,
+        "id": "wire",
+        "quantity": "stored_energy_j_per_mol",
+        "lower": 5,
+        "upper": None,
+    }
+    context = replace(CONTEXT, route="flow", material="low-carbon steel", limits=(limit,), note="")
+    return Batch({"coupons": coupons, "readings": readings}, context)

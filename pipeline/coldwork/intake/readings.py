@@ -260,7 +260,7 @@ class ReadingStream:
                 coupon=typed.coupon[here],
                 coupon_ids=typed.columns[_ID].text.take(here),
                 reading_no=_integers(typed.columns[self._number])[here],
-                hint=[fault.hint(cell) or None for cell in raw] if fault.hint else None,
+                hint=_hints(fault, raw),
                 also=_also(typed, later, here),
                 excluded_by=take_or_null(self._exclusions.by, exclusion),
                 excluded_at=take_or_null(self._exclusions.at, exclusion),
@@ -325,14 +325,23 @@ def _raw(typed: _Typed, column: str, rows: NDArray[np.intp]) -> list[str]:
     return take(column_of(cells, column), rows)
 
 
+def _hints(fault: Fault, raw: list[str]) -> list[str | None] | None:
+    if fault.hint is None:
+        return None
+    each = {cell: fault.hint(cell) or None for cell in set(raw)}
+    return [each[cell] for cell in raw]
+
+
 def _also(typed: _Typed, faults: list[Fault], rows: NDArray[np.intp]) -> list[str | None] | None:
     """Name the further faults of each row: column, rule and raw cell."""
+    if not any(fault.rows[rows].any() for fault in faults):
+        return None
     words: list[list[str]] = [[] for _ in rows]
     for fault in faults:
         places = np.flatnonzero(fault.rows[rows])
         for place, cell in zip(places, _raw(typed, fault.column, rows[places]), strict=True):
             words[place].append(f"{fault.column}: {fault.reason.id} ({cell!r})")
-    return ["; ".join(each) or None for each in words] if any(words) else None
+    return ["; ".join(each) or None for each in words]
 
 
 def _width_hint(found: int, expected: int) -> str:

@@ -82,27 +82,31 @@ def _sizeless(columns: Mapping[str, Column], scale: pa.StringArray) -> list[Faul
 def _ball_faults(columns: Mapping[str, Column], brinell: NDArray[np.bool_]) -> list[Fault]:
     missing = brinell & _absent(columns, "ball_mm", len(brinell))
     rows = np.flatnonzero(brinell & ~missing)
-    impossible = np.zeros(len(brinell), dtype=np.bool_)
-    impossible[rows] = _impossible(columns, rows)
-    column = "d1_um" if "d1_um" in columns else "hardness"
-    return [
-        Fault(reasons.BALL_MISSING, "ball_mm", missing),
-        Fault(reasons.IMPOSSIBLE_INDENT, column, impossible),
-    ]
+    faults = [Fault(reasons.BALL_MISSING, "ball_mm", missing)]
+    for column, bad in _impossible(columns, rows).items():
+        impossible = np.zeros(len(brinell), dtype=np.bool_)
+        impossible[rows] = bad
+        faults.append(Fault(reasons.IMPOSSIBLE_INDENT, column, impossible))
+    return faults
 
 
-def _impossible(columns: Mapping[str, Column], rows: NDArray[np.intp]) -> NDArray[np.bool_]:
-    """Whether no ball can make the indents of `rows`; False where a number is missing or bad."""
+def _impossible(
+    columns: Mapping[str, Column], rows: NDArray[np.intp]
+) -> Mapping[str, NDArray[np.bool_]]:
+    """Which of `rows` no ball can make, by the column that says so; a missing number says nothing.
+
+    The diagonals count where there are any, as they do for the hardness.
+    """
     force, ball, d1, d2, hardness = (
         _si(columns, name, rows) for name in ("force_n", "ball_mm", "d1_um", "d2_um", "hardness")
     )
+    there = np.isfinite(force) & np.isfinite(ball)
     measured = np.isfinite(d1) & np.isfinite(d2)
-    lost = np.where(
-        measured,
-        np.isnan(brinell_hardness(force, d1, d2, ball)),
-        np.isnan(brinell_diameter(force, hardness, ball)) & np.isfinite(hardness),
-    )
-    return lost & np.isfinite(force) & np.isfinite(ball)
+    shown = np.isfinite(hardness) & ~measured
+    return {
+        "d1_um": there & measured & np.isnan(brinell_hardness(force, d1, d2, ball)),
+        "hardness": there & shown & np.isnan(brinell_diameter(force, hardness, ball)),
+    }
 
 
 def _si(columns: Mapping[str, Column], name: str, rows: NDArray[np.intp]) -> NDArray[np.float64]:

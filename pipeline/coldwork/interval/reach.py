@@ -18,7 +18,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from coldwork.chain import Start, energy
+from coldwork.chain import Start, energy, energy_per_volume
 from coldwork.inputs.method import Laws
 from coldwork.interval.combine import Combined, Ends, Spread, combine
 from coldwork.measured import Measured, Value, value_of
@@ -223,7 +223,12 @@ class Reach:
         return m, np.clip(r, -1.0, 1.0)
 
     def _at(self, stress: NDArray[np.float64], name: str) -> NDArray[np.float64]:
-        return value_of(energy(self._laws, self._plain, stress, self._bare_start)[name])
+        found = energy_per_volume(self._laws, self._plain, stress, self._bare_start)
+        if name in found:
+            return value_of(found[name])
+        stored = "stored_energy_j_per_m3"  # the rest goes with it in proportion
+        share = value_of(self._late[name]) / value_of(self._late[stored])
+        return value_of(found[stored]) * share
 
     def _through_pivot(self, late: Value) -> Measured:
         """Replace the sensitivity to s by those to what s came from."""

@@ -1,6 +1,6 @@
 """One slice of coupons through chain and interval: mean of the readings to quantities."""
 
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 from typing import Final
 
@@ -24,7 +24,7 @@ __all__ = [
     "Evaluated",
     "evaluate",
     "inputs_of",
-    "quantities_of",
+    "start_of",
 ]
 
 REPEATABILITY: Final = "repeatability"  # name of the input that the readings' scatter makes
@@ -141,6 +141,7 @@ def evaluate(
     inputs: Mapping[str, Value],
     spreads: Mapping[str, Spread],
     start: Start,
+    with_ends: Collection[str] = QUANTITIES,
 ) -> Evaluated:
     """Run a slice of coupons through the chain and take the intervals.
 
@@ -154,6 +155,8 @@ def evaluate(
         Of every input, the coupons' own ones included.
     start : Start
         The slice.
+    with_ends : collection of str, optional
+        Quantities whose intervals are wanted; the others' ends are NaN.
 
     Returns
     -------
@@ -165,27 +168,18 @@ def evaluate(
     stress = _measured(half.dislocation_stress, n)
     reach = Reach(method.laws, inputs, spreads, start, stress)
     results = _strengths(method, start, half, n) | reach.results
-    return quantities_of(method, start, half, reach, results, spreads)
-
-
-def quantities_of(
-    method: Method,
-    start: Start,
-    half: Strength,
-    reach: Reach,
-    results: Mapping[str, Measured],
-    spreads: Mapping[str, Spread],
-) -> Evaluated:
-    """Take the uncertainty and the interval of every quantity. [SI]"""
     probability = (1.0 + method.coverage) / 2.0
+    blank = np.full(n, np.nan)
     combined: dict[str, Combined] = {}
     ends: dict[str, Ends] = {}
     for name, result in results.items():
-        if name in LATE:
-            combined[name] = reach.combined[name]
+        late = name in LATE
+        combined[name] = reach.combined[name] if late else combine(result, spreads)
+        if name not in with_ends:
+            ends[name] = Ends(blank, blank)
+        elif late:
             ends[name] = reach.interval(name, probability)
         else:
-            combined[name] = combine(result, spreads)
             ends[name] = strength_ends(result.value, combined[name], probability)
     return Evaluated(start, half, reach, results, combined, ends, spreads)
 

@@ -1,6 +1,6 @@
 """From a batch folder to one row per coupon: everything before the chain."""
 
-from collections.abc import Callable
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
@@ -28,7 +28,6 @@ from coldwork.scatter import Repeatability, repeatability
 
 __all__ = ["Gathered", "gather"]
 
-Progress = Callable[[str], None]
 BLOCK_BYTES: Final = 2 << 20
 
 
@@ -102,13 +101,11 @@ def gather(
     """
     table = "flow_stress" if method.laws.route == "flow" else "indents"
     files = _files(method, table, method.flow_stress if table == "flow_stress" else method.indents)
-    coupons = _coupons(method, files, block_bytes)
+    paths = () if method.exclusions is None else (method.exclusions,)
+    excluding = _files(method, "exclusions", paths)
+    coupons = _coupons(method, (files, excluding), block_bytes)
     zone = method.timezone
-    exclusions = no_exclusions()
-    if method.exclusions is not None:
-        exclusions = read_exclusions(
-            _files(method, "exclusions", (method.exclusions,)), coupons, zone
-        )
+    exclusions = read_exclusions(excluding, coupons, zone) if paths else no_exclusions()
     findings, set_aside = Findings(len(coupons)), SetAside(len(coupons))
     kept = None if keep is None else KeptReadings(keep, f"in/{table}")
     stream = read_readings(files, coupons, exclusions, set_aside, zone, block_bytes=block_bytes)
@@ -136,9 +133,9 @@ def _files(method: Method, table: str, paths: tuple[Path, ...]) -> TableFiles:
     return TableFiles(contracts.load(f"in/{table}"), method.folder, paths)
 
 
-def _coupons(method: Method, files: TableFiles, block_bytes: int) -> Coupons:
-    """Read the list; tell its faults together with those of the readings' headers."""
-    causes = check_headers(files)
+def _coupons(method: Method, others: Sequence[TableFiles], block_bytes: int) -> Coupons:
+    """Read the list; tell its faults together with those of the other tables' headers."""
+    causes = [cause for files in others for cause in check_headers(files)]
     try:
         coupons = read_coupons(
             _files(method, "coupons", method.coupons), method.timezone, block_bytes=block_bytes

@@ -205,10 +205,7 @@ def _evidence(
     elif own:
         combined = combine(found.result, evaluated.spreads, own_only=True)
     bounds = _one_sided(limit.quantity, found, combined, reach, method.coverage)
-    half = evaluated.strength
-    with_indent = np.zeros(bits.shape, dtype=bool)
-    if method.laws.route == "indent":
-        with_indent = ~half.unwound
+    added = method.laws.route == "indent" and not method.laws.unwinding
     value = units.from_si(found.result.value, unit)
     return Evidence(
         value=value,
@@ -218,7 +215,7 @@ def _evidence(
         above_lower=_above(limit.lower, limit.quantity, unit, found, combined, reach),
         above_upper=_above(limit.upper, limit.quantity, unit, found, combined, reach),
         blocked=emptied(limit.quantity, bits, ends=True),
-        with_indent=with_indent,
+        with_indent=np.full(bits.shape, added),
         coverage=method.coverage,
         unit=unit,
     )

@@ -11,6 +11,7 @@ from coldwork import contracts, units
 from coldwork.intake.coupons import Coupons
 from coldwork.reduce.readings import Readings
 from coldwork.reduce.reduced import ReadingResults
+from coldwork.results.disk import writing
 from coldwork.rules import RULES
 from coldwork.rules.forces import SCALES
 
@@ -50,9 +51,10 @@ class KeptReadings:
 
     def restart(self) -> None:
         """Forget what was written."""
-        if self._writer is not None:
-            self._writer.close()
-        self._writer = pa.ipc.new_file(str(self._path), self._schema)
+        with writing(self._path):
+            if self._writer is not None:
+                self._writer.close()
+            self._writer = pa.ipc.new_file(str(self._path), self._schema)
 
     def add(self, readings: Readings, results: ReadingResults) -> None:
         """Write a stretch of readings with what each came to."""
@@ -81,14 +83,15 @@ class KeptReadings:
         if self._writer is None:
             message = "readings are closed"
             raise RuntimeError(message)
-        self._writer.write_table(
-            pa.table([columns[name] for name in self._schema.names], schema=self._schema)
-        )
+        table = pa.table([columns[name] for name in self._schema.names], schema=self._schema)
+        with writing(self._path):
+            self._writer.write_table(table)
 
     def close(self, coupons: int) -> None:
         """End the writing and index the file by coupon."""
         if self._writer is not None:
-            self._writer.close()
+            with writing(self._path):
+                self._writer.close()
             self._writer = None
         self._table = pa.ipc.open_file(pa.memory_map(str(self._path))).read_all()
         coupon = self._table["coupon"].to_numpy()

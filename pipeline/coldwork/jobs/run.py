@@ -9,7 +9,8 @@ from dataclasses import dataclass
 from datetime import UTC, datetime
 from hashlib import sha256
 from pathlib import Path
-from typing import Final
+from tempfile import TemporaryDirectory
+from typing import Any, Final
 
 import numpy as np
 import pyarrow as pa
@@ -30,11 +31,11 @@ from coldwork.results.target import Target, open_target
 from coldwork.rules import RULES
 from coldwork.rules.rule import Level
 
-__all__ = ["Outcome", "run"]
+__all__ = ["Outcome", "record_again", "run"]
 
 Progress = Callable[[str], None]
 
-_SLICE: Final = 1 << 15  # coupons that are worked at once
+_SLICE: Final = 1 << 14  # coupons that are worked at once
 _FULL_SLICE: Final = 1 << 10  # the same where records are written, which are large
 _ALWAYS: Final = ("coupons", "decisions", "flags", "lots", "set_aside")
 _FULL: Final = ("quantities", "budget", "readings")
@@ -141,7 +142,7 @@ def run(
         tell("drawing" if drawing.wanted else "writing")
         for name, data in drawing.files():
             target.write(name, data)
-        path = target.commit(_manifest(batch, target, started))
+        path = target.commit(_manifest(batch, started))
     return Outcome(
         path=path,
         batch_id=method.batch_id,
@@ -153,6 +154,30 @@ def run(
         errors=_errors(batch),
         plots=drawing.said,
     )
+
+
+def record_again(folder: Path, coupon: str) -> dict[str, Any]:
+    """Compute one coupon's record from its batch folder, as a run in full detail would.
+
+    Parameters
+    ----------
+    folder : Path
+        The batch folder.
+    coupon : str
+        Its id; it must be there.
+
+    Returns
+    -------
+    dict
+        The record.
+    """
+    method = read_method(folder)
+    with TemporaryDirectory(prefix="coldwork-") as scratch:
+        batch, kept = gather(method, keep=Path(scratch) / "readings.arrow")
+        place = int(batch.coupons.index(pa.array([coupon], pa.string()))[0])
+        part = work_slice(batch, slice(place, place + 1), kept)
+        common = _common(batch, sha256(dump("method", method.document)).hexdigest())
+        return build(common, _record_slice(batch, part, batch.set_aside.table()))[0]
 
 
 def _work(
@@ -167,9 +192,7 @@ def _work(
 ) -> None:
     """Work the coupons slice by slice, and write what each slice comes to."""
     records = None if kept is None else target.lines("records.jsonl")
-    inputs = batch.method.document["inputs"]
-    assert isinstance(inputs, dict)  # noqa: S101 - what the schema of method.json promises
-    common = Common(batch.method.batch_id, method_sha256, inputs)
+    common = _common(batch, method_sha256)
     aside = batch.set_aside.table()
     writers["set_aside"].write(aside)
     drawing.add("set_aside", aside)
@@ -193,6 +216,11 @@ def _work(
         drawing.add("flags", piece)
     if records is not None:
         records.close()
+
+
+def _common(batch: Gathered, method_sha256: str) -> Common:
+    inputs: Any = batch.method.document["inputs"]
+    return Common(batch.method.batch_id, method_sha256, inputs)
 
 
 def _record_slice(batch: Gathered, part: Sliced, aside: pa.Table) -> Slice:
@@ -220,7 +248,7 @@ def _slices(n: int, size: int) -> Iterator[slice]:
         yield slice(begin, min(begin + size, n))
 
 
-def _manifest(batch: Gathered, target: Target, started: datetime) -> dict[str, object]:
+def _manifest(batch: Gathered, started: datetime) -> dict[str, object]:
     method = batch.method
     sheets = [
         {
@@ -253,17 +281,12 @@ def _manifest(batch: Gathered, target: Target, started: datetime) -> dict[str, o
         "schema_version": contracts.document("manifest")["version"],
         "batch_id": method.batch_id,
         "inputs": [*sheets, *tables],
-        "outputs": [
-            {"path": o.path, "sha256": o.sha256, "bytes": o.size, "rows": o.rows}
-            for o in target.outputs
-        ],
         "reconciled": {
             "readings_read": batch.readings_read,
             "readings_used": int(batch.reduced.used.sum()),
             "readings_set_aside": batch.set_aside.count,
             "coupons": len(batch.coupons),
         },
-        "replaced": None,
         "run": {
             "started_at": started.isoformat(),
             "finished_at": datetime.now(UTC).isoformat(),

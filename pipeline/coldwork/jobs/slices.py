@@ -12,6 +12,7 @@ from coldwork import contracts
 from coldwork.interval.combine import Spread
 from coldwork.jobs.evaluate import (
     GRAIN,
+    QUANTITIES,
     REPEATABILITY,
     Evaluated,
     evaluate,
@@ -23,7 +24,12 @@ from coldwork.jobs.gather import Gathered
 from coldwork.jobs.judging import Held, decide_slice, decisions_table, find_in_slice
 from coldwork.jobs.kept import KeptReadings
 from coldwork.jobs.steps import repeatability_of, steps_of
-from coldwork.jobs.tables import budget_table, coupons_table, quantities_table
+from coldwork.jobs.tables import (
+    WITH_UNCERTAINTY,
+    budget_table,
+    coupons_table,
+    quantities_table,
+)
 from coldwork.judge.decisions import Worst, decision_texts, worst
 from coldwork.measured import value_of
 from coldwork.results.records import Step
@@ -191,7 +197,8 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
     method = batch.method
     inputs, spreads = inputs_of(method)
     start, own = start_of(method, batch.coupons, batch.reduced, batch.scatter, rows)
-    evaluated = evaluate(method, inputs, {**spreads, **own}, start)
+    with_ends = WITH_UNCERTAINTY if kept is None else QUANTITIES
+    evaluated = evaluate(method, inputs, {**spreads, **own}, start, with_ends)
     find_in_slice(
         batch.findings,
         method,

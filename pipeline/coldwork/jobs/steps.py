@@ -18,6 +18,7 @@ _BASELINE = (
     "strength.friction_mpa",
     "strength.hall_petch_mpa_m05",
 )
+_FOR_ALL_SCALES = ("initial_hardening_mpa", "saturation_stress_mpa")
 _RADII = {
     "spacing": "the mean spacing of the dislocations",
     "half-spacing": "half the mean spacing of the dislocations",
@@ -92,17 +93,18 @@ def _step(
     quantity: str,
     unit: str,
     value: Value,
-    n: int,
+    scale: NDArray[np.int8],
     explanation: str,
     inputs: tuple[str, ...],
 ) -> Step:
-    plain: NDArray[np.float64] = np.broadcast_to(value_of(value), (n,))
-    return Step(step, relation, quantity, unit, units.from_si(plain, unit), explanation, inputs)
+    values = units.from_si(np.broadcast_to(value_of(value), scale.shape), unit)
+    only = _scales_of(inputs, scale)
+    return Step(step, relation, quantity, unit, values, explanation, inputs, only)
 
 
 def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
     half, start, laws = evaluated.strength, evaluated.start, method.laws
-    n = start.scale.shape[0]
+    scale = start.scale
     given = tuple(
         name
         for name in method.inputs
@@ -119,7 +121,7 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
         "baseline_stress_mpa",
         "MPa",
         half.baseline_stress,
-        n,
+        scale,
         f"the part of the flow stress that dislocations do not carry: {parts}",
         given,
     )
@@ -132,7 +134,7 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
                 "flow_stress_mpa",
                 "MPa",
                 half.flow_stress,
-                n,
+                scale,
                 f"at a plastic strain of {method.plastic_strain:g}: the mean of the repeats there, "
                 "or interpolated between the neighbours; corrected for the tester",
                 mean_inputs,
@@ -144,7 +146,7 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
                 "dislocation_stress_mpa",
                 "MPa",
                 half.dislocation_stress,
-                n,
+                scale,
                 "flow stress less the baseline",
                 ("flow_stress_mpa", "baseline_stress_mpa"),
             ),
@@ -156,7 +158,7 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
             "hardness",
             "kgf/mm2",
             start.mean,
-            n,
+            scale,
             "mean of the readings, each divided by 1 + bias of its tester",
             mean_inputs,
         ),
@@ -166,7 +168,7 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
             "pressure_mpa",
             "MPa",
             np.nan if half.pressure is None else half.pressure,
-            n,
+            scale,
             "force over the area that the sheet names for this scale",
             ("hardness",),
         ),
@@ -176,10 +178,10 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
             "indented_stress_mpa",
             "MPa",
             half.indented_stress,
-            n,
+            scale,
             "pressure less intercept, over the constraint factor: the stress at the coupon's "
             "strain plus the strain of the indent",
-            ("pressure_mpa", *_of_indentation(method, evaluated, "intercept_mpa", "constraint_factor")),
+            ("pressure_mpa", *_of_indentation(method, "intercept_mpa", "constraint_factor")),
         ),
         baseline,
     ]
@@ -191,15 +193,15 @@ def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
                 "excess_mpa",
                 "MPa",
                 half.excess,
-                n,
+                scale,
                 "flow stress under the indent less the baseline",
                 ("indented_stress_mpa", "baseline_stress_mpa"),
             )
         )
-    return [*steps, *_dislocation_steps(method, evaluated, n)]
+    return [*steps, *_dislocation_steps(method, evaluated, scale)]
 
 
-def _dislocation_steps(method: Method, evaluated: Evaluated, n: int) -> list[Step]:
+def _dislocation_steps(method: Method, evaluated: Evaluated, scale: NDArray[np.int8]) -> list[Step]:
     half = evaluated.strength
     told, relation = "flow stress under the indent less the baseline", "relation 4"
     inputs: tuple[str, ...] = ("indented_stress_mpa", "baseline_stress_mpa")
@@ -212,18 +214,18 @@ def _dislocation_steps(method: Method, evaluated: Evaluated, n: int) -> list[Ste
         inputs = (
             "excess_mpa",
             *_of_indentation(
-                method, evaluated, "initial_hardening_mpa", "saturation_stress_mpa", "representative_strain",
+                method, "initial_hardening_mpa", "saturation_stress_mpa", "representative_strain",
                 "strain_ratio",
             ),
         )
     return [
         _step(
             "dislocation stress", relation, "dislocation_stress_mpa", "MPa",
-            half.dislocation_stress, n, told, inputs,
+            half.dislocation_stress, scale, told, inputs,
         ),
         _step(
             "flow stress of the state reported", "relation 4", "flow_stress_mpa", "MPa",
-            half.flow_stress, n, "dislocation stress plus baseline",
+            half.flow_stress, scale, "dislocation stress plus baseline",
             ("dislocation_stress_mpa", "baseline_stress_mpa"),
         ),
     ]
@@ -231,7 +233,7 @@ def _dislocation_steps(method: Method, evaluated: Evaluated, n: int) -> list[Ste
 
 def _energy_steps(method: Method, evaluated: Evaluated) -> list[Step]:
     results, laws = evaluated.results, method.laws
-    n = evaluated.start.scale.shape[0]
+    scale = evaluated.start.scale
     taylor = ("hardening.slope_n_per_m",)
     told = "(dislocation stress over the slope M alpha G b) squared"
     if laws.taylor == "constant":
@@ -292,19 +294,27 @@ def _energy_steps(method: Method, evaluated: Evaluated) -> list[Step]:
         ),
     ]
     return [
-        _step(name, relation, quantity, unit, results[quantity], n, words, tuple(inputs))
+        _step(name, relation, quantity, unit, results[quantity], scale, words, tuple(inputs))
         for name, relation, quantity, unit, words, inputs in rows
     ]
 
 
-def _of_indentation(method: Method, evaluated: Evaluated, *keys: str) -> tuple[str, ...]:
-    """Names of a scale's inputs, for the scales that the slice was read on."""
-    present = {SCALES[code] for code in np.unique(evaluated.start.scale) if code >= 0}
-    found = []
-    for name in method.inputs:
+def _of_indentation(method: Method, *keys: str) -> tuple[str, ...]:
+    return tuple(
+        name
+        for name in method.inputs
+        if name.startswith("indentation.") and name.rpartition(".")[2] in keys
+    )
+
+
+def _scales_of(
+    inputs: tuple[str, ...], scale: NDArray[np.int8]
+) -> dict[str, NDArray[np.bool_]]:
+    """For each input of one scale, the coupons that were read on it."""
+    only = {}
+    for name in inputs:
         section, _, key = name.rpartition(".")
-        scale = section.removeprefix("indentation").removeprefix(".") or "HV"
-        common = key in {"initial_hardening_mpa", "saturation_stress_mpa"}
-        if section.startswith("indentation") and key in keys and (common or scale in present):
-            found.append(name)
-    return tuple(found)
+        if section.startswith("indentation") and key not in _FOR_ALL_SCALES:
+            code = SCALES.index(section.removeprefix("indentation").removeprefix(".") or "HV")
+            only[name] = scale == code
+    return only

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
-from coldwork.plots.names import fitted, told_apart, width
+from coldwork.plots.names import counted, fitted, listed, told_apart, width
 from coldwork.plots.quantity import heading
 from coldwork.plots.rows import Rows
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
@@ -181,11 +181,11 @@ def _figure(
     for i, group in enumerate(groups):
         at = EDGE + left + i * (wide + gap)
         axes = add_panel(figure, at, base + _BELOW, wide, high)
-        _draw_bars(axes, table, group, end)
+        _draw_bars(axes, table, group, (end, 0.05 * end / wide))
         size = len(group.members)
         with np.errstate(divide="ignore", invalid="ignore"):
             relative = float(np.median(100.0 * u[group.members] / values[group.members]))
-        title = [f"{size} coupon{'s' if size > 1 else ''}"]
+        title = [counted(size, "coupon")]
         title += [f"u {float(f'{relative:.2g}'):g} %"] if np.isfinite(relative) else []
         name = fitted(told_apart([group.name], Sizes.small, wide)[0], Sizes.small, wide)
         axes.set_title("\n".join([name, *title]), fontsize=Sizes.small, loc="left", pad=4.0)
@@ -198,7 +198,8 @@ def _figure(
     return figure
 
 
-def _draw_bars(axes: Axes, table: _Budget, group: _Group, end: float) -> None:
+def _draw_bars(axes: Axes, table: _Budget, group: _Group, scale: tuple[float, float]) -> None:
+    end, room = scale  # of the axis, and before a number [%]
     share = table.share[group.members]
     mean, least, most = share.mean(axis=0), share.min(axis=0), share.max(axis=0)
     rows = np.arange(len(table.inputs))
@@ -211,7 +212,7 @@ def _draw_bars(axes: Axes, table: _Budget, group: _Group, end: float) -> None:
         bar.set_bounds(0.0, row - 0.3, float(mean[row]), 0.6)
         axes.add_patch(bar)
         label = f"{mean[row]:.0f}" if mean[row] >= 0.95 else f"{mean[row]:.1f}"
-        at = float(max(mean[row], most[row])) + 0.02 * end
+        at = float(max(mean[row], most[row])) + room
         if mean[row] >= 0.05:
             axes.text(at, row, label, va="center_baseline", fontsize=Sizes.small - 0.5)
     spread = most - least >= 0.5
@@ -273,8 +274,6 @@ def _notes(rows: Rows, has: NDArray[np.bool_]) -> list[str]:
     ]
     without = Counter(rows.groups[i] for i in np.flatnonzero(~has).tolist())
     if without:
-        told = [f"{n} of {name}" if name else f"{n} coupons" for name, n in without.items()]
-        notes.append(
-            f"No value and so no budget: {', '.join(told[:8])}{', ...' * (len(told) > 8)}."
-        )
+        told = [f"{n} of {name}" if name else counted(n, "coupon") for name, n in without.items()]
+        notes.append(f"No value and so no budget: {listed(told)}.")
     return notes

@@ -8,16 +8,17 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
+from coldwork.plots.names import counted, listed
 from coldwork.plots.quantity import Scale, scale_of
-from coldwork.plots.rows import MOST_COUPONS, Panel, Rows, Strip, row_pages
+from coldwork.plots.rows import MOST_COUPONS, MOST_NAMED, Panel, Rows, Strip, row_pages
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
 from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key, spans_of, why_missing
-from coldwork.plots.style import INK, PAPER, Mark, house
+from coldwork.plots.style import house
 
 __all__ = ["draw"]
 
 _COLUMN = "dislocation_density_per_m2"
-_NAMES = 8  # at most in a note
+_CROWDED = 4.0  # intervals nearer than this are told apart by shade [pt]
 _NEAR = 0.01  # strains nearer than this stand side by side [length of the axis]
 
 
@@ -52,8 +53,8 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
         sheet = Sheet(
             "Dislocation density of each coupon",
             context,
-            [f"{len(rows.ids)} coupons"],
-            [(MEAN.sample(), "value"), *span_key(spans, context)],
+            [counted(len(rows.ids), "coupon")],
+            [(MEAN.sample(), "value"), *span_key(spans, context, crowd=not rows.named)],
             [context.note] if context.note else [],
         )
         figures = []
@@ -64,9 +65,9 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
             scale.on(axes)
             here = spans.at(page.places).times(scale.factor)
             lines = np.arange(len(page.places), dtype=np.float64)
-            draw_spans(axes, here, lines, raster=page.raster)
+            draw_spans(axes, here, lines, crowd=page.crowd)
             known = np.isfinite(here.value)
-            MEAN.put(axes, here.value[known], lines[known], raster=page.raster)
+            page.put(MEAN, here.value[known], lines[known])
             figures.append(page.figure)
         return figures
 
@@ -89,7 +90,10 @@ def _against_strain(
     scale, words = told
     given = np.isfinite(strains)
     drawn = given & (np.isfinite(spans.value) | spans.one_sided)
+    low, high = float(strains[given].min()), float(strains[given].max())
     places, step = _side_by_side(strains, spans, drawn)
+    apart = step / (1.1 * (high - low)) * (WIDTH - 1.0) * 72.0  # [pt]
+    many = apart < _CROWDED or len(strains) > MOST_NAMED
     side = "Coupons of one strain stand side by side about it, by value."
     notes = [side] if np.isfinite(step) else []
     notes += [context.note] if context.note else []
@@ -98,25 +102,22 @@ def _against_strain(
     sheet = Sheet(
         "Dislocation density against prior strain",
         context,
-        [f"{len(rows.ids)} coupons"],
-        [(MEAN.sample(), "value"), *span_key(spans, context, upright=True)],
+        [counted(len(rows.ids), "coupon")],
+        [(MEAN.sample(), "value"), *span_key(spans, context, upright=True, crowd=many)],
         notes,
     )
     figure, base = open_sheet(sheet, 5.3)
     axes = add_panel(figure, EDGE + 0.6, base + 0.5, WIDTH - 2 * EDGE - 0.7, 4.75)
-    low, high = float(strains[given].min()), float(strains[given].max())
     room = 0.05 * (high - low)
     axes.set_xlim(low - room, high + room)
     axes.set_xlabel("Prior true strain (von Mises equivalent) [1]")
     scale.on(axes, upright=True)
     axes.set_ylabel(scale.label)
     here = spans.at(np.flatnonzero(drawn)).times(scale.factor)
-    many = int(drawn.sum()) > 2000
-    draw_spans(axes, here, places, upright=True, raster=many)
+    draw_spans(axes, here, places, upright=True, crowd=many)
     known = np.isfinite(here.value)
-    size = float(np.clip(step / (1.1 * (high - low)) * (WIDTH - 1.0) * 72.0, 2.0, MEAN.size))
-    mark = Mark("o", size, INK, PAPER, 0.5 if size > 3.0 else 0.25)
-    mark.put(axes, places[known], here.value[known], raster=many)
+    scale_of_marks = 0.6 if many else 1.0
+    MEAN.put(axes, places[known], here.value[known], raster=many, scale=scale_of_marks)
     return figure
 
 
@@ -157,8 +158,4 @@ def _named(rows: Rows, words: Sequence[str], among: NDArray[np.bool_]) -> list[s
     for i in np.flatnonzero(among).tolist():
         if words[i]:
             found.setdefault(words[i], []).append(rows.labels[i])
-    notes = []
-    for word, names in found.items():
-        more = f", and {len(names) - _NAMES} more" if len(names) > _NAMES else ""
-        notes.append(f"{word[0].upper()}{word[1:]}: {', '.join(names[:_NAMES])}{more}.")
-    return notes
+    return [f"{word[0].upper()}{word[1:]}: {listed(names)}." for word, names in found.items()]

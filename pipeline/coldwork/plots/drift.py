@@ -13,8 +13,9 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
-from coldwork.plots.names import label_lines, told_apart, width
+from coldwork.plots.names import counted, label_lines, listed, told_apart, width
 from coldwork.plots.quantity import Scale, robust_limits
+from coldwork.plots.rows import Rows
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
 from coldwork.plots.style import BLUE, GREY, INK, PAPER, RED, Mark, Sizes, house
 from coldwork.plots.times import Clock, seconds_of
@@ -45,13 +46,16 @@ class _Course:
 
     `x`: place on the axis of time or of order [s or 1]; `clock`: that axis of time;
     `sitting`: readings of one sitting have one number; `away`: deviation from the
-    reference [%]; `panel`, `mark`: places of tester and operator in their lists.
+    reference [%]; `coupon` by its
+    place, `number` of the reading; `panel`, `mark`: places of tester and operator in their lists.
     """
 
     x: FloatArray
     clock: Clock | None
     sitting: NDArray[np.intp]
     away: FloatArray
+    coupon: NDArray[np.intp]
+    number: FloatArray
     panel: NDArray[np.intp]
     mark: NDArray[np.intp]
     testers: list[str]
@@ -86,7 +90,11 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
     with house():
         chosen = readings[used]
         course, notes = _course(chosen, place[used], away, context)
-        return [_figure(course, label, notes, context)]
+        scale = Scale(label, 1.0, *robust_limits(course.away, np.zeros(1)))
+        beyond = (course.away < scale.low) | (course.away > scale.high)
+        if beyond.any():
+            notes.append(_beyond(frames, course, beyond))
+        return [_figure(course, scale, notes, context)]
 
 
 def _deviations(
@@ -94,8 +102,8 @@ def _deviations(
 ) -> tuple[FloatArray, str]:
     """Give each reading's deviation from its reference [%], and what that is.
 
-    The reference is the mean of the condition where two or more of its coupons were
-    read: the drift between coupons would vanish in a mean of each coupon's own.
+    The reference is the median of the condition where two or more of its coupons were
+    read: the drift between coupons would vanish beside each coupon's own.
     """
     columns = ("hardness_scale", "lot_id", "condition")
     described = list(zip(*(texts(coupons, name) for name in columns), strict=True))
@@ -111,11 +119,10 @@ def _deviations(
     )
     group = group_of[place]
     count = np.bincount(group, minlength=len(names))
-    with np.errstate(divide="ignore", invalid="ignore"):
-        mean = np.bincount(group, value, len(names)) / count
-        away = 100.0 * (value / mean[group] - 1.0)
+    middle = pd.Series(value).groupby(group).transform("median").to_numpy()
+    away = 100.0 * (value / middle - 1.0)
     what = "condition" if any(shared[i] for i in read) else "coupon"
-    return np.where(count[group] > 1, away, np.nan), f"Deviation from the mean of its {what} [%]"
+    return np.where(count[group] > 1, away, np.nan), f"Deviation from the median of its {what} [%]"
 
 
 def _course(
@@ -135,19 +142,20 @@ def _course(
         x, sitting = clock.place(seconds[order]), clock.sitting(seconds[order])
     else:
         x, sitting = np.arange(1.0, len(order) + 1.0), np.zeros(len(order), dtype=np.intp)
-    panel, testers = _indexed(
-        [texts(readings, "tester")[i] for i in order], _MOST_TESTERS, "tester"
-    )
-    marks = len(_OPERATORS) + 1
-    mark, operators = _indexed([texts(readings, "operator")[i] for i in order], marks, "operator")
+    chosen = readings.iloc[order]
+    panel, testers = _indexed(texts(chosen, "tester"), _MOST_TESTERS, "tester")
+    mark, operators = _indexed(texts(chosen, "operator"), len(_OPERATORS) + 1, "operator")
     testers = [f"tester {name}" if name else name for name in testers]
-    course = _Course(x, clock, sitting, away[order], panel, mark, testers, operators)
+    number = numbers(chosen, "reading_no")
+    course = _Course(
+        x, clock, sitting, away[order], place[order], number, panel, mark, testers, operators
+    )
     return course, [note for note in notes if note]
 
 
 def _left_out(which: NDArray[np.bool_], why: str) -> str:
     n = int(which.sum())
-    return f"{n} reading{'s' if n > 1 else ''} not shown: {why}." if n else ""
+    return f"{counted(n, 'reading')} not shown: {why}." if n else ""
 
 
 def _indexed(names: list[str], most: int, noun: str) -> tuple[NDArray[np.intp], list[str]]:
@@ -162,13 +170,25 @@ def _indexed(names: list[str], most: int, noun: str) -> tuple[NDArray[np.intp], 
     return np.array([places.get(name, len(kept)) for name in names], dtype=np.intp), labels
 
 
-def _figure(course: _Course, label: str, notes: list[str], context: Context) -> Figure:
+def _beyond(frames: Frames, course: _Course, which: NDArray[np.bool_]) -> str:
+    labels = Rows.of(frames).labels
+    told = [
+        f"{labels[i]} no. {n:.0f} at {x:+.1f} %"
+        for i, n, x in zip(
+            course.coupon[which], course.number[which], course.away[which], strict=True
+        )
+    ]
+    return f"Beyond the axis: {listed(told, 6)}."
+
+
+def _figure(course: _Course, scale: Scale, notes: list[str], context: Context) -> Figure:
     n = len(course.testers)
-    high, gap, below = _HEIGHTS.get(n, 1.7), 0.34, 0.62
-    scale = Scale(label, 1.0, *robust_limits(course.away, np.zeros(1)))
+    high = _HEIGHTS.get(n, 1.7)
+    gap = 0.34 if any(course.testers) else 0.12
+    below = 0.62 if course.clock else 0.5
     if course.clock is not None and len(course.clock.starts) > 1:
         notes = [*notes, "Dotted upright lines: time without readings is left out."]
-    facts = [f"{len(course.away)} readings", "by tester and operator"]
+    facts = [counted(len(course.away), "reading"), "by tester and operator"]
     key = _key(course, scale)
     sheet = Sheet("Readings in the order of the test", context, facts, key, notes)
     figure, base = open_sheet(sheet, (high + gap) * n + below)
@@ -179,7 +199,7 @@ def _figure(course: _Course, label: str, notes: list[str], context: Context) -> 
         if len(course.testers) > 1 or tester:
             name = tester or "tester not given"
             axes.set_title(name, fontsize=Sizes.words, loc="left", pad=4.0)
-        axes.set_ylabel(_stacked(label, high))
+        axes.set_ylabel(_stacked(scale.label, high))
         panels.append(axes)
     if course.clock is not None:
         course.clock.on(panels, wide)
@@ -210,7 +230,9 @@ def _fill(axes: Axes, course: _Course, panel: int, scale: Scale) -> None:
     inside = (course.away >= scale.low) & (course.away <= scale.high)
     for i in range(len(course.operators)):
         mine = here & inside & (course.mark == i)
-        _mark(course, i).put(axes, course.x[mine], course.away[mine], raster=raster)
+        _mark(course, i).put(
+            axes, course.x[mine], course.away[mine], raster=raster, scale=0.75 if raster else 1.0
+        )
     for mark, edge, out in (
         (_BELOW, scale.inside(0), course.away < scale.low),
         (_ABOVE, scale.inside(1), course.away > scale.high),
@@ -229,7 +251,9 @@ def _blocks(course: _Course, here: NDArray[np.bool_]) -> Iterator[NDArray[np.int
     size = max(_LEAST_BLOCK, int(np.ceil(here.sum() / _BLOCKS)))
     readings = np.flatnonzero(here)
     steps = np.diff(course.x[readings])
-    pause = np.inf if course.clock is None else 10.0 * float(np.median(steps)) if len(steps) else 0.0
+    pause = (
+        np.inf if course.clock is None else 10.0 * float(np.median(steps)) if len(steps) else 0.0
+    )
     cuts = (steps > pause) | (np.diff(course.sitting[readings]) > 0)
     for members in np.split(readings, np.flatnonzero(cuts) + 1):
         if len(members) >= _LEAST_BLOCK // 2:

@@ -12,7 +12,18 @@ from functools import cache
 from matplotlib.font_manager import findfont
 from matplotlib.ft2font import FT2Font, LoadFlags
 
-__all__ = ["ELLIPSIS", "FONT", "fitted", "label_lines", "shown", "told_apart", "width", "wrapped"]
+__all__ = [
+    "ELLIPSIS",
+    "FONT",
+    "counted",
+    "fitted",
+    "label_lines",
+    "listed",
+    "shown",
+    "told_apart",
+    "width",
+    "wrapped",
+]
 
 FONT = "DejaVu Sans"  # comes with matplotlib, so it is the same everywhere
 ELLIPSIS = "…"
@@ -157,6 +168,17 @@ def wrapped(text: str, size: float, room: float) -> list[str]:
             longer = word
         line = fitted(longer, size, room) if longer == word else longer
     return [*lines, line] if line else lines
+
+
+def counted(n: int, noun: str) -> str:
+    """Give a number with its noun, such as `1 coupon` or `5 coupons`."""
+    return f"{n} {noun}" if n == 1 else f"{n} {noun}s"
+
+
+def listed(items: Sequence[str], most: int = 8) -> str:
+    """Give the first items of a list in words, and how many more there are."""
+    more = len(items) - most
+    return ", ".join(items[:most]) + (f", and {more} more" if more > 0 else "")
 
 
 def label_lines(label: str, size: float, room: float) -> list[str]:

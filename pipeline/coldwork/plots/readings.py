@@ -2,7 +2,7 @@
 
 from collections import Counter
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from matplotlib.artist import Artist
@@ -11,11 +11,12 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
+from coldwork.plots.names import counted, listed
 from coldwork.plots.quantity import Scale, heading, robust_limits, scale_of
 from coldwork.plots.rows import MOST_COUPONS, Page, Panel, Rows, Strip, row_pages
 from coldwork.plots.sheet import Sheet
 from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key, spans_of, why_missing
-from coldwork.plots.style import GREY, INK, PAPER, Mark, house
+from coldwork.plots.style import GREY, INK, PAPER, SMALL, Mark, house
 
 __all__ = ["draw"]
 
@@ -40,11 +41,18 @@ class _Points:
         The reading. [kgf/mm² or MPa]
     kind : ndarray of intp, shape (m,)
         Index into `_KINDS`.
+    number : ndarray, shape (m,)
+        Number of the reading in its coupon. [1]
     """
 
     coupon: NDArray[np.intp]
     value: FloatArray
     kind: NDArray[np.intp]
+    number: FloatArray
+
+    def at(self, chosen: NDArray[np.bool_]) -> "_Points":
+        """Give some of them."""
+        return _Points(*(getattr(self, f.name)[chosen] for f in fields(self)))
 
 
 _KINDS = (
@@ -80,13 +88,13 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
         if not (points.kind != len(_KINDS) - 1).any():
             return []
         spans = spans_of(frames, rows.ids, column)
-        words = _remarks(frames, rows, why_missing(frames, spans))
+        remarks = _remarks(frames, rows, why_missing(frames, spans))
         scales = _scales(coupons_scales=texts(coupons, "hardness_scale"), route=context.route)
         figures: list[Figure] = []
         for scale in dict.fromkeys(scales):
             chosen = np.flatnonzero(np.array(scales) == scale)
             subject = _Subject(frames, context, rows, column, scale)
-            figures += subject.pages(points, spans, words, chosen)
+            figures += subject.pages(points, spans, remarks, chosen)
         return figures
 
 
@@ -99,14 +107,15 @@ class _Subject:
     scale: str
 
     def pages(
-        self, points: _Points, spans: Spans, words: list[str], chosen: NDArray[np.intp]
+        self, points: _Points, spans: Spans, remarks: Strip, chosen: NDArray[np.intp]
     ) -> Iterator[Figure]:
-        here = np.isin(points.coupon, chosen)
-        points = _Points(points.coupon[here], points.value[here], points.kind[here])
+        points = points.at(np.isin(points.coupon, chosen))
         own = spans.at(chosen)
         ends = np.concatenate([own.value, own.lower, own.upper])
         drawn = points.value[points.kind != len(_KINDS) - 1]
-        scale = scale_of(self.column, [np.array(robust_limits(drawn, ends))], detail=self.scale, zero=False)
+        scale = scale_of(
+            self.column, [np.array(robust_limits(drawn, ends))], detail=self.scale, zero=False
+        )
         relative = _relative(spans)
         away = 100.0 * (points.value / spans.value[points.coupon] - 1.0)
         away[points.kind == 2] = np.nan
@@ -114,10 +123,12 @@ class _Subject:
         low, high = robust_limits(away[points.kind < 2], span_ends)
         percent = Scale("Deviation from the coupon's mean [%]", 1.0, low, high)
         beyond = _outside(points.value, scale) | _outside(away, percent)
-        key = self._key(points, own, bool((beyond & (points.kind < 3)).any()))
-        sheet = Sheet(self._title(), self.context, self._facts(points, chosen), key, self._notes())
+        beyond &= points.kind < 3
+        key = self._key(points, own, bool(beyond.any()))
+        notes = self._notes(points.at(beyond), away[beyond])
+        sheet = Sheet(self._title(), self.context, self._facts(points, chosen), key, notes)
         panels = [Panel(scale.label), Panel(percent.label, 1.25)]
-        for page in row_pages(sheet, self.rows, chosen, panels, [Strip("× set aside, remarks", words)]):
+        for page in row_pages(sheet, self.rows, chosen, panels, [remarks]):
             _fill(page, 0, scale, points, points.value, spans)
             _fill(page, 1, percent, points, away, relative)
             yield page.figure
@@ -128,7 +139,7 @@ class _Subject:
 
     def _facts(self, points: _Points, chosen: NDArray[np.intp]) -> list[str]:
         used = int((points.kind < 3).sum())
-        return [f"{len(chosen)} coupons", f"{used} readings used"]
+        return [counted(len(chosen), "coupon"), f"{counted(used, 'reading')} used"]
 
     def _key(self, points: _Points, spans: Spans, beyond: bool) -> list[tuple[Artist, str]]:
         found: list[tuple[Artist, str]] = [
@@ -139,13 +150,19 @@ class _Subject:
         if beyond:
             found.append((_BEYOND[1].sample(), "reading beyond the axis"))
         found.append((MEAN.sample(), "mean"))
-        return found + span_key(spans, self.context)
+        return found + span_key(spans, self.context, crowd=not self.rows.named)
 
-    def _notes(self) -> list[str]:
+    def _notes(self, beyond: _Points, away: FloatArray) -> list[str]:
         notes = [
             "Each row shows its readings above the line and their mean with its interval below it; "
             "on the right the same as deviations from that mean."
         ]
+        if len(away):
+            told = [
+                f"{self.rows.labels[i]} no. {n:.0f} at {x:+.1f} %"
+                for i, n, x in zip(beyond.coupon, beyond.number, away, strict=True)
+            ]
+            notes.append(f"Beyond the axis: {listed(told, 6)}.")
         set_aside = frame_of(self.frames, "set_aside")
         homeless = int((aligned(self.rows.ids, texts(set_aside, "coupon_id")) < 0).sum())
         if homeless:
@@ -164,22 +181,23 @@ def _fill(
     rows = row_of[points.coupon]
     x = values * scale.factor
     here = (rows >= 0) & np.isfinite(x)
-    raster = page.raster or int(here.sum()) > _MANY
+    raster = page.crowd or int(here.sum()) > _MANY
+    small = SMALL if page.crowd else 0.75 if raster else 1.0
     if panel:
         axes.axvline(0.0, color=GREY, linewidth=0.6)
     for kind, (mark, _) in enumerate(_KINDS):
         mine = here & (points.kind == kind)
         inside = mine & ~_outside(values, scale)
-        mark.put(axes, x[inside], rows[inside] + _UP, raster=raster)
+        mark.put(axes, x[inside], rows[inside] + _UP, raster=raster, scale=small)
         if kind < 3:
             for end in (0, 1):
                 out = mine & ((x < scale.low) if end == 0 else (x > scale.high))
                 _BEYOND[end].put(axes, np.full(int(out.sum()), scale.inside(end)), rows[out] + _UP)
     shown = spans.at(page.places).times(scale.factor)
     lines = np.arange(len(page.places), dtype=np.float64) + _DOWN
-    draw_spans(axes, shown, lines, raster=raster)
+    draw_spans(axes, shown, lines, crowd=page.crowd)
     known = np.isfinite(shown.value)
-    MEAN.put(axes, shown.value[known], lines[known], raster=raster)
+    page.put(MEAN, shown.value[known], lines[known], panel)
 
 
 def _points(frames: Frames, rows: Rows, column: str) -> _Points:
@@ -192,7 +210,8 @@ def _points(frames: Frames, rows: Rows, column: str) -> _Points:
     value = np.concatenate([numbers(readings, column), numbers(own, "raw")])
     kinds = np.concatenate([kind, np.full(len(own), len(_KINDS) - 1)])
     keep = (coupon >= 0) & np.isfinite(value)
-    return _Points(coupon[keep], value[keep], kinds[keep])
+    number = np.concatenate([numbers(frame, "reading_no") for frame in (readings, own)])
+    return _Points(coupon, value, kinds, number).at(keep)
 
 
 def _relative(spans: Spans) -> Spans:
@@ -213,17 +232,19 @@ def _scales(coupons_scales: list[str], route: str) -> list[str]:
     return [scale or usual for scale in coupons_scales]
 
 
-def _remarks(frames: Frames, rows: Rows, missing: list[str]) -> list[str]:
+def _remarks(frames: Frames, rows: Rows, missing: list[str]) -> Strip:
     set_aside = frame_of(frames, "set_aside")
     rules: dict[int, Counter[str]] = {}
     places = aligned(rows.ids, texts(set_aside, "coupon_id"))
     for place, rule in zip(places, texts(set_aside, "rule"), strict=True):
         rules.setdefault(int(place), Counter())[rule] += 1
-    words = []
+    words, kinds = [], []
     for i, gap in enumerate(missing):
         counts = rules.get(i, Counter())
         numbered = len(counts) > 1 and counts.total() > len(counts)
-        told = ", ".join(f"{rule} {n}" if numbered else rule for rule, n in counts.items())
+        rules_told = [f"{rule} {n}" if numbered else rule for rule, n in counts.most_common()]
+        told = ", ".join(rules_told[:2]) + (", …" if len(rules_told) > 2 else "")
         aside = f"× {counts.total()} {told}" if counts else ""
         words.append("; ".join(filter(None, [gap, aside])))
-    return words
+        kinds.append(gap or ("with readings set aside" if counts else ""))
+    return Strip("× set aside, remarks", words, kinds)

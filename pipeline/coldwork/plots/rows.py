@@ -13,10 +13,10 @@ from matplotlib.ticker import FuncFormatter, MaxNLocator
 from matplotlib.transforms import ScaledTranslation
 from numpy.typing import NDArray
 
-from coldwork.plots.columns import Frames, frame_of, runs, texts
+from coldwork.plots.columns import FloatArray, Frames, frame_of, runs, texts
 from coldwork.plots.names import label_lines, told_apart, width
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
-from coldwork.plots.style import FAINT, GREY, INK, Sizes
+from coldwork.plots.style import FAINT, GREY, INK, SMALL, Mark, Sizes
 
 __all__ = ["MOST_COUPONS", "MOST_NAMED", "Page", "Panel", "Rows", "Strip", "row_pages"]
 
@@ -40,6 +40,15 @@ class Strip:
 
     heading: str
     words: Sequence[str]
+    kinds: Sequence[str] = ()
+
+    def counts(self, chosen: NDArray[np.intp]) -> str:
+        """Count its words, or the kinds that stand for them, where rows have no room for words."""
+        told = self.kinds or self.words
+        most = Counter(told[i] for i in chosen.tolist() if told[i]).most_common()
+        first = [f"{n} {word}" for word, n in most[:6]]
+        rest = sum(n for _, n in most[6:])
+        return ", ".join([*first, *([f"{rest} others"] if rest else [])])
 
 
 @dataclass(frozen=True)
@@ -62,14 +71,19 @@ class Page:
         Its panels; the row of a coupon is its place in `places`, from 0 downwards.
     places : ndarray of intp, shape (k,)
         The coupons that stand on this page, by their place in the batch.
-    raster : bool
-        Whether there are so many that marks should be pixels.
+    crowd : bool
+        Whether there are so many that marks are small and pixels.
     """
 
     figure: Figure
     panels: list[Axes]
     places: NDArray[np.intp]
-    raster: bool
+    crowd: bool
+
+    def put(self, mark: Mark, x: FloatArray, y: FloatArray, panel: int = 0) -> None:
+        """Draw a mark at places on a panel, small in a crowd."""
+        scale = SMALL if self.crowd else 1.0
+        mark.put(self.panels[panel], x, y, raster=self.crowd, scale=scale)
 
 
 @dataclass(frozen=True)
@@ -141,7 +155,7 @@ def row_pages(
     """
     said = [strip for strip in strips if any(strip.words[i] for i in chosen)]
     if not rows.named:
-        counts = [f"{s.heading}: {_counted([s.words[i] for i in chosen])}." for s in said]
+        counts = [f"{strip.heading}: {strip.counts(chosen)}." for strip in said]
         yield _crowd(replace(sheet, notes=[*sheet.notes, *counts]), chosen, panels)
         return
     pages = ceil(len(chosen) / _ROWS_A_PAGE)
@@ -178,7 +192,7 @@ def _page(
         else:
             _bracket(axes, [words[place] for place in places], at)
         at += wide + _GAP
-    return Page(figure, axes, places, raster=False)
+    return Page(figure, axes, places, crowd=False)
 
 
 def _crowd(sheet: Sheet, places: NDArray[np.intp], panels: Sequence[Panel]) -> Page:
@@ -189,7 +203,7 @@ def _crowd(sheet: Sheet, places: NDArray[np.intp], panels: Sequence[Panel]) -> P
     axes[0].yaxis.set_major_formatter(
         FuncFormatter(lambda y, _: str(places[round(y)] + 1) if 0 <= y <= last else "")
     )
-    return Page(figure, axes, places, raster=True)
+    return Page(figure, axes, places, crowd=True)
 
 
 def _panels(
@@ -269,10 +283,3 @@ def _bracket(axes: Sequence[Axes], groups: Sequence[str], at: float) -> None:
                 clip_on=False,
             )
             _word(last, groups[start], (start + stop - 1) / 2.0, at + 0.08)
-
-
-def _counted(words: Sequence[str]) -> str:
-    counts = Counter(filter(None, words)).most_common()
-    first = [f"{word} {n}" for word, n in counts[:6]]
-    rest = sum(n for _, n in counts[6:])
-    return ", ".join([*first, *([f"others {rest}"] if rest else [])])

@@ -19,6 +19,7 @@ from coldwork.plots.columns import (
     texts,
 )
 from coldwork.plots.context import Context
+from coldwork.plots.names import counted
 from coldwork.plots.quantity import Scale, robust_limits
 from coldwork.plots.rows import MOST_COUPONS, Page, Panel, Rows, Strip, row_pages
 from coldwork.plots.sheet import Sheet
@@ -60,7 +61,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
         sheet = Sheet(
             "Scatter of the readings in each coupon",
             context,
-            [f"{len(rows.ids)} coupons"],
+            [counted(len(rows.ids), "coupon")],
             data.key(high),
             [
                 "The pooled value is that of coupons of one scale, nominal force and condition; "
@@ -111,7 +112,7 @@ class _Data:
         words = []
         for n, s, left in zip(self.count, self.s, self.left, strict=True):
             count = "none" if np.isnan(n) or n == 0 else f"{n:.0f}"
-            told = ", left the pool" if left else ""
+            told = f", {s:.2g} %, left the pool" if left else ""
             words.append(f"{count}{told}" if np.isfinite(s) or n != 1 else f"{count}, no scatter")
         return words
 
@@ -140,9 +141,9 @@ class _Data:
         lines = np.arange(len(places), dtype=np.float64)
         inside = np.isfinite(s) & (s <= scale.high)
         for mark, mine in ((_IN_POOL, inside & ~left), (_LEFT, inside & left)):
-            mark.put(axes, s[mine], lines[mine], raster=page.raster)
+            page.put(mark, s[mine], lines[mine])
         beyond = s > scale.high
-        _BEYOND.put(axes, np.full(int(beyond.sum()), scale.inside(1)), lines[beyond], raster=page.raster)
+        page.put(_BEYOND, np.full(int(beyond.sum()), scale.inside(1)), lines[beyond])
 
 
 def _draw_steps(axes: Axes, values: FloatArray, dashes: Dashes, width: float) -> None:
@@ -151,4 +152,12 @@ def _draw_steps(axes: Axes, values: FloatArray, dashes: Dashes, width: float) ->
         if np.isfinite(values[start]):
             ends = [start - 0.5, stop - 0.5]
             at = [float(values[start])] * 2
-            axes.plot(at, ends, color=INK, linewidth=width, linestyle=dashes, zorder=1.5, solid_capstyle="butt")
+            axes.plot(
+                at,
+                ends,
+                color=INK,
+                linewidth=width,
+                linestyle=dashes,
+                zorder=1.5,
+                solid_capstyle="butt",
+            )

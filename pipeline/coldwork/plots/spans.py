@@ -11,14 +11,40 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
-from coldwork.plots.style import GREY, INK, PAPER, Dashes, Mark
+from coldwork.plots.style import GREY, INK, PAPER, SMALL, Dashes, Mark
 
 __all__ = ["MEAN", "Spans", "draw_spans", "span_key", "spans_of", "why_missing"]
 
 MEAN = Mark("o", 4.2, INK, PAPER, 0.5)
-_OWN_WIDTH, _TOTAL_WIDTH = 4.6, 0.9
-_DASHES: Dashes = (0, (2.0, 1.6))  # of an interval without a value
-_OWN = "#9a9a9a"
+
+
+@dataclass(frozen=True)
+class _Line:
+    """One kind of line: thickness [pt], colour, dashes."""
+
+    width: float
+    colour: str
+    dashes: Dashes = "-"
+
+    def sample(self, mark: Mark | None = None) -> Artist:
+        """Make its sample for a key, thick enough to be seen, under a mark."""
+        width = max(self.width, 4.6) if self.colour in (_SHADE, _DARK) else self.width
+        return (mark or Mark("", 0.0)).sample(width, self.dashes, self.colour)
+
+
+@dataclass(frozen=True)
+class _Look:
+    """The lines of intervals: from end to end, the own part, and without a value."""
+
+    total: _Line
+    own: _Line
+    one_sided: _Line
+
+
+_SHADE, _DARK = "#cacaca", "#8a8a8a"
+_LOOK = _Look(_Line(0.9, INK), _Line(4.6, "#9a9a9a"), _Line(0.9, GREY, (0, (2.0, 1.6))))
+_CROWD = _Look(_Line(1.5, _SHADE), _Line(1.5, _DARK), _Line(0.3, GREY))
+_CAPS = (Mark("|", 5.0, INK, INK, 0.9), Mark("_", 5.0, INK, INK, 0.9))
 _REASONS = (  # rule that empties a quantity, and the words for it, the gravest first
     ("no-readings", "no readings"),
     ("mixed-forces", "no value: mixed forces"),
@@ -90,7 +116,7 @@ def spans_of(frames: Frames, ids: Sequence[str], column: str) -> Spans:
 
 
 def draw_spans(
-    axes: Axes, spans: Spans, places: FloatArray, *, upright: bool = False, raster: bool = False
+    axes: Axes, spans: Spans, places: FloatArray, *, upright: bool = False, crowd: bool = False
 ) -> None:
     """Draw intervals: thin from end to end, thick for the own part of it.
 
@@ -104,68 +130,66 @@ def draw_spans(
         Where on the other axis. [unit of that axis]
     upright : bool
         Whether the values run upwards instead of to the right.
-    raster : bool
-        Whether to draw as pixels, for very many.
+    crowd : bool
+        Whether there are so many that they are told apart by shade, and drawn as pixels.
     """
     low, high = axes.get_ylim() if upright else axes.get_xlim()
     known = np.isfinite(spans.value)
     bounded = known & (np.isfinite(spans.lower) | np.isfinite(spans.upper))
     left = np.clip(np.where(np.isfinite(spans.lower), spans.lower, low), low, high)
     right = np.clip(np.where(np.isfinite(spans.upper), spans.upper, high), low, high)
+    look = _CROWD if crowd else _LOOK
 
-    def lines(
-        keep: NDArray[np.bool_], a: FloatArray, b: FloatArray, width: float, colour: str
-    ) -> None:
+    def lines(keep: NDArray[np.bool_], a: FloatArray, b: FloatArray, line: _Line) -> None:
         ends = np.stack([a, places, b, places], axis=-1)[keep].reshape(-1, 2, 2)
-        dashes = _DASHES if colour == GREY else "solid"
-        collection = LineCollection(
-            list(ends[..., ::-1] if upright else ends),
-            linewidths=width,
-            colors=colour,
-            linestyles=[dashes],
-            capstyle="butt",
-            rasterized=raster,
-            zorder=2,
+        axes.add_collection(
+            LineCollection(
+                list(ends[..., ::-1] if upright else ends),
+                linewidths=line.width,
+                colors=line.colour,
+                linestyles=[line.dashes],
+                capstyle="butt",
+                rasterized=crowd,
+                zorder=2,
+            ),
+            autolim=False,
         )
-        axes.add_collection(collection, autolim=False)
 
     def marks(mark: Mark, keep: NDArray[np.bool_], x: FloatArray) -> None:
         pair = (places[keep], x[keep]) if upright else (x[keep], places[keep])
-        mark.put(axes, *pair, raster=raster)
+        mark.put(axes, *pair, raster=crowd, scale=SMALL if crowd else 1.0)
 
-    cap = Mark("_" if upright else "|", 5.0, INK, INK, _TOTAL_WIDTH)
-    lines(bounded, left, right, _TOTAL_WIDTH, INK)
+    lines(bounded, left, right, look.total)
     own = bounded & np.isfinite(spans.own)
     thick_left = spans.value - spans.own * (spans.value - left)
     thick_right = spans.value + spans.own * (right - spans.value)
-    lines(own, thick_left, thick_right, _OWN_WIDTH, _OWN)
-    marks(cap, bounded & (left > low), left)
-    marks(cap, bounded & (right < high), right)
-    marks(_open_end(upright, up=False), bounded & np.isnan(spans.lower), left)
-    marks(_open_end(upright, up=True), bounded & np.isnan(spans.upper), right)
-    one_sided = spans.one_sided
-    lines(one_sided, left, right, _TOTAL_WIDTH, GREY)
-    marks(_open_end(upright, up=False), one_sided, right)
+    lines(own, thick_left, thick_right, look.own)
+    lines(spans.one_sided, left, right, look.one_sided)
+    marks(_open_end(upright, up=False), spans.one_sided, right)
+    if not crowd:
+        cap = _CAPS[upright]
+        marks(cap, bounded & (left > low), left)
+        marks(cap, bounded & (right < high), right)
+        marks(_open_end(upright, up=False), bounded & np.isnan(spans.lower), left)
+        marks(_open_end(upright, up=True), bounded & np.isnan(spans.upper), right)
 
 
-def span_key(spans: Spans, context: Context, *, upright: bool = False) -> list[tuple[Artist, str]]:
+def span_key(
+    spans: Spans, context: Context, *, upright: bool = False, crowd: bool = False
+) -> list[tuple[Artist, str]]:
     """Give the samples of a key for what `draw_spans` draws, without what does not occur."""
+    look = _CROWD if crowd else _LOOK
     known = np.isfinite(spans.value)
     found: list[tuple[Artist, str]] = []
     if (known & np.isfinite(spans.upper)).any():
-        cap = Mark("|", 5.0, INK, INK, _TOTAL_WIDTH)
-        found.append((cap.sample(_TOTAL_WIDTH), f"{context.percent} interval, own and shared"))
-        own = Mark("", 0.0, _OWN, _OWN)
-        found.append((own.sample(_OWN_WIDTH), "own part of it: interval × u_own / u"))
-    if (known & (np.isnan(spans.upper) ^ np.isnan(spans.lower))).any():
-        arrow = _open_end(upright, up=True)
-        found.append((arrow.sample(_TOTAL_WIDTH), "interval without that end"))
+        cap = Mark("", 0.0) if crowd else _CAPS[False]
+        found.append((look.total.sample(cap), f"{context.percent} interval, own and shared"))
+        found.append((look.own.sample(), "own part of it: interval × u_own / u"))
+    if (known & (np.isnan(spans.upper) ^ np.isnan(spans.lower))).any() and not crowd:
+        found.append((look.total.sample(_open_end(upright, up=True)), "interval without that end"))
     if spans.one_sided.any():
-        arrow = _open_end(upright, up=False)
-        dashed = Mark(arrow.shape, arrow.size, PAPER, GREY)
-        found.append(
-            (dashed.sample(_TOTAL_WIDTH, _DASHES), "no value: upper end of the interval only")
-        )
+        sample = look.one_sided.sample(_open_end(upright, up=False))
+        found.append((sample, "no value: upper end of the interval only"))
     return found
 
 

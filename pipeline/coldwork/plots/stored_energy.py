@@ -10,7 +10,7 @@ from matplotlib.figure import Figure
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
-from coldwork.plots.names import fitted, shown
+from coldwork.plots.names import counted, fitted, shown
 from coldwork.plots.quantity import Scale, heading, scale_of
 from coldwork.plots.rows import MOST_COUPONS, Page, Panel, Rows, Strip, row_pages
 from coldwork.plots.sheet import Sheet
@@ -73,17 +73,17 @@ def _pages(frames: Frames, context: Context, rows: Rows, column: str) -> list[Fi
     ends = np.array([end for limit in limits for end in _ends(limit)], dtype=np.float64)
     scale = scale_of(column, [spans.value, spans.lower, spans.upper, verdicts.bound, ends])
     name, unit = heading(column)
-    key = _key(spans, context, verdicts)
+    key = _key(spans, context, verdicts, crowd=not rows.named)
     key += [(_line(i), _told(limit, unit)) for i, limit in enumerate(limits)]
     sheet = Sheet(
         f"{name} of each coupon" + (", against its limits" if limits else ""),
         context,
-        [f"{len(rows.ids)} coupons", *([] if limits else ["no limit in the batch sheet"])],
+        [counted(len(rows.ids), "coupon"), *([] if limits else ["no limit in the batch sheet"])],
         key,
         _notes(column, context, verdicts),
     )
     strips = [
-        Strip("decision and probability", verdicts.words),
+        Strip("decision and probability", verdicts.words, verdicts.decision),
         Strip("remarks", why_missing(frames, spans)),
     ]
     everyone = np.arange(len(rows.ids))
@@ -101,16 +101,16 @@ def _pages(frames: Frames, context: Context, rows: Rows, column: str) -> list[Fi
 def _fill(page: Page, spans: Spans, verdicts: _Verdicts, scale: Scale) -> None:
     axes = page.panels[0]
     lines = np.arange(len(page.places), dtype=np.float64)
-    draw_spans(axes, spans, lines, raster=page.raster)
+    draw_spans(axes, spans, lines, crowd=page.crowd)
     bound = verdicts.bound[page.places] * scale.factor
-    known = np.isfinite(bound)
-    _BOUND.put(axes, bound[known], lines[known], raster=page.raster)
+    known = np.isfinite(bound) & (not page.crowd)
+    page.put(_BOUND, bound[known], lines[known])
     decisions = np.array([verdicts.decision[i] for i in page.places])
     for word, (mark, _) in _DECISIONS.items():
         mine = (decisions == word) & np.isfinite(spans.value)
-        mark.put(axes, spans.value[mine], lines[mine], raster=page.raster)
+        page.put(mark, spans.value[mine], lines[mine])
     rest = ~np.isin(decisions, list(_DECISIONS)) & np.isfinite(spans.value)
-    MEAN.put(axes, spans.value[rest], lines[rest], raster=page.raster)
+    page.put(MEAN, spans.value[rest], lines[rest])
 
 
 def _verdicts(frames: Frames, rows: Rows, column: str, *, several: bool) -> _Verdicts:
@@ -175,7 +175,7 @@ def _draw_limit(axes: Axes, limit: Mapping[str, object], scale: Scale, i: int) -
         if not isinstance(end, int | float):
             continue
         x = end * scale.factor
-        axes.axvline(x, color=INK, linewidth=1.3, linestyle=_DASHES[i % len(_DASHES)], zorder=1.5)
+        axes.axvline(x, color=INK, linewidth=1.3, linestyle=_DASHES[i % len(_DASHES)], zorder=2.2)
         outside = (
             x * (scale.high / scale.low) ** (0.012 * side)
             if scale.logarithmic
@@ -194,7 +194,9 @@ def _draw_limit(axes: Axes, limit: Mapping[str, object], scale: Scale, i: int) -
         )
 
 
-def _key(spans: Spans, context: Context, verdicts: _Verdicts) -> list[tuple[Artist, str]]:
+def _key(
+    spans: Spans, context: Context, verdicts: _Verdicts, *, crowd: bool
+) -> list[tuple[Artist, str]]:
     valued = np.isfinite(spans.value)
     seen = {word for word, known in zip(verdicts.decision, valued, strict=True) if known}
     found: list[tuple[Artist, str]] = [
@@ -202,9 +204,9 @@ def _key(spans: Spans, context: Context, verdicts: _Verdicts) -> list[tuple[Arti
     ]
     if seen - set(_DECISIONS):
         found.append((MEAN.sample(), "value, no decision" if context.limits else "value"))
-    if np.isfinite(verdicts.bound).any():
+    if np.isfinite(verdicts.bound).any() and not crowd:
         found.append((_BOUND.sample(), "one-sided bound that decided"))
-    return found + span_key(spans, context)
+    return found + span_key(spans, context, crowd=crowd)
 
 
 def _notes(column: str, context: Context, verdicts: _Verdicts) -> list[str]:

@@ -28,6 +28,7 @@ __all__ = [
     "PAPER",
     "RED",
     "Dashes",
+    "SMALL",
     "Mark",
     "Sizes",
     "house",
@@ -40,6 +41,7 @@ FAINT: Final = "#d4d4d4"
 PAPER: Final = "#ffffff"
 BLUE: Final = "#0072b2"  # of a palette made for colour-blind eyes (Okabe and Ito 2008)
 RED: Final = "#d55e00"
+SMALL: Final = 0.4  # size of a mark in a crowd [1]
 DOTS_PER_INCH: Final = 150
 
 
@@ -115,29 +117,37 @@ class Mark:
     edge: str = INK
     width: float = 0.8
 
-    def put(self, axes: Axes, x: FloatArray, y: FloatArray, *, raster: bool = False) -> None:
-        """Draw it at every place given, over the edge of the panel where it stands there."""
+    def put(
+        self,
+        axes: Axes,
+        x: FloatArray,
+        y: FloatArray,
+        *,
+        raster: bool = False,
+        scale: float = 1.0,
+    ) -> None:
+        """Draw it at every place given, as pixels and smaller where there are many."""
         if len(x):
             axes.plot(
                 x,
                 y,
                 linestyle="",
                 marker=self.shape,
-                markersize=self.size,
+                markersize=self.size * scale,
                 markerfacecolor=self.face,
                 markeredgecolor=self.edge,
-                markeredgewidth=self.width,
+                markeredgewidth=self.width * scale,
                 rasterized=raster,
                 clip_on=raster,
                 zorder=3,
             )
 
-    def sample(self, line: float = 0.0, dashes: Dashes = "-") -> Line2D:
+    def sample(self, line: float = 0.0, dashes: Dashes = "-", colour: str | None = None) -> Line2D:
         """Make its sample for a key, on a line that is so many points thick."""
         return Line2D(
             [],
             [],
-            color=self.edge,
+            color=colour or self.edge,
             linewidth=line,
             linestyle=dashes if line else "none",
             marker=self.shape,

@@ -18,8 +18,8 @@ from coldwork.plots.style import GREY, Sizes
 
 __all__ = ["Clock", "seconds_of"]
 
-_HOUR, _DAY = 3600, 86400  # [s]
-_STEPS = (1, 5, 15, 30, 60, 120, 300, 600, 900, 1800, _HOUR, 7200, 10800, 21600, 43200)  # [s]
+_MINUTE, _HOUR, _DAY = 60, 3600, 86400  # [s]
+_STEPS = (1, 5, 15, 30, _MINUTE, 120, 300, 600, 900, 1800, _HOUR, 7200, 10800, 21600, 43200)  # [s]
 _LONG_STEPS = tuple(_DAY * n for n in (1, 2, 7, 14, 28, 91, 182, 364, 728, 3640))  # [s]
 _TICKS = 9
 _EPOCH, _SECOND = pd.Timestamp(0, tz="UTC"), pd.Timedelta(seconds=1)
@@ -126,9 +126,11 @@ class Clock:
     def _spaced(self, scale: float) -> Iterator[tuple[float, str]]:
         """Give ticks whose labels do not touch, with the date where it begins."""
         busy, day = -np.inf, ""
-        for at, moment, seconds in self._candidates():
+        for at, moment, step in self._candidates():
             date = f"{moment:%Y-%m-%d}"
-            label = f"{moment:%H:%M:%S}" if seconds else f"{moment:%H:%M}"
+            label = f"{moment:%H:%M:%S}" if step < _MINUTE else f"{moment:%H:%M}"
+            if step >= _DAY:
+                label = day = date
             wider = label if date == day else max(label, date, key=len)
             half = width(wider, Sizes.small) / 2.0 + 0.05
             if at * scale - half > busy:
@@ -136,7 +138,7 @@ class Clock:
                 yield at, label if date == day else f"{label}\n{date}"
                 day = date
 
-    def _candidates(self) -> Iterator[tuple[float, datetime, bool]]:
+    def _candidates(self) -> Iterator[tuple[float, datetime, int]]:
         active = float((self.stops - self.starts).sum())
         steps = (*_STEPS, *_LONG_STEPS)
         step = next((s for s in steps if active / s <= _TICKS), steps[-1])
@@ -147,4 +149,4 @@ class Clock:
             marks = np.arange(first, stop + 1e-6, step) if first <= stop else np.array([start])
             for mark in marks:
                 moment = datetime.fromtimestamp(float(mark), self.zone)
-                yield float(offset + mark - start), moment, step < _STEPS[4]
+                yield float(offset + mark - start), moment, step

@@ -146,6 +146,8 @@ def _distinct_rows(keys: FloatArray) -> tuple[NDArray[np.int64], FloatArray]:
 
 def _nearest(scale: NDArray[np.int8], force: FloatArray, ball: FloatArray) -> FloatArray:
     """Give the force of the scale's table that is nearest in ratio, in newton."""
+    if len(force) > 1 and all(_one_value(x) for x in (scale, force, ball)):
+        return np.broadcast_to(_nearest(scale[:1], force[:1], ball[:1]), force.shape)
     kgf = force / units.STANDARD_GRAVITY
     square = units.from_si(ball, "mm") ** 2
     with np.errstate(invalid="ignore", divide="ignore"):
@@ -156,6 +158,11 @@ def _nearest(scale: NDArray[np.int8], force: FloatArray, ball: FloatArray) -> Fl
         default=np.nan,
     )
     return np.asarray(nearest * units.STANDARD_GRAVITY)
+
+
+def _one_value(x: NDArray[np.int8] | FloatArray) -> bool:
+    """Say whether all values are one, or all are missing; most blocks of a file are such."""
+    return bool((x == x[0]).all() or (x != x).all())
 
 
 def _nearest_of(table: FloatArray, value: FloatArray) -> FloatArray:

@@ -48,7 +48,7 @@ NOT_A_NUMBER: Final = Reason(
 )
 OUT_OF_RANGE: Final = Reason(
     "out-of-range",
-    "the number is outside the range that the contract allows",
+    "the value is outside the range that the contract allows",
     "check the unit of the column and the decimal point",
     _TIDY,
 )
