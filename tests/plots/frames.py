@@ -6,7 +6,6 @@ against these numbers, they only have to look like a batch.
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
-
 from typing import TypeAlias
 
 import numpy as np

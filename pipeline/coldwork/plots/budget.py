@@ -148,12 +148,15 @@ def _reduced(table: _Budget) -> _Budget:
 def _groups(
     rows: Rows, spans: Spans, members: NDArray[np.intp], column: str
 ) -> tuple[list[_Group], str]:
-    names = list(dict.fromkeys(rows.groups[i] for i in members))
+    group_of = rows.groups
+    if len({group_of[i] for i in members.tolist()}) > _PANELS_A_PAGE:
+        group_of = rows.conditions  # whatever the lot
+    names = list(dict.fromkeys(group_of[i] for i in members.tolist()))
     if len(names) == 1:
         return [_Group(names[0] or "all coupons", members)], "mean of all coupons"
     if len(names) <= _MOST_GROUPS:
         groups = [
-            _Group(name or "without one", members[[rows.groups[i] == name for i in members]])
+            _Group(name or "without one", members[[group_of[i] == name for i in members.tolist()]])
             for name in names
         ]
         return groups, "mean of each condition"
@@ -186,7 +189,7 @@ def _figure(
         with np.errstate(divide="ignore", invalid="ignore"):
             relative = float(np.median(100.0 * u[group.members] / values[group.members]))
         title = [counted(size, "coupon")]
-        title += [f"u {float(f'{relative:.2g}'):g} %"] if np.isfinite(relative) else []
+        title.append(f"u {float(f'{relative:.2g}'):g} %" if np.isfinite(relative) else "u unknown")
         name = fitted(told_apart([group.name], Sizes.small, wide)[0], Sizes.small, wide)
         axes.set_title("\n".join([name, *title]), fontsize=Sizes.small, loc="left", pad=4.0)
         if not i:

@@ -47,7 +47,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
         scale = scale_of(_COLUMN, [spans.value, spans.lower, spans.upper])
         strains = _strains(frames, rows)
         given = np.isfinite(strains)
-        words = why_missing(frames, spans)
+        words = why_missing(frames, rows.ids, _COLUMN, spans)
         if given.mean() > 0.5 and len(np.unique(strains[given])) > 1:
             return [_against_strain(context, rows, strains, spans, (scale, words))]
         sheet = Sheet(

@@ -9,6 +9,7 @@ import pandas as pd
 from matplotlib.artist import Artist
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
+from matplotlib.ticker import MaxNLocator
 from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
@@ -37,6 +38,7 @@ _COURSE_WIDTH = 2.4  # of the mean of successive readings [pt]
 _MOST_TESTERS = 6
 _MANY = 2000  # readings above which they are drawn as pixels
 _LEAST_BLOCK, _BLOCKS = 8, 15  # readings in a mean at least, means in a panel about
+_PAUSE = 0.06  # without readings that a mean does not cross [length of the axis]
 _HEIGHTS = {1: 3.6, 2: 2.4}  # of a panel; 1.7 where there are more [inch]
 
 
@@ -207,6 +209,7 @@ def _figure(course: _Course, scale: Scale, notes: list[str], context: Context) -
     else:
         for axes in panels:
             axes.set_xlim(0.0, len(course.x) + 1.0)
+            axes.xaxis.set_major_locator(MaxNLocator(10, integer=True))
             axes.tick_params(axis="x", labelbottom=axes is panels[-1])
         panels[-1].set_xlabel(
             "Place in the order of coupons and reading numbers (no times were given) [1]"
@@ -251,9 +254,9 @@ def _blocks(course: _Course, here: NDArray[np.bool_]) -> Iterator[NDArray[np.int
     size = max(_LEAST_BLOCK, int(np.ceil(here.sum() / _BLOCKS)))
     readings = np.flatnonzero(here)
     steps = np.diff(course.x[readings])
-    pause = (
-        np.inf if course.clock is None else 10.0 * float(np.median(steps)) if len(steps) else 0.0
-    )
+    pause = np.inf
+    if course.clock is not None and len(steps):
+        pause = max(10.0 * float(np.median(steps)), _PAUSE * course.clock.length)
     cuts = (steps > pause) | (np.diff(course.sitting[readings]) > 0)
     for members in np.split(readings, np.flatnonzero(cuts) + 1):
         if len(members) >= _LEAST_BLOCK // 2:

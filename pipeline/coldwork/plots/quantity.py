@@ -11,7 +11,7 @@ from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullFormat
 from coldwork.plots.columns import FloatArray
 from coldwork.plots.names import shown
 
-__all__ = ["Scale", "heading", "robust_limits", "scale_of"]
+__all__ = ["Scale", "heading", "robust_limits", "scale_of", "written"]
 
 _HEADINGS = {
     "hardness": ("Hardness", "kgf/mm²"),
@@ -118,6 +118,19 @@ def scale_of(
         low = 0.0
     unit = f"10{_superscript(power)} {unit}".strip() if power else unit
     return Scale(f"{title} [{unit}]" if unit else title, factor, low, high)
+
+
+def written(x: float) -> str:
+    """Write a number as people do, large and small ones with a power of ten."""
+    if x == 0.0 or 1e-3 <= abs(x) < 1e5:
+        return f"{x:g}"
+    mantissa, power = f"{x:e}".split("e")
+    digits = f"{float(mantissa):g}"
+    return (
+        f"10{_superscript(int(power))}"
+        if digits == "1"
+        else f"{digits} × 10{_superscript(int(power))}"
+    )
 
 
 def robust_limits(values: FloatArray, always: FloatArray) -> tuple[float, float]:

@@ -88,7 +88,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
         if not (points.kind != len(_KINDS) - 1).any():
             return []
         spans = spans_of(frames, rows.ids, column)
-        remarks = _remarks(frames, rows, why_missing(frames, spans))
+        remarks = _remarks(frames, rows, why_missing(frames, rows.ids, column, spans))
         scales = _scales(coupons_scales=texts(coupons, "hardness_scale"), route=context.route)
         figures: list[Figure] = []
         for scale in dict.fromkeys(scales):
@@ -138,7 +138,7 @@ class _Subject:
         return f"Readings of each coupon: {name.lower()} {self.scale}".rstrip()
 
     def _facts(self, points: _Points, chosen: NDArray[np.intp]) -> list[str]:
-        used = int((points.kind < 3).sum())
+        used = int((points.kind < 2).sum())
         return [counted(len(chosen), "coupon"), f"{counted(used, 'reading')} used"]
 
     def _key(self, points: _Points, spans: Spans, beyond: bool) -> list[tuple[Artist, str]]:

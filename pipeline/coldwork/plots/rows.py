@@ -9,7 +9,7 @@ from typing import cast
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
-from matplotlib.ticker import FuncFormatter, MaxNLocator
+from matplotlib.ticker import MaxNLocator
 from matplotlib.transforms import ScaledTranslation
 from numpy.typing import NDArray
 
@@ -30,7 +30,7 @@ _HEIGHTS = (
     (20, 0.23),
     (_ROWS_A_PAGE, 0.18),
 )  # of a row, up to so many [inch]
-_NAME_ROOM, _GROUP_ROOM, _STRIP_ROOM = 2.1, 1.4, 2.0  # at most [inch]
+_NAME_ROOM, _GROUP_ROOM, _STRIP_ROOM = 2.0, 1.3, 2.2  # at most [inch]
 _GAP = 0.14  # between neighbours in a row [inch]
 
 
@@ -98,11 +98,14 @@ class Rows:
         Their names as they are shown, all different.
     groups : tuple of str, length n
         Lot and condition, as far as they differ within the batch; may be empty.
+    conditions : tuple of str, length n
+        Condition alone; may be empty.
     """
 
     ids: tuple[str, ...]
     labels: tuple[str, ...]
     groups: tuple[str, ...]
+    conditions: tuple[str, ...]
 
     @classmethod
     def of(cls, frames: Frames) -> "Rows":
@@ -114,7 +117,7 @@ class Rows:
         parts = [texts(coupons, name) for name in ("lot_id", "condition")]
         telling = [part for part in parts if len(set(part)) > 1]
         groups = [" · ".join(filter(None, words)) for words in zip(*telling, strict=True)]
-        return cls(tuple(ids), tuple(labels), tuple(groups or [""] * len(ids)))
+        return cls(tuple(ids), tuple(labels), tuple(groups or [""] * len(ids)), tuple(parts[1]))
 
     @property
     def named(self) -> bool:
@@ -176,7 +179,7 @@ def _page(
     if any(rows.groups):
         columns.append(_column("", rows.groups, _GROUP_ROOM))
     right = sum(wide + _GAP for _, _, wide in columns)
-    figure, axes = _panels(sheet, len(places), panels, names + 0.1, right)
+    figure, axes = _panels(sheet, len(places), panels, names + 0.1, right, headed=bool(strips))
     for panel in axes:
         across = panel.get_yaxis_transform()
         lines = np.arange(len(places))
@@ -198,11 +201,10 @@ def _page(
 def _crowd(sheet: Sheet, places: NDArray[np.intp], panels: Sequence[Panel]) -> Page:
     figure, axes = _panels(sheet, len(places), panels, 0.7, 0.1, high=8.0)
     axes[0].set_ylabel("Place of the coupon in the batch's table")
-    axes[0].yaxis.set_major_locator(MaxNLocator(12, integer=True))
-    last = len(places) - 1
-    axes[0].yaxis.set_major_formatter(
-        FuncFormatter(lambda y, _: str(places[round(y)] + 1) if 0 <= y <= last else "")
-    )
+    numbers = places + 1
+    ticks = MaxNLocator(12, integer=True).tick_values(numbers[0], numbers[-1])
+    ticks = ticks[(ticks >= numbers[0]) & (ticks <= numbers[-1])]
+    axes[0].set_yticks(np.searchsorted(numbers, ticks), [f"{tick:.0f}" for tick in ticks])
     return Page(figure, axes, places, crowd=True)
 
 
@@ -212,6 +214,8 @@ def _panels(
     panels: Sequence[Panel],
     left: float,
     right: float,
+    *,
+    headed: bool = False,
     high: float | None = None,
 ) -> tuple[Figure, list[Axes]]:
     gap = 0.3
@@ -221,7 +225,7 @@ def _panels(
     below = 0.32 + 0.15 * max(map(len, labels))
     each = next(h for most, h in _HEIGHTS if n <= most) if high is None else 0.0
     high = each * n if high is None else high
-    figure, base = open_sheet(sheet, below + high + 0.28)
+    figure, base = open_sheet(sheet, below + high + (0.28 if n > _TALL or headed else 0.12))
     axes = []
     at = EDGE + left
     for panel, lines in zip(panels, labels, strict=True):

@@ -45,12 +45,12 @@ _SHADE, _DARK = "#cacaca", "#8a8a8a"
 _LOOK = _Look(_Line(0.9, INK), _Line(4.6, "#9a9a9a"), _Line(0.9, GREY, (0, (2.0, 1.6))))
 _CROWD = _Look(_Line(1.5, _SHADE), _Line(1.5, _DARK), _Line(0.3, GREY))
 _CAPS = (Mark("|", 5.0, INK, INK, 0.9), Mark("_", 5.0, INK, INK, 0.9))
-_REASONS = (  # rule that empties a quantity, and the words for it, the gravest first
-    ("no-readings", "no readings"),
-    ("mixed-forces", "no value: mixed forces"),
-    ("baseline-contradicted", "no value: baseline contradicted"),
-    ("below-baseline", "no value: below baseline"),
-)
+_GRAVEST = {  # rules that leave no value, the one to be named first
+    rule: i
+    for i, rule in enumerate(
+        ("no-readings", "mixed-forces", "baseline-contradicted", "below-baseline")
+    )
+}
 
 
 @dataclass(frozen=True)
@@ -193,6 +193,51 @@ def span_key(
     return found
 
 
+def why_missing(frames: Frames, ids: Sequence[str], column: str, spans: Spans) -> list[str]:
+    """Say for each coupon which rule emptied its value, or that it has no interval.
+
+    Parameters
+    ----------
+    frames : mapping of str to DataFrame
+        The published tables; `flags` says what each finding empties.
+    ids : sequence of str, length n
+        The coupons, in their order.
+    column : str
+        The quantity's column.
+    spans : Spans
+        The quantity.
+
+    Returns
+    -------
+    list of str, length n
+        A rule in words, or empty where nothing is missing.
+    """
+    flags = frame_of(frames, "flags")
+    found: list[list[str]] = [
+        [rule for rule in text.split(";") if rule in _GRAVEST]
+        for text in texts(frame_of(frames, "coupons"), "flags")
+    ]
+    rows = zip(
+        aligned(ids, texts(flags, "coupon_id")).tolist(),
+        texts(flags, "rule"),
+        texts(flags, "empties"),
+        strict=True,
+    )
+    for place, rule, empties in rows:
+        if place >= 0 and column in empties.split(";"):
+            found[place].append(rule)
+    words = []
+    for rules, value, lower, upper in zip(
+        found, spans.value, spans.lower, spans.upper, strict=True
+    ):
+        if np.isnan(value):
+            rules.sort(key=lambda rule: _GRAVEST.get(rule, len(_GRAVEST)))
+            words.append(rules[0].replace("-", " ") if rules else "no value")
+        else:
+            words.append("no interval" if np.isnan(lower) and np.isnan(upper) else "")
+    return words
+
+
 def _open_end(upright: bool, *, up: bool) -> Mark:
     shapes = ("v", "^") if upright else ("<", ">")
     return Mark(shapes[up], 4.6, PAPER, INK, 0.8)
@@ -207,16 +252,3 @@ def _from_quantities(frames: Frames, ids: Sequence[str], column: str) -> list[Fl
         for end, name in zip(ends, ("lower", "upper", "u_own", "u"), strict=True):
             end[places[places >= 0]] = numbers(chosen, name)[places >= 0]
     return ends
-
-
-def why_missing(frames: Frames, spans: Spans) -> list[str]:
-    """Say for each coupon why it has no value, or no interval; empty where it has both."""
-    flags = texts(frame_of(frames, "coupons"), "flags")
-    words = []
-    for flag, value, lower, upper in zip(flags, spans.value, spans.lower, spans.upper, strict=True):
-        if np.isnan(value):
-            found = set(flag.split(";"))
-            words.append(next((w for rule, w in _REASONS if rule in found), "no value"))
-        else:
-            words.append("no interval" if np.isnan(lower) and np.isnan(upper) else "")
-    return words

@@ -1,6 +1,6 @@
 """Stored energy, or what else has limits, against those limits with the decisions."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,7 +11,7 @@ from matplotlib.figure import Figure
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
 from coldwork.plots.names import counted, fitted, shown
-from coldwork.plots.quantity import Scale, heading, scale_of
+from coldwork.plots.quantity import Scale, heading, scale_of, written
 from coldwork.plots.rows import MOST_COUPONS, Page, Panel, Rows, Strip, row_pages
 from coldwork.plots.sheet import Sheet
 from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key, spans_of, why_missing
@@ -36,6 +36,12 @@ class _Verdicts:
     decision: list[str]
     bound: FloatArray
     words: list[str]
+    chances: list[str]
+
+    def kinds(self, missing: Sequence[str]) -> list[str]:
+        """Give what is counted where there is no room for words."""
+        pairs = zip(self.decision, missing, strict=True)
+        return ["; ".join(filter(None, pair)) for pair in pairs]
 
 
 def draw(frames: Frames, context: Context) -> list[Figure]:
@@ -69,12 +75,16 @@ def _pages(frames: Frames, context: Context, rows: Rows, column: str) -> list[Fi
     if not (np.isfinite(spans.value) | spans.one_sided).any():
         return []
     limits = [limit for limit in context.limits if limit["quantity"] == column]
-    verdicts = _verdicts(frames, rows, column, several=len(limits) > 1)
+    verdicts = _verdicts(frames, rows, column, [str(limit["id"]) for limit in limits])
     ends = np.array([end for limit in limits for end in _ends(limit)], dtype=np.float64)
     scale = scale_of(column, [spans.value, spans.lower, spans.upper, verdicts.bound, ends])
     name, unit = heading(column)
     key = _key(spans, context, verdicts, crowd=not rows.named)
-    key += [(_line(i), _told(limit, unit)) for i, limit in enumerate(limits)]
+    names = [f"limit {i + 1}:" if len(limits) > 1 else "limit" for i in range(len(limits))]
+    key += [
+        (_line(i), _told(limit, name, unit))
+        for i, (limit, name) in enumerate(zip(limits, names, strict=True))
+    ]
     sheet = Sheet(
         f"{name} of each coupon" + (", against its limits" if limits else ""),
         context,
@@ -82,10 +92,9 @@ def _pages(frames: Frames, context: Context, rows: Rows, column: str) -> list[Fi
         key,
         _notes(column, context, verdicts),
     )
-    strips = [
-        Strip("decision and probability", verdicts.words, verdicts.decision),
-        Strip("remarks", why_missing(frames, spans)),
-    ]
+    strips = _strips(
+        verdicts, why_missing(frames, rows.ids, column, spans), numbered=len(limits) > 1
+    )
     everyone = np.arange(len(rows.ids))
     figures = []
     for page in row_pages(sheet, rows, everyone, [Panel(scale.label)], strips):
@@ -113,9 +122,10 @@ def _fill(page: Page, spans: Spans, verdicts: _Verdicts, scale: Scale) -> None:
     page.put(MEAN, spans.value[rest], lines[rest])
 
 
-def _verdicts(frames: Frames, rows: Rows, column: str, *, several: bool) -> _Verdicts:
+def _verdicts(frames: Frames, rows: Rows, column: str, limits: Sequence[str]) -> _Verdicts:
     n = len(rows.ids)
-    decision, bound, words = [""] * n, np.full(n, np.nan), [""] * n
+    decision, bound = [""] * n, np.full(n, np.nan)
+    words, chances = [""] * n, [""] * n
     every = frame_of(frames, "decisions")
     mine = every[every["quantity"] == column] if "quantity" in every else every
     gravity = {word: i for i, word in enumerate(_DECISIONS)}
@@ -133,15 +143,28 @@ def _verdicts(frames: Frames, rows: Rows, column: str, *, several: bool) -> _Ver
             continue
         decision[place], bound[place] = word, end
         chance = "" if np.isnan(probability) else f" {_chance(probability)}"
-        name = f" ({limit})" if several else ""
-        words[place] = f"{_DECISIONS[word][1]} {word}{chance}{name}"
-    return _Verdicts(decision, bound, words)
+        several = len(limits) > 1 and limit in limits
+        name = f" ({limits.index(limit) + 1})" if several else ""
+        words[place] = f"{_DECISIONS[word][1]} {word}{name}"
+        chances[place] = chance
+    return _Verdicts(decision, bound, words, chances)
+
+
+def _strips(verdicts: _Verdicts, missing: Sequence[str], *, numbered: bool) -> list[Strip]:
+    if not any(verdicts.words):
+        return [Strip("remarks", missing)]
+    words = []
+    for word, gap, probability in zip(verdicts.words, missing, verdicts.chances, strict=True):
+        words.append("; ".join(filter(None, [word if gap else word + probability, gap])))
+    number = " (limit)" if numbered else ""
+    remarks = "; remarks" if any(missing) else ""
+    return [Strip(f"decision{number}, probability{remarks}", words, verdicts.kinds(missing))]
 
 
 def _chance(probability: float) -> str:
-    if 0.995 <= probability < 1.0:
+    if probability > 0.995:
         return "> 0.99"
-    if 0.0 < probability < 0.005:
+    if probability < 0.005:
         return "< 0.01"
     return f"{probability:.2f}"
 
@@ -151,16 +174,18 @@ def _ends(limit: Mapping[str, object]) -> list[float]:
     return [float(end) for end in ends if isinstance(end, int | float)]
 
 
-def _told(limit: Mapping[str, object], unit: str) -> str:
+def _told(limit: Mapping[str, object], called: str, unit: str) -> str:
     lower, upper = limit.get("lower"), limit.get("upper")
     if isinstance(lower, int | float) and isinstance(upper, int | float):
-        window = f"from {lower:g} to {upper:g}"
+        window = f"from {written(lower)} to {written(upper)}"
     else:
-        window = f"at least {lower:g}" if isinstance(lower, int | float) else f"at most {upper:g}"
+        ends = _ends(limit)
+        side = "at least" if isinstance(lower, int | float) else "at most"
+        window = f"{side} {written(ends[0])}" if ends else "no end"
     rule, basis = (str(limit.get(name) or "") for name in ("rule", "basis"))
     name = fitted(shown(str(limit["id"])), Sizes.words, 3.0)
     how = ", ".join(filter(None, [rule, f"basis {basis}" if basis else ""]))
-    return f"limit {name}: {window} {unit}" + (f" ({how})" if how else "")
+    return f"{called} {name}, {window} {unit}" + (f" ({how})" if how else "")
 
 
 def _line(i: int) -> Artist:
