@@ -41,8 +41,8 @@ from coldwork.formulas.tabor import TABOR_FLOW_STRESS
 from coldwork.formulas.taylor import MEAN_SPACING, TAYLOR_DENSITY, TAYLOR_DENSITY_FROM_SLOPE
 from coldwork.formulas.unwinding import UNWOUND_STRESS
 from coldwork.inputs.method import Laws
-from coldwork.measured import Value, apply, select, value_of
-from coldwork.rules.forces import SCALES
+from coldwork.measured import Value, apply, broadcast, kept_where, select, value_of
+from coldwork.rules.forces import HBW, HV, SCALES, SECTIONS
 from coldwork.units import to_si
 
 __all__ = ["Start", "Strength", "energy", "energy_per_volume", "line", "strength"]
@@ -62,13 +62,14 @@ class Start:
     scale : ndarray of int8, shape (n,)
         `HV`, `HBW` or `HK`; -1 where there is none.
     force : ndarray, shape (n,)
-        Nominal test force. [N]
+        Test force. [N]
     ball : ndarray, shape (n,)
         Ball diameter, NaN but for HBW. [m]
     grain_size : Value, shape (n,)
         Prior grain size, NaN where it is not known. [m]
-    plastic_work : ndarray, shape (n,)
-        Work of the prior deformation, NaN where it is not known. [J/m^3]
+    plastic_work : Value, shape (n,)
+        Work of the prior deformation, for a state along a curve with the test's own, NaN
+        where it is not known. [J/m^3]
     plastic_strain : float
         The strain whose stress the flow route reports. [1]
     """
@@ -78,7 +79,7 @@ class Start:
     force: NDArray[np.float64]
     ball: NDArray[np.float64]
     grain_size: Value
-    plastic_work: NDArray[np.float64]
+    plastic_work: Value
     plastic_strain: float
 
 
@@ -138,12 +139,10 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
         stress = start.mean - baseline
         held = np.full(n, start.plastic_strain)
         nothing = np.zeros(n, dtype=bool)
-        return Strength(
-            None, start.mean, stress, start.mean, baseline, stress, 0.0, held, nothing
-        )
-    present = {s: k for k, s in enumerate(SCALES) if bool((start.scale == k).any())}
-    pressure = select(start.scale, {k: _pressure(laws, s, start) for s, k in present.items()})
-    strain = select(start.scale, {k: _strain(inputs, s, start) for s, k in present.items()})
+        return Strength(None, start.mean, stress, start.mean, baseline, stress, 0.0, held, nothing)
+    present = [k for k in range(len(SCALES)) if bool((start.scale == k).any())]
+    pressure = select(start.scale, {k: _pressure(laws, k, start) for k in present})
+    strain = select(start.scale, {k: _strain(inputs, k, start) for k in present})
     indented = apply(
         TABOR_FLOW_STRESS,
         pressure=pressure,
@@ -197,9 +196,7 @@ def energy(
     return line(laws, inputs, _density(laws, inputs, stress), start)
 
 
-def line(
-    laws: Laws, inputs: Mapping[str, Value], density: Value, start: Start
-) -> dict[str, Value]:
+def line(laws: Laws, inputs: Mapping[str, Value], density: Value, start: Start) -> dict[str, Value]:
     """Go from a dislocation density to stored energy (relations 7, 8, 9).
 
     The part of `energy` below relation 5, for where a density is given.
@@ -272,9 +269,7 @@ def _per_volume(
         length=_outer_length(laws, inputs, spacing, start),
         factor=inputs["line_energy.outer_radius_factor"],
     )
-    core = apply(
-        CORE_RADIUS, multiple=inputs["line_energy.core_radius_b"], burgers_vector=burgers
-    )
+    core = apply(CORE_RADIUS, multiple=inputs["line_energy.core_radius_b"], burgers_vector=burgers)
     per_line = apply(
         LINE_ENERGY,
         energy_factor=apply(
@@ -289,6 +284,8 @@ def _per_volume(
         shear_modulus=shear,
         core_energy=inputs["line_energy.core_energy"],
     )
+    if laws.outer_radius in {"grain", "fixed"}:  # which a coupon without a density has as well
+        per_line = kept_where(per_line, np.isfinite(value_of(density)))
     return {
         "dislocation_density_per_m2": density,
         "mean_spacing_nm": spacing,
@@ -310,36 +307,33 @@ def _baseline(laws: Laws, inputs: Mapping[str, Value], grain_size: Value) -> Val
     return reduce(add, parts)
 
 
-def _prefix(scale: str) -> str:
-    return "indentation" if scale == "HV" else f"indentation.{scale}"
-
-
 def _by_scale(inputs: Mapping[str, Value], scale: NDArray[np.int8], key: str) -> Value:
-    by_code = {k: inputs.get(f"{_prefix(s)}.{key}", _MISSING) for k, s in enumerate(SCALES)}
+    by_code = {k: inputs.get(f"{s}.{key}", _MISSING) for k, s in enumerate(SECTIONS)}
     return select(scale, by_code)
 
 
-def _pressure(laws: Laws, scale: str, start: Start) -> Value:
-    if scale == "HBW" and laws.area[scale] == "projected":
+def _pressure(laws: Laws, code: int, start: Start) -> Value:
+    projected = laws.area[SCALES[code]] == "projected"
+    if code == HBW and projected:
         return apply(
             BRINELL_PROJECTED_PRESSURE, hardness=start.mean, force=start.force, ball=start.ball
         )
-    if scale == "HV" and laws.area[scale] == "projected":
+    if code == HV and projected:
         return apply(PROJECTED_PRESSURE, hardness=start.mean)
     return start.mean
 
 
-def _strain(inputs: Mapping[str, Value], scale: str, start: Start) -> Value:
-    given = inputs.get(f"{_prefix(scale)}.representative_strain", _MISSING)
-    if scale == "HBW" and "indentation.HBW.strain_ratio" in inputs:
+def _strain(inputs: Mapping[str, Value], code: int, start: Start) -> Value:
+    ratio = f"{SECTIONS[code]}.strain_ratio"
+    if code == HBW and ratio in inputs:
         return apply(
             BRINELL_STRAIN,
             hardness=start.mean,
             force=start.force,
             ball=start.ball,
-            strain_ratio=inputs["indentation.HBW.strain_ratio"],
+            strain_ratio=inputs[ratio],
         )
-    return given
+    return inputs.get(f"{SECTIONS[code]}.representative_strain", _MISSING)
 
 
 def _density(laws: Laws, inputs: Mapping[str, Value], stress: Value) -> Value:
@@ -356,16 +350,14 @@ def _density(laws: Laws, inputs: Mapping[str, Value], stress: Value) -> Value:
     )
 
 
-def _outer_length(
-    laws: Laws, inputs: Mapping[str, Value], spacing: Value, start: Start
-) -> Value:
+def _outer_length(laws: Laws, inputs: Mapping[str, Value], spacing: Value, start: Start) -> Value:
     if laws.outer_radius == "spacing":
         return spacing
     if laws.outer_radius == "half-spacing":
         return 0.5 * spacing
     if laws.outer_radius == "grain":
         return start.grain_size
-    return inputs["line_energy.outer_radius_nm"]
+    return broadcast(inputs["line_energy.outer_radius_nm"], value_of(spacing).shape)
 
 
 def _mean_cos2(laws: Laws) -> float:

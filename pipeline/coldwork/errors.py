@@ -45,7 +45,7 @@ class ColdworkError(Exception):
     exit: ClassVar[Exit] = Exit.INTERNAL
 
 
-class InvalidArgument(ColdworkError, ValueError):
+class InvalidArgument(ColdworkError, ValueError):  # noqa: N818 - says what happened
     """An argument of a formula is outside what the formula can take."""
 
 
@@ -55,7 +55,7 @@ class UsageError(ColdworkError):
     exit = Exit.USAGE
 
 
-class ResultsNotWritten(ColdworkError):
+class ResultsNotWritten(ColdworkError):  # noqa: N818 - says what happened
     """Results could not be written whole; nothing was left behind."""
 
     exit = Exit.NOT_WRITTEN
@@ -86,7 +86,7 @@ class Cause:
         return f"{self.where}: {self.what}. {self.why} {self.mend}".strip()
 
 
-class BatchRefused(ColdworkError):
+class BatchRefused(ColdworkError):  # noqa: N818 - says what happened
     """A batch that cannot be trusted as a whole, with every cause at once.
 
     Parameters

@@ -14,7 +14,7 @@ __all__ = ["between", "finite", "not_negative", "positive"]
 
 
 def positive(name: str, value: ArrayLike) -> NDArray[np.float64]:
-    """Give `value` as floats; refuse zero, negative and infinite ones. [any unit]
+    """Give `value` as floats, in its own unit; refuse zero, negative and infinite ones.
 
     Raises
     ------
@@ -26,7 +26,7 @@ def positive(name: str, value: ArrayLike) -> NDArray[np.float64]:
 
 
 def not_negative(name: str, value: ArrayLike) -> NDArray[np.float64]:
-    """Give `value` as floats; refuse negative and infinite ones. [any unit]
+    """Give `value` as floats, in its own unit; refuse negative and infinite ones.
 
     Raises
     ------
@@ -38,7 +38,7 @@ def not_negative(name: str, value: ArrayLike) -> NDArray[np.float64]:
 
 
 def finite(name: str, value: ArrayLike) -> NDArray[np.float64]:
-    """Give `value` as floats; refuse infinite ones. [any unit]
+    """Give `value` as floats, in its own unit; refuse infinite ones.
 
     Raises
     ------
@@ -50,7 +50,7 @@ def finite(name: str, value: ArrayLike) -> NDArray[np.float64]:
 
 
 def between(name: str, value: ArrayLike, low: float, high: float) -> NDArray[np.float64]:
-    """Give `value` as floats; refuse what is not strictly between two ends. [any unit]
+    """Give `value` as floats, in its own unit; refuse what is not strictly between two ends.
 
     Raises
     ------
@@ -61,9 +61,13 @@ def between(name: str, value: ArrayLike, low: float, high: float) -> NDArray[np.
     return _keep(name, x, f"between {low:g} and {high:g}", (x <= low) | (x >= high))
 
 
-def _keep(name: str, x: NDArray[np.float64], need: str, bad: NDArray[np.bool_]) -> NDArray[np.float64]:
+def _keep(
+    name: str, x: NDArray[np.float64], need: str, bad: NDArray[np.bool_]
+) -> NDArray[np.float64]:
     if bad.any():
         first = np.ravel(x)[np.flatnonzero(bad)[0]]
-        message = f"{name} must be {need} ({int(bad.sum())} bad of {x.size}, the first is {first:g})"
+        message = (
+            f"{name} must be {need} ({int(bad.sum())} bad of {x.size}, the first is {first:g})"
+        )
         raise InvalidArgument(message)
     return x

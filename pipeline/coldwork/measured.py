@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from coldwork.formulas.formula import Formula
 
-__all__ = ["Measured", "Value", "apply", "select", "value_of"]
+__all__ = ["Measured", "Value", "apply", "broadcast", "select", "value_of"]
 
 
 @dataclass(frozen=True)
@@ -69,8 +69,45 @@ Value: TypeAlias = float | NDArray[np.float64] | Measured
 
 
 def value_of(x: Value) -> NDArray[np.float64]:
-    """Give the plain value, without sensitivities. [SI]"""
+    """Give the plain value, without sensitivities."""
     return x.value if isinstance(x, Measured) else np.asarray(x, dtype=np.float64)
+
+
+def broadcast(x: Value, shape: tuple[int, ...]) -> Value:
+    """Give the same value at every element of a shape; scalar sensitivities stay scalars.
+
+    Parameters
+    ----------
+    x : float, ndarray or Measured
+        The value; its shape broadcasts to `shape`. [SI]
+    shape : tuple of int
+        The shape wanted.
+
+    Returns
+    -------
+    ndarray or Measured
+        Measured exactly if `x` is. [SI]
+    """
+    value = np.broadcast_to(value_of(x), shape)
+    return Measured(value, x.sensitivities) if isinstance(x, Measured) else value
+
+
+def kept_where(x: Value, keep: NDArray[np.bool_]) -> Value:
+    """Blank a value to NaN where `keep` is false.
+
+    Parameters
+    ----------
+    x : float, ndarray or Measured
+        The value. [SI]
+    keep : ndarray of bool, shape (n,)
+        Where it stays.
+
+    Returns
+    -------
+    ndarray or Measured, shape (n,)
+        Measured exactly if `x` is. [SI]
+    """
+    return x.where(keep) if isinstance(x, Measured) else np.where(keep, x, np.nan)
 
 
 def apply(formula: Formula, **arguments: Value) -> Value:

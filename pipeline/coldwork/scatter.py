@@ -52,7 +52,8 @@ class Repeatability:
     left : ndarray of bool
         Whether it left.
     basis : ndarray of int8
-        0 nothing, 1 own, 2 pooled, 3 stated in the sheet, 4 resolution of the diagonal.
+        0 nothing, 1 own, 2 pooled, 3 stated in the sheet, 4 resolution of the diagonal,
+        5 noise of the curve.
     """
 
     u: NDArray[np.float64]
@@ -68,12 +69,10 @@ class Repeatability:
     basis: NDArray[np.int8]
 
 
-BASES: Final = ("nothing", "own", "pooled", "stated", "resolution")
+BASES: Final = ("nothing", "own", "pooled", "stated", "resolution", "curve")
 
 
-def repeatability(
-    method: Method, reduced: Reduced, conditions: pa.StringArray
-) -> Repeatability:
+def repeatability(method: Method, reduced: Reduced, conditions: pa.StringArray) -> Repeatability:
     """Judge the repeatability of every coupon of a batch.
 
     Parameters
@@ -91,6 +90,8 @@ def repeatability(
         Arrays of shape (n,).
     """
     n = len(reduced)
+    if reduced.own_u is not None:
+        return _of_curves(reduced.own_u)
     with np.errstate(invalid="ignore", divide="ignore"):
         relative = reduced.sd / np.abs(reduced.mean)
     freedom = np.where(np.isfinite(relative), reduced.repeats - 1.0, 0.0)
@@ -135,8 +136,27 @@ def repeatability(
     )
 
 
+def _of_curves(u: NDArray[np.float64]) -> Repeatability:
+    """Take the noise of each coupon's own curve; there is nothing to pool."""
+    n, known = len(u), np.isfinite(u)
+    blank, nothing = np.full(n, np.nan), np.zeros(n)
+    return Repeatability(
+        u=u,
+        degrees_of_freedom=np.where(known, np.inf, np.nan),
+        relative_s=blank,
+        group=np.arange(n, dtype=np.int64),
+        pooled=blank,
+        pooled_freedom=nothing,
+        limit=blank,
+        ratio=blank,
+        ratio_limit=blank,
+        left=np.zeros(n, dtype=bool),
+        basis=np.where(known, 5, 0).astype(np.int8),
+    )
+
+
 def _groups(reduced: Reduced, conditions: pa.StringArray) -> NDArray[np.int64]:
-    """Number the groups of one scale, nominal force, ball and condition."""
+    """Give one number to coupons of one scale, nominal force, ball and condition."""
     codes = conditions.dictionary_encode().indices.to_numpy(zero_copy_only=False)
     group = np.asarray(codes, dtype=np.int64)
     for key in (reduced.scale, reduced.force, reduced.ball):
@@ -154,7 +174,7 @@ def _members(group: NDArray[np.int64]) -> list[NDArray[np.intp]]:
 
 
 def _resolution_floor(method: Method, reduced: Reduced) -> NDArray[np.float64]:
-    """Least u of the mean: resolution / sqrt(12) of the mean diagonal. [Pa]"""
+    """Give the least u of the mean, in Pa: resolution / sqrt(12) of the mean diagonal."""
     if method.resolution is None:
         return np.zeros(len(reduced))
     step = method.resolution / sqrt(12.0)
@@ -164,7 +184,7 @@ def _resolution_floor(method: Method, reduced: Reduced) -> NDArray[np.float64]:
     balls = np.flatnonzero(reduced.scale == HBW)
     if balls.size:
         slopes = BRINELL_HARDNESS.sensitivities(
-            force=reduced.force[balls],
+            force=reduced.applied_force[balls],
             diameter_1=d[balls],
             diameter_2=d[balls],
             ball=reduced.ball[balls],

@@ -151,7 +151,8 @@ def simulate(
         above = (y > ends.upper) | empty
         below = y < ends.lower
         ratio = float(np.median(reach.u_stress.u)) / case.stress if case.stress else np.inf
-        rows.append((name, ratio, 1 - np.mean(above | below), np.mean(below), np.mean(above)))
+        covered = float(1 - np.mean(above | below))
+        rows.append((name, ratio, covered, float(np.mean(below)), float(np.mean(above))))
     return rows
 
 
@@ -193,7 +194,8 @@ def forward(case: Case, truth: dict[str, float]) -> float:
         decay = np.exp(-theta * truth["indentation.representative_strain"] / sigma)
         stress = sigma + (stress - sigma) * decay
     flow = stress + truth["strength.baseline_mpa"]
-    return float(flow * (truth["indentation.constraint_factor"] if case.laws.route == "indent" else 1.0))
+    factor = truth["indentation.constraint_factor"] if case.laws.route == "indent" else 1.0
+    return float(flow * factor)
 
 
 def begin(mean: Value, n: int) -> Start:

@@ -214,6 +214,7 @@ def test_what_comes_in_may_leave_optional_columns_out(name: str) -> None:
     contract = contracts.load(name)
     keep = [*contract.required_columns]
     keep += ["hardness"] if name == "in/indents" else []
+    keep += ["stress_mpa", "strain"] if name == "in/curves" else []
     few = good_table(contract).select([each for each in contract.columns if each in keep])
     assert verdicts(contract, few) == ([], [])
 

@@ -106,6 +106,14 @@ DEFAULTS = {
     "indentation.HK.area": "projected",
     "indentation.HK.intercept_mpa": 0.0,
     "flow.plastic_strain": 0.002,
+    "tensile.slope_between": [0.1, 0.4],
+    "tensile.offsets": [0.002],
+    "tensile.reported_strains": [0.002, 0.01, 0.02, 0.05, 0.1, 0.15, 0.2],
+    "tensile.fit": ["voce", "hollomon"],
+    "tensile.force_u_rel": 0.0058,  # 1 % over the root of 3
+    "tensile.extension_u_rel": 0.0058,
+    "tensile.area_u_rel": 0.0058,
+    "tensile.bridgman": False,
     "hardening.law": "constant",
     "hardening.taylor_factor": {"value": 3.06, "u": 0.15},
     "hardening.coefficient": {"value": 0.30, "factor": 1.2},
@@ -121,6 +129,7 @@ DEFAULTS = {
     "uncertainty.repeatability": "pooled",
     "output.tables": ["csv"],
     "output.detail": "full",
+    "output.curve_points": False,
     "limits.rule": "guarded",
     "limits.basis": "total",
     "limits.at_least": 0.95,
@@ -199,6 +208,12 @@ def test_the_least_sheet_is_taken() -> None:
 FLOW = {"route": "flow", "baseline_mpa": 150.0}
 GOOD: list[dict[str, Any]] = [
     {"strength": FLOW, "files": {"coupons": "c.csv", "flow_stress": "f.csv"}},
+    {
+        "strength": FLOW,
+        "files": {"coupons": "c.csv", "curves": "c-*.csv"},
+        "tensile": {"mode": "tension", "strain_from": "extension"},
+    },
+    {"tensile": {"mode": "compression", "stress_is": "true"}},
     {"strength": {"route": "indent", "friction_mpa": 25.5, "hall_petch_mpa_m05": 0.11}},
     {"strength": {"route": "indent", "terms_mpa": {"solutes": {"value": 12.0, "u": 1.0}}}},
     {"hardening": {"slope_n_per_m": {"value": 18.0, "u": 1.0}}},
@@ -257,6 +272,18 @@ BAD: list[tuple[dict[str, Any], str]] = [
     ({"strength": {"route": "indent"}}, "strength"),
     ({"strength": {"route": "hardness", "baseline_mpa": 1.0}}, "strength.route"),
     ({"strength": FLOW}, "files"),
+    ({"strength": FLOW, "files": {"coupons": "c.csv", "curves": "t.csv"}}, ""),
+    ({"tensile": {"strain_from": "extension"}}, "tensile"),
+    ({"tensile": {"mode": "tension"}}, "tensile"),
+    ({"tensile": {"mode": "torsion", "strain_from": "extension"}}, "tensile.mode"),
+    (
+        {"tensile": {"mode": "compression", "strain_from": "crosshead", "bridgman": True}},
+        "tensile.bridgman",
+    ),
+    (
+        {"tensile": {"mode": "tension", "strain_from": "extension", "fit": ["linear"]}},
+        "tensile.fit.0",
+    ),
     (
         {"strength": {"route": "indent", "baseline_mpa": 50.0, "friction_mpa": 25.0}},
         "strength.friction_mpa",

@@ -24,14 +24,28 @@ NAMED = [
     "stored_energy_j_per_mol",
     "stored_energy_j_per_g",
 ]
+OF_A_CURVE = (
+    "slope_gpa toe_strain proof_stress_0_2_mpa upper_yield_mpa lower_yield_mpa yield_elongation "
+    "tensile_strength_mpa uniform_elongation elongation_at_maximum_force uniform_plastic_strain "
+    "work_to_uniform_strain_j_per_m3 initial_hardening_mpa saturation_stress_mpa "
+    "hardening_at_zero_stress_mpa stress_at_zero_hardening_mpa voce_yield_stress_mpa "
+    "voce_saturation_stress_mpa voce_initial_hardening_mpa hollomon_coefficient_mpa "
+    "hollomon_exponent neck_stress_mpa"
+).split()
+ALONG_THE_STRAIN = (
+    "flow_stress_mpa dislocation_stress_mpa dislocation_density_per_m2 stored_energy_j_per_m3 "
+    "stored_energy_j_per_g plastic_work_j_per_m3 stored_fraction_of_work"
+).split()
 # Written out from the design of the tables, not read from the schemas.
 COLUMNS = {
     "in/coupons": "coupon_id lot_id condition prior_true_strain prior_plastic_work_j_per_m3 "
-    "thickness_mm grain_size_um u_grain_size_um sampled_at",
+    "thickness_mm grain_size_um u_grain_size_um sampled_at gauge_length_mm initial_diameter_mm "
+    "width_mm final_diameter_mm neck_radius_mm",
     "in/indents": "coupon_id indent_no scale force_n d1_um d2_um hardness ball_mm x_mm y_mm "
     "edge_mm dwell_s temperature_c measured_at operator tester",
     "in/flow_stress": "coupon_id reading_no plastic_strain flow_stress_mpa strain_rate_per_s "
     "temperature_c measured_at operator tester",
+    "in/curves": "coupon_id point_no time_s force_n extension_mm crosshead_mm stress_mpa strain",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
     "out/coupons": "batch_id coupon_id lot_id condition material route test_strain readings_used "
     "readings_set_aside hardness hardness_scale flow_stress_mpa baseline_stress_mpa "
@@ -59,11 +73,32 @@ COLUMNS = {
     "file line detail",
     "out/decisions": "coupon_id limit_id quantity value u lower_limit upper_limit bound rule basis "
     "coverage probability decision reason",
+    "out/tensile": "coupon_id lot_id condition mode strain_from file first_line last_line points_used "
+    "points_set_aside slope_gpa toe_strain proof_stress_0_2_mpa upper_yield_mpa lower_yield_mpa "
+    "yield_elongation tensile_strength_mpa tensile_strength_bias_mpa uniform_elongation "
+    "elongation_at_maximum_force uniform_plastic_strain work_to_uniform_strain_j_per_m3 "
+    "initial_hardening_mpa saturation_stress_mpa correlation_hardening_saturation "
+    "hardening_at_zero_stress_mpa stress_at_zero_hardening_mpa voce_yield_stress_mpa "
+    "voce_saturation_stress_mpa voce_initial_hardening_mpa hollomon_coefficient_mpa "
+    "hollomon_exponent neck_stress_mpa neck_strain line_misfit voce_misfit hollomon_misfit "
+    "strain_rate_per_s rate_changes flags "
+    + " ".join(f"u_own_{name} u_shared_{name} u_{name}" for name in OF_A_CURVE),
+    "out/evolution": "coupon_id lot_id condition test_strain prior_true_strain "
+    "prior_plastic_work_j_per_m3 "
+    + " ".join(ALONG_THE_STRAIN)
+    + " reason flags "
+    + " ".join(
+        f"u_own_{name} u_shared_{name} u_{name} lower_{name} upper_{name}"
+        for name in ALONG_THE_STRAIN
+    ),
+    "out/curve_points": "coupon_id point_no time_s engineering_stress_mpa engineering_strain "
+    "true_stress_mpa true_plastic_strain file line",
 }
 REQUIRED = {
     "in/coupons": "coupon_id",
     "in/indents": "coupon_id indent_no force_n",
     "in/flow_stress": "coupon_id reading_no plastic_strain flow_stress_mpa",
+    "in/curves": "coupon_id",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
 }
 UNITS = {  # what the suffix of a column's name promises

@@ -73,7 +73,9 @@ def test_own_only_takes_shared_inputs_as_exact() -> None:
 
 def test_an_unknown_scatter_leaves_the_total_empty_not_zero() -> None:
     spreads = {
-        "a": Spread(np.array([np.nan, 1.0]), shared=False, degrees_of_freedom=np.array([np.nan, 3.0])),
+        "a": Spread(
+            np.array([np.nan, 1.0]), shared=False, degrees_of_freedom=np.array([np.nan, 3.0])
+        ),
         "b": Spread(2.0, shared=True, degrees_of_freedom=inf),
     }
     y = Measured(np.array([5.0, 5.0]), {"a": np.array([1.0, 1.0]), "b": np.array(1.0)})

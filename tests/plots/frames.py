@@ -155,8 +155,12 @@ def _readings(
             "plastic_strain": np.nan,
             "weight": 1.0,
             "measured_at": times if timed else [None] * m,
-            "operator": [operators[i % len(operators)] if operators else None for i in place // 4],
-            "tester": [testers[i % len(testers)] if testers else None for i in place // 9],
+            "operator": [
+                operators[i % len(operators)] if operators else None for i in (place // 4).tolist()
+            ],
+            "tester": [
+                testers[i % len(testers)] if testers else None for i in (place // 9).tolist()
+            ],
             "flags": flags,
         }
     )
@@ -228,16 +232,16 @@ def _budget(coupons: pd.DataFrame, random: np.random.Generator) -> pd.DataFrame:
         )
         raw[name] = c * y * grows * random.uniform(0.95, 1.05, len(y))
     total = np.sum([c**2 for c in raw.values()], axis=0)
-    for name, c in raw.items():
+    for name, part in raw.items():
         parts.append(
             pd.DataFrame(
                 {
                     "coupon_id": valued["coupon_id"].to_numpy(),
                     "quantity": "stored_energy_j_per_g",
                     "input": name,
-                    "contribution": c,
+                    "contribution": part,
                     "own_or_shared": SHARES[name][0],
-                    "share_of_u2": c**2 / total,
+                    "share_of_u2": part**2 / total,
                 }
             )
         )
@@ -247,7 +251,8 @@ def _budget(coupons: pd.DataFrame, random: np.random.Generator) -> pd.DataFrame:
 def _decisions(coupons: pd.DataFrame) -> pd.DataFrame:
     name = "stored_energy_j_per_g"
     low, high = 0.03, 0.12
-    y, u = coupons[name].to_numpy(), coupons[f"u_own_{name}"].to_numpy()
+    y = coupons[name].to_numpy(dtype=np.float64)
+    u = coupons[f"u_own_{name}"].to_numpy(dtype=np.float64)
     lower, upper = y - 1.65 * u, y + 1.65 * u
     decision = np.select(
         [(lower > low) & (upper < high), (upper < low) | (lower > high)],
@@ -297,15 +302,14 @@ def awkward() -> Batch:
     made = batch(12, odd=True)
     coupons = made.frames["coupons"].copy()
     for name in ("dislocation_density_per_m2", "stored_energy_j_per_g"):
-        value, lower, upper = (
-            coupons.columns.get_loc(f"{p}{name}") for p in ("", "lower_", "upper_")
-        )
-        coupons.iloc[1, value] = np.nan  # below the baseline: an upper end only
-        coupons.iloc[1, lower] = 0.0
-        coupons.iloc[1, upper] = 0.3 * coupons.iloc[8, value]
-        coupons.iloc[2, [value, upper]] = np.nan  # not even that
-        coupons.iloc[5, [lower, upper]] = np.nan  # nothing to judge the scatter by
-        coupons.iloc[6, upper] = np.nan  # one reading: the interval has no end
+        value = coupons[name].to_numpy(copy=True)
+        lower, upper = (coupons[f"{end}_{name}"].to_numpy(copy=True) for end in ("lower", "upper"))
+        upper[1], lower[1] = 0.3 * value[8], 0.0  # below the baseline: an upper end only
+        value[1:3] = np.nan
+        upper[2] = np.nan  # not even that
+        lower[5] = upper[5] = np.nan  # nothing to judge the scatter by
+        upper[6] = np.nan  # one reading: the interval has no end
+        coupons[name], coupons[f"lower_{name}"], coupons[f"upper_{name}"] = value, lower, upper
     coupons.loc[1, "flags"] = "below-baseline"
     coupons.loc[2, "flags"] = "below-baseline;baseline-contradicted"
     coupons.loc[4, ["hardness", "lower_hardness", "upper_hardness"]] = np.nan

@@ -8,8 +8,6 @@ from coldwork import contracts
 from coldwork.rules import RULES
 from coldwork.rules.batch import SKEWED_INPUT
 from coldwork.rules.coupon import (
-    DENSITY_IMPOSSIBLE,
-    DENSITY_TOO_LOW,
     FEW_READINGS,
     NO_READINGS,
     THIN_COUPON,
@@ -115,16 +113,6 @@ def test_which_rules_fired_on_which_coupons() -> None:
         "few-readings": 1,
         "skewed-input": 1,
     }
-
-
-def test_errors_empty_columns_and_some_leave_the_ends() -> None:
-    findings = Findings(3)
-    findings.add(DENSITY_IMPOSSIBLE, np.array([0]))
-    findings.add(DENSITY_TOO_LOW, np.array([1]))
-    density = "dislocation_density_per_m2"
-    assert findings.empties[density].tolist() == [True, True, False]
-    assert findings.empties_ends[density].tolist() == [True, False, False]
-    assert findings.empties["hardness"].tolist() == [False] * 3
 
 
 def test_no_findings_are_a_table_without_rows() -> None:

@@ -18,9 +18,7 @@ def estimate(
     density: Annotated[
         float | None, typer.Option(metavar="RHO", help="Dislocation density in 1/m2.")
     ] = None,
-    stress: Annotated[
-        float | None, typer.Option(metavar="MPA", help="Flow stress in MPa.")
-    ] = None,
+    stress: Annotated[float | None, typer.Option(metavar="MPA", help="Flow stress in MPa.")] = None,
     hardness: Annotated[
         float | None, typer.Option(metavar="NUMBER", help="Hardness number.")
     ] = None,
@@ -54,8 +52,8 @@ def estimate(
 
         given = list(settings or ())
         if baseline is not None:
-            said = f"strength.baseline_mpa = {{ value = {float(baseline)}, u = {float(u_baseline)} }}"
-            given.insert(0, said)
+            numbers = f"value = {float(baseline)}, u = {float(u_baseline)}"
+            given.insert(0, f"strength.baseline_mpa = {{ {numbers} }}")
         found = job(
             material,
             density_per_m2=density,

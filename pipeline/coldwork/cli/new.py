@@ -19,4 +19,7 @@ def new(
 
         for path in job(folder):
             show(str(path))
-        note("Fill the tables, say the required keys of batch.toml, then run: coldwork check " + str(folder))
+        note(
+            "Fill the tables, say the required keys of batch.toml, then run: "
+            f"coldwork check {folder}"
+        )

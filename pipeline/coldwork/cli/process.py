@@ -3,7 +3,8 @@
 import sys
 from enum import StrEnum
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated
+from time import monotonic
+from typing import TYPE_CHECKING, Annotated, Final
 
 import typer
 
@@ -14,6 +15,8 @@ if TYPE_CHECKING:
     from coldwork.jobs.run import Outcome
 
 __all__ = ["process"]
+
+_QUIET: Final = 5.0  # between two lines of progress that are not written over [s]
 
 
 class Accepted(StrEnum):
@@ -54,7 +57,12 @@ def process(
         for batch in batches:
             try:
                 outcome = run(
-                    batch, into, replace=replace, reason=reason, plots=plots, progress=_telling(batch)
+                    batch,
+                    into,
+                    replace=replace,
+                    reason=reason,
+                    plots=plots,
+                    progress=Teller(batch.name),
                 )
             except ColdworkError as error:
                 if len(batches) == 1:
@@ -75,7 +83,7 @@ def process(
 
 
 def _graver(a: Exit, b: Exit) -> Exit:
-    """The graver of two exit codes: an internal error, then not written, refused, attention."""
+    """Give the graver of two exit codes: internal, not written, refused, usage, attention."""
     order = (Exit.DONE, Exit.ATTENTION, Exit.USAGE, Exit.REFUSED, Exit.NOT_WRITTEN, Exit.INTERNAL)
     return max(a, b, key=order.index)
 
@@ -111,10 +119,6 @@ def _document(outcome: "Outcome") -> dict[str, object]:
     }
 
 
-def _telling(batch: Path) -> "Teller":
-    return Teller(batch.name)
-
-
 class Teller:
     """Progress: one line that is written over on a terminal, a plain line now and then elsewhere.
 
@@ -125,17 +129,14 @@ class Teller:
     """
 
     def __init__(self, name: str) -> None:
-        from time import monotonic
-
         self._name = name
-        self._clock = monotonic
-        self._next = monotonic() + 5.0
+        self._next = monotonic() + _QUIET
         self._terminal = sys.stderr.isatty()
 
     def __call__(self, words: str) -> None:
         """Tell what is being done."""
         if self._terminal:
             typer.echo(f"\r\x1b[K{self._name}: {words}\r", err=True, nl=False)
-        elif self._clock() >= self._next:
-            self._next = self._clock() + 5.0
+        elif monotonic() >= self._next:
+            self._next = monotonic() + _QUIET
             note(f"{self._name}: {words}")

@@ -6,6 +6,7 @@ import sys
 import traceback
 from collections.abc import Iterator
 from contextlib import contextmanager
+from pathlib import Path
 from types import FrameType
 from typing import Any
 
@@ -57,7 +58,7 @@ def show(words: str) -> None:
 
 def show_json(document: Any) -> None:  # noqa: ANN401 - whatever JSON can hold
     """Write a document to stdout as JSON."""
-    import json  # noqa: PLC0415 - help must answer at once
+    import json  # here: help must answer at once
 
     typer.echo(json.dumps(document, indent=2, sort_keys=True, allow_nan=False, ensure_ascii=False))
 
@@ -66,7 +67,7 @@ def _internal(error: Exception) -> str:
     """Name the error and the place, in two lines, without a traceback."""
     frames = traceback.extract_tb(error.__traceback__)
     ours = [f for f in frames if "coldwork" in f.filename] or list(frames)
-    place = f"{os.path.basename(ours[-1].filename)}, line {ours[-1].lineno}" if ours else "?"
+    place = f"{Path(ours[-1].filename).name}, line {ours[-1].lineno}" if ours else "?"
     return (
         f"internal error: {type(error).__name__}: {error}\n"
         f"at {place}; nothing was written. This is a fault of coldwork, not of the batch: "

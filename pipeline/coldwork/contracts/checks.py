@@ -81,6 +81,13 @@ def _nothing_to_compute_from(columns: Columns) -> _Bools:
     return np.asarray(without_diagonals & np.isnan(columns.number("hardness")))
 
 
+def _half_a_point(columns: Columns) -> _Bools:
+    length = np.isnan(columns.number("extension_mm")) & np.isnan(columns.number("crosshead_mm"))
+    no_force = np.isnan(columns.number("force_n")) | length
+    no_stress = np.isnan(columns.number("stress_mpa")) | np.isnan(columns.number("strain"))
+    return np.asarray(no_force & no_stress)
+
+
 def _brinell_without_ball(columns: Columns) -> _Bools:
     return np.asarray((columns.text("scale") == "HBW") & np.isnan(columns.number("ball_mm")))
 
@@ -162,6 +169,11 @@ CHECKS: Final[Mapping[str, Check]] = {
             "hardness-or-diagonals",
             "A row has its hardness, or d1_um and (but for HK) d2_um.",
             _nothing_to_compute_from,
+        ),
+        Check(
+            "force-with-length-or-stress-with-strain",
+            "A point has force_n with extension_mm or crosshead_mm, or stress_mpa with strain.",
+            _half_a_point,
         ),
         Check("ball-for-brinell", "A row of scale HBW has ball_mm.", _brinell_without_ball),
         Check(

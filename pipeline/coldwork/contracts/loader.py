@@ -20,7 +20,7 @@ from coldwork.errors import ColdworkError, UsageError
 __all__ = ["contract_of", "document", "documents", "load", "names"]
 
 _ORDER: Final = {
-    "in": ("coupons", "indents", "flow_stress", "exclusions"),
+    "in": ("coupons", "indents", "flow_stress", "curves", "exclusions"),
     "out": (
         "coupons",
         "quantities",
@@ -30,8 +30,11 @@ _ORDER: Final = {
         "set_aside",
         "flags",
         "decisions",
+        "tensile",
+        "evolution",
+        "curve_points",
     ),
-    "documents": ("batch_sheet", "method", "manifest", "record"),
+    "documents": ("batch_sheet", "layout", "method", "manifest", "record"),
 }
 _TABLE_KEYS: Final = {
     "name",

@@ -112,25 +112,25 @@ def used_numbers(
         A constant that nobody gives is left out.
     """
     used = {}
-    for key in _used_keys(laws, given):
+    curves = "curves" in causes.sheet.tables["files"]
+    for key in _used_keys(laws, given, curves=curves):
         number = given.get(key) or _from_library(causes, key, material) or _default(causes, key)
         if number is not None:
             used[number.input.name] = number
     return used
 
 
-def _used_keys(laws: Laws, given: Mapping[KeyName, Given]) -> list[KeyName]:
+def _used_keys(laws: Laws, given: Mapping[KeyName, Given], *, curves: bool) -> list[KeyName]:
     unused: set[KeyName] = set()
     if laws.taylor == "slope":
         unused |= {("hardening", "taylor_factor"), ("hardening", "coefficient")}
     if ("indentation", "HBW", "representative_strain") in given:
         unused.add(("indentation", "HBW", "strain_ratio"))
+    unread = set() if laws.route == "indent" else {"indentation"}
+    if not curves:
+        unread.add("tensile")
     keys = [*number_specs(), *(key for key in given if key[:2] == TERMS)]
-    return [
-        key
-        for key in keys
-        if key not in unused and (laws.route == "indent" or key[0] != "indentation")
-    ]
+    return [key for key in keys if key not in unused and key[0] not in unread]
 
 
 def _from_library(causes: Causes, key: KeyName, material: Material | None) -> Given | None:

@@ -14,6 +14,7 @@ from coldwork.inputs.keys import number_specs, schema_of
 from coldwork.inputs.laws import choice
 from coldwork.inputs.method import Method, Tester
 from coldwork.inputs.numbers import Given
+from coldwork.inputs.tensile import tensile_document
 
 __all__ = ["method_document"]
 
@@ -23,7 +24,7 @@ _SECTIONS: Final = {
     "temperature": ("test_c", "reference_c"),
     "flow": ("plastic_strain", "repeatability_rel"),
     "indentation": ("size_effect", "resolution_um"),
-    "output": ("tables", "detail"),
+    "output": ("tables", "detail", "curve_points"),
 }
 
 
@@ -52,6 +53,8 @@ def method_document(
     }
     inputs = {name: _number(given) for name, given in numbers.items()}
     inputs |= {tester.bias.name: _bias(tester) for tester in method.testers}
+    if method.tensile is not None:
+        sections["tensile"] = tensile_document(method.tensile)
     return {
         "schema_version": document("method")["version"],
         "batch_id": method.batch_id,
@@ -71,7 +74,7 @@ def method_document(
         "limits": [asdict(limit) for limit in method.limits],
         **sections,
         "files": _files(method),
-        "defaults": list(_defaults(method, tables, numbers)),
+        "defaults": list(dict.fromkeys(_defaults(method, tables, numbers))),
         "derived": _derived(method),
         "versions": {"coldwork": coldwork.__version__}
         | {name: version(name) for name in _COMPUTING},
@@ -125,6 +128,7 @@ def _files(method: Method) -> dict[str, object]:
         "coupons": names(method.coupons),
         "indents": names(method.indents),
         "flow_stress": names(method.flow_stress),
+        "curves": names(method.curves),
         "exclusions": names(taken_out),
     }
 
@@ -135,9 +139,11 @@ def _defaults(
     for name, given in numbers.items():
         if given.input.origin == "default":
             yield name
-    unread = "flow" if method.laws.route == "indent" else "indentation"
+    unread = {"flow" if method.laws.route == "indent" else "indentation"}
+    if method.tensile is None:
+        unread.add("tensile")
     for key in _choices((), schema_of(())):
-        if key[0] != unread and not _is_said(tables, key):
+        if key[0] not in unread and not _is_said(tables, key):
             yield ".".join(key)
     for limit in tables.get("limits", []):
         for name, inner in schema_of(("limits", 0)).get("properties", {}).items():

@@ -55,6 +55,7 @@ WINDOWS: Final[Mapping[str, tuple[float, float]]] = {
     "core_radius_b": (1e-3, 1e3),
     "core_energy": (0.0, 100.0),
     "bias_rel": (-0.5, 0.5),
+    "slope_gpa": (1e-3, 2000.0),
 }
 """Window of each numeric input by its key, both ends allowed. [unit of the key]"""
 

@@ -62,7 +62,14 @@ def laws_of(tables: Mapping[str, Any]) -> Laws:
         angles_deg=angles,
         fractions=fractions,
         uniform_mix=character.get("mix") == "uniform",
+        flow_from=_flow_from(route, tables["files"]),
     )
+
+
+def _flow_from(route: str, files: Mapping[str, Any]) -> str:
+    if route != "flow":
+        return ""
+    return "points" if "flow_stress" in files else "curves"
 
 
 def _mix(character: Mapping[str, Any]) -> tuple[tuple[float, ...], tuple[float, ...]]:

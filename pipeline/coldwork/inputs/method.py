@@ -4,13 +4,14 @@ Frozen and plain: nothing here reads a file. `coldwork.inputs.sheet` makes it.
 """
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from datetime import date
 from pathlib import Path
 
+from coldwork.inputs.layout import Layout
 from coldwork.inputs.quantity import Input
 
-__all__ = ["Laws", "Limit", "Method", "Tester"]
+__all__ = ["Laws", "Limit", "Method", "Tensile", "Tester"]
 
 
 @dataclass(frozen=True)
@@ -39,6 +40,8 @@ class Laws:
         The character mix; empty if `uniform_mix`. [deg], [1]
     uniform_mix : bool
         Whether every angle is alike.
+    flow_from : str
+        What gives the flow stress: ``points`` or ``curves``; empty by the indent route.
     """
 
     route: str
@@ -51,6 +54,7 @@ class Laws:
     angles_deg: tuple[float, ...]
     fractions: tuple[float, ...]
     uniform_mix: bool
+    flow_from: str = ""
 
 
 @dataclass(frozen=True)
@@ -102,6 +106,46 @@ class Limit:
     basis: str
     at_least: float | None
     max_relative_u: float | None
+
+
+@dataclass(frozen=True)
+class Tensile:
+    """How curves are reduced; the numbers with uncertainty are inputs of the method.
+
+    Attributes
+    ----------
+    mode : str
+        ``tension`` or ``compression``.
+    strain_from : str or None
+        ``extension`` or ``crosshead``, where curves bring force and length.
+    stress_is : str or None
+        ``engineering`` or ``true``, where curves bring stress and strain.
+    slope_between : tuple of float
+        Range of the elastic fit, as fractions of the 0.2 % proof stress. [1]
+    offsets : tuple of float
+        Plastic offsets of the proof stresses that are told; 0.002 always is. [1]
+    reported_strains : tuple of float
+        True plastic strains that ``evolution.csv`` tells, rising. [1]
+    fit : tuple of str
+        ``voce`` and, or, ``hollomon``.
+    fit_between : tuple of float or None
+        True plastic strains between which laws are fitted. [1]
+    bridgman : bool
+        Whether the stress at fracture is told from the measured neck.
+    curve_points : bool
+        Whether ``curve_points.parquet`` is written.
+    """
+
+    mode: str
+    strain_from: str | None
+    stress_is: str | None
+    slope_between: tuple[float, float]
+    offsets: tuple[float, ...]
+    reported_strains: tuple[float, ...]
+    fit: tuple[str, ...]
+    fit_between: tuple[float, float] | None
+    bridgman: bool
+    curve_points: bool
 
 
 @dataclass(frozen=True)
@@ -158,6 +202,12 @@ class Method:
         it builds on.
     document : mapping of str to object
         Content of ``method.json``, ready to dump.
+    curves : tuple of Path
+        Files of tensile or compression curves; by the indent route they stand beside it.
+    tensile : Tensile or None
+        How those are reduced.
+    layouts : mapping of str to tuple of (Layout or None)
+        By table: how each of its files is written, None for the tidy form.
     """
 
     folder: Path
@@ -188,3 +238,12 @@ class Method:
     detail: str
     sheets: tuple[tuple[str, str], ...]
     document: Mapping[str, object]
+    curves: tuple[Path, ...] = ()
+    tensile: Tensile | None = None
+    layouts: Mapping[str, tuple[Layout | None, ...]] = field(default_factory=dict)
+
+    @property
+    def used_layouts(self) -> tuple[Layout, ...]:
+        """Every layout that a file is read through, once each."""
+        all_of_them = (layout for table in self.layouts.values() for layout in table if layout)
+        return tuple({layout.path: layout for layout in all_of_them}.values())

@@ -20,7 +20,8 @@ from coldwork.inputs.method import Method
 from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
 from coldwork.inputs.source import Sheet, read_sheet
 from coldwork.inputs.structure import refuse_misfits
-from coldwork.inputs.tables import tables_of
+from coldwork.inputs.tables import Tables, tables_of
+from coldwork.inputs.tensile import machine_numbers, refuse_bad_tensile, tensile_of
 from coldwork.inputs.unbuilt import refuse_unbuilt
 from coldwork.materials import Material
 from coldwork.units import to_si
@@ -86,12 +87,13 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_bad_mix(causes)
     refuse_bad_testers(causes)
     refuse_bad_limits(causes)
+    refuse_bad_tensile(causes)
     home = folder.resolve()
-    files = tables_of(causes, home) if with_files else {}
-    if causes.found:
-        raise BatchRefused(str(folder), causes.all())
+    files = tables_of(causes, home) if with_files else Tables()
+    if causes.found or files.causes:
+        raise BatchRefused(str(folder), [*causes.all(), *files.causes])
     laws = laws_of(sheet.tables)
-    numbers = used_numbers(causes, laws, given, material)
+    numbers = used_numbers(causes, laws, given, material) | machine_numbers(causes)
     method = _method(causes, home, material, files, numbers)
     return replace(method, document=method_document(method, sheet.tables, numbers))
 
@@ -100,10 +102,10 @@ def _method(
     causes: Causes,
     folder: Path,
     material: Material | None,
-    files: dict[str, tuple[Path, ...]],
+    found: Tables,
     numbers: dict[str, Given],
 ) -> Method:
-    sheet = causes.sheet
+    sheet, files = causes.sheet, found.paths
     tables: dict[str, Any] = sheet.tables
     batch = tables["batch"]
     testers = testers_of(tables, sheet.origin(("testers",)))
@@ -139,6 +141,9 @@ def _method(
         detail=choice(tables, "output", "detail"),
         sheets=sheet.digests,
         document={},
+        curves=files.get("curves", ()),
+        tensile=tensile_of(tables),
+        layouts=found.layouts,
     )
 
 

@@ -6,14 +6,14 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from difflib import get_close_matches
 from hashlib import sha256
-from pathlib import Path, PurePosixPath
+from pathlib import Path, PurePosixPath, PureWindowsPath
 from typing import Any, Final, TypeAlias
 
 from coldwork.errors import BatchRefused, Cause
 from coldwork.inputs.positions import KeyPath, line_of, lines_of
 from coldwork.inputs.words import key_text, shown
 
-__all__ = ["SHEET_NAME", "Sheet", "SheetFile", "Table", "read_sheet"]
+__all__ = ["SHEET_NAME", "Sheet", "SheetFile", "Table", "path_fault", "read_sheet", "read_toml"]
 
 SHEET_NAME: Final = "batch.toml"
 _LARGEST: Final = 4_000_000  # bytes; a sheet with a thousand limits has a twentieth of that
@@ -22,6 +22,8 @@ _NOT_IN_A_HOUSE: Final = {
     "builds_on": "Only a batch sheet builds on another file, one step deep.",
     "id": "An id belongs to one batch alone.",
 }
+
+_NEEDS: Final = {"sheet": "A batch is a folder with a sheet, batch.toml, and its tables."}
 
 Table: TypeAlias = dict[str, Any]
 
@@ -120,12 +122,12 @@ def read_sheet(folder: Path) -> Sheet:
             "Check the path, or start one with 'coldwork new'.",
         )
         raise BatchRefused(str(folder), [cause])
-    own = _read(folder, SHEET_NAME)
+    own = read_toml(folder, SHEET_NAME)
     batch = own.tables.get("batch")
     named = batch.get("builds_on") if isinstance(batch, dict) else None
     if not isinstance(named, str):
         return Sheet(_merged({}, own.tables), (own,))
-    fault = _path_fault(named)
+    fault = path_fault(named)
     if fault:
         cause = Cause(
             Sheet(own.tables, (own,)).where(("batch", "builds_on")),
@@ -134,16 +136,17 @@ def read_sheet(folder: Path) -> Sheet:
             "Name it like '../house.toml'.",
         )
         raise BatchRefused(str(folder), [cause])
-    house = _read(folder, named)
+    house = read_toml(folder, named)
     _refuse_house(folder, house)
     return Sheet(_merged(_merged({}, house.tables), own.tables), (own, house))
 
 
-def _path_fault(named: str) -> str:
+def path_fault(named: str) -> str:
+    """Say why a path cannot name a TOML file beside the sheet, empty if it can."""
     path = PurePosixPath(named)
     if not named.isprintable() or path.suffix != ".toml":
         return "is not the path of a .toml file"
-    if path.is_absolute():
+    if path.is_absolute() or PureWindowsPath(named).drive:
         return "is an absolute path"
     return "is the sheet itself" if path == PurePosixPath(SHEET_NAME) else ""
 
@@ -165,13 +168,34 @@ def _refuse_house(folder: Path, house: SheetFile) -> None:
         raise BatchRefused(str(folder), causes)
 
 
-def _read(folder: Path, name: str) -> SheetFile:
+def read_toml(folder: Path, name: str, kind: str = "sheet") -> SheetFile:
+    """Read one TOML file.
+
+    Parameters
+    ----------
+    folder : Path
+        The batch folder.
+    name : str
+        Path of the file from there.
+    kind : str, optional
+        What messages call it.
+
+    Returns
+    -------
+    SheetFile
+        Its syntax is right; nothing else has been checked.
+
+    Raises
+    ------
+    BatchRefused
+        If it is missing, unreadable, not UTF-8 or not TOML.
+    """
     try:
         data = _bytes(folder / name)
         text = data.decode("utf-8-sig").replace("\r\n", "\n")
         tables = tomllib.loads(text)
     except (OSError, ValueError, RecursionError) as error:
-        raise BatchRefused(str(folder), [_unreadable(folder, name, error)]) from error
+        raise BatchRefused(str(folder), [_unreadable(folder, name, kind, error)]) from error
     return SheetFile(name, sha256(data).hexdigest(), tables, lines_of(text))
 
 
@@ -187,35 +211,35 @@ def _bytes(path: Path) -> bytes:
     return data
 
 
-def _unreadable(folder: Path, name: str, error: Exception) -> Cause:
+def _unreadable(folder: Path, name: str, kind: str, error: Exception) -> Cause:
     if isinstance(error, FileNotFoundError):
-        return _missing(folder, name)
+        return _missing(folder, name, kind)
     if isinstance(error, UnicodeDecodeError):
         line = error.object[: error.start].count(b"\n") + 1
         return Cause(
             f"{name}, line {line}",
             f"byte {error.start} is not UTF-8",
-            "A sheet is UTF-8 text.",
+            f"A {kind} is UTF-8 text.",
             "Save it as UTF-8.",
         )
     if isinstance(error, OSError):
         what = f"it cannot be read: {error.strerror or error}"
-        return Cause(name, what, "A batch needs its sheet.", "Make it a readable file.")
+        return Cause(name, what, f"A batch needs its {kind}.", "Make it a readable file.")
     if isinstance(error, RecursionError):
-        what = "its values are nested too deeply"
-        return Cause(name, what, "No key of a sheet is deeper than a list of tables.", "Undo that.")
+        why = f"No key of a {kind} is deeper than a list of tables."
+        return Cause(name, "its values are nested too deeply", why, "Undo that.")
     reason = str(error) if isinstance(error, tomllib.TOMLDecodeError) else "a number is too long"
     at = re.search(r" \(at line (\d+), column (\d+)\)$", reason)
     where = f"{name}, line {at[1]}, column {at[2]}" if at else name
     text = reason[: at.start()] if at else reason
-    return Cause(where, _one_line(text), "A sheet is TOML 1.0.", "Mend the syntax there.")
+    return Cause(where, _one_line(text), f"A {kind} is TOML 1.0.", "Mend the syntax there.")
 
 
 def _one_line(text: str) -> str:
     return "".join(c if c.isprintable() else "�" for c in text)[:200]
 
 
-def _missing(folder: Path, name: str) -> Cause:
+def _missing(folder: Path, name: str, kind: str) -> Cause:
     place = (folder / name).parent
     try:
         there = sorted(p.name for p in place.iterdir() if p.suffix == ".toml")
@@ -225,7 +249,7 @@ def _missing(folder: Path, name: str) -> Cause:
     return Cause(
         name,
         "there is no such file",
-        "A batch is a folder with a sheet, batch.toml, and its tables.",
+        _NEEDS.get(kind, "A file that the sheet names must be there."),
         f"The nearest name there is '{close[0]}'." if close else "Put it there, or name another.",
     )
 

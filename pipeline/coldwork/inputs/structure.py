@@ -8,7 +8,7 @@ import jsonschema
 
 from coldwork.contracts import document
 from coldwork.inputs.causes import Causes
-from coldwork.inputs.keys import schema_of, spec_of
+from coldwork.inputs.keys import spec_of
 from coldwork.inputs.positions import KeyPath
 from coldwork.inputs.words import listed, nearest, shown
 
@@ -30,12 +30,12 @@ _COMPARED: Final = {
 }
 
 
-def refuse_misfits(causes: Causes) -> None:
-    """Refuse what the schema of the batch sheet does not allow.
+def refuse_misfits(causes: Causes, schema: str = "batch_sheet") -> None:
+    """Refuse what a schema does not allow, that of the batch sheet unless said.
 
     Numbers with uncertainty are left out: `numbers` has looked at them closer.
     """
-    validator = jsonschema.Draft202012Validator(document("batch_sheet"))
+    validator = jsonschema.Draft202012Validator(document(schema))
     instance = _with_dates_as_text(causes.sheet.tables)
     for error in validator.iter_errors(instance):
         if not _is_about_a_number(error):
@@ -125,7 +125,8 @@ def _missing(error: jsonschema.ValidationError) -> Iterable[_Words]:
     for key in _rule(error):
         if key not in _found(error):
             noun = "key" if path else "section"
-            why = _plain(schema_of((*path, key)).get("description", "")) or _why(error)
+            described = _schema(error).get("properties", {}).get(key, {})
+            why = _plain(described.get("description", "")) or _why(error)
             yield (*path, key), f"this {noun} is missing", why, "Add it."
 
 

@@ -1,18 +1,40 @@
-"""The files that a sheet names: found, inside the batch folder, each named once."""
+"""The files that a sheet names: found, inside the batch folder, each named once, with layouts."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field
 from difflib import get_close_matches
 from pathlib import Path, PurePosixPath, PureWindowsPath
-from typing import Final
+from typing import Any, Final
 
+from coldwork.errors import BatchRefused, Cause
 from coldwork.inputs.causes import Causes
+from coldwork.inputs.layout import Layout, read_layout
 from coldwork.inputs.words import listed, shown
 
-__all__ = ["tables_of"]
+__all__ = ["Tables", "tables_of"]
 
-_TABLES: Final = ("coupons", "indents", "flow_stress", "exclusions")
+_TABLES: Final = ("coupons", "indents", "flow_stress", "curves", "exclusions")
 _READ_BY: Final = {"indents": "indent", "flow_stress": "flow"}
 _PATTERN_MARKS: Final = frozenset("*?[")
+
+
+@dataclass
+class Tables:
+    """The files that a sheet names.
+
+    Attributes
+    ----------
+    paths : dict of str to tuple of Path
+        By table; in the sheet's order, those of a pattern sorted by name.
+    layouts : dict of str to tuple of (Layout or None)
+        How each of them is written, None for the tidy form.
+    causes : list of Cause
+        What is wrong with layouts; each stands in a file of its own.
+    """
+
+    paths: dict[str, tuple[Path, ...]] = field(default_factory=dict)
+    layouts: dict[str, tuple[Layout | None, ...]] = field(default_factory=dict)
+    causes: list[Cause] = field(default_factory=list)
 
 
 class _NotTakenError(Exception):
@@ -23,8 +45,8 @@ class _NotTakenError(Exception):
         self.words = (what, why, mend)
 
 
-def tables_of(causes: Causes, folder: Path) -> dict[str, tuple[Path, ...]]:
-    """Find the files of every table that the sheet names.
+def tables_of(causes: Causes, folder: Path) -> Tables:
+    """Find the files of every table that the sheet names, and read their layouts.
 
     Parameters
     ----------
@@ -35,22 +57,28 @@ def tables_of(causes: Causes, folder: Path) -> dict[str, tuple[Path, ...]]:
 
     Returns
     -------
-    dict of str to tuple of Path
-        By table; in the sheet's order, those of a pattern sorted by name.
+    Tables
+        What was found; `causes` gets what is wrong with the sheet, the tables' own
+        list what is wrong with layouts.
     """
     section = causes.sheet.tables.get("files")
     if not isinstance(section, dict):
-        return {}
-    found: dict[str, tuple[Path, ...]] = {}
+        return Tables()
+    found = Tables()
+    layouts = _Layouts(folder)
     for table in _TABLES:
         named = section.get(table)
         if named is None or causes.within(("files", table)):
             continue
         entries = named if isinstance(named, list) else [named]
         try:
-            found[table] = tuple(_files(folder, entries))
+            files = tuple(_files(folder, table, entries, layouts))
         except _NotTakenError as refusal:
             causes.add(("files", table), *refusal.words)
+        else:
+            found.paths[table] = tuple(path for path, _ in files)
+            found.layouts[table] = tuple(layout for _, layout in files)
+    found.causes += layouts.causes
     _refuse_unread_table(causes, section)
     return found
 
@@ -68,15 +96,45 @@ def _refuse_unread_table(causes: Causes, section: dict[str, object]) -> None:
             )
 
 
-def _files(folder: Path, entries: list[str]) -> Iterator[Path]:
-    seen: set[Path] = set()
+class _Layouts:
+    """The layouts that a sheet names, each read once."""
+
+    def __init__(self, folder: Path) -> None:
+        self._folder = folder
+        self._read: dict[str, Layout | None] = {}
+        self.causes: list[Cause] = []
+
+    def get(self, name: str, table: str) -> Layout | None:
+        if name not in self._read:
+            self._read[name] = None
+            try:
+                self._read[name] = read_layout(name, self._folder)
+            except BatchRefused as refused:
+                self.causes += refused.causes
+        layout = self._read[name]
+        if layout is not None and layout.fills != table:
+            what = f"layout {shown(name)} fills {layout.fills}"
+            why = f"These files hold {table}."
+            raise _not_taken(what, why, "Name another layout, or the files in their own key.")
+        return layout
+
+
+def _files(
+    folder: Path, table: str, entries: list[Any], layouts: _Layouts
+) -> Iterator[tuple[Path, Layout | None]]:
+    seen: set[tuple[Path, str | None]] = set()
     for entry in entries:
-        for path in _found(folder, entry):
-            if path.resolve() in seen:
-                what = f"{shown(entry)} names {path.name} a second time"
+        named, layout = entry, None
+        if isinstance(entry, Mapping):
+            named = entry["path"]
+            layout = layouts.get(entry["layout"], table)
+        sheet = layout.workbook.sheet if layout and layout.workbook else None
+        for path in _found(folder, named):
+            if (path.resolve(), sheet) in seen:
+                what = f"{shown(named)} names {path.name} a second time"
                 raise _not_taken(what, "A file is read once.", "Name it once, by path or pattern.")
-            seen.add(path.resolve())
-            yield path
+            seen.add((path.resolve(), sheet))
+            yield path, layout
 
 
 def _found(folder: Path, entry: str) -> list[Path]:

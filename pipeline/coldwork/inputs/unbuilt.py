@@ -45,14 +45,6 @@ _KEYS: Final[Mapping[KeyPath, str]] = {
     ("uncertainty", "draws"): "Draws belong to Monte Carlo, which is not built yet.",
     ("uncertainty", "seed"): "A seed belongs to Monte Carlo, which is not built yet.",
     ("strength", "baseline_from_coupon"): "A baseline from a coupon is not built yet.",
-    ("files", "layout"): "Instrument layouts are not built yet; tables come in the tidy form.",
-    ("files", "layouts"): "Instrument layouts are not built yet; tables come in the tidy form.",
-    ("files", "tensile"): "Tensile records are not built yet; give points in flow_stress.",
-    ("files", "curves"): "Whole flow curves are not built yet; give points in flow_stress.",
-    ("layout",): "Instrument layouts are not built yet; tables come in the tidy form.",
-    ("layouts",): "Instrument layouts are not built yet; tables come in the tidy form.",
-    ("tensile",): "Reducing tensile records is not built yet; give points in flow_stress.",
-    ("curves",): "Whole flow curves are not built yet; give points in flow_stress.",
     ("calibration",): "Constants from a calibration are not built yet; give them as numbers.",
     ("calibrations",): "Constants from a calibration are not built yet; give them as numbers.",
 }
@@ -89,7 +81,6 @@ def refuse_unbuilt(causes: Causes) -> None:
     _refuse_size_effects(causes)
     _refuse_exponent(causes)
     _refuse_values_from_elsewhere(causes)
-    _refuse_tables_of_files(causes)
     _refuse_temperature_correction(causes)
 
 
@@ -144,20 +135,6 @@ def _refuse_values_from_elsewhere(causes: Causes) -> None:
                 causes.add(
                     (section, key), f"{part} cannot be used", _ORIGINS[part], "Give the number."
                 )
-
-
-def _refuse_tables_of_files(causes: Causes) -> None:
-    files = _table(causes, ("files",))
-    for key, value in list(files.items()):
-        entries = value if isinstance(value, list) else [value]
-        if any(isinstance(entry, dict) and "layout" in entry for entry in entries):
-            causes.add(
-                ("files", key),
-                "a layout cannot be used",
-                "Instrument layouts are not built yet; tables come in the tidy form.",
-                "Turn the export into the tidy form and name that file.",
-            )
-            del files[key]
 
 
 def _refuse_temperature_correction(causes: Causes) -> None:

@@ -1,7 +1,7 @@
 """One column of cells held against its field of the contract."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final, cast
 
 import numpy as np
@@ -18,7 +18,7 @@ from coldwork.intake.times import parse_times, time_hint
 from coldwork.rules import reasons
 from coldwork.rules.rule import Reason
 
-__all__ = ["LARGEST", "SMALLEST", "Column", "Fault", "read_column"]
+__all__ = ["LARGEST", "SMALLEST", "Column", "Fault", "read_column", "with_layout_faults"]
 
 LARGEST: Final = 1e30  # of any number, in any unit of a contract: its powers stay finite
 SMALLEST: Final = 1e-30  # of any number but zero
@@ -38,13 +38,16 @@ class Fault:
     rows : ndarray of bool, shape (n,)
         Where.
     hint : callable from str to str, or None
-        From the raw cell to a hint of its own; None stands for the reason's.
+        From the cell to a hint of its own; None stands for the reason's.
+    of_raw : bool
+        Whether `hint` takes the cell as the machine wrote it, before its layout.
     """
 
     reason: Reason
     column: str
     rows: NDArray[np.bool_]
     hint: Callable[[str], str] | None = None
+    of_raw: bool = False
 
 
 @dataclass(frozen=True)
@@ -107,6 +110,34 @@ def read_column(field: Field, cells: pa.StringArray, zone: str) -> Column:
     if field.type == "datetime":
         return _time(field, cells, zone)
     return _text(field, cells)
+
+
+def with_layout_faults(column: Column, faults: tuple[Fault, ...]) -> Column:
+    """Give a column the faults that its layout found; they stand in for its own in those rows.
+
+    Parameters
+    ----------
+    column : Column
+        From `read_column`.
+    faults : tuple of Fault
+        Of a whole block; those of other columns are passed over.
+
+    Returns
+    -------
+    Column
+        A row of it has at most one fault still.
+    """
+    first = [fault for fault in faults if fault.column == column.field.name and fault.rows.any()]
+    if not first:
+        return column
+    taken = np.zeros(len(column.text), dtype=np.bool_)
+    kept = []
+    for fault in (*first, *column.faults):
+        rows = fault.rows & ~taken
+        taken |= rows
+        if rows.any():
+            kept.append(replace(fault, rows=rows))
+    return replace(column, faults=tuple(kept))
 
 
 def _number(field: Field, cells: pa.StringArray, parsed: Parsed) -> Column:

@@ -23,6 +23,14 @@ __all__ = ["BadCell", "Coupons", "read_coupons"]
 _ID: Final = "coupon_id"
 _GRAIN: Final = "grain_size_um"
 _U_GRAIN: Final = "u_grain_size_um"
+_DIMENSIONS: Final = (
+    "thickness_mm",
+    "gauge_length_mm",
+    "initial_diameter_mm",
+    "width_mm",
+    "final_diameter_mm",
+    "neck_radius_mm",
+)
 _U_WITHOUT_VALUE: Final = "give the grain size that this is the uncertainty of"
 
 
@@ -75,6 +83,9 @@ class Coupons:
         Optional cells that could not be used.
     sources : tuple of SourceFile
         What was read.
+    dimensions : mapping of str to ndarray of float64, shape (n,)
+        By column what a tensile or compression test needs of the coupon's shape; columns
+        that no file has are left out. [m]
     """
 
     ids: pa.StringArray
@@ -92,6 +103,7 @@ class Coupons:
     bad_cells: tuple[BadCell, ...]
     sources: tuple[SourceFile, ...]
     lookup: Lookup = field(repr=False, compare=False)
+    dimensions: Mapping[str, NDArray[np.float64]] = field(default_factory=dict)
 
     def __len__(self) -> int:
         """Give the number of coupons."""
@@ -230,4 +242,5 @@ def _coupons(columns: Mapping[str, Column], table: WholeTable) -> Coupons:
         bad_cells=tuple(_bad_cells(columns, table)),
         sources=table.sources,
         lookup=Lookup(columns[_ID].text),
+        dimensions={name: number(name) for name in _DIMENSIONS if name in columns},
     )

@@ -6,17 +6,45 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from hashlib import sha256
 from pathlib import Path
-from typing import Final, NamedTuple
+from typing import TYPE_CHECKING, BinaryIO, Final, NamedTuple
 
 from coldwork.contracts import Contract
 from coldwork.errors import Cause
+from coldwork.inputs.layout import Layout
+from coldwork.intake.decoding import Decoder
 
-__all__ = ["BLOCK_BYTES", "LONGEST_LINE", "LineReader", "Lines", "SourceFile", "TableFiles"]
+if TYPE_CHECKING:
+    import hashlib
+
+__all__ = [
+    "BLOCK_BYTES",
+    "LONGEST_LINE",
+    "KeptLine",
+    "LineReader",
+    "Lines",
+    "SourceFile",
+    "TableFiles",
+]
 
 BLOCK_BYTES: Final = 2 << 20  # byte; large enough for the parser's stride, small enough for a cache
 LONGEST_LINE: Final = 64 << 20  # byte
 _BOM: Final = b"\xef\xbb\xbf"
 _WIDE_BOMS: Final = (b"\xff\xfe", b"\xfe\xff")  # UTF-16
+
+
+class KeptLine(NamedTuple):
+    """A line of a file that is neither a row nor passed over, such as one of averages.
+
+    Attributes
+    ----------
+    line : int
+        Its number.
+    text : str
+        As written.
+    """
+
+    line: int
+    text: str
 
 
 @dataclass(frozen=True)
@@ -31,16 +59,51 @@ class TableFiles:
         The batch's folder; files are named by their paths inside it.
     paths : tuple of Path
         The files, in order.
+    layouts : tuple of (Layout or None)
+        How each is written, None for the tidy form; empty where all are tidy.
     """
 
     contract: Contract
     folder: Path
     paths: tuple[Path, ...]
+    layouts: tuple[Layout | None, ...] = ()
 
     @property
     def names(self) -> tuple[str, ...]:
-        """Path of each file inside the batch, with forward slashes."""
+        """Path of each file inside the batch, with forward slashes.
+
+        Rows of a workbook are told apart by their sheet, ``book.xlsx!Readings``.
+        """
+        sheets = [layout.workbook if layout else None for layout in self._all_layouts]
+        return tuple(
+            name + (f"!{sheet.sheet}" if sheet else "")
+            for name, sheet in zip(self.file_names, sheets, strict=True)
+        )
+
+    @property
+    def file_names(self) -> tuple[str, ...]:
+        """Path of each file inside the batch, as `names` but for sheets."""
         return tuple(_name(path, self.folder) for path in self.paths)
+
+    @property
+    def _all_layouts(self) -> tuple[Layout | None, ...]:
+        return self.layouts or (None,) * len(self.paths)
+
+    def layout(self, file: int) -> Layout | None:
+        """Give the layout of a file, None where it is tidy."""
+        return self.layouts[file] if self.layouts else None
+
+    def raw_name(self, file: int, column: str) -> str:
+        """Tell what the cells of one of our columns are called in a file itself."""
+        layout = self.layout(file)
+        return column if layout is None else layout.raw_columns.get(column, column)
+
+    def raw_names(self) -> tuple[str, ...]:
+        """Give every name that a raw cell of any of the files may stand under, once each."""
+        names: list[str] = []
+        for layout in self._all_layouts:
+            names += self.contract.columns if layout is None else layout.raw_columns.values()
+        return tuple(dict.fromkeys(names))
 
 
 @dataclass(frozen=True)
@@ -59,6 +122,10 @@ class SourceFile:
         How many those were. [byte]
     rows_read, rows_used, rows_set_aside : int
         Rows apart from the header and blank lines.
+    unused_columns : tuple of str
+        Columns of the file that its layout passes over.
+    kept_lines : tuple of KeptLine
+        Lines that close the table.
     """
 
     path: str
@@ -68,6 +135,8 @@ class SourceFile:
     rows_read: int
     rows_used: int
     rows_set_aside: int
+    unused_columns: tuple[str, ...] = ()
+    kept_lines: tuple[KeptLine, ...] = ()
 
 
 class Lines(NamedTuple):
@@ -99,6 +168,8 @@ class LineReader:
         What messages call it.
     block_bytes : int
         How much is read at once; a longer line makes a longer block. [byte]
+    decoder : Decoder, optional
+        What turns the file into UTF-8, where it is not said to be that.
 
     Attributes
     ----------
@@ -111,10 +182,17 @@ class LineReader:
         How many those were. [byte]
     """
 
-    def __init__(self, path: Path, name: str, block_bytes: int = BLOCK_BYTES) -> None:
+    def __init__(
+        self,
+        path: Path,
+        name: str,
+        block_bytes: int = BLOCK_BYTES,
+        decoder: Decoder | None = None,
+    ) -> None:
         self.path = path
         self.name = name
         self.block_bytes = block_bytes
+        self._decoder = decoder
         self.causes: list[Cause] = []
         self.sha256 = ""
         self.size = 0
@@ -138,7 +216,7 @@ class LineReader:
         line, offset = 1, 0
         for data in self._whole_lines():
             text = data
-            if offset == 0:
+            if offset == 0 and self._decoder is None:
                 if data.startswith(_WIDE_BOMS):
                     what = "is not UTF-8 at byte 0 (line 1): it begins like UTF-16"
                     self._refuse(what, "Tables are UTF-8.", "Save it as CSV UTF-8.")
@@ -157,9 +235,7 @@ class LineReader:
         held: list[bytes] = []
         length = 0
         with self.path.open("rb") as file:
-            while block := file.read(self.block_bytes):
-                digest.update(block)
-                self.size += len(block)
+            for block in self._text_blocks(file, digest):
                 cut = max(block.rfind(b"\n"), block.rfind(b"\r", 0, len(block) - 1)) + 1
                 if cut:
                     yield b"".join((*held, block[:cut]))
@@ -176,15 +252,31 @@ class LineReader:
                     return
         if any(held):
             yield b"".join(held)
-        self.sha256 = digest.hexdigest()
+        if self._decoder is None or not self._decoder.causes:  # else it was not read to the end
+            self.sha256 = digest.hexdigest()
+
+    def _text_blocks(self, file: BinaryIO, digest: "hashlib._Hash") -> Iterator[bytes]:
+        """Read on, and decode where the file is not said to be UTF-8."""
+        while block := file.read(self.block_bytes):
+            digest.update(block)
+            self.size += len(block)
+            yield block if self._decoder is None else self._decoder.feed(block)
+            if self._decoder is not None and self._decoder.causes:
+                self.causes += self._decoder.causes
+                return
+        if self._decoder is not None:
+            yield self._decoder.finish()
+            self.causes += self._decoder.causes
 
     def _check(self, data: bytes, offset: int, line: int) -> None:
         """Note bytes that no text table holds, the first of each kind."""
         if (at := data.find(b"\0")) >= 0:
-            what = f"holds a NUL byte at byte {offset + at} (line {line + _lines_before(data, at)})"
+            number = line + _lines_before(data, at)
+            place = f"byte {offset + at} (line {number})"
+            what = f"holds a NUL byte at {place if self._decoder is None else f'line {number}'}"
             mend = "Export it again as CSV UTF-8; it may be damaged or no text at all."
             self._refuse_once(what, "Text holds no NUL.", mend)
-        if not data.isascii():
+        if self._decoder is None and not data.isascii():
             try:
                 data.decode("utf-8")
             except UnicodeDecodeError as error:
@@ -206,7 +298,7 @@ class LineReader:
             self._refuse("changed while it was read", "What was read would be neither.", mend)
 
     def _refuse_once(self, what: str, why: str, mend: str) -> None:
-        kind = what.split(" at byte ")[0]
+        kind = what.split(" at ")[0]
         if not any(cause.what.startswith(kind) for cause in self.causes):
             self._refuse(what, why, mend)
 

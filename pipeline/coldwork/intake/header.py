@@ -10,6 +10,7 @@ from coldwork.inputs.words import listed, nearest, shown
 __all__ = ["header_causes"]
 
 _SEPARATORS: Final = {";": "semicolons", "\t": "tabs", "|": "bars"}
+_CURVE: Final = "force-with-length-or-stress-with-strain"
 _TWO_DIAGONALS: Final = ("d1_um", "d2_um")
 
 
@@ -79,7 +80,17 @@ def _missing(columns: list[str], contract: Contract, where: str) -> list[Cause]:
         what = "neither hardness nor the diagonals are there"
         why = "An indent needs hardness, or d1_um and, for HV and HBW, d2_um."
         causes.append(Cause(where, what, why, "Add d1_um and d2_um, or hardness."))
+    if _CURVE in contract.checks and not _has_curve(columns):
+        what = "neither a force with a length nor a stress with a strain is there"
+        why = "A curve is force_n with extension_mm or crosshead_mm, or stress_mpa with strain."
+        causes.append(Cause(where, what, why, "Add what is missing of one of them."))
     return causes
+
+
+def _has_curve(columns: list[str]) -> bool:
+    """Whether a table can have both halves of a point of a curve."""
+    length = "extension_mm" in columns or "crosshead_mm" in columns
+    return ("force_n" in columns and length) or {"stress_mpa", "strain"} <= set(columns)
 
 
 def _has_size(columns: list[str]) -> bool:

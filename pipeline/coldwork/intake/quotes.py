@@ -6,6 +6,7 @@ numbers, torn rows and a cut at any line end would lose their meaning.
 """
 
 import re
+from functools import cache
 from typing import Final
 
 import numpy as np
@@ -14,18 +15,18 @@ from numpy.typing import NDArray
 __all__ = ["split_cells", "with_clean_quotes"]
 
 _QUOTE: Final = ord('"')
-_COMMA: Final = ord(",")
 _FEED: Final = ord("\n")
-_CELL: Final = re.compile(r'"((?:[^"]|"")*+)"([^,]*)|([^",][^,]*|(?!"))')
 
 
-def with_clean_quotes(data: bytes) -> tuple[bytes, int | None]:
+def with_clean_quotes(data: bytes, delimiter: str = ",") -> tuple[bytes, int | None]:
     r"""Quote afresh the cells that are quoted in part, so that they are read as written.
 
     Parameters
     ----------
     data : bytes
         Whole lines, ended by line feeds, in UTF-8.
+    delimiter : str, optional
+        What stands between cells, one ASCII character.
 
     Returns
     -------
@@ -37,27 +38,29 @@ def with_clean_quotes(data: bytes) -> tuple[bytes, int | None]:
     """
     if b'"' not in data:
         return data, None
-    spoilt = _spoilt_lines(np.frombuffer(data, dtype=np.uint8))
+    spoilt = _spoilt_lines(np.frombuffer(data, dtype=np.uint8), ord(delimiter))
     if not spoilt.size:
         return data, None
     lines = data.split(b"\n")
     for index in spoilt:
-        cells = split_cells(lines[index].decode("utf-8"))
+        cells = split_cells(lines[index].decode("utf-8"), delimiter)
         if cells is None:
             return data, int(index)
-        lines[index] = ",".join(_quoted(cell) for cell in cells).encode("utf-8")
+        written = (_quoted(cell, delimiter) for cell in cells)
+        lines[index] = delimiter.join(written).encode("utf-8")
     return b"\n".join(lines), None
 
 
-def split_cells(line: str) -> list[str] | None:
+def split_cells(line: str, delimiter: str = ",") -> list[str] | None:
     """Split one line into its cells; None if a quoted cell is still open at its end.
 
     A cell that is quoted only in part keeps its quotes, as written.
     """
     cells = []
     place = 0
+    cell = _cell(delimiter)
     while True:
-        match = _CELL.match(line, place)
+        match = cell.match(line, place)
         if match is None:
             return None
         inner, rest, plain = match.groups()
@@ -72,11 +75,17 @@ def split_cells(line: str) -> list[str] | None:
             return cells
 
 
-def _spoilt_lines(data: NDArray[np.uint8]) -> NDArray[np.intp]:
+@cache
+def _cell(delimiter: str) -> re.Pattern[str]:
+    other = f"[^{re.escape(delimiter)}]"
+    return re.compile(rf'"((?:[^"]|"")*+)"({other}*)|((?!"){other}{other}*|(?!"))')
+
+
+def _spoilt_lines(data: NDArray[np.uint8], delimiter: int) -> NDArray[np.intp]:
     """Lines, by index, whose quotes do not all open or close a cell or stand doubled in one.
 
-    In a clean line the 1st, 3rd, 5th quote follows a comma, the line's begin or
-    a quote, and the 2nd, 4th, 6th precedes a comma, the line's end or a quote.
+    In a clean line the 1st, 3rd, 5th quote follows a delimiter, the line's begin or
+    a quote, and the 2nd, 4th, 6th precedes a delimiter, the line's end or a quote.
     """
     quotes = np.flatnonzero(data == _QUOTE)
     ends = np.flatnonzero(data == _FEED)
@@ -85,13 +94,13 @@ def _spoilt_lines(data: NDArray[np.uint8]) -> NDArray[np.intp]:
     opening = (np.arange(len(quotes)) - before) % 2 == 0
     padded = np.concatenate(([_FEED], data, [_FEED]))
     beside = np.where(opening, padded[quotes], padded[quotes + 2])
-    clean = (beside == _COMMA) | (beside == _FEED) | (beside == _QUOTE)
+    clean = (beside == delimiter) | (beside == _FEED) | (beside == _QUOTE)
     odd = np.bincount(line)[line] % 2 == 1
     return np.unique(line[~clean | odd])
 
 
-def _quoted(cell: str) -> str:
-    if '"' in cell or "," in cell:
+def _quoted(cell: str, delimiter: str) -> str:
+    if '"' in cell or delimiter in cell:
         doubled = cell.replace('"', '""')
         return f'"{doubled}"'
     return cell

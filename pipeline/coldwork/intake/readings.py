@@ -14,12 +14,14 @@ from numpy.typing import NDArray
 
 from coldwork.contracts import Field
 from coldwork.errors import BatchRefused, Cause
+from coldwork.inputs.method import Tensile
 from coldwork.intake.cells import column_of, take, take_or_null
 from coldwork.intake.column import Column, Fault, read_column
 from coldwork.intake.coupons import Coupons
+from coldwork.intake.curve_columns import RunningCount, needed_columns
 from coldwork.intake.exclusions import Exclusions
 from coldwork.intake.files import BLOCK_BYTES, SourceFile, TableFiles
-from coldwork.intake.row_checks import filled_scale, indent_faults
+from coldwork.intake.row_checks import curve_faults, filled_scale, indent_faults
 from coldwork.intake.set_aside import SetAside
 from coldwork.intake.text import TableText, TextBlock
 from coldwork.rules import reasons
@@ -27,7 +29,7 @@ from coldwork.rules import reasons
 __all__ = ["ReadingBlock", "ReadingStream", "read_readings"]
 
 _ID: Final = "coupon_id"
-_NUMBERS: Final = {"indents": "indent_no", "flow_stress": "reading_no"}
+_NUMBERS: Final = {"indents": "indent_no", "flow_stress": "reading_no", "curves": "point_no"}
 
 
 @dataclass(frozen=True)
@@ -43,7 +45,7 @@ class ReadingBlock:
     coupon : ndarray of int32, shape (n,)
         Place of its coupon in coupons.csv.
     number : ndarray of int64, shape (n,)
-        ``indent_no`` or ``reading_no``.
+        ``indent_no``, ``reading_no`` or ``point_no``, which is counted where there is none.
     floats : mapping of str to ndarray of float64, shape (n,)
         The number columns that the file has, by name; NaN where absent. [contract's unit]
     texts : mapping of str to pyarrow.StringArray, n texts
@@ -74,6 +76,7 @@ class _Typed:
     columns: Mapping[str, Column]
     scale: pa.StringArray | None
     coupon: NDArray[np.int32]
+    number: NDArray[np.int64]
     exclusion: NDArray[np.intp]
     faults: list[Fault]
 
@@ -105,6 +108,7 @@ class ReadingStream:
         zone: str,
         *,
         block_bytes: int = BLOCK_BYTES,
+        tensile: Tensile | None = None,
     ) -> None:
         self._files = files
         self._coupons = coupons
@@ -112,6 +116,8 @@ class ReadingStream:
         self._set_aside = set_aside
         self._zone = zone
         self._block_bytes = block_bytes
+        self._tensile = tensile
+        self._counted = RunningCount(len(coupons))
         self._table = files.contract.table
         self._number = _NUMBERS[self._table]
         self._fields = [_loosened(field) for field in files.contract.fields]
@@ -129,6 +135,7 @@ class ReadingStream:
             At the end, with all that is wrong with the files as wholes.
         """
         self.seen[:] = False
+        self._counted.restart()
         causes: list[Cause] = []
         for file in range(len(self._files.paths)):
             self._rows[file] = 0
@@ -186,7 +193,11 @@ class ReadingStream:
             if field.name in block.cells.schema.names
         }
         coupon = self._coupons.index(columns[_ID].text)
-        number = _integers(columns[self._number])
+        number = (
+            _integers(columns[self._number])
+            if self._number in columns
+            else self._counted.of(coupon)
+        )
         exclusion = self._exclusions.find(coupon, number)
         self.seen[exclusion[exclusion >= 0]] = True
         scale = None
@@ -198,11 +209,13 @@ class ReadingStream:
         if self._table == "indents":
             scale = filled_scale(columns, len(block.lines))
             faults += indent_faults(columns, scale)
+        elif self._tensile is not None:
+            faults += curve_faults(columns, needed_columns(self._tensile, tuple(columns)))
         faults += [fault for column in columns.values() for fault in column.faults]
         found = [fault for fault in faults if fault.rows.any()]
         places = {name: place for place, name in enumerate(columns)}
         found.sort(key=lambda fault: places.get(fault.column, -1))
-        return _Typed(block, columns, scale, coupon, exclusion, found)
+        return _Typed(block, columns, scale, coupon, number, exclusion, found)
 
     def _block(self, typed: _Typed) -> ReadingBlock:
         columns = typed.columns
@@ -219,7 +232,7 @@ class ReadingStream:
             file=typed.text.file,
             lines=typed.text.lines,
             coupon=typed.coupon,
-            number=_integers(columns[self._number]),
+            number=typed.number,
             floats=floats,
             texts=texts,
             times=times,
@@ -259,7 +272,7 @@ class ReadingStream:
                 raw=raw,
                 coupon=typed.coupon[here],
                 coupon_ids=typed.columns[_ID].text.take(here),
-                reading_no=_integers(typed.columns[self._number])[here],
+                reading_no=typed.number[here],
                 hint=_hints(fault, raw),
                 also=_also(typed, later, here),
                 excluded_by=take_or_null(self._exclusions.by, exclusion),
@@ -282,13 +295,14 @@ def read_readings(
     zone: str,
     *,
     block_bytes: int = BLOCK_BYTES,
+    tensile: Tensile | None = None,
 ) -> ReadingStream:
     """Read the files that hold readings, as a stream.
 
     Parameters
     ----------
     files : TableFiles
-        They and their contract, ``in/indents`` or ``in/flow_stress``.
+        They and their contract, ``in/indents``, ``in/flow_stress`` or ``in/curves``.
     coupons : Coupons
         The batch's coupons.
     exclusions : Exclusions
@@ -299,6 +313,8 @@ def read_readings(
         IANA name of the zone in which a time without one is meant.
     block_bytes : int, optional
         How much is read at once. [byte]
+    tensile : Tensile, optional
+        What the sheet says of curves, for ``in/curves``.
 
     Returns
     -------
@@ -306,7 +322,9 @@ def read_readings(
         Blocks in the order of the files and their lines, as many as were read, some of
         them without a row. Memory does not grow with the files, but for what is set aside.
     """
-    return ReadingStream(files, coupons, exclusions, set_aside, zone, block_bytes=block_bytes)
+    return ReadingStream(
+        files, coupons, exclusions, set_aside, zone, block_bytes=block_bytes, tensile=tensile
+    )
 
 
 def _loosened(field: Field) -> Field:

@@ -1,6 +1,6 @@
 """What a row of readings must hold as a whole, beyond what each of its cells must."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Final
 
 import numpy as np
@@ -13,7 +13,7 @@ from coldwork.intake.column import Column, Fault
 from coldwork.rules import reasons
 from coldwork.units import to_si
 
-__all__ = ["DEFAULT_SCALE", "filled_scale", "indent_faults"]
+__all__ = ["DEFAULT_SCALE", "curve_faults", "filled_scale", "indent_faults"]
 
 DEFAULT_SCALE: Final = "HV"
 
@@ -60,6 +60,30 @@ def indent_faults(columns: Mapping[str, Column], scale: pa.StringArray) -> list[
         if brinell.any():
             faults += _ball_faults(columns, brinell)
     return faults
+
+
+def curve_faults(columns: Mapping[str, Column], needed: Sequence[str]) -> list[Fault]:
+    """Find points of curves that lack what the batch sheet reads a curve by.
+
+    Parameters
+    ----------
+    columns : mapping of str to Column
+        The columns of a block of n rows.
+    needed : sequence of str
+        Columns that every point must have filled; one that the file does not have
+        lacks in no row.
+
+    Returns
+    -------
+    list of Fault
+        ``required-empty``, for each of those columns where some cell is empty.
+    """
+    found = [columns[name] for name in needed if name in columns]
+    return [
+        Fault(reasons.REQUIRED_EMPTY, column.field.name, column.absent)
+        for column in found
+        if column.absent.any()
+    ]
 
 
 def _sizeless(columns: Mapping[str, Column], scale: pa.StringArray) -> list[Fault]:

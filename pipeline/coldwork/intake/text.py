@@ -1,41 +1,26 @@
 """A file of a table as blocks of cells, each row with the line that it stands in."""
 
-from collections.abc import Iterator
-from dataclasses import dataclass
-from typing import IO, Final, Literal, NamedTuple, cast
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field
+from typing import Final
 
 import numpy as np
 import pyarrow as pa
-import pyarrow.csv as pv
 from numpy.typing import NDArray
 
 from coldwork.errors import BatchRefused, Cause
+from coldwork.intake.cells import column_of, take
+from coldwork.intake.closing import ClosingLine
+from coldwork.intake.column import Fault
 from coldwork.intake.files import BLOCK_BYTES, LineReader, Lines, TableFiles
 from coldwork.intake.header import header_causes
 from coldwork.intake.quotes import split_cells, with_clean_quotes
+from coldwork.intake.rows import Torn, rows_of
 
-__all__ = ["TableText", "TextBlock", "Torn", "check_headers"]
+__all__ = ["REFUSED", "TableText", "TextBlock"]
 
+REFUSED: Final = "\N{REPLACEMENT CHARACTER}"  # stands for a cell that its layout refuses
 _OPEN: Final = "A cell must end in the line in which it begins."
-
-
-class Torn(NamedTuple):
-    """A row that has more or fewer cells than the header.
-
-    Attributes
-    ----------
-    line : int
-        Number of its line.
-    text : str
-        The line.
-    found, expected : int
-        How many cells it has, and the header.
-    """
-
-    line: int
-    text: str
-    found: int
-    expected: int
 
 
 @dataclass(frozen=True)
@@ -52,12 +37,31 @@ class TextBlock:
         The cells as written, columns in the header's order, no nulls.
     torn : list of Torn
         The rows of these lines that do not fit the header; they are not among the n.
+    raw : pyarrow.RecordBatch, n rows, or None
+        Where a layout turned the cells into those of the contract: the cells as the
+        machine wrote them, under the file's own names. None where `cells` are that.
+    raw_columns : mapping of str to str
+        From the contract's columns to those of `raw`.
+    faults : tuple of Fault
+        Cells that the layout refuses; `cells` hold `REFUSED` there, which is no number, no
+        time and no word of a contract.
     """
 
     file: int
     lines: NDArray[np.int64]
     cells: pa.RecordBatch
     torn: list[Torn]
+    raw: pa.RecordBatch | None = None
+    raw_columns: Mapping[str, str] = field(default_factory=dict)
+    faults: tuple[Fault, ...] = ()
+
+    def written(self, column: str, rows: NDArray[np.intp]) -> list[str]:
+        """Give the cells of one of the contract's columns as written, empty where there is none."""
+        batch = self.cells if self.raw is None else self.raw
+        name = self.raw_columns.get(column, column)
+        if name not in batch.schema.names:  # such as ball_mm where a file has none
+            return [""] * len(rows)
+        return take(column_of(batch, name), rows)
 
 
 class TableText:
@@ -76,6 +80,8 @@ class TableText:
     ----------
     columns : tuple of str
         The header, once it was read.
+    unused_columns, closing : tuple
+        Empty: a tidy file has no column and no line beyond its table.
     sha256 : str
         Digest of what was read, at the end.
     size : int
@@ -88,6 +94,8 @@ class TableText:
         self._name = files.names[file]
         self._reader = LineReader(files.paths[file], self._name, block_bytes)
         self.columns: tuple[str, ...] = ()
+        self.unused_columns: tuple[str, ...] = ()
+        self.closing: tuple[ClosingLine, ...] = ()
 
     @property
     def sha256(self) -> str:
@@ -162,83 +170,11 @@ class TableText:
         return Cause(f"{self._name}, line {line}", what, _OPEN, mend)
 
     def _block(self, lines: Lines, data: bytes) -> TextBlock:
-        cells, misfits = _parse(data, self.columns)
-        numbers = lines.first + _filled(lines, cells.num_rows + len(misfits))
-        places = [misfit.place for misfit in misfits]
-        torn = []
-        if misfits:
-            texts = lines.data.split(b"\n")
-            for place, misfit in zip(places, misfits, strict=True):
-                line = int(numbers[place])
-                text = texts[line - lines.first].decode("utf-8")
-                if text.strip(" \t"):  # a line of spaces is a blank one
-                    torn.append(Torn(line, text, misfit.found, len(self.columns)))
-        return TextBlock(self._file, np.delete(numbers, places), cells, torn)
+        rows = rows_of(data, lines.first, self.columns, written=lines.data)
+        return TextBlock(self._file, rows.lines, rows.cells, rows.torn)
 
 
 def check_headers(files: TableFiles) -> list[Cause]:
-    """Say why the files of a table cannot be read, as far as their headers tell.
-
-    Parameters
-    ----------
-    files : TableFiles
-        The table.
-
-    Returns
-    -------
-    list of Cause
-        Files that are missing, unreadable or empty, and headers that do not fit the
-        contract; empty where all is well so far.
-    """
+    """Say why the files of a table cannot be read, as far as their headers tell."""
     texts = (TableText(files, file) for file in range(len(files.paths)))
     return [cause for text in texts for cause in text.header_causes()]
-
-
-class _Misfit(NamedTuple):
-    """A row of another width: its index among the rows, and how many cells were found."""
-
-    place: int
-    found: int
-
-
-def _parse(data: bytes, columns: tuple[str, ...]) -> tuple[pa.RecordBatch, list[_Misfit]]:
-    """Turn lines into columns of text; rows of another width come back beside them."""
-    misfits: list[_Misfit] = []
-
-    def set_apart(row: pv.InvalidRow) -> Literal["skip", "error"]:
-        if row.number is None:  # it is counted where one thread reads
-            return "error"
-        misfits.append(_Misfit(row.number - 1, row.actual_columns))
-        return "skip"
-
-    schema = pa.schema([(column, pa.string()) for column in columns])
-    if not data.strip(b"\n"):
-        return pa.RecordBatch.from_pylist([], schema), misfits
-    table = pv.read_csv(
-        cast("IO[bytes]", pa.BufferReader(data)),
-        read_options=pv.ReadOptions(
-            use_threads=False, block_size=len(data) + 1, column_names=list(columns)
-        ),
-        parse_options=pv.ParseOptions(
-            quote_char='"' if b'"' in data else False, invalid_row_handler=set_apart
-        ),
-        convert_options=pv.ConvertOptions(
-            check_utf8=False, strings_can_be_null=False, column_types=schema
-        ),
-    )
-    batches = table.combine_chunks().to_batches()
-    return (batches[0] if batches else pa.RecordBatch.from_pylist([], schema)), misfits
-
-
-def _filled(lines: Lines, rows: int) -> NDArray[np.int64]:
-    """Index of the line of each row: of each line that is not empty."""
-    if rows == lines.lines:
-        return np.arange(rows, dtype=np.int64)
-    feeds = np.flatnonzero(np.frombuffer(lines.data, dtype=np.uint8) == ord("\n"))
-    starts = np.concatenate(([0], feeds + 1))
-    ends = np.concatenate((feeds, [len(lines.data)]))
-    filled = np.flatnonzero(ends > starts).astype(np.int64)
-    if len(filled) != rows:
-        message = f"{len(filled)} filled lines, but {rows} rows"
-        raise RuntimeError(message)
-    return filled

@@ -12,7 +12,8 @@ from coldwork.errors import BatchRefused, Cause
 from coldwork.intake.cells import column_of
 from coldwork.intake.column import Column, read_column
 from coldwork.intake.files import SourceFile, TableFiles
-from coldwork.intake.text import TableText, TextBlock, Torn
+from coldwork.intake.rows import Torn
+from coldwork.intake.text import TableText, TextBlock
 
 __all__ = ["MOST_CAUSES", "WholeTable", "capped", "read_whole"]
 

@@ -62,7 +62,7 @@ class Combined:
 
 @dataclass(frozen=True)
 class Ends:
-    """Ends of an interval, NaN where there is none. [SI]
+    """Ends of an interval in SI, NaN where there is none.
 
     Attributes
     ----------
@@ -74,9 +74,7 @@ class Ends:
     upper: NDArray[np.float64]
 
 
-def combine(
-    result: Measured, spreads: Mapping[str, Spread], *, own_only: bool = False
-) -> Combined:
+def combine(result: Measured, spreads: Mapping[str, Spread], *, own_only: bool = False) -> Combined:
     """Combine the contributions of all inputs (JCGM 100:2008, 5.1.2 and G.4).
 
     Parameters
@@ -119,10 +117,8 @@ def combine(
     )
 
 
-def strength_ends(
-    value: NDArray[np.float64], combined: Combined, probability: float
-) -> Ends:
-    """Ends y -+ k u of a strength, with P(t <= k) = `probability`. [SI]
+def strength_ends(value: NDArray[np.float64], combined: Combined, probability: float) -> Ends:
+    """Give the ends y -+ k u of a strength, with P(t <= k) = `probability`.
 
     Parameters
     ----------
@@ -145,7 +141,7 @@ def strength_ends(
 def strength_probability_above(
     value: NDArray[np.float64], combined: Combined, limit: float
 ) -> NDArray[np.float64]:
-    """Probability that a strength is above a limit: P(t <= (y - limit) / u). [1]
+    """Give the probability that a strength is above a limit: P(t <= (y - limit) / u).
 
     Parameters
     ----------

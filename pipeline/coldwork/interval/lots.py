@@ -21,6 +21,7 @@ from coldwork.measured import Measured, Value, value_of
 __all__ = ["STRESS", "LotMean", "LotSums"]
 
 STRESS: Final = "dislocation_stress_mpa"
+DENSITY: Final = "dislocation_density_per_m2"
 
 
 @dataclass(frozen=True)
@@ -71,7 +72,7 @@ class LotSums:
         self._pooled = pooled
         self._sums: dict[str, _Sums] = {}
         self._grain = np.zeros(lots)
-        self.below = np.zeros(lots, dtype=bool)
+        self.without_density = np.zeros(lots, dtype=bool)
 
     def add(
         self,
@@ -95,7 +96,8 @@ class LotSums:
         """
         lot = self._lot[rows]
         stress = results[STRESS].value
-        self.below |= self._sum(lot, (stress <= 0.0).astype(float)) > 0
+        without = np.isfinite(stress) & ~np.isfinite(results[DENSITY].value)
+        self.without_density |= self._sum(lot, without.astype(float)) > 0
         known = np.isfinite(stress)
         self._grain += self._sum(lot, np.where(known, value_of(grain_size), 0.0))
         for name, result in results.items():
@@ -123,7 +125,8 @@ class LotSums:
                 _gather(sums.per_freedom, source, self._sum(lot, over))
 
     def _sum(self, lot: NDArray[np.int64], weights: NDArray[np.float64]) -> NDArray[np.float64]:
-        return np.bincount(lot, weights=weights, minlength=self._lots)
+        total = np.bincount(lot, weights=weights, minlength=self._lots)
+        return np.asarray(total, dtype=np.float64)
 
     def coupons_averaged(self, name: str) -> NDArray[np.int64]:
         """Count the coupons that a mean is taken over; shape (lots,)."""
@@ -139,8 +142,8 @@ class LotSums:
     ) -> dict[str, LotMean]:
         """Finish the means.
 
-        A mean of densities or energies is given only where every coupon with a
-        strength is above the baseline: over the others alone it would be too high.
+        A mean of densities or energies is given only where every coupon with a strength
+        has a density: over those above the baseline alone it would be too high.
 
         Parameters
         ----------
@@ -156,22 +159,21 @@ class LotSums:
         dict of str to LotMean
             By column name. [SI]
         """
-        averages = {name: self._average(name, spreads) for name in {*names, STRESS}}
-        stress, _ = averages[STRESS]
-        own: dict[str, Spread] = {}
-        for _, of_quantity in averages.values():
-            own |= of_quantity
-        own |= averages[STRESS][1]
-        reach = self._reach(laws, inputs, {**spreads, **own}, stress)
+        averages = {name: self._average(name) for name in dict.fromkeys((*names, STRESS))}
+        stress, of_stress = averages[STRESS]
+        by_stress = self._reach(laws, inputs, {**spreads, **of_stress}, stress)
         means: dict[str, LotMean] = {}
         for name in names:
-            y, lot_spreads = averages[name]
-            combined = combine(y, {**spreads, **lot_spreads})
+            y, own = averages[name]
+            combined = combine(y, {**spreads, **own})
             if name not in LATE:
                 means[name] = LotMean(
                     y.value, combined, strength_ends(y.value, combined, probability)
                 )
                 continue
+            reach = by_stress
+            if own.keys() - of_stress.keys():  # enters late, as a grain size that sets the radius
+                reach = self._reach(laws, inputs, {**spreads, **own, **of_stress}, stress)
             middle = reach.results[name].value
             ends = reach.interval(name, probability)
             with np.errstate(invalid="ignore", divide="ignore"):
@@ -179,10 +181,8 @@ class LotSums:
             means[name] = LotMean(y.value, combined, Ends(low, high))
         return {name: self._blanked(name, mean) for name, mean in means.items()}
 
-    def _average(
-        self, name: str, spreads: Mapping[str, Spread]
-    ) -> tuple[Measured, dict[str, Spread]]:
-        """Mean of a quantity, and the spread that own inputs have in a mean of the lot."""
+    def _average(self, name: str) -> tuple[Measured, dict[str, Spread]]:
+        """Give the mean of a quantity, and the spread that own inputs have in it."""
         sums = self._sums[name]
         own: dict[str, Spread] = {}
         with np.errstate(invalid="ignore", divide="ignore"):
@@ -216,7 +216,7 @@ class LotSums:
     def _blanked(self, name: str, mean: LotMean) -> LotMean:
         if name not in LATE:
             return mean
-        keep = ~self.below
+        keep = ~self.without_density
 
         def cut(x: NDArray[np.float64]) -> NDArray[np.float64]:
             return np.where(keep, x, np.nan)
@@ -227,7 +227,5 @@ class LotSums:
         return LotMean(cut(mean.value), combined, ends)
 
 
-def _gather(
-    into: dict[str, NDArray[np.float64]], name: str, amount: NDArray[np.float64]
-) -> None:
+def _gather(into: dict[str, NDArray[np.float64]], name: str, amount: NDArray[np.float64]) -> None:
     into[name] = into[name] + amount if name in into else amount

@@ -13,6 +13,7 @@ of s with their joint effect on ln y.
 """
 
 from collections.abc import Callable, Mapping
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
@@ -20,7 +21,7 @@ from numpy.typing import NDArray
 
 from coldwork.chain import Start, energy, energy_per_volume
 from coldwork.inputs.method import Laws
-from coldwork.interval.combine import Combined, Ends, Spread, combine
+from coldwork.interval.combine import Ends, Spread, combine
 from coldwork.measured import Measured, Value, value_of
 from coldwork.statistics.student import student_probability, student_quantile
 
@@ -99,7 +100,7 @@ class Reach:
         )
 
     def degrees_of_freedom(self, name: str) -> NDArray[np.float64]:
-        """Effective degrees of freedom of a quantity; where s <= 0, those of s. [1]"""
+        """Give effective degrees of freedom of a quantity; where s <= 0, those of s."""
         return np.where(
             self.present,
             self.combined[name].degrees_of_freedom,
@@ -107,11 +108,11 @@ class Reach:
         )
 
     def interval(self, name: str, probability: float) -> Ends:
-        """Two-part interval of a quantity whose ends each have P(t <= k) = `probability`. [SI]"""
+        """Give the two-part interval whose ends each have P(t <= k) = `probability`, in SI."""
         return self.ends(name, student_quantile(probability, self.degrees_of_freedom(name)))
 
     def ends(self, name: str, k: NDArray[np.float64]) -> Ends:
-        """Lower and upper end of a quantity at coverage factor k >= 0.
+        """Give lower and upper end of a quantity at coverage factor k >= 0.
 
         Parameters
         ----------
@@ -125,14 +126,13 @@ class Reach:
         Ends
             Shape (n,). [SI]
         """
-        if name in BELOW_ZERO:
-            return _merge(
-                self.present, self._ends_above(name, k), self._ends_on_baseline(name, k)
-            )
-        return self._ends_above(name, k)
+        above = self._ends_above(name, k)
+        if name not in BELOW_ZERO:
+            return above
+        return _merge(self.present, above, self._ends_on_baseline(name, k))
 
     def probability_above(self, name: str, limit: float) -> NDArray[np.float64]:
-        """Probability that a quantity lies above a limit.
+        """Give the probability that a quantity lies above a limit.
 
         Student's P(t <= k) for the k at which the interval's end meets the
         limit, found by bisection in ln(1 + k).
@@ -151,6 +151,7 @@ class Reach:
         """
         y = value_of(self._late[name])
         below = self.present & (limit < y)  # the limit is met by the lower end
+
         def inside(k: NDArray[np.float64]) -> NDArray[np.bool_]:
             ends = self.ends(name, k)
             lower = np.where(np.isnan(ends.lower), -np.inf, ends.lower)
@@ -167,7 +168,7 @@ class Reach:
         return np.where(known, p, np.nan)
 
     def _ends_above(self, name: str, k: NDArray[np.float64]) -> Ends:
-        """Ends where s > 0."""
+        """Give the ends where s > 0."""
         y = value_of(self._late[name])
         s, u = self.stress.value, self.u_stress.u
         with np.errstate(invalid="ignore", divide="ignore", over="ignore"):
@@ -187,7 +188,7 @@ class Reach:
         return Ends(np.where(unknown, np.nan, lower), np.where(unknown, np.nan, upper))
 
     def _ends_on_baseline(self, name: str, k: NDArray[np.float64]) -> Ends:
-        """Ends where s <= 0: from nothing up to what the uncertainty allows."""
+        """Give the ends where s <= 0: from nothing up to what the uncertainty allows."""
         here = ~self.present & np.isfinite(self.u_stress.u)
         lower = np.where(here, 0.0, np.nan)
         upper = np.full(here.shape, np.nan)
@@ -204,7 +205,7 @@ class Reach:
         return Ends(lower, np.where(np.isinf(upper), np.nan, upper))
 
     def _late_part(self, name: str) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-        """m, and r with its sign turned where the quantity falls with s."""
+        """Give m, and r with its sign turned where the quantity falls with s."""
         late = self._late[name]
         m = _relative(late, self._spreads, own_only=self._own_only)
         if not isinstance(late, Measured):
@@ -233,7 +234,7 @@ class Reach:
     def _through_pivot(self, late: Value) -> Measured:
         """Replace the sensitivity to s by those to what s came from."""
         if not isinstance(late, Measured):
-            return Measured(late)
+            return Measured(value_of(late))
         slope = late.sensitivities.get(PIVOT, np.asarray(0.0))
         total = {name: c for name, c in late.sensitivities.items() if name != PIVOT}
         for name, c in self.stress.sensitivities.items():
@@ -242,10 +243,8 @@ class Reach:
         return Measured(late.value, total)
 
 
-def _relative(
-    late: Value, spreads: Mapping[str, Spread], *, own_only: bool
-) -> NDArray[np.float64]:
-    """Joint relative standard uncertainty of the late inputs in a quantity. [1]"""
+def _relative(late: Value, spreads: Mapping[str, Spread], *, own_only: bool) -> NDArray[np.float64]:
+    """Give the joint relative standard uncertainty of the late inputs in a quantity."""
     if not isinstance(late, Measured):
         return np.zeros(np.shape(late))
     total = np.zeros(np.shape(late.value))
@@ -253,19 +252,19 @@ def _relative(
         if name != PIVOT and not (own_only and spreads[name].shared):
             total = total + (c * spreads[name].u) ** 2
     with np.errstate(invalid="ignore", divide="ignore"):
-        return np.sqrt(total) / late.value
+        return np.asarray(np.sqrt(total) / late.value)
 
 
 def _first_true(
     test: Callable[[NDArray[np.float64]], NDArray[np.bool_]], shape: tuple[int, ...]
 ) -> NDArray[np.float64]:
-    """Smallest k >= 0 from which a monotone test holds, by bisection in ln(1 + k)."""
+    """Find the smallest k >= 0 from which a monotone test holds, by bisection in ln(1 + k)."""
     low, high = np.zeros(shape), np.full(shape, np.log1p(_FARTHEST_K))
     for _ in range(_ROOT_STEPS):
         middle = (low + high) / 2.0
         true = test(np.expm1(middle))
         low, high = np.where(true, low, middle), np.where(true, middle, high)
-    return np.expm1(high)
+    return np.asarray(np.expm1(high))
 
 
 def _merge(first: NDArray[np.bool_], a: Ends, b: Ends) -> Ends:
@@ -273,14 +272,12 @@ def _merge(first: NDArray[np.bool_], a: Ends, b: Ends) -> Ends:
 
 
 def _bare(start: Start) -> Start:
-    return Start(
-        value_of(start.mean),
-        start.scale,
-        start.force,
-        start.ball,
-        value_of(start.grain_size),
-        start.plastic_work,
-        start.plastic_strain,
+    """Give the slice without sensitivities."""
+    return replace(
+        start,
+        mean=value_of(start.mean),
+        grain_size=value_of(start.grain_size),
+        plastic_work=value_of(start.plastic_work),
     )
 
 
@@ -291,7 +288,7 @@ def _take(start: Start, rows: NDArray[np.intp]) -> Start:
         start.force[rows],
         start.ball[rows],
         _take_value(start.grain_size, rows),
-        start.plastic_work[rows],
+        _take_value(start.plastic_work, rows),
         start.plastic_strain,
     )
 

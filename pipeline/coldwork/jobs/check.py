@@ -92,7 +92,9 @@ class Checked:
             names = dict.fromkeys(r["coupon_id"] for r in rows if r["rule"] == rule)
             told = [name for name in names if name][:5]
             details = dict.fromkeys(r["detail"] for r in rows if r["rule"] == rule and r["detail"])
-            where = f": {', '.join(told)}{', ...' if len(names) > len(told) else ''}" if told else ""
+            where = (
+                f": {', '.join(told)}{', ...' if len(names) > len(told) else ''}" if told else ""
+            )
             lines += _hung(f"{level}, {count} x {rule}: {statement}{where}")
             lines += [f"      {detail}" for detail in list(details)[:5]]
         return lines

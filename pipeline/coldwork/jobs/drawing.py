@@ -59,7 +59,7 @@ class Drawing:
         """Draw everything; name and bytes of each file, SVG and PNG."""
         if not self.wanted:
             return
-        from coldwork.plots import Context, draw_all, save  # noqa: PLC0415 - takes half a second
+        from coldwork.plots import Context, draw_all, save  # here: it takes half a second
 
         method = self._batch.method
         context = Context(
@@ -98,7 +98,7 @@ class Drawing:
         return "State under the indent: its own strain is included."
 
     def _frames(self) -> dict[str, "pd.DataFrame"]:
-        from coldwork.contracts.frames import frame  # noqa: PLC0415 - brings pandas
+        from coldwork.contracts.frames import frame  # here: it brings pandas
 
         frames = {
             name: frame(contracts.load(f"out/{name}"), pa.concat_tables(parts))
@@ -108,7 +108,7 @@ class Drawing:
         return frames | {"scatter": self._scatter(), "coupons_in": self._coupons_in()}
 
     def _scatter(self) -> "pd.DataFrame":
-        import pandas as pd  # noqa: PLC0415
+        import pandas as pd
 
         x, ids = self._batch.scatter, self._batch.coupons.ids
         return pd.DataFrame(
@@ -124,7 +124,7 @@ class Drawing:
         )
 
     def _coupons_in(self) -> "pd.DataFrame":
-        import pandas as pd  # noqa: PLC0415
+        import pandas as pd
 
         coupons = self._batch.coupons
         strain = np.asarray(coupons.prior_true_strain)

@@ -1,6 +1,5 @@
 """One value from options: a density, a stress or a hardness to stored energy."""
 
-import tomllib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields
 from math import isfinite
@@ -11,23 +10,23 @@ import numpy as np
 
 from coldwork import units
 from coldwork.chain import Start, line
-from coldwork.errors import BatchRefused, Cause, UsageError
+from coldwork.errors import UsageError
 from coldwork.formulas.line_energy import line_energy_rule_of_thumb
 from coldwork.inputs.method import Method
-from coldwork.inputs.sheet import method_of
-from coldwork.inputs.source import Sheet, SheetFile, read_sheet
 from coldwork.interval.combine import Spread, combine
 from coldwork.interval.reach import LATE
 from coldwork.jobs.evaluate import REPEATABILITY, evaluate, inputs_of
+from coldwork.jobs.options import method_of_options
 from coldwork.jobs.tables import unit_of
 from coldwork.measured import Measured, Value, value_of
-from coldwork.rules.forces import SCALES
+from coldwork.rules.forces import SCALES, SECTIONS
 from coldwork.statistics.rounding import with_uncertainty
 from coldwork.statistics.student import student_quantile
 
 __all__ = ["Estimate", "Known", "estimate"]
 
-DENSITY: Final = "dislocation density"
+_DENSITY: Final = "dislocation density"  # as the name of an input
+_NOTHING: Final = np.array([np.nan])
 _CAUTION: Final = (
     "Stored energy in dislocations alone: calorimetry finds more, since point defects and stacking "
     "faults also release heat. An estimate releases no part by itself."
@@ -102,7 +101,10 @@ class Estimate:
                 lines.append(f"  {words:32s} {_told(known, unit, self.coverage)}")
         thumb, ratio = self.rule_of_thumb_line_energy_j_per_m, self.rule_of_thumb_over_line_energy
         far = f": {100 * (ratio - 1):+.1f} % off the full line energy" if isfinite(ratio) else ""
-        lines += ["", f"  {'rule of thumb G b^2 / 2':32s} {with_uncertainty(thumb, None, 'J/m')}{far}"]
+        lines += [
+            "",
+            f"  {'rule of thumb G b^2 / 2':32s} {with_uncertainty(thumb, None, 'J/m')}{far}",
+        ]
         return "\n".join([*lines, "", *([self.remark, ""] if self.remark else []), _CAUTION])
 
 
@@ -174,140 +176,96 @@ def estimate(
     BatchRefused
         If the sheet cannot be read.
     """
-    given = {"density": density_per_m2, "stress": stress_mpa, "hardness": hardness}
-    kind = _one_of(given)
-    value = given[kind]
-    _refuse_odd(kind, value, u, scale, force_n, ball_mm, volume_mm3)
-    method = _method(material, kind, sheet, settings)
+    numbers = {"density": density_per_m2, "stress": stress_mpa, "hardness": hardness}
+    kind, value = _one_of(numbers)
+    given = _Given(kind, value, 0.0 if u is None else u, scale, force_n, ball_mm)
+    _refuse_odd(given, volume_mm3)
+    method = method_of_options(material, kind, sheet, settings)
     inputs, spreads = inputs_of(method)
-    u_given = 0.0 if u is None else u
     if kind == "density":
-        figures = _from_density(method, inputs, spreads, float(value or 0.0), u_given)
+        figures = _from_density(method, inputs, spreads, given)
     else:
-        unit = "MPa" if kind == "stress" else "kgf/mm2"
-        if kind == "hardness" and _prefix(scale) + "constraint_factor" not in method.inputs:
-            message = (
-                f"nothing turns {scale} into a flow stress: say --set "
-                f"'{_prefix(scale)}constraint_factor = ...'"
-            )
-            raise UsageError(message)
-        start = _start(method, kind, float(units.to_si(value or 0.0, unit)), scale, force_n, ball_mm)
-        own = Spread(float(units.to_si(u_given, unit)), shared=False, degrees_of_freedom=np.inf)
-        figures = _from_strength(method, inputs, {**spreads, REPEATABILITY: own}, start)
+        figures = _from_strength(method, inputs, spreads, given)
     return _finished(method, inputs, figures, kind, volume_mm3)
 
 
-def _prefix(scale: str) -> str:
-    return "indentation." if scale == "HV" else f"indentation.{scale}."
+@dataclass(frozen=True)
+class _Given:
+    """The one number that is known, with what goes with it.
+
+    Attributes
+    ----------
+    kind : str
+        ``density``, ``stress`` or ``hardness``.
+    value, u : float
+        The number and its standard uncertainty. [1/m^2, MPa or kgf/mm^2]
+    scale : str
+        Of a hardness.
+    force_n, ball_mm : float or None
+        Of a hardness. [N], [mm]
+    """
+
+    kind: str
+    value: float
+    u: float
+    scale: str
+    force_n: float | None
+    ball_mm: float | None
 
 
-def _one_of(given: Mapping[str, float | None]) -> str:
-    said = [name for name, value in given.items() if value is not None]
+def _one_of(numbers: Mapping[str, float | None]) -> tuple[str, float]:
+    said = [(kind, number) for kind, number in numbers.items() if number is not None]
     if len(said) != 1:
-        found = " and ".join(said) if said else "none of them"
+        found = " and ".join(kind for kind, _ in said) if said else "none of them"
         message = f"give exactly one of density, stress and hardness; {found} was given"
         raise UsageError(message)
     return said[0]
 
 
-def _refuse_odd(kind: str, value: float | None, u: float | None, scale: str, *sizes: float | None) -> None:
-    force, ball, volume = sizes
-    numbers = {kind: value, "u": u, "force": force, "ball": ball, "volume": volume}
+def _refuse_odd(given: _Given, volume_mm3: float | None) -> None:
+    numbers = {
+        given.kind: given.value,
+        "u": given.u,
+        "force": given.force_n,
+        "ball": given.ball_mm,
+        "volume": volume_mm3,
+    }
     for name, number in numbers.items():
         low = 0.0 if name == "u" else np.nextafter(0.0, 1.0)
         if number is not None and not low <= number < np.inf:
             message = f"{name} must be a positive number, not {number:g}"
             raise UsageError(message)
-    if scale not in SCALES:
-        message = f"no hardness scale is called {scale!r}; there are {', '.join(SCALES)}"
+    if given.scale not in SCALES:
+        message = f"no hardness scale is called {given.scale!r}; there are {', '.join(SCALES)}"
         raise UsageError(message)
-    if kind == "hardness" and scale == "HBW" and (force is None or ball is None):
+    unsized = given.force_n is None or given.ball_mm is None
+    if given.kind == "hardness" and given.scale == "HBW" and unsized:
         message = "a Brinell hardness needs its force and its ball diameter"
         raise UsageError(message)
 
 
-def _method(
-    material: str | None, kind: str, sheet: str | Path | None, settings: Sequence[str]
-) -> Method:
-    """Lay the options over the sheet, and both over the defaults."""
-    base: dict[str, Any] = {"character": {"screw": 0.5, "edge": 0.5}}
-    if sheet is not None:
-        base = dict(read_sheet(Path(sheet)).tables)
-    elif material is None:
-        message = "name a metal of the library, or a batch folder with --sheet"
-        raise UsageError(message)
-    base["batch"] = {"id": "estimate"}
-    base["files"] = {"coupons": "none.csv", "indents": "none.csv", "flow_stress": "none.csv"}
-    base.pop("limits", None)
-    base.pop("testers", None)
-    if material is not None:
-        base["material"] = {"name": material}
-    strength_ = dict(base.get("strength", {}))
-    strength_["route"] = "indent" if kind == "hardness" else "flow"
-    base["strength"] = strength_
-    for setting in settings:
-        _lay_over(base, _parsed(setting))
-    if kind == "density" and set(base["strength"]) <= {"route"}:
-        base["strength"]["baseline_mpa"] = 0.0  # nothing hangs on it
-    base["files"].pop("flow_stress" if kind == "hardness" else "indents")
-    options = Sheet(base, (SheetFile("the options", "0" * 64, base, {}),))
-    try:
-        return method_of(options, Path(), with_files=False)
-    except BatchRefused as refused:
-        message = "\n".join(["these options make no method:", *map(_hinted, refused.causes)])
-        raise UsageError(message) from refused
-
-
-def _hinted(cause: Cause) -> str:
-    if "friction_mpa" in cause.what:
-        return "  no baseline stress is given: say --baseline, or --set 'strength.baseline_mpa = ...'"
-    return f"  {cause}"
-
-
-def _parsed(setting: str) -> dict[str, Any]:
-    try:
-        return tomllib.loads(setting)
-    except tomllib.TOMLDecodeError as error:
-        message = f"{setting!r} is not TOML: write it like 'hardening.coefficient = 0.3'"
-        raise UsageError(message) from error
-
-
-def _lay_over(base: dict[str, Any], over: Mapping[str, Any]) -> None:
-    for key, value in over.items():
-        below = base.get(key)
-        if isinstance(value, dict) and isinstance(below, dict) and "value" not in value:
-            copy = dict(below)
-            _lay_over(copy, value)
-            base[key] = copy
-        else:
-            base[key] = value
-
-
-def _start(
-    method: Method,
-    kind: str,
-    mean: float,
-    scale: str,
-    force_n: float | None,
-    ball_mm: float | None,
-) -> Start:
-    blank = np.array([np.nan])
-    code = SCALES.index(scale) if kind == "hardness" else -1
-    return Start(
+def _from_strength(
+    method: Method, inputs: Mapping[str, Value], spreads: Mapping[str, Spread], given: _Given
+) -> dict[str, Known]:
+    unit, code = "MPa", -1
+    if given.kind == "hardness":
+        unit, code = "kgf/mm2", SCALES.index(given.scale)
+        factor = f"{SECTIONS[code]}.constraint_factor"
+        if factor not in method.inputs:
+            message = f"nothing turns {given.scale} into a flow stress: say --set '{factor} = ...'"
+            raise UsageError(message)
+    mean, u = float(units.to_si(given.value, unit)), float(units.to_si(given.u, unit))
+    start = Start(
         Measured(np.array([mean]), {REPEATABILITY: np.asarray(1.0)}),
         np.array([code], dtype=np.int8),
-        blank if force_n is None else np.array([force_n]),
-        blank if ball_mm is None else units.to_si(np.array([ball_mm]), "mm"),
-        blank,
-        blank,
+        _NOTHING if given.force_n is None else np.array([given.force_n]),
+        _NOTHING if given.ball_mm is None else units.to_si(np.array([given.ball_mm]), "mm"),
+        _NOTHING,
+        _NOTHING,
         method.plastic_strain,
     )
-
-
-def _from_strength(
-    method: Method, inputs: Mapping[str, Value], spreads: Mapping[str, Spread], start: Start
-) -> dict[str, Known]:
-    found = evaluate(method, inputs, spreads, start)
+    own = Spread(u, shared=False, degrees_of_freedom=np.inf)
+    found = evaluate(method, inputs, {**spreads, REPEATABILITY: own}, start)
     return {
         name: Known(
             float(found.results[name].value[0]),
@@ -320,16 +278,13 @@ def _from_strength(
 
 
 def _from_density(
-    method: Method,
-    inputs: Mapping[str, Value],
-    spreads: Mapping[str, Spread],
-    density: float,
-    u: float,
+    method: Method, inputs: Mapping[str, Value], spreads: Mapping[str, Spread], given: _Given
 ) -> dict[str, Known]:
     """From a density there is no stress to take ends in: y exp(-+ k u / y) is the interval."""
-    start = _start(method, "stress", np.nan, "HV", None, None)
-    known = {**spreads, DENSITY: Spread(u, shared=False, degrees_of_freedom=np.inf)}
-    rho = Measured(np.array([density]), {DENSITY: np.asarray(1.0)})
+    nowhere = np.array([-1], dtype=np.int8)
+    start = Start(_NOTHING, nowhere, _NOTHING, _NOTHING, _NOTHING, _NOTHING, method.plastic_strain)
+    known = {**spreads, _DENSITY: Spread(given.u, shared=False, degrees_of_freedom=np.inf)}
+    rho = Measured(np.array([given.value]), {_DENSITY: np.asarray(1.0)})
     figures = dict.fromkeys(_STRESSES, Known(float("nan")))
     k = float(student_quantile((1.0 + method.coverage) / 2.0, np.array([np.inf]))[0])
     for name, x in line(method.laws, inputs, rho, start).items():

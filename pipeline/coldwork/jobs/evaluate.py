@@ -12,7 +12,7 @@ from coldwork.inputs.method import Method
 from coldwork.intake.coupons import Coupons
 from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_ends
 from coldwork.interval.reach import LATE, Reach
-from coldwork.measured import Measured, Value
+from coldwork.measured import Measured, Value, broadcast, value_of
 from coldwork.reduce.reduced import Reduced
 from coldwork.scatter import Repeatability
 
@@ -70,7 +70,7 @@ class Evaluated:
 
     @property
     def stress(self) -> Measured:
-        """The dislocation stress. [Pa]"""
+        """The dislocation stress, in Pa."""
         return self.reach.stress
 
 
@@ -107,8 +107,11 @@ def start_of(
     slopes: dict[str, NDArray[np.float64]] = {REPEATABILITY: np.asarray(1.0)}
     for tester in method.testers:
         share = reduced.shares[tester.id][rows]
-        if tester.bias.u > 0.0 and share.any():
+        if tester.bias.u > 0.0 and reduced.shares[tester.id].any():
             slopes[tester.bias.name] = -mean * share / (1.0 + tester.bias.value)
+    for name, slope in reduced.machine.items():
+        if method.inputs[name].u > 0.0 and slope[rows].any():
+            slopes[name] = slope[rows]
     own = {
         REPEATABILITY: Spread(
             scatter.u[rows], shared=False, degrees_of_freedom=scatter.degrees_of_freedom[rows]
@@ -116,7 +119,7 @@ def start_of(
     }
     grain: Value = coupons.grain_size[rows]
     u_grain = np.nan_to_num(coupons.u_grain_size[rows])
-    if u_grain.any():
+    if np.nansum(coupons.u_grain_size) > 0.0:
         grain = Measured.of_input(GRAIN, coupons.grain_size[rows])
         own[GRAIN] = Spread(u_grain, shared=False, degrees_of_freedom=np.inf)
     work = np.where(  # an annealed coupon's work is 0, and no fraction of it is stored
@@ -127,7 +130,7 @@ def start_of(
     start = Start(
         Measured(mean, slopes),
         reduced.scale[rows],
-        reduced.force[rows],
+        reduced.applied_force[rows],
         reduced.ball[rows],
         grain,
         work,
@@ -196,6 +199,5 @@ def _strengths(method: Method, start: Start, half: Strength, n: int) -> dict[str
 
 
 def _measured(x: Value, n: int) -> Measured:
-    if isinstance(x, Measured):
-        return Measured(np.broadcast_to(x.value, (n,)), x.sensitivities)
-    return Measured(np.broadcast_to(np.asarray(x, dtype=np.float64), (n,)))
+    wide = broadcast(x, (n,))
+    return wide if isinstance(wide, Measured) else Measured(value_of(wide))

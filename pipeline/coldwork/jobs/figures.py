@@ -1,8 +1,6 @@
 """Quantities of a slice as they may be published: emptied where an error says so."""
 
-from collections.abc import Mapping
 from dataclasses import dataclass
-from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -10,9 +8,9 @@ from numpy.typing import NDArray
 from coldwork.interval.combine import Combined, Ends
 from coldwork.jobs.evaluate import Evaluated
 from coldwork.measured import Measured
-from coldwork.rules import RULES
+from coldwork.rules.bits import emptied
 
-__all__ = ["Figures", "emptied", "figures_of"]
+__all__ = ["Figures", "figures_of"]
 
 _Floats = NDArray[np.float64]
 
@@ -34,27 +32,6 @@ class Figures:
     result: Measured
     combined: Combined
     ends: Ends
-
-
-def emptied(column: str, bits: NDArray[np.uint64], *, ends: bool = False) -> NDArray[np.bool_]:
-    """Say which coupons have no value, or no interval, in a column.
-
-    Parameters
-    ----------
-    column : str
-        Column of ``coupons.csv``.
-    bits : ndarray of uint64, shape (n,)
-        Findings of the coupons.
-    ends : bool, optional
-        Ask about the interval instead of the value.
-
-    Returns
-    -------
-    ndarray of bool, shape (n,)
-        True where a rule that fired empties it.
-    """
-    words = _EMPTIES_ENDS if ends else _EMPTIES
-    return np.asarray((bits & np.uint64(words.get(column, 0))) != 0)
 
 
 def figures_of(evaluated: Evaluated, bits: NDArray[np.uint64]) -> dict[str, Figures]:
@@ -98,16 +75,3 @@ def _figures(
         ),
         Ends(without(ends.lower, interval), without(ends.upper, interval)),
     )
-
-
-def _words(*, ends: bool) -> Mapping[str, int]:
-    words: dict[str, int] = {}
-    for i, rule in enumerate(RULES):
-        for column in rule.empties:
-            if not (ends and rule.ends_stay):
-                words[column] = words.get(column, 0) | 1 << i
-    return words
-
-
-_EMPTIES: Final = _words(ends=False)
-_EMPTIES_ENDS: Final = _words(ends=True)

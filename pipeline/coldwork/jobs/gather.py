@@ -3,7 +3,6 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,7 +12,7 @@ from coldwork.errors import BatchRefused, Cause
 from coldwork.inputs.method import Method
 from coldwork.intake.coupons import Coupons, read_coupons
 from coldwork.intake.exclusions import no_exclusions, read_exclusions
-from coldwork.intake.files import SourceFile, TableFiles
+from coldwork.intake.files import BLOCK_BYTES, SourceFile, TableFiles
 from coldwork.intake.readings import read_readings
 from coldwork.intake.set_aside import SetAside
 from coldwork.intake.text import check_headers
@@ -21,14 +20,12 @@ from coldwork.jobs.kept import KeptReadings
 from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.coupon_rules import judge_coupon_cells, judge_scales
 from coldwork.reduce.reduced import Reduced
-from coldwork.reduce.stream import reduce_batch
+from coldwork.reduce.stream import Byproducts, reduce_batch
 from coldwork.rules.coupon import SCATTER
 from coldwork.rules.findings import Findings
 from coldwork.scatter import Repeatability, repeatability
 
 __all__ = ["Gathered", "gather"]
-
-BLOCK_BYTES: Final = 2 << 20
 
 
 @dataclass(frozen=True)
@@ -109,12 +106,10 @@ def gather(
     findings, set_aside = Findings(len(coupons)), SetAside(len(coupons))
     kept = None if keep is None else KeptReadings(keep, f"in/{table}")
     stream = read_readings(files, coupons, exclusions, set_aside, zone, block_bytes=block_bytes)
-    reduced = reduce_batch(
-        stream, table, files.names, method, coupons, findings, set_aside, kept
-    )
+    reduced = reduce_batch(stream, files, method, coupons, Byproducts(findings, set_aside, kept))
     if kept is not None:
         kept.close(len(coupons))
-    causes = [*stream.unmatched(), *_nothing_left(method, reduced.used)]
+    causes = [*stream.unmatched(), *_nothing_left(reduced.used)]
     if causes:
         raise BatchRefused(str(method.folder), causes)
     scatter = repeatability(method, reduced, coupons.conditions)
@@ -147,7 +142,7 @@ def _coupons(method: Method, others: Sequence[TableFiles], block_bytes: int) -> 
     return coupons
 
 
-def _nothing_left(method: Method, used: NDArray[np.int64]) -> list[Cause]:
+def _nothing_left(used: NDArray[np.int64]) -> list[Cause]:
     if used.any():
         return []
     return [

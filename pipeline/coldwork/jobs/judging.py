@@ -2,6 +2,7 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from typing import Any, TypeAlias
 
 import numpy as np
 import pyarrow as pa
@@ -18,57 +19,47 @@ from coldwork.interval.combine import (
 )
 from coldwork.interval.reach import LATE, Reach
 from coldwork.jobs.evaluate import Evaluated
-from coldwork.jobs.figures import Figures, emptied
+from coldwork.jobs.figures import Figures
+from coldwork.jobs.gather import Gathered
 from coldwork.jobs.tables import unit_of
 from coldwork.judge.coupon_rules import State, judge_coupons
 from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
 from coldwork.measured import value_of
-from coldwork.reduce.reduced import Reduced
-from coldwork.rules.findings import Findings
+from coldwork.rules.bits import emptied
 
 __all__ = ["Held", "decide_slice", "decisions_table", "find_in_slice"]
 
 _Floats = NDArray[np.float64]
+_Column: TypeAlias = "pa.Array[Any]"
 
 
-def find_in_slice(
-    findings: Findings,
-    method: Method,
-    reduced: Reduced,
-    thickness: _Floats,
-    u_mean: _Floats,
-    evaluated: Evaluated,
-    rows: slice,
-) -> None:
+def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
     """Hold a slice of coupons against the rules that look at their results.
 
     Parameters
     ----------
-    findings : Findings
-        Where it is told.
-    method, reduced
-        The batch.
-    thickness : ndarray, shape (n,)
-        Of the slice's coupons. [m]
-    u_mean : ndarray, shape (n,)
-        Standard uncertainty of the mean reading. [Pa]
+    batch : Gathered
+        The batch; its findings are told.
+    rows : slice
+        Place of the slice in it.
     evaluated : Evaluated
         The slice.
-    rows : slice
-        Its place in the batch.
     """
+    method, reduced = batch.method, batch.reduced
     known = np.isfinite(reduced.mean[rows])
     saturation = method.inputs.get("indentation.saturation_stress_mpa")
     results, half = evaluated.results, evaluated.strength
     judge_coupons(
-        findings,
+        batch.findings,
         State(
             coupon=np.arange(rows.start, rows.stop),
             route=method.laws.route,
             readings_used=reduced.used[rows],
-            repeatability=np.where(known, u_mean, 0.0),  # without a mean it has none to lack
+            repeatability=np.where(
+                known, batch.scatter.u[rows], 0.0
+            ),  # none to lack without a mean
             scale=reduced.scale[rows],
-            thickness=thickness,
+            thickness=batch.coupons.thickness[rows],
             mean_diagonal=reduced.mean_diagonal[rows],
             ball=reduced.ball[rows],
             stress=evaluated.stress.value,
@@ -137,9 +128,7 @@ def decide_slice(
     return held
 
 
-def decisions_table(
-    method: Method, ids: pa.StringArray, decided: Sequence[Held]
-) -> pa.Table:
+def decisions_table(method: Method, ids: pa.StringArray, decided: Sequence[Held]) -> pa.Table:
     """Build a slice of ``decisions.csv``: every limit on every coupon.
 
     Parameters
@@ -157,36 +146,35 @@ def decisions_table(
         Coupon by coupon, in the sheet's order of limits within each.
     """
     n = len(ids)
+    table = pa.concat_tables([_of_one_limit(method, ids, held) for held in decided])
+    order = np.arange(n * len(decided)).reshape(len(decided), n).T.ravel()
+    return table.take(pa.array(order, pa.int64()))
 
-    def same(x: str | float | None, kind: pa.DataType) -> pa.Array:
-        return pa.nulls(n, kind) if x is None else pa.repeat(pa.scalar(x, kind), n)
 
-    parts = []
-    for held in decided:
-        limit, one = held.limit, held.decided
-        parts.append(
-            pa.table(
-                {
-                    "coupon_id": ids,
-                    "limit_id": same(limit.id, pa.string()),
-                    "quantity": same(limit.quantity, pa.string()),
-                    "value": pa.array(held.evidence.value),
-                    "u": pa.array(held.evidence.u),
-                    "lower_limit": same(limit.lower, pa.float64()),
-                    "upper_limit": same(limit.upper, pa.float64()),
-                    "bound": pa.array(one.bound),
-                    "rule": same(limit.rule, pa.string()),
-                    "basis": same(limit.basis, pa.string()),
-                    "coverage": same(method.coverage, pa.float64()),
-                    "probability": pa.array(one.probability),
-                    "decision": decision_texts(one.code),
-                    "reason": one.reason,
-                }
-            )
-        )
-    table = pa.concat_tables(parts)
-    order = np.arange(n * len(parts)).reshape(len(parts), n).T.ravel()
-    return table.take(pa.array(order))
+def _of_one_limit(method: Method, ids: pa.StringArray, held: Held) -> pa.Table:
+    n = len(ids)
+    limit, one = held.limit, held.decided
+
+    def number(x: float | None) -> pa.DoubleArray:
+        return pa.nulls(n, pa.float64()) if x is None else pa.repeat(float(x), n)
+
+    columns: dict[str, _Column] = {
+        "coupon_id": ids,
+        "limit_id": pa.repeat(limit.id, n),
+        "quantity": pa.repeat(limit.quantity, n),
+        "value": pa.array(held.evidence.value),
+        "u": pa.array(held.evidence.u),
+        "lower_limit": number(limit.lower),
+        "upper_limit": number(limit.upper),
+        "bound": pa.array(one.bound),
+        "rule": pa.repeat(limit.rule, n),
+        "basis": pa.repeat(limit.basis, n),
+        "coverage": number(method.coverage),
+        "probability": pa.array(one.probability),
+        "decision": decision_texts(one.code),
+        "reason": one.reason,
+    }
+    return pa.table(columns)
 
 
 def _evidence(

@@ -1,7 +1,7 @@
 """Readings that wait on the disk until their coupons' records are written."""
 
 from pathlib import Path
-from typing import Final
+from typing import Any, Final, TypeAlias
 
 import numpy as np
 import pyarrow as pa
@@ -12,7 +12,7 @@ from coldwork.intake.coupons import Coupons
 from coldwork.reduce.readings import Readings
 from coldwork.reduce.reduced import ReadingResults
 from coldwork.results.disk import writing
-from coldwork.rules import RULES
+from coldwork.rules.bits import rule_ids
 from coldwork.rules.forces import SCALES
 
 __all__ = ["KeptReadings"]
@@ -20,6 +20,9 @@ __all__ = ["KeptReadings"]
 RAW: Final = "raw:"  # before the name of a column, its cell as written
 _TEXTS: Final = ("measured_at", "operator", "tester")
 _PLACES: Final = ("x_mm", "y_mm")
+_NUMBERS: Final = ("force", "mean_diagonal", "strength", "plastic_strain", "weight", *_PLACES)
+
+_Column: TypeAlias = "pa.Array[Any] | pa.ChunkedArray[Any]"
 
 
 class KeptReadings:
@@ -61,7 +64,7 @@ class KeptReadings:
         n = len(readings)
         blank = pa.nulls(n, pa.string())
         raw = readings.raw.combine_chunks()
-        columns = {
+        numbers: dict[str, NDArray[Any]] = {
             "coupon": readings.coupon,
             "file": readings.file,
             "line": readings.lines,
@@ -74,6 +77,9 @@ class KeptReadings:
             "plastic_strain": results.plastic_strain,
             "weight": results.weight,
             **{name: readings.column(name) for name in _PLACES},
+        }
+        columns: dict[str, _Column] = {
+            **{name: pa.array(x, self._schema.field(name).type) for name, x in numbers.items()},
             **{name: readings.texts.get(name, blank) for name in _TEXTS},
             **{
                 RAW + name: raw[name] if name in raw.column_names else blank
@@ -106,7 +112,7 @@ class KeptReadings:
             message = "readings are still being written"
             raise RuntimeError(message)
         order = self._order[self._starts[rows.start] : self._starts[rows.stop]]
-        return self._table.take(pa.array(order)).combine_chunks()
+        return self._table.take(pa.array(order, pa.int64())).combine_chunks()
 
     @staticmethod
     def published(kept: pa.Table, coupons: Coupons, route: str, files: list[str]) -> pa.Table:
@@ -141,35 +147,26 @@ class KeptReadings:
             "weight": kept["weight"].to_numpy(),
         }
         scale = kept["scale"].to_numpy()
-        columns = {
-            "coupon_id": coupons.ids.take(kept["coupon"].combine_chunks()),
+        columns: dict[str, _Column] = {
+            "coupon_id": coupons.ids.take(pa.array(kept["coupon"].to_numpy(), pa.int32())),
             "reading_no": kept["reading_no"],
-            "route": pa.repeat(pa.scalar(route), len(kept)),
+            "route": pa.repeat(route, len(kept)),
             "scale": pa.array(SCALES).take(pa.array(scale, mask=scale < 0)),
             **{
                 name: pa.array(units.from_si(x, contract.field(name).unit or "1"))
                 for name, x in numbers.items()
             },
             **{name: kept[name] for name in (*_PLACES, *_TEXTS)},
-            "flags": _mark_texts(kept["marks"].to_numpy()),
-            "file": pa.array(files, pa.string()).take(kept["file"].combine_chunks()),
+            "flags": rule_ids(kept["marks"].to_numpy()),
+            "file": pa.array(files, pa.string()).take(
+                pa.array(kept["file"].to_numpy(), pa.int64())
+            ),
             "line": kept["line"],
         }
-        return pa.table({name: columns[name] for name in contract.columns})
+        return pa.table([columns[name] for name in contract.columns], list(contract.columns))
 
     @staticmethod
     def raw(kept: pa.Table) -> pa.Table:
         """Give the cells as written, one column for each that the file had."""
         names = [name for name in kept.column_names if name.startswith(RAW)]
-        return pa.table({name.removeprefix(RAW): kept[name] for name in names})
-
-
-_NUMBERS: Final = ("force", "mean_diagonal", "strength", "plastic_strain", "weight", *_PLACES)
-
-
-def _mark_texts(marks: NDArray[np.uint64]) -> pa.Array:
-    words, place = np.unique(marks, return_inverse=True)
-    texts = [
-        ";".join(rule.id for i, rule in enumerate(RULES) if int(word) >> i & 1) for word in words
-    ]
-    return pa.array(texts, pa.string()).take(pa.array(place))
+        return kept.select(names).rename_columns([name.removeprefix(RAW) for name in names])

@@ -1,12 +1,14 @@
 """Lots of a batch: means, and the decision of the worst coupon."""
 
 from collections.abc import Mapping
+from typing import Any, Final, cast
 
 import numpy as np
 import pyarrow as pa
 import pyarrow.compute as pc
 from numpy.typing import NDArray
 
+from coldwork.intake.cells import texts
 from coldwork.interval.lots import STRESS, LotSums
 from coldwork.jobs.evaluate import inputs_of
 from coldwork.jobs.gather import Gathered
@@ -14,10 +16,11 @@ from coldwork.jobs.slices import Sliced
 from coldwork.jobs.tables import WITH_UNCERTAINTY, lots_table
 from coldwork.judge.decisions import DECISIONS, NONE, decision_texts
 from coldwork.judge.lots import lot_decision
-from coldwork.measured import Measured
 from coldwork.results.tables import TableWriter
 
 __all__ = ["Lots"]
+
+_BETWEEN: Final = "\x1f"  # a control character, which no cell of coupons.csv may hold
 
 
 class Lots:
@@ -39,11 +42,8 @@ class Lots:
 
     def add(self, part: Sliced) -> None:
         """Take in a slice."""
-        results: dict[str, Measured] = {
-            name: figures.result for name, figures in part.figures.items()
-        }
-        self._names = tuple(name for name in WITH_UNCERTAINTY if name in results)
-        wanted = {name: results[name] for name in {*self._names, STRESS}}
+        self._names = tuple(name for name in WITH_UNCERTAINTY if name in part.figures)
+        wanted = {name: part.figures[name].result for name in self._names}
         self._sums.add(part.rows, wanted, part.spreads, part.evaluated.start.grain_size)
         self._code[part.rows] = part.worst.code
 
@@ -83,7 +83,9 @@ def _grouped(
     lots: pa.StringArray, conditions: pa.StringArray
 ) -> tuple[list[tuple[str, str]], NDArray[np.int64]]:
     """Name the groups in the order in which they first come, and number the coupons."""
-    both = pc.binary_join_element_wise(lots, conditions, "\x1f").dictionary_encode()
-    keys = [tuple(key.split("\x1f", 1)) for key in both.dictionary.to_pylist()]
+    join: Any = pc.binary_join_element_wise  # typed for columns alone, without a separator
+    joined: pa.StringArray = join(lots, conditions, _BETWEEN)
+    both = joined.dictionary_encode()
+    keys = [key.partition(_BETWEEN) for key in texts(cast("pa.StringArray", both.dictionary))]
     numbers = both.indices.to_numpy(zero_copy_only=False).astype(np.int64)
-    return [(key[0], key[1]) for key in keys], numbers
+    return [(lot, condition) for lot, _, condition in keys], numbers

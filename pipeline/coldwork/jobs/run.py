@@ -16,20 +16,18 @@ import numpy as np
 import pyarrow as pa
 
 from coldwork import contracts
-from coldwork.inputs.method import Method
 from coldwork.inputs.sheet import read_method
 from coldwork.jobs.drawing import Drawing
 from coldwork.jobs.gather import Gathered, gather
 from coldwork.jobs.kept import KeptReadings
 from coldwork.jobs.lots import Lots
 from coldwork.jobs.slices import Sliced, work_slice
-from coldwork.judge.evidence import DECISIONS
 from coldwork.results.documents import dump
+from coldwork.results.lines import LineWriter
 from coldwork.results.records import Common, Slice, build, seal
 from coldwork.results.tables import TableWriter
-from coldwork.results.target import Target, open_target
-from coldwork.rules import RULES
-from coldwork.rules.rule import Level
+from coldwork.results.target import open_target
+from coldwork.rules.bits import with_error
 
 __all__ = ["Outcome", "record_again", "run"]
 
@@ -130,14 +128,13 @@ def run(
         batch, kept = gather(method, keep=target.scratch / "readings.arrow" if full else None)
         drawing = Drawing(batch, wanted=plots)
         lots = Lots(batch)
-        writers = {
-            name: target.table(name, method.tables) for name in (*_ALWAYS, *(_FULL if full else ()))
-        }
-        method_json = dump("method", method.document)
-        target.write("method.json", method_json)
-        _work(batch, kept, target, writers, drawing, lots, sha256(method_json).hexdigest(), tell)
-        decisions = lots.write(writers["lots"])
-        for writer in writers.values():
+        names = (*_ALWAYS, *(_FULL if full else ()))
+        tables = _Tables({name: target.table(name, method.tables) for name in names}, drawing)
+        target.write("method.json", dump("method", method.document))
+        records = target.lines("records.jsonl") if full else None
+        _work(batch, kept, lots, tables, records, tell)
+        decisions = lots.write(tables.writers["lots"])
+        for writer in tables.writers.values():
             writer.close()
         tell("drawing" if drawing.wanted else "writing")
         for name, data in drawing.files():
@@ -151,7 +148,7 @@ def run(
         readings_used=int(batch.reduced.used.sum()),
         readings_set_aside=batch.set_aside.count,
         decisions=decisions,
-        errors=_errors(batch),
+        errors=int(np.count_nonzero(with_error(batch.findings.bits))),
         plots=drawing.said,
     )
 
@@ -176,26 +173,34 @@ def record_again(folder: Path, coupon: str) -> dict[str, Any]:
         batch, kept = gather(method, keep=Path(scratch) / "readings.arrow")
         place = int(batch.coupons.index(pa.array([coupon], pa.string()))[0])
         part = work_slice(batch, slice(place, place + 1), kept)
-        common = _common(batch, sha256(dump("method", method.document)).hexdigest())
-        return build(common, _record_slice(batch, part, batch.set_aside.table()))[0]
+        return build(_common(batch), _record_slice(batch, part, batch.set_aside.table()))[0]
+
+
+@dataclass(frozen=True)
+class _Tables:
+    """Where published tables go: to the disk, and to the plots that are drawn from them."""
+
+    writers: Mapping[str, TableWriter]
+    drawing: Drawing
+
+    def write(self, name: str, table: pa.Table) -> None:
+        """Take a slice of a table."""
+        self.writers[name].write(table)
+        self.drawing.add(name, table)
 
 
 def _work(
     batch: Gathered,
     kept: KeptReadings | None,
-    target: Target,
-    writers: Mapping[str, TableWriter],
-    drawing: Drawing,
     lots: Lots,
-    method_sha256: str,
+    tables: _Tables,
+    records: LineWriter | None,
     tell: Progress,
 ) -> None:
     """Work the coupons slice by slice, and write what each slice comes to."""
-    records = None if kept is None else target.lines("records.jsonl")
-    common = _common(batch, method_sha256)
+    common = _common(batch)
     aside = batch.set_aside.table()
-    writers["set_aside"].write(aside)
-    drawing.add("set_aside", aside)
+    tables.write("set_aside", aside)
     done = 0
     for rows in _slices(len(batch.coupons), _FULL_SLICE if kept else _SLICE):
         part = work_slice(batch, rows, kept)
@@ -206,21 +211,20 @@ def _work(
             records.write([one.line for one in sealed])
             shas = pa.array([one.sha256 for one in sealed], pa.string())
         for name, table in part.tables(shas).items():
-            if name in writers:
-                writers[name].write(table)
-                drawing.add(name, table)
+            tables.write(name, table)
         done += part.n
         tell(f"computing, {done} of {len(batch.coupons)} coupons")
     for piece in batch.findings.slices(batch.coupons.ids, batch.coupons.lot_ids):
-        writers["flags"].write(piece)
-        drawing.add("flags", piece)
+        tables.write("flags", piece)
     if records is not None:
         records.close()
 
 
-def _common(batch: Gathered, method_sha256: str) -> Common:
-    inputs: Any = batch.method.document["inputs"]
-    return Common(batch.method.batch_id, method_sha256, inputs)
+def _common(batch: Gathered) -> Common:
+    method = batch.method
+    inputs: Any = method.document["inputs"]
+    digest = sha256(dump("method", method.document)).hexdigest()
+    return Common(method.batch_id, digest, inputs)
 
 
 def _record_slice(batch: Gathered, part: Sliced, aside: pa.Table) -> Slice:
@@ -296,11 +300,6 @@ def _manifest(batch: Gathered, started: datetime) -> dict[str, object]:
             "platform": platform.platform(),
         },
     }
-
-
-def _errors(batch: Gathered) -> int:
-    word = sum(1 << i for i, rule in enumerate(RULES) if rule.level is Level.ERROR)
-    return int(np.count_nonzero(batch.findings.bits & np.uint64(word)))
 
 
 def _silent(_words: str) -> None:

@@ -3,6 +3,7 @@
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cached_property
+from typing import Any, TypeAlias
 
 import numpy as np
 import pyarrow as pa
@@ -35,6 +36,8 @@ from coldwork.measured import value_of
 from coldwork.results.records import Step
 
 __all__ = ["Sliced", "work_slice"]
+
+_Column: TypeAlias = "pa.Array[Any]"
 
 
 @dataclass(frozen=True)
@@ -79,15 +82,15 @@ class Sliced:
 
     @property
     def spreads(self) -> Mapping[str, Spread]:
-        """Uncertainty of every input. [SI]"""
+        """Uncertainty of every input, in SI."""
         return self.evaluated.spreads
 
-    def tables(self, shas: pa.Array) -> dict[str, pa.Table]:
+    def tables(self, shas: pa.StringArray) -> dict[str, pa.Table]:
         """Give the published tables of the slice.
 
         Parameters
         ----------
-        shas : pyarrow.Array of n texts
+        shas : pyarrow.StringArray of n
             Digests of the coupons' records, null without records.
 
         Returns
@@ -107,8 +110,8 @@ class Sliced:
     def _coupons(self) -> pa.Table:
         batch, worst_one = self.batch, self.worst
         names = pa.array([held.limit.id for held in self.decided], pa.string())
-        deciding = pa.array(worst_one.limit.astype(np.int64), mask=worst_one.limit < 0)
-        rest = {
+        deciding = pa.array(worst_one.limit, pa.int64(), mask=worst_one.limit < 0)
+        rest: dict[str, _Column] = {
             "readings_set_aside": pa.array(batch.set_aside.per_coupon[self.rows]),
             "decision": decision_texts(worst_one.code),
             "deciding_limit": names.take(deciding),
@@ -116,16 +119,7 @@ class Sliced:
             "flags": batch.findings.text(self.rows),
             "record_sha256": pa.nulls(self.n, pa.string()),
         }
-        return coupons_table(
-            batch.method,
-            batch.coupons,
-            batch.reduced,
-            self.rows,
-            self.figures,
-            self._test_strain,
-            batch.findings.bits[self.rows],
-            rest,
-        )
+        return coupons_table(batch, self.rows, self.figures, self._test_strain, rest)
 
     @cached_property
     def _decisions(self) -> pa.Table:
@@ -146,10 +140,8 @@ class Sliced:
             "readings": KeptReadings.published(
                 self.kept, batch.coupons, batch.method.laws.route, list(batch.files)
             ),
-            "quantities": quantities_table(batch.method, batch.coupons, self.rows, self.figures),
-            "budget": budget_table(
-                batch.method, batch.coupons, self.rows, self.figures, self.spreads, own
-            ),
+            "quantities": quantities_table(batch, self.rows, self.figures),
+            "budget": budget_table(batch, self.rows, self.figures, self.spreads, own),
         }
 
     @property
@@ -199,15 +191,7 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
     start, own = start_of(method, batch.coupons, batch.reduced, batch.scatter, rows)
     with_ends = WITH_UNCERTAINTY if kept is None else QUANTITIES
     evaluated = evaluate(method, inputs, {**spreads, **own}, start, with_ends)
-    find_in_slice(
-        batch.findings,
-        method,
-        batch.reduced,
-        batch.coupons.thickness[rows],
-        batch.scatter.u[rows],
-        evaluated,
-        rows,
-    )
+    find_in_slice(batch, rows, evaluated)
     bits = batch.findings.bits[rows]
     figures = figures_of(evaluated, bits)
     decided = decide_slice(method, evaluated, figures, bits)

@@ -1,30 +1,55 @@
-"""The chain told step by step, for records and `trace`."""
+"""The chain told step by step, for records and `trace`.
+
+What is said of each step stands in `chain_words`; here the steps of the method's laws
+are picked, and what depends on the sheet is filled in.
+"""
+
+from collections.abc import Mapping
+from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from coldwork import units
-from coldwork.inputs.method import Method
-from coldwork.jobs.evaluate import Evaluated
+from coldwork.inputs.method import Laws, Method
+from coldwork.jobs.chain_words import (
+    AS_INDENTED,
+    DENSITY,
+    ENERGY,
+    FLOW,
+    FLOW_OF_CURVE,
+    INDENT,
+    REPORTED,
+    UNWOUND,
+    Line,
+)
+from coldwork.jobs.evaluate import REPEATABILITY, Evaluated
+from coldwork.jobs.tables import unit_of
 from coldwork.measured import Value, value_of
 from coldwork.results.records import Step
-from coldwork.rules.forces import SCALES
+from coldwork.rules.forces import SECTIONS
 from coldwork.scatter import BASES, Repeatability
 
 __all__ = ["repeatability_of", "steps_of"]
 
-_BASELINE = (
-    "strength.baseline_mpa",
-    "strength.friction_mpa",
-    "strength.hall_petch_mpa_m05",
-)
-_FOR_ALL_SCALES = ("initial_hardening_mpa", "saturation_stress_mpa")
-_RADII = {
+
+_BASELINES: Final = {
+    "given": "as the sheet states it",
+    "parts": "friction, Hall-Petch and other terms, added",
+}
+_RADII: Final = {
     "spacing": "the mean spacing of the dislocations",
     "half-spacing": "half the mean spacing of the dislocations",
     "grain": "the grain size of the coupon",
     "fixed": "the length that the sheet states",
 }
+_BASELINE_INPUTS: Final = (
+    "strength.baseline_mpa",
+    "strength.friction_mpa",
+    "strength.hall_petch_mpa_m05",
+)
+_WITHOUT_COLUMN: Final = ("pressure_mpa", "indented_stress_mpa", "excess_mpa")
+_FOR_ALL_SCALES: Final = ("initial_hardening_mpa", "saturation_stress_mpa")
 
 
 def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
@@ -42,7 +67,32 @@ def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
     list of Step
         In order; values of shape (n,) in published units.
     """
-    return [*_strength_steps(method, evaluated), *_energy_steps(method, evaluated)]
+    laws, scale = method.laws, evaluated.start.scale
+    words = {
+        "strain": f"{method.plastic_strain:g}",
+        "baseline": _BASELINES[laws.baseline],
+        "radius": _RADII[laws.outer_radius],
+    }
+    groups = _groups(method)
+    values = _values(evaluated)
+    steps = []
+    for line in _lines(laws):
+        inputs = tuple(name for entry in line.inputs for name in groups.get(entry, (entry,)))
+        unit = _unit(line.quantity)
+        value = np.broadcast_to(value_of(values[line.quantity]), scale.shape)
+        steps.append(
+            Step(
+                line.step,
+                line.relation,
+                line.quantity,
+                unit,
+                units.from_si(value, unit),
+                line.explanation.format_map(words),
+                inputs,
+                _scales_of(inputs, scale),
+            )
+        )
+    return steps
 
 
 def repeatability_of(scatter: Repeatability, rows: slice, unit: str) -> list[dict[str, object]]:
@@ -87,216 +137,49 @@ def repeatability_of(scatter: Repeatability, rows: slice, unit: str) -> list[dic
     ]
 
 
-def _step(
-    step: str,
-    relation: str,
-    quantity: str,
-    unit: str,
-    value: Value,
-    scale: NDArray[np.int8],
-    explanation: str,
-    inputs: tuple[str, ...],
-) -> Step:
-    values = units.from_si(np.broadcast_to(value_of(value), scale.shape), unit)
-    only = _scales_of(inputs, scale)
-    return Step(step, relation, quantity, unit, values, explanation, inputs, only)
+def _lines(laws: Laws) -> tuple[Line, ...]:
+    """Pick the steps that these laws take, in order."""
+    energy = (DENSITY[laws.taylor], *ENERGY)
+    if laws.flow_from == "curves":
+        return (*FLOW_OF_CURVE, *energy)
+    if laws.route == "flow":
+        return (*FLOW, *energy)
+    return (*INDENT, *(UNWOUND if laws.unwinding else AS_INDENTED), *REPORTED, *energy)
 
 
-def _strength_steps(method: Method, evaluated: Evaluated) -> list[Step]:
-    half, start, laws = evaluated.strength, evaluated.start, method.laws
-    scale = start.scale
-    given = tuple(
+def _values(evaluated: Evaluated) -> Mapping[str, Value]:
+    """Give every quantity of the chain by name, in SI, those too that no table has."""
+    half = evaluated.strength
+    return {
+        "pressure_mpa": np.nan if half.pressure is None else half.pressure,
+        "indented_stress_mpa": half.indented_stress,
+        "excess_mpa": half.excess,
+        **evaluated.results,
+    }
+
+
+def _unit(quantity: str) -> str:
+    """Give the unit of a quantity: that of its column, or of its name where it has none."""
+    return "MPa" if quantity in _WITHOUT_COLUMN else unit_of(quantity)
+
+
+def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
+    """Give the inputs that stand behind each ``<...>``, in the sheet's order."""
+    baseline = (
         name
         for name in method.inputs
-        if name in _BASELINE or name.startswith("strength.terms_mpa.")
+        if name in _BASELINE_INPUTS or name.startswith("strength.terms_mpa.")
     )
-    parts = (
-        "friction, Hall-Petch and other terms, added"
-        if laws.baseline == "parts"
-        else "as the sheet states it"
-    )
-    baseline = _step(
-        "baseline stress",
-        "relation 4",
-        "baseline_stress_mpa",
-        "MPa",
-        half.baseline_stress,
-        scale,
-        f"the part of the flow stress that dislocations do not carry: {parts}",
-        given,
-    )
-    mean_inputs = ("repeatability", *(t.bias.name for t in method.testers))
-    if laws.route == "flow":
-        return [
-            _step(
-                "flow stress",
-                "mean of the readings",
-                "flow_stress_mpa",
-                "MPa",
-                half.flow_stress,
-                scale,
-                f"at a plastic strain of {method.plastic_strain:g}: the mean of the repeats there, "
-                "or interpolated between the neighbours; corrected for the tester",
-                mean_inputs,
-            ),
-            baseline,
-            _step(
-                "dislocation stress",
-                "relation 4",
-                "dislocation_stress_mpa",
-                "MPa",
-                half.dislocation_stress,
-                scale,
-                "flow stress less the baseline",
-                ("flow_stress_mpa", "baseline_stress_mpa"),
-            ),
-        ]
-    steps = [
-        _step(
-            "mean hardness",
-            "relation 1",
-            "hardness",
-            "kgf/mm2",
-            start.mean,
-            scale,
-            "mean of the readings, each divided by 1 + bias of its tester",
-            mean_inputs,
-        ),
-        _step(
-            "indentation pressure",
-            "relation 1",
-            "pressure_mpa",
-            "MPa",
-            np.nan if half.pressure is None else half.pressure,
-            scale,
-            "force over the area that the sheet names for this scale",
-            ("hardness",),
-        ),
-        _step(
-            "flow stress under the indent",
-            "relation 2, Tabor 1951",
-            "indented_stress_mpa",
-            "MPa",
-            half.indented_stress,
-            scale,
-            "pressure less intercept, over the constraint factor: the stress at the coupon's "
-            "strain plus the strain of the indent",
-            ("pressure_mpa", *_of_indentation(method, "intercept_mpa", "constraint_factor")),
-        ),
-        baseline,
-    ]
-    if laws.unwinding:
-        steps.append(
-            _step(
-                "excess over the baseline",
-                "relation 4",
-                "excess_mpa",
-                "MPa",
-                half.excess,
-                scale,
-                "flow stress under the indent less the baseline",
-                ("indented_stress_mpa", "baseline_stress_mpa"),
-            )
-        )
-    return [*steps, *_dislocation_steps(method, evaluated, scale)]
-
-
-def _dislocation_steps(method: Method, evaluated: Evaluated, scale: NDArray[np.int8]) -> list[Step]:
-    half = evaluated.strength
-    told, relation = "flow stress under the indent less the baseline", "relation 4"
-    inputs: tuple[str, ...] = ("indented_stress_mpa", "baseline_stress_mpa")
-    if method.laws.unwinding:
-        told, relation = (
-            "without the hardening that the indent's own strain added; at or above saturation "
-            "nothing is taken out",
-            "relation 6, Voce 1948; Kocks and Mecking 2003",
-        )
-        inputs = (
-            "excess_mpa",
-            *_of_indentation(
-                method, "initial_hardening_mpa", "saturation_stress_mpa", "representative_strain",
-                "strain_ratio",
-            ),
-        )
-    return [
-        _step(
-            "dislocation stress", relation, "dislocation_stress_mpa", "MPa",
-            half.dislocation_stress, scale, told, inputs,
-        ),
-        _step(
-            "flow stress of the state reported", "relation 4", "flow_stress_mpa", "MPa",
-            half.flow_stress, scale, "dislocation stress plus baseline",
-            ("dislocation_stress_mpa", "baseline_stress_mpa"),
-        ),
-    ]
-
-
-def _energy_steps(method: Method, evaluated: Evaluated) -> list[Step]:
-    results, laws = evaluated.results, method.laws
-    scale = evaluated.start.scale
-    taylor = ("hardening.slope_n_per_m",)
-    told = "(dislocation stress over the slope M alpha G b) squared"
-    if laws.taylor == "constant":
-        taylor = (
-            "hardening.taylor_factor",
-            "hardening.coefficient",
-            "material.shear_modulus_gpa",
-            "material.burgers_vector_nm",
-        )
-        told = "(dislocation stress over M alpha G b) squared"
-    line = (
-        "line_energy.outer_radius_factor",
-        *(("line_energy.outer_radius_nm",) if laws.outer_radius == "fixed" else ()),
-        "line_energy.core_radius_b",
-        "line_energy.core_energy",
-        "material.shear_modulus_gpa",
-        "material.poisson_ratio",
-        "material.burgers_vector_nm",
-    )
-    mass = "material.mass_density_kg_per_m3"
-    rows: list[tuple[str, str, str, str, str, tuple[str, ...]]] = [
-        (
-            "dislocation density", "relation 5, Taylor 1934", "dislocation_density_per_m2", "m-2",
-            told, ("dislocation_stress_mpa", *taylor),
-        ),
-        (
-            "mean spacing", "definition", "mean_spacing_nm", "nm",
-            "one over the root of the density", ("dislocation_density_per_m2",),
-        ),
-        (
-            "line energy", "relation 7, Hirth and Lothe 1982", "line_energy_j_per_m", "J/m",
-            f"averaged over the character mix; the field reaches to {_RADII[laws.outer_radius]}",
-            ("mean_spacing_nm", *line),
-        ),
-        (
-            "stored energy in dislocations", "relation 8", "stored_energy_j_per_m3", "J/m3",
-            "density times line energy; also the driving pressure for recrystallisation in Pa",
-            ("dislocation_density_per_m2", "line_energy_j_per_m"),
-        ),
-        (
-            "stored energy per mole", "relation 8", "stored_energy_j_per_mol", "J/mol",
-            "times the molar volume",
-            ("stored_energy_j_per_m3", mass, "material.molar_mass_g_per_mol"),
-        ),
-        (
-            "stored energy per gram", "relation 8", "stored_energy_j_per_g", "J/g",
-            "over the mass density", ("stored_energy_j_per_m3", mass),
-        ),
-        (
-            "temperature rise", "relation 8", "temperature_rise_k", "K",
-            "if all of it were released as heat in the coupon",
-            ("stored_energy_j_per_m3", mass, "material.heat_capacity_j_per_kg_k"),
-        ),
-        (
-            "stored fraction of the work", "relation 9", "stored_fraction_of_work", "1",
-            "over the plastic work that coupons.csv states",
-            ("stored_energy_j_per_m3", "prior_plastic_work_j_per_m3"),
-        ),
-    ]
-    return [
-        _step(name, relation, quantity, unit, results[quantity], scale, words, tuple(inputs))
-        for name, relation, quantity, unit, words, inputs in rows
-    ]
+    fixed = ("line_energy.outer_radius_nm",) if method.laws.outer_radius == "fixed" else ()
+    unwinding = (*_FOR_ALL_SCALES, "representative_strain", "strain_ratio")
+    return {
+        "<mean>": (REPEATABILITY, *(tester.bias.name for tester in method.testers)),
+        "<curve>": (REPEATABILITY, *(n for n in method.inputs if n.startswith("tensile."))),
+        "<baseline>": tuple(baseline),
+        "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
+        "<unwinding>": _of_indentation(method, *unwinding),
+        "<fixed radius>": fixed,
+    }
 
 
 def _of_indentation(method: Method, *keys: str) -> tuple[str, ...]:
@@ -307,14 +190,11 @@ def _of_indentation(method: Method, *keys: str) -> tuple[str, ...]:
     )
 
 
-def _scales_of(
-    inputs: tuple[str, ...], scale: NDArray[np.int8]
-) -> dict[str, NDArray[np.bool_]]:
-    """For each input of one scale, the coupons that were read on it."""
+def _scales_of(inputs: tuple[str, ...], scale: NDArray[np.int8]) -> dict[str, NDArray[np.bool_]]:
+    """Give for each input of one scale the coupons that were read on it."""
     only = {}
     for name in inputs:
         section, _, key = name.rpartition(".")
-        if section.startswith("indentation") and key not in _FOR_ALL_SCALES:
-            code = SCALES.index(section.removeprefix("indentation").removeprefix(".") or "HV")
-            only[name] = scale == code
+        if section in SECTIONS and key not in _FOR_ALL_SCALES:
+            only[name] = scale == SECTIONS.index(section)
     return only

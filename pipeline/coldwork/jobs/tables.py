@@ -1,7 +1,7 @@
 """Published tables of a slice: from SI arrays to the columns and units of the contracts."""
 
 from collections.abc import Mapping, Sequence
-from typing import Final
+from typing import Any, Final, TypeAlias
 
 import numpy as np
 import pyarrow as pa
@@ -10,12 +10,12 @@ from numpy.typing import NDArray
 
 from coldwork import contracts, units
 from coldwork.inputs.method import Method
-from coldwork.intake.coupons import Coupons
 from coldwork.interval.combine import Spread
 from coldwork.interval.lots import LotMean
 from coldwork.jobs.evaluate import GRAIN, QUANTITIES, REPEATABILITY
-from coldwork.jobs.figures import Figures, emptied
-from coldwork.reduce.reduced import Reduced
+from coldwork.jobs.figures import Figures
+from coldwork.jobs.gather import Gathered
+from coldwork.rules.bits import emptied
 from coldwork.rules.forces import force_labels
 
 __all__ = [
@@ -28,6 +28,7 @@ __all__ = [
 ]
 
 _Floats = NDArray[np.float64]
+_Column: TypeAlias = "pa.Array[Any]"
 
 WITH_UNCERTAINTY: Final = (
     "hardness",
@@ -39,28 +40,26 @@ WITH_UNCERTAINTY: Final = (
     "stored_energy_j_per_mol",
     "stored_energy_j_per_g",
 )
+_SPREAD: Final = ("u_own", "u_shared", "u", "lower", "upper")
 
 
 def unit_of(quantity: str) -> str:
-    """Unit in which a quantity is published (UCUM)."""
+    """Give the unit in which a quantity is published (UCUM)."""
     return contracts.load("out/coupons").field(quantity).unit or "1"
 
 
 def coupons_table(
-    method: Method,
-    coupons: Coupons,
-    reduced: Reduced,
+    batch: Gathered,
     rows: slice,
     figures: Mapping[str, Figures],
     test_strain: _Floats,
-    bits: NDArray[np.uint64],
-    rest: Mapping[str, pa.Array],
+    rest: Mapping[str, _Column],
 ) -> pa.Table:
     """Build a slice of ``coupons.csv``.
 
     Parameters
     ----------
-    method, coupons, reduced
+    batch : Gathered
         The batch.
     rows : slice
         Which coupons, n of them.
@@ -68,8 +67,6 @@ def coupons_table(
         Their quantities, emptied where errors say so. [SI]
     test_strain : ndarray, shape (n,)
         Plastic strain that the test added to the state. [1]
-    bits : ndarray of uint64, shape (n,)
-        Their findings.
     rest : mapping of str to pyarrow.Array
         Columns that the judge and the records fill.
 
@@ -79,19 +76,17 @@ def coupons_table(
         In the contract's order and units.
     """
     n = test_strain.shape[0]
-
-    def same(text: str) -> pa.Array:
-        return pa.repeat(pa.scalar(text, pa.string()), n)
-
+    method, coupons, reduced = batch.method, batch.coupons, batch.reduced
+    bits = batch.findings.bits[rows]
     label = force_labels(reduced.scale[rows], reduced.force[rows], reduced.ball[rows])
     gone = pa.array(emptied("hardness_scale", bits))
-    columns: dict[str, pa.Array] = {
-        "batch_id": same(method.batch_id),
+    columns: dict[str, _Column] = {
+        "batch_id": pa.repeat(method.batch_id, n),
         "coupon_id": coupons.ids[rows],
         "lot_id": coupons.lot_ids[rows],
         "condition": coupons.conditions[rows],
-        "material": same(method.material),
-        "route": same(method.laws.route),
+        "material": pa.repeat(method.material, n),
+        "route": pa.repeat(method.laws.route, n),
         "test_strain": pa.array(np.where(emptied("test_strain", bits), np.nan, test_strain)),
         "readings_used": pa.array(reduced.used[rows]),
         "hardness_scale": pc.if_else(gone, pa.scalar(None, pa.string()), label),
@@ -100,16 +95,17 @@ def coupons_table(
     for name in QUANTITIES:
         columns[name] = _published(name, figures[name].result.value if name in figures else None, n)
     for name in WITH_UNCERTAINTY:
-        found = figures.get(name)
-        for prefix, values in _spread_columns(found).items():
-            columns[f"{prefix}_{name}"] = _published(name, values, n)
+        columns |= _published_spread(name, figures.get(name), n)
     return pa.table({name: columns[name] for name in contracts.load("out/coupons").columns})
 
 
-def quantities_table(
-    method: Method, coupons: Coupons, rows: slice, figures: Mapping[str, Figures]
-) -> pa.Table:
+def quantities_table(batch: Gathered, rows: slice, figures: Mapping[str, Figures]) -> pa.Table:
     """Build a slice of ``quantities.csv``: every quantity of every coupon on a row of its own.
+
+    Parameters
+    ----------
+    batch, rows, figures
+        As for `coupons_table`.
 
     Returns
     -------
@@ -117,33 +113,29 @@ def quantities_table(
         Coupon by coupon, n times the number of quantities rows.
     """
     names = [name for name in QUANTITIES if name in figures]
-    n = len(coupons.ids[rows])
+    ids = batch.coupons.ids[rows]
+    n = len(ids)
 
-    def interleaved(columns: Sequence[_Floats | None]) -> pa.Array:
+    def interleaved(columns: Sequence[_Floats | None]) -> pa.DoubleArray:
         filled = [_published(q, c, n) for q, c in zip(names, columns, strict=True)]
-        return pa.array(np.stack([c.to_numpy() for c in filled], axis=1).ravel())
+        return pa.array(_flat([c.to_numpy() for c in filled]), pa.float64())
 
     spread = [_spread_columns(figures[name]) for name in names]
-    freedom = [np.where(np.isinf(x), np.nan, x) for x in _freedom(figures, names)]
     return pa.table(
         {
-            "coupon_id": _each(coupons.ids[rows], len(names)),
+            "coupon_id": _each(ids, len(names)),
             "quantity": pa.array(names * n, pa.string()),
             "value": interleaved([figures[q].result.value for q in names]),
             "unit": pa.array([unit_of(q) for q in names] * n, pa.string()),
-            **{
-                key: interleaved([columns[key] for columns in spread])
-                for key in ("u_own", "u_shared", "u", "lower", "upper")
-            },
-            "coverage": pa.array(np.full(n * len(names), method.coverage)),
-            "degrees_of_freedom": pa.array(np.stack(freedom, axis=1).ravel()),
+            **{key: interleaved([columns[key] for columns in spread]) for key in _SPREAD},
+            "coverage": pa.array(np.full(n * len(names), batch.method.coverage)),
+            "degrees_of_freedom": pa.array(_flat([_freedom(figures[name]) for name in names])),
         }
     )
 
 
 def budget_table(
-    method: Method,
-    coupons: Coupons,
+    batch: Gathered,
     rows: slice,
     figures: Mapping[str, Figures],
     spreads: Mapping[str, Spread],
@@ -153,8 +145,8 @@ def budget_table(
 
     Parameters
     ----------
-    method, coupons, rows, figures
-        As above.
+    batch, rows, figures
+        As for `coupons_table`.
     spreads : mapping of str to Spread
         Every input's uncertainty. [SI]
     own_values : mapping of str to ndarray, shape (n,)
@@ -163,59 +155,42 @@ def budget_table(
     Returns
     -------
     pyarrow.Table
-        By coupon, then quantity, then input; only where there is a value.
+        By coupon, then quantity, then input; only where there is a value that depends on it.
     """
+    method = batch.method
     pairs = [
         (quantity, source)
         for quantity in QUANTITIES
         if quantity in figures
         for source in figures[quantity].result.sensitivities
     ]
-    n = len(coupons.ids[rows])
-    parts: dict[str, list[_Floats]] = {
-        key: []
-        for key in ("value", "u", "sensitivity", "contribution", "freedom", "share")
-    }
-    units_in: list[str] = []
+    ids = batch.coupons.ids[rows]
+    n = len(ids)
+    parts: dict[str, list[_Floats]] = {key: [] for key in _BUDGET_NUMBERS}
     for quantity, source in pairs:
-        unit_in, unit_out = _input_unit(method, source), unit_of(quantity)
-        units_in.append(unit_in)
-        spread = spreads[source]
-        c = np.broadcast_to(figures[quantity].result.sensitivities[source], (n,))
-        known = np.isfinite(figures[quantity].result.value)
-        c = np.where(known, c, np.nan)
-        u = np.broadcast_to(spread.u, (n,))
         value = own_values.get(source)
         value = np.full(n, method.inputs[source].value) if value is None else value
-        freedom = np.broadcast_to(spread.degrees_of_freedom, (n,))
-        with np.errstate(invalid="ignore", divide="ignore"):
-            share = (c * u / figures[quantity].combined.u) ** 2
-        parts["value"].append(units.from_si(value, unit_in))
-        parts["u"].append(u / _size(unit_in))
-        parts["sensitivity"].append(c * _size(unit_in) / _size(unit_out))
-        parts["contribution"].append(c * u / _size(unit_out))
-        parts["freedom"].append(np.where(np.isinf(freedom), np.nan, freedom))
-        parts["share"].append(share)
-    flat = {key: np.stack(columns, axis=1).ravel() for key, columns in parts.items()}
-    keep = np.flatnonzero(np.isfinite(flat["sensitivity"]))
-    shared = ["shared" if spreads[s].shared else "own" for _, s in pairs]
-    table = pa.table(
-        {
-            "coupon_id": _each(coupons.ids[rows], len(pairs)),
-            "quantity": pa.array([q for q, _ in pairs] * n, pa.string()),
-            "input": pa.array([s for _, s in pairs] * n, pa.string()),
-            "value": pa.array(flat["value"]),
-            "unit": pa.array(units_in * n, pa.string()),
-            "u": pa.array(flat["u"]),
-            "sensitivity": pa.array(flat["sensitivity"]),
-            "contribution": pa.array(flat["contribution"]),
-            "contribution_unit": pa.array([unit_of(q) for q, _ in pairs] * n, pa.string()),
-            "own_or_shared": pa.array(shared * n, pa.string()),
-            "degrees_of_freedom": pa.array(flat["freedom"]),
-            "share_of_u2": pa.array(flat["share"]),
-        }
-    )
-    return table.take(pa.array(keep))
+        unit_in, unit_out = _input_unit(method, source), unit_of(quantity)
+        figure, spread = figures[quantity], spreads[source]
+        line = _budget_numbers(value, spread, figure, source, unit_in, unit_out)
+        for key, column in line.items():
+            parts[key].append(column)
+    flat = {key: _flat(columns) for key, columns in parts.items()}
+    texts = {
+        "quantity": [quantity for quantity, _ in pairs],
+        "input": [source for _, source in pairs],
+        "unit": [_input_unit(method, source) for _, source in pairs],
+        "contribution_unit": [unit_of(quantity) for quantity, _ in pairs],
+        "own_or_shared": ["shared" if spreads[source].shared else "own" for _, source in pairs],
+    }
+    columns: dict[str, _Column] = {
+        "coupon_id": _each(ids, len(pairs)),
+        **{key: pa.array(each * n, pa.string()) for key, each in texts.items()},
+        **{key: pa.array(column) for key, column in flat.items()},
+    }
+    table = pa.table({name: columns[name] for name in contracts.load("out/budget").columns})
+    acts = np.isfinite(flat["sensitivity"]) & (flat["sensitivity"] != 0.0)
+    return table.take(pa.array(np.flatnonzero(acts), pa.int64()))
 
 
 def lots_table(
@@ -243,7 +218,7 @@ def lots_table(
         In the contract's order and units.
     """
     n = len(keys)
-    columns: dict[str, pa.Array] = {
+    columns: dict[str, _Column] = {
         "lot_id": pa.array([lot for lot, _ in keys], pa.string()),
         "condition": pa.array([condition for _, condition in keys], pa.string()),
         **{name: pa.array(count) for name, count in counts.items()},
@@ -252,37 +227,70 @@ def lots_table(
     for name in WITH_UNCERTAINTY:
         mean = means.get(name)
         columns[f"mean_{name}"] = _published(name, None if mean is None else mean.value, n)
-        for prefix, values in _spread_columns(mean).items():
-            columns[f"{prefix}_{name}"] = _published(name, values, n)
+        columns |= _published_spread(name, mean, n)
     return pa.table({name: columns[name] for name in contracts.load("out/lots").columns})
+
+
+_BUDGET_NUMBERS: Final = (
+    "value",
+    "u",
+    "sensitivity",
+    "contribution",
+    "degrees_of_freedom",
+    "share_of_u2",
+)
+
+
+def _budget_numbers(
+    value: _Floats, spread: Spread, figure: Figures, source: str, unit_in: str, unit_out: str
+) -> dict[str, _Floats]:
+    """Give the numbers of one input of one quantity, n coupons each."""
+    size_in, size_out = _size(unit_in), _size(unit_out)
+    shape = value.shape
+    c = np.broadcast_to(figure.result.sensitivities[source], shape)
+    c = np.where(np.isfinite(figure.result.value), c, np.nan)
+    u = np.broadcast_to(spread.u, shape)
+    freedom = np.broadcast_to(spread.degrees_of_freedom, shape)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        share = (c * u / figure.combined.u) ** 2
+    numbers = (
+        units.from_si(value, unit_in),
+        u / size_in,
+        c * size_in / size_out,
+        c * u / size_out,
+        np.where(np.isinf(freedom), np.nan, freedom),
+        share,
+    )
+    return dict(zip(_BUDGET_NUMBERS, numbers, strict=True))
 
 
 def _spread_columns(x: Figures | LotMean | None) -> dict[str, _Floats | None]:
     if x is None:
-        return dict.fromkeys(("u_own", "u_shared", "u", "lower", "upper"))
+        return dict.fromkeys(_SPREAD)
+    c = x.combined
+    return dict(zip(_SPREAD, (c.u_own, c.u_shared, c.u, x.ends.lower, x.ends.upper), strict=True))
+
+
+def _published_spread(quantity: str, x: Figures | LotMean | None, n: int) -> dict[str, _Column]:
+    """Give the columns of uncertainties and interval ends, by name."""
     return {
-        "u_own": x.combined.u_own,
-        "u_shared": x.combined.u_shared,
-        "u": x.combined.u,
-        "lower": x.ends.lower,
-        "upper": x.ends.upper,
+        f"{prefix}_{quantity}": _published(quantity, values, n)
+        for prefix, values in _spread_columns(x).items()
     }
 
 
-def _freedom(figures: Mapping[str, Figures], names: Sequence[str]) -> list[_Floats]:
-    return [
-        np.where(
-            np.isfinite(figures[q].combined.u), figures[q].combined.degrees_of_freedom, np.nan
-        )
-        for q in names
-    ]
+def _freedom(x: Figures) -> _Floats:
+    """Give effective degrees of freedom, NaN where they are infinite or u is not known."""
+    nu = x.combined.degrees_of_freedom
+    return np.where(np.isfinite(x.combined.u) & ~np.isinf(nu), nu, np.nan)
 
 
-def _published(quantity: str, values: _Floats | None, n: int) -> pa.Array:
-    """A quantity's values, or its uncertainty: quantities have units without offset."""
+def _published(quantity: str, values: _Floats | None, n: int) -> pa.DoubleArray:
+    """Convert a quantity's values, or its uncertainty: quantities have units without offset."""
     if values is None:
-        return pa.array(np.full(n, np.nan))
-    return pa.array(units.from_si(np.broadcast_to(values, (n,)), unit_of(quantity)))
+        return pa.array(np.full(n, np.nan), pa.float64())
+    shown = units.from_si(np.broadcast_to(values, (n,)), unit_of(quantity))
+    return pa.array(shown, pa.float64())
 
 
 def _input_unit(method: Method, source: str) -> str:
@@ -294,9 +302,14 @@ def _input_unit(method: Method, source: str) -> str:
 
 
 def _size(unit: str) -> float:
-    """SI size of one unit, any offset aside."""
+    """Give the size of one unit in SI, any offset aside."""
     return float(units.to_si(1.0, unit) - units.to_si(0.0, unit))
 
 
-def _each(ids: pa.StringArray, times: int) -> pa.Array:
-    return ids.take(pa.array(np.repeat(np.arange(len(ids)), times)))
+def _flat(columns: Sequence[_Floats]) -> _Floats:
+    """Lay columns of shape (n,) side by side and read them row by row."""
+    return np.stack(columns, axis=1).ravel()
+
+
+def _each(ids: pa.StringArray, times: int) -> pa.StringArray:
+    return ids.take(pa.array(np.repeat(np.arange(len(ids)), times), pa.int64()))

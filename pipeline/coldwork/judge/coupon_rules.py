@@ -16,7 +16,7 @@ from coldwork.inputs.method import Method
 from coldwork.intake.coupons import Coupons
 from coldwork.rules import coupon as rules
 from coldwork.rules.findings import Findings
-from coldwork.rules.forces import SCALES
+from coldwork.rules.forces import SECTIONS
 from coldwork.rules.rule import Rule
 from coldwork.rules.spacing import least_thickness_ratio, too_thin
 
@@ -121,16 +121,15 @@ def judge_scales(findings: Findings, method: Method, scale: NDArray[np.int8]) ->
     """
     if method.laws.route != "indent":
         return
-    for code, name in enumerate(SCALES):
-        prefix = "indentation" if name == "HV" else f"indentation.{name}"
-        strains = (f"{prefix}.representative_strain", f"{prefix}.strain_ratio")
-        able = f"{prefix}.constraint_factor" in method.inputs
+    for code, section in enumerate(SECTIONS):
+        strains = (f"{section}.representative_strain", f"{section}.strain_ratio")
+        able = f"{section}.constraint_factor" in method.inputs
         if method.laws.unwinding:
             able = able and any(key in method.inputs for key in strains)
         if not able:
             where = np.flatnonzero(scale == code)
             findings.add(
-                rules.SCALE_WITHOUT_CONSTANTS, where, detail=f"the sheet has no [{prefix}] for it"
+                rules.SCALE_WITHOUT_CONSTANTS, where, detail=f"the sheet has no [{section}] for it"
             )
 
 

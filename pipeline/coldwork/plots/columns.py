@@ -65,7 +65,8 @@ def aligned(ids: Sequence[str], wanted: Sequence[str]) -> NDArray[np.intp]:
 def runs(values: Sequence[object]) -> list[tuple[int, int]]:
     """Give the stretches of equal neighbours as (first, one past the last)."""
     starts = [i for i in range(len(values)) if i == 0 or values[i] != values[i - 1]]
-    return list(zip(starts, [*starts[1:], len(values)], strict=True))
+    stops = [*starts[1:], len(values)] if starts else []
+    return list(zip(starts, stops, strict=True))
 
 
 def _absent(cell: object) -> bool:

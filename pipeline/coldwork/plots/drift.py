@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
-from coldwork.plots.names import counted, label_lines, listed, told_apart, width
+from coldwork.plots.names import counted, label_lines, listed, signed_percent, told_apart, width
 from coldwork.plots.quantity import Scale, robust_limits
 from coldwork.plots.rows import Rows
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
@@ -147,7 +147,6 @@ def _course(
     chosen = readings.iloc[order]
     panel, testers = _indexed(texts(chosen, "tester"), _MOST_TESTERS, "tester")
     mark, operators = _indexed(texts(chosen, "operator"), len(_OPERATORS) + 1, "operator")
-    testers = [f"tester {name}" if name else name for name in testers]
     number = numbers(chosen, "reading_no")
     course = _Course(
         x, clock, sitting, away[order], place[order], number, panel, mark, testers, operators
@@ -166,6 +165,8 @@ def _indexed(names: list[str], most: int, noun: str) -> tuple[NDArray[np.intp], 
     many = len(counts) > most
     kept = sorted(name for name, _ in counts.most_common(most - 1 if many else most))
     labels = told_apart(kept, Sizes.words, 2.2)
+    if noun == "tester":
+        labels = [f"tester {label}" if label else "" for label in labels]
     if many:
         labels.append(f"{len(counts) - len(kept)} other {noun}s")
     places = {name: i for i, name in enumerate(kept)}
@@ -175,7 +176,7 @@ def _indexed(names: list[str], most: int, noun: str) -> tuple[NDArray[np.intp], 
 def _beyond(frames: Frames, course: _Course, which: NDArray[np.bool_]) -> str:
     labels = Rows.of(frames).labels
     told = [
-        f"{labels[i]} no. {n:.0f} at {x:+.1f} %"
+        f"{labels[i]} no. {n:.0f} at {signed_percent(x)}"
         for i, n, x in zip(
             course.coupon[which], course.number[which], course.away[which], strict=True
         )

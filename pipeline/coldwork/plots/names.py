@@ -20,6 +20,7 @@ __all__ = [
     "label_lines",
     "listed",
     "shown",
+    "signed_percent",
     "told_apart",
     "width",
     "wrapped",
@@ -173,6 +174,11 @@ def wrapped(text: str, size: float, room: float) -> list[str]:
 def counted(n: int, noun: str) -> str:
     """Give a number with its noun, such as `1 coupon` or `5 coupons`."""
     return f"{n} {noun}" if n == 1 else f"{n} {noun}s"
+
+
+def signed_percent(x: float) -> str:
+    """Give a deviation in percent with its sign, such as `−5.1 %`."""
+    return f"{x:+.1f} %".replace("-", "−")
 
 
 def listed(items: Sequence[str], most: int = 8) -> str:

@@ -31,6 +31,9 @@ _SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 _WIDE = 50.0  # largest over middle value from which an axis is logarithmic
 
 
+_FENCE = 4.0  # about six standard deviations of a normal distribution
+
+
 @dataclass(frozen=True)
 class Scale:
     """The axis of one quantity, the same on every page.
@@ -114,7 +117,8 @@ def scale_of(
     factor = 10.0**-power
     on_axis = everything * factor if everything.size else positive
     low, high = _padded(float(on_axis.min()), float(on_axis.max()))
-    if zero and 0.0 <= on_axis.min() < 0.4 * on_axis.max():
+    near = zero and on_axis.min() < 0.4 * on_axis.max()
+    if on_axis.min() >= 0.0 and (near or low < 0.0):
         low = 0.0
     unit = f"10{_superscript(power)} {unit}".strip() if power else unit
     return Scale(f"{title} [{unit}]" if unit else title, factor, low, high)
@@ -139,8 +143,8 @@ def robust_limits(values: FloatArray, always: FloatArray) -> tuple[float, float]
     Parameters
     ----------
     values : ndarray, shape (n,)
-        Points; what lies more than three times as far out as 95 in 100 of them
-        is to be drawn at the edge.
+        Points; what lies farther out from the middle half of them than four times
+        its width is to be drawn at the edge.
     always : ndarray, shape (m,)
         What must lie inside.
 
@@ -152,9 +156,10 @@ def robust_limits(values: FloatArray, always: FloatArray) -> tuple[float, float]
     good = values[np.isfinite(values)]
     must = always[np.isfinite(always)]
     if good.size:
-        low, middle, high = np.percentile(good, [2.5, 50.0, 97.5])
-        inside = (good >= middle - 3.0 * (middle - low)) & (good <= middle + 3.0 * (high - middle))
-        must = np.concatenate([must, good[inside], [low, high]])
+        first, third = np.percentile(good, [25.0, 75.0])
+        room = _FENCE * (third - first) or np.inf
+        inside = (good >= first - room) & (good <= third + room)
+        must = np.concatenate([must, good[inside]])
     if not must.size:
         return 0.0, 1.0
     return _padded(float(must.min()), float(must.max()))

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, numbers, texts
 from coldwork.plots.context import Context
-from coldwork.plots.names import counted, listed
+from coldwork.plots.names import counted, listed, signed_percent
 from coldwork.plots.quantity import Scale, heading, robust_limits, scale_of
 from coldwork.plots.rows import MOST_COUPONS, Page, Panel, Rows, Strip, row_pages
 from coldwork.plots.sheet import Sheet
@@ -159,7 +159,7 @@ class _Subject:
         ]
         if len(away):
             told = [
-                f"{self.rows.labels[i]} no. {n:.0f} at {x:+.1f} %"
+                f"{self.rows.labels[i]} no. {n:.0f} at {signed_percent(x)}"
                 for i, n, x in zip(beyond.coupon, beyond.number, away, strict=True)
             ]
             notes.append(f"Beyond the axis: {listed(told, 6)}.")

@@ -30,7 +30,7 @@ _HEIGHTS = (
     (20, 0.23),
     (_ROWS_A_PAGE, 0.18),
 )  # of a row, up to so many [inch]
-_NAME_ROOM, _GROUP_ROOM, _STRIP_ROOM = 2.0, 1.3, 2.2  # at most [inch]
+_NAME_ROOM, _GROUP_ROOM, _STRIP_ROOM = 2.0, 1.3, 2.5  # at most [inch]
 _GAP = 0.14  # between neighbours in a row [inch]
 
 

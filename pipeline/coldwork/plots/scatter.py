@@ -113,7 +113,8 @@ class _Data:
         for n, s, left in zip(self.count, self.s, self.left, strict=True):
             count = "none" if np.isnan(n) or n == 0 else f"{n:.0f}"
             told = f", {s:.2g} %, left the pool" if left else ""
-            words.append(f"{count}{told}" if np.isfinite(s) or n != 1 else f"{count}, no scatter")
+            lacking = "" if np.isfinite(s) or count == "none" else ", no scatter"
+            words.append(f"{count}{told}{lacking}")
         return words
 
     def key(self, high: float) -> list[tuple[Artist, str]]:

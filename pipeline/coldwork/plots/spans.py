@@ -210,7 +210,7 @@ def why_missing(frames: Frames, ids: Sequence[str], column: str, spans: Spans) -
     Returns
     -------
     list of str, length n
-        A rule in words, or empty where nothing is missing.
+        The rule's id, `no value`, `no interval`, or empty where nothing is missing.
     """
     flags = frame_of(frames, "flags")
     found: list[list[str]] = [
@@ -232,7 +232,7 @@ def why_missing(frames: Frames, ids: Sequence[str], column: str, spans: Spans) -
     ):
         if np.isnan(value):
             rules.sort(key=lambda rule: _GRAVEST.get(rule, len(_GRAVEST)))
-            words.append(rules[0].replace("-", " ") if rules else "no value")
+            words.append(rules[0] if rules else "no value")
         else:
             words.append("no interval" if np.isnan(lower) and np.isnan(upper) else "")
     return words

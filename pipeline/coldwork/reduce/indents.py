@@ -1,11 +1,12 @@
 """Indents of whole coupons to mean hardness, with the rules that look at readings."""
 
 from collections.abc import Callable
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
-import pyarrow.compute as pc
 import pyarrow as pa
+import pyarrow.compute as pc
 from numpy.typing import NDArray
 
 from coldwork import units
@@ -34,6 +35,30 @@ _Floats = NDArray[np.float64]
 _SAME: Final = 1e-9  # two nominal forces, or balls, are one within this [1]
 
 
+@dataclass(frozen=True)
+class _Indents:
+    """A stretch of n indents with what each was made with.
+
+    Attributes
+    ----------
+    readings : Readings
+        Whole coupons.
+    scale : ndarray of int8, shape (n,)
+        0 HV, 1 HBW, 2 HK.
+    force, ball : ndarray, shape (n,)
+        Test force and ball diameter, NaN where there is none. [N], [m]
+    """
+
+    readings: Readings
+    scale: NDArray[np.int8]
+    force: _Floats
+    ball: _Floats
+
+    def lengths(self, column: str, unit: str = "mm") -> _Floats:
+        """Give a column of lengths in metre, NaN where absent; shape (n,)."""
+        return units.to_si(self.readings.column(column), unit)
+
+
 def reduce_indents(
     readings: Readings, method: Method, reduced: Reduced, marks: Marks
 ) -> ReadingResults:
@@ -55,12 +80,13 @@ def reduce_indents(
     ReadingResults
         What each reading came to.
     """
-    scale = _scale_codes(readings)
     force = units.to_si(readings.column("force_n"), "N")
     ball = units.to_si(readings.column("ball_mm"), "mm")
-    hardness, diagonal = _hardness(readings, scale, force, ball, marks)
+    scale = _scale_codes(readings)
+    indents = _Indents(readings, scale, force, ball)
+    hardness, diagonal = _hardness(indents, marks)
     nominal = nominal_force(scale, force, ball)
-    _note_readings(readings, method, marks, scale, force, ball, diagonal)
+    _note_readings(indents, diagonal, method, marks)
     value, tester = corrected(readings, method, hardness)
     note_testers(readings, method, tester, marks)
     starts = readings.starts
@@ -83,10 +109,11 @@ def reduce_indents(
     reduced.force[rows] = nominal[starts]
     reduced.ball[rows] = np.where(scale[starts] == HBW, ball[starts], np.nan)
     reduced.mean_diagonal[rows] = np.add.reduceat(diagonal, starts) / count
-    for name, share in reduced.shares.items():
-        part = np.where(tester == list(reduced.shares).index(name), value, 0.0)
+    reduced.applied_force[rows] = np.add.reduceat(force, starts) / count
+    for i, share in enumerate(reduced.shares.values()):
+        part = np.where(tester == i, value, 0.0)
         share[rows] = np.add.reduceat(part, starts) / (mean * count)
-    _refuse_mixtures(reduced, marks, rows, starts, count, scale, nominal, ball)
+    _refuse_mixtures(indents, nominal, reduced, marks)
     return ReadingResults(
         scale=scale,
         force=force,
@@ -106,19 +133,13 @@ def _scale_codes(readings: Readings) -> NDArray[np.int8]:
     return codes.to_numpy(zero_copy_only=False).astype(np.int8)
 
 
-def _hardness(
-    readings: Readings,
-    scale: NDArray[np.int8],
-    force: _Floats,
-    ball: _Floats,
-    marks: Marks,
-) -> tuple[_Floats, _Floats]:
-    """Hardness and mean diagonal of each reading, from diagonals where there are any. [Pa], [m]"""
-    d1 = units.to_si(readings.column("d1_um"), "um")
-    d2 = units.to_si(readings.column("d2_um"), "um")
-    given = units.to_si(readings.column("hardness"), "kgf/mm2")
-    hardness = np.full(len(readings), np.nan)
-    diagonal = np.full(len(readings), np.nan)
+def _hardness(indents: _Indents, marks: Marks) -> tuple[_Floats, _Floats]:
+    """Give hardness and mean diagonal of each reading in SI, from diagonals where it has them."""
+    scale, force, ball = indents.scale, indents.force, indents.ball
+    d1, d2 = indents.lengths("d1_um", "um"), indents.lengths("d2_um", "um")
+    given = units.to_si(indents.readings.column("hardness"), "kgf/mm2")
+    hardness = np.full(scale.shape, np.nan)
+    diagonal = np.full(scale.shape, np.nan)
     for code in np.unique(scale):
         on = scale == code
         whole = bool(on.all())
@@ -143,7 +164,7 @@ def _hardness(
 def _forms(
     code: int, force: _Floats, ball: _Floats
 ) -> tuple[Callable[[_Floats, _Floats], _Floats], Callable[[_Floats], _Floats]]:
-    """The scale's hardness from two lengths, and its mean diagonal from the hardness."""
+    """Give the scale's hardness from two lengths, and its mean diagonal from the hardness."""
     if code == HBW:
         return (
             lambda a, b: brinell_hardness(force, a, b, ball),
@@ -154,25 +175,18 @@ def _forms(
     return lambda a, b: vickers_hardness(force, a, b), lambda h: vickers_diagonal(force, h)
 
 
-def _note_readings(
-    readings: Readings,
-    method: Method,
-    marks: Marks,
-    scale: NDArray[np.int8],
-    force: _Floats,
-    ball: _Floats,
-    diagonal: _Floats,
-) -> None:
-    marks.note(rules.FORCE_NOT_NOMINAL, *force_not_nominal(scale, force, ball))
+def _note_readings(indents: _Indents, diagonal: _Floats, method: Method, marks: Marks) -> None:
+    readings = indents.readings
+    fired = force_not_nominal(indents.scale, indents.force, indents.ball)
+    marks.note(rules.FORCE_NOT_NOMINAL, *fired)
     marks.note(rules.SMALL_DIAGONAL, *rules.too_small(diagonal))
     if "edge_mm" in readings.floats:
-        edge = units.to_si(readings.column("edge_mm"), "mm")
         ratio = method.edge_distance_d
-        marks.note(rules.EDGE_DISTANCE, *edge_too_near(edge, diagonal, ratio), ratio)
+        fired = edge_too_near(indents.lengths("edge_mm"), diagonal, ratio)
+        marks.note(rules.EDGE_DISTANCE, *fired, ratio)
     if "x_mm" in readings.floats and "y_mm" in readings.floats:
-        x = units.to_si(readings.column("x_mm"), "mm")
-        y = units.to_si(readings.column("y_mm"), "mm")
         ratio = method.centre_distance_d
+        x, y = indents.lengths("x_mm"), indents.lengths("y_mm")
         fired = centres_too_near(x, y, diagonal, readings.coupon, ratio)
         marks.note(rules.CENTRE_DISTANCE, *fired, ratio)
     if "dwell_s" in readings.floats:
@@ -182,17 +196,11 @@ def _note_readings(
         marks.note(rules.TEST_TEMPERATURE, *rules.temperature_outside(kelvin))
 
 
-def _refuse_mixtures(
-    reduced: Reduced,
-    marks: Marks,
-    rows: NDArray[np.int32],
-    starts: NDArray[np.intp],
-    count: NDArray[np.intp],
-    scale: NDArray[np.int8],
-    nominal: _Floats,
-    ball: _Floats,
-) -> None:
+def _refuse_mixtures(indents: _Indents, nominal: _Floats, reduced: Reduced, marks: Marks) -> None:
     """Take the mean away where readings of one coupon have no common one."""
+    readings, scale = indents.readings, indents.scale
+    starts = readings.starts
+    count = np.diff(np.append(starts, len(readings)))
 
     def differs(x: NDArray[np.generic], tolerance: float) -> NDArray[np.bool_]:
         first = np.repeat(x[starts], count).astype(float)
@@ -201,13 +209,13 @@ def _refuse_mixtures(
         return np.logical_or.reduceat(apart, starts)
 
     scales = differs(scale, 0.0)
-    sized = np.where(scale == HBW, ball, 0.0)
+    sized = np.where(scale == HBW, indents.ball, 0.0)
     forces = (differs(nominal, _SAME) | differs(sized, _SAME)) & ~scales
     for rule, mixed in (
         (coupon_rules.MIXED_SCALES, scales),
         (coupon_rules.MIXED_FORCES, forces),
     ):
-        bad = rows[mixed]
+        bad = readings.coupon[starts][mixed]
         if bad.size:
             marks.note_coupons(rule, bad)
             reduced.mean[bad] = np.nan

@@ -1,20 +1,17 @@
 """Findings on the readings of a stretch, told to the batch and kept with each reading."""
 
 from collections.abc import Sequence
-from typing import Final
 
 import numpy as np
 import pyarrow as pa
 from numpy.typing import NDArray
 
 from coldwork.reduce.readings import Readings
-from coldwork.rules import RULES
+from coldwork.rules.bits import bit_of
 from coldwork.rules.findings import Findings
 from coldwork.rules.rule import Rule
 
 __all__ = ["Marks"]
-
-_BIT: Final = {rule.id: np.uint64(1) << np.uint64(i) for i, rule in enumerate(RULES)}
 
 
 class Marks:
@@ -64,7 +61,7 @@ class Marks:
         rows = np.flatnonzero(fired)
         if not rows.size:
             return
-        self.bits[rows] |= _BIT[rule.id]
+        self.bits[rows] |= bit_of(rule)
         r = self._readings
         self._findings.add(
             rule,
@@ -72,7 +69,7 @@ class Marks:
             reading_no=r.number[rows],
             value=None if value is None else value[rows],
             limit=limit[rows] if isinstance(limit, np.ndarray) and limit.ndim else limit,
-            file=pa.array(self._files, pa.string()).take(pa.array(r.file[rows])),
+            file=pa.array(self._files, pa.string()).take(pa.array(r.file[rows], pa.int64())),
             line=r.lines[rows],
         )
 

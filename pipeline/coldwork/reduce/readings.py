@@ -8,6 +8,7 @@ carried over to the next one, a coupon that comes back later stops the stream
 
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
+from typing import Final
 
 import numpy as np
 import pyarrow as pa
@@ -17,7 +18,7 @@ from coldwork.intake.readings import ReadingBlock
 
 __all__ = ["Readings", "ScatteredCoupons", "regrouped", "whole_coupons"]
 
-_SLICE_ROWS = 1 << 18  # of a regrouped table
+_SLICE_ROWS: Final = 1 << 18  # readings that are handed on at once when regrouped
 
 
 class ScatteredCoupons(Exception):  # noqa: N818 - a signal between two stages, not a fault
@@ -60,17 +61,17 @@ class Readings:
 
     @property
     def starts(self) -> NDArray[np.intp]:
-        """Where each coupon begins; shape (coupons,)."""
+        """Where each coupon begins, shape (coupons,)."""
         return np.flatnonzero(_changes(self.coupon))
 
     def column(self, name: str) -> NDArray[np.float64]:
-        """Give a column of numbers, all NaN if no file had it. [contract's unit]"""
+        """Give a column of numbers in the contract's unit, all NaN if no file had it."""
         found = self.floats.get(name)
         return np.full(len(self), np.nan) if found is None else found
 
     def take(self, rows: NDArray[np.intp]) -> "Readings":
         """Pick rows, in the order given."""
-        index = pa.array(rows)
+        index = pa.array(rows, pa.int64())
         return Readings(
             self.coupon[rows],
             self.number[rows],

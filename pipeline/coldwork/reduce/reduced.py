@@ -1,6 +1,6 @@
 """What the readings of each coupon come to: the table that all later stages work on."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Self
 
 import numpy as np
@@ -30,8 +30,15 @@ class Reduced:
         Hardness scale, -1 where there is none.
     force, ball, mean_diagonal : ndarray, shape (n,)
         Nominal force, ball diameter, mean diagonal or diameter. [N], [m], [m]
+    applied_force : ndarray, shape (n,)
+        Mean of the forces as applied. [N]
     shares : dict of str to ndarray, shape (n,)
         Share of the mean that was read on each tester with a calibration. [1]
+    own_u : ndarray, shape (n,), or None
+        Standard uncertainty of the mean where a curve gave it, NaN elsewhere; None
+        where no curve did. [Pa]
+    machine : dict of str to ndarray, shape (n,)
+        Derivative of such a mean by the machine's inputs. [Pa per SI of the input]
     """
 
     used: NDArray[np.int64]
@@ -43,7 +50,10 @@ class Reduced:
     force: NDArray[np.float64]
     ball: NDArray[np.float64]
     mean_diagonal: NDArray[np.float64]
+    applied_force: NDArray[np.float64]
     shares: dict[str, NDArray[np.float64]]
+    own_u: NDArray[np.float64] | None = None
+    machine: dict[str, NDArray[np.float64]] = field(default_factory=dict)
 
     @classmethod
     def empty(cls, coupons: int, testers: tuple[str, ...]) -> Self:
@@ -62,6 +72,7 @@ class Reduced:
             force=blank(),
             ball=blank(),
             mean_diagonal=blank(),
+            applied_force=blank(),
             shares={name: np.zeros(coupons) for name in testers},
         )
 

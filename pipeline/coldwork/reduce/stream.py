@@ -1,12 +1,15 @@
 """The last stage that streams: blocks of readings to one row per coupon."""
 
-from collections.abc import Iterable, Sequence
-from typing import Final, Protocol
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import Final, Protocol, cast
 
+import numpy as np
 import pyarrow as pa
 
 from coldwork.inputs.method import Method
 from coldwork.intake.coupons import Coupons
+from coldwork.intake.files import TableFiles
 from coldwork.intake.readings import ReadingStream
 from coldwork.intake.set_aside import SetAside
 from coldwork.reduce.flow import reduce_flow
@@ -17,9 +20,9 @@ from coldwork.reduce.reduced import ReadingResults, Reduced
 from coldwork.rules.findings import Findings
 from coldwork.rules.reasons import REPEATED_READING
 
-__all__ = ["Keep", "reduce_batch"]
+__all__ = ["Byproducts", "Keep", "put_repeats_aside", "reduce_batch"]
 
-_NUMBER: Final = {"indents": "indent_no", "flow_stress": "reading_no"}
+_NUMBER: Final = {"indents": "indent_no", "flow_stress": "reading_no", "curves": "point_no"}
 
 
 class Keep(Protocol):
@@ -32,15 +35,34 @@ class Keep(Protocol):
         """Keep a stretch of readings."""
 
 
+@dataclass(frozen=True)
+class Byproducts:
+    """What comes of the readings beside the coupons' rows.
+
+    Attributes
+    ----------
+    findings : Findings
+        What was found on readings and their coupons.
+    set_aside : SetAside
+        Readings that could not be used.
+    keep : Keep or None
+        Where used readings are kept, if they are.
+    """
+
+    findings: Findings
+    set_aside: SetAside
+    keep: Keep | None = None
+
+    def restart(self) -> None:
+        """Forget all of it, for another pass over the same readings."""
+        self.findings.restart()
+        self.set_aside.restart()
+        if self.keep is not None:
+            self.keep.restart()
+
+
 def reduce_batch(
-    stream: ReadingStream,
-    table: str,
-    files: Sequence[str],
-    method: Method,
-    coupons: Coupons,
-    findings: Findings,
-    set_aside: SetAside,
-    keep: Keep | None = None,
+    stream: ReadingStream, files: TableFiles, method: Method, coupons: Coupons, beside: Byproducts
 ) -> Reduced:
     """Reduce all readings of a batch.
 
@@ -48,18 +70,12 @@ def reduce_batch(
     ----------
     stream : ReadingStream
         The readings; read twice where coupons are scattered over it.
-    table : str
-        ``indents`` or ``flow_stress``.
-    files : sequence of str
-        Names of the stream's files.
+    files : TableFiles
+        The stream's files, of ``indents`` or ``flow_stress``.
     method, coupons
         The batch.
-    findings : Findings
-        Still empty; what is found on readings goes there.
-    set_aside : SetAside
-        Still empty; repeats of a reading's number go there.
-    keep : Keep, optional
-        Where used readings are kept, if they are.
+    beside : Byproducts
+        Still empty; the stream sets readings aside in the same one.
 
     Returns
     -------
@@ -71,37 +87,49 @@ def reduce_batch(
         reduced = Reduced.empty(len(coupons), tuple(t.id for t in method.testers))
         reduce = reduce_flow if method.laws.route == "flow" else reduce_indents
         for readings, repeats in stretches:
-            _put_repeats_aside(repeats, table, files, coupons, set_aside)
-            results = reduce(readings, method, reduced, Marks(readings, findings, files))
-            if keep is not None:
-                keep.add(readings, results)
+            put_repeats_aside(repeats, files, coupons, beside.set_aside)
+            marks = Marks(readings, beside.findings, files.names)
+            results = reduce(readings, method, reduced, marks)
+            if beside.keep is not None:
+                beside.keep.add(readings, results)
         return reduced
 
     try:
         return run(whole_coupons(iter(stream), len(coupons)))
     except ScatteredCoupons:
-        findings.restart()
-        set_aside.restart()
-        if keep is not None:
-            keep.restart()
+        beside.restart()
         return run(regrouped(iter(stream)))
 
 
-def _put_repeats_aside(
-    repeats: Readings, table: str, files: Sequence[str], coupons: Coupons, set_aside: SetAside
+def put_repeats_aside(
+    repeats: Readings, files: TableFiles, coupons: Coupons, set_aside: SetAside
 ) -> None:
+    """Set aside readings that repeat a number which their coupon already had.
+
+    Parameters
+    ----------
+    repeats : Readings
+        They.
+    files : TableFiles
+        The files that they came from.
+    coupons : Coupons
+        For their names.
+    set_aside : SetAside
+        Where they go.
+    """
+    table = files.contract.table
     column = _NUMBER[table]
     for file in dict.fromkeys(repeats.file.tolist()):
-        here = (repeats.file == file).nonzero()[0]
-        index = pa.array(here)
+        here = np.flatnonzero(repeats.file == file)
+        part = repeats.take(here)
         set_aside.add(
             REPEATED_READING,
             table=table,
-            file=files[file],
-            lines=repeats.lines[here],
+            file=files.names[file],
+            lines=part.lines,
             column=column,
-            raw=repeats.raw[column].combine_chunks().take(index),
-            coupon=repeats.coupon[here],
-            coupon_ids=coupons.ids.take(pa.array(repeats.coupon[here])),
-            reading_no=repeats.number[here],
+            raw=cast("pa.StringArray", part.raw[column].combine_chunks()),
+            coupon=part.coupon,
+            coupon_ids=coupons.ids.take(pa.array(part.coupon, pa.int32())),
+            reading_no=part.number,
         )

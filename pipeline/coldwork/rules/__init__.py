@@ -8,6 +8,7 @@ from typing import Final
 
 from coldwork.rules.batch import BATCH_RULES
 from coldwork.rules.coupon import COUPON_RULES
+from coldwork.rules.curve import CURVE_RULES
 from coldwork.rules.reading import READING_RULES
 from coldwork.rules.reasons import REASONS
 from coldwork.rules.rule import Level, Reason, Rule
@@ -16,8 +17,8 @@ __all__ = ["REASONS", "RULES", "Level", "Reason", "Rule"]
 
 RULES: Final[tuple[Rule, ...]] = tuple(
     sorted(
-        (*READING_RULES, *COUPON_RULES, *BATCH_RULES),
+        (*READING_RULES, *COUPON_RULES, *CURVE_RULES, *BATCH_RULES),
         key=lambda rule: tuple(Level).index(rule.level),
     )
 )
-"""All rules; the sort is stable, so within a level: reading, coupon, batch."""
+"""All rules; the sort is stable, so within a level: reading, coupon, curve, batch."""

@@ -4,7 +4,7 @@ A million coupons may each carry findings, so nothing here loops over rows: find
 wait as arrays, and which rules fired on a coupon is one 64-bit word.
 """
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from typing import Final
 
@@ -13,6 +13,7 @@ import pyarrow as pa
 from numpy.typing import NDArray
 
 from coldwork.rules import RULES
+from coldwork.rules.bits import bit_of, place_of, rule_ids
 from coldwork.rules.rule import Rule
 
 __all__ = ["Findings", "Numbers", "Texts"]
@@ -21,8 +22,6 @@ FloatArray = NDArray[np.float64]
 Numbers = float | NDArray[np.float64] | NDArray[np.int64] | NDArray[np.int32]
 Texts = str | pa.StringArray
 
-_PLACE: Final[Mapping[str, int]] = {rule.id: i for i, rule in enumerate(RULES)}
-_ONE: Final = np.uint64(1)
 _NONE: Final = -1  # no coupon, no reading, no line
 _ALL: Final = slice(None)
 _SLICE: Final = 1 << 16
@@ -110,12 +109,12 @@ class Findings:
         """
         if len(coupon) == 0:
             return
-        place = _PLACE[rule.id]
+        place = place_of(rule)
         where = np.asarray(coupon, dtype=np.int32)
         if limit is None:
             limit = _limit_passed(rule, value)
         self._chunks.append(_Chunk(place, where, reading_no, value, limit, file, line, detail))
-        self._bits[where] |= _ONE << np.uint64(place)
+        self._bits[where] |= bit_of(rule)
         self._counts[place] += len(where)
 
     def add_batch(
@@ -136,7 +135,7 @@ class Findings:
         value, limit : float, optional
             What was found, and the limit if it is not the rule's own. [rule's unit]
         """
-        place = _PLACE[rule.id]
+        place = place_of(rule)
         where = np.array([_NONE], dtype=np.int32)
         if limit is None:
             limit = rule.limit
@@ -145,7 +144,7 @@ class Findings:
 
     def has(self, rule: Rule) -> NDArray[np.bool_]:
         """Say on which coupons, or on whose readings, a rule fired. Shape (coupons,)."""
-        return np.asarray((self._bits & (_ONE << np.uint64(_PLACE[rule.id]))) != 0)
+        return np.asarray((self._bits & bit_of(rule)) != 0)
 
     @property
     def bits(self) -> NDArray[np.uint64]:
@@ -157,19 +156,6 @@ class Findings:
         """How many findings each rule has, by its id, in the order of `RULES`."""
         return {rule.id: int(n) for rule, n in zip(RULES, self._counts, strict=True) if n}
 
-    @property
-    def empties(self) -> dict[str, NDArray[np.bool_]]:
-        """Columns of out/coupons that lose their values, and on which coupons. (coupons,)."""
-        return self._emptied(RULES)
-
-    @property
-    def empties_ends(self) -> dict[str, NDArray[np.bool_]]:
-        """Columns whose interval ends are lost as well, and on which coupons. (coupons,).
-
-        The rest of `empties` keeps its ends: they still are what the uncertainty allows.
-        """
-        return self._emptied([rule for rule in RULES if not rule.ends_stay])
-
     def text(self, rows: slice = _ALL) -> pa.StringArray:
         """Join the ids of the rules that fired on each coupon with ``;``. Length (coupons,).
 
@@ -180,9 +166,7 @@ class Findings:
         rows : slice, optional
             Which coupons; all of them where it is not said.
         """
-        words = pa.array(self._bits[rows]).dictionary_encode()
-        texts = pa.array([_ids(int(word)) for word in words.dictionary.to_numpy()], pa.string())
-        return texts.take(words.indices)
+        return rule_ids(self._bits[rows])
 
     def table(self, coupon_ids: pa.StringArray, lot_ids: pa.StringArray) -> pa.Table:
         """Give all findings in the columns of out/flags.
@@ -239,22 +223,11 @@ class Findings:
         for start in range(0, max(len(order), 1), rows):
             yield _published(columns, order[start : start + rows], coupon_ids, lot_ids)
 
-    def _emptied(self, rules: Sequence[Rule]) -> dict[str, NDArray[np.bool_]]:
-        words: dict[str, int] = {}
-        for rule in rules:
-            for column in rule.empties:
-                words[column] = words.get(column, 0) | 1 << _PLACE[rule.id]
-        return {c: np.asarray((self._bits & np.uint64(w)) != 0) for c, w in words.items()}
-
 
 def _limit_passed(rule: Rule, value: Numbers | None) -> Numbers | None:
     if rule.upper is None or rule.limit is None or value is None:
         return rule.limit
     return np.where(np.asarray(value) > rule.upper, rule.upper, rule.limit)
-
-
-def _ids(word: int) -> str:
-    return ";".join(rule.id for i, rule in enumerate(RULES) if word >> i & 1)
 
 
 def _joined(chunks: Sequence[_Chunk]) -> _Columns:

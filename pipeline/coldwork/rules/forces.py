@@ -18,6 +18,7 @@ __all__ = [
     "HK",
     "HV",
     "SCALES",
+    "SECTIONS",
     "force_labels",
     "force_not_nominal",
     "nominal_force",
@@ -26,6 +27,8 @@ __all__ = [
 FloatArray = NDArray[np.float64]
 
 SCALES: Final = ("HV", "HBW", "HK")
+SECTIONS: Final = ("indentation", "indentation.HBW", "indentation.HK")
+"""Where the sheet holds the constants of each scale."""
 HV: Final = 0
 HBW: Final = 1
 HK: Final = 2

@@ -7,26 +7,76 @@ from coldwork.rules.rule import Reason
 __all__ = [
     "BAD_TIME",
     "BALL_MISSING",
+    "CELL_ERROR",
+    "CUT_OFF",
+    "DATE_IN_CELL",
     "EXCLUDED",
+    "FORMULA_WITHOUT_VALUE",
+    "HIDDEN_ROW",
     "IMPOSSIBLE_INDENT",
+    "MERGED_CELL",
     "NOT_A_NUMBER",
     "OUT_OF_RANGE",
     "REASONS",
     "REPEATED_READING",
     "REQUIRED_EMPTY",
     "ROW_WIDTH",
+    "SHOWN_OTHERWISE",
     "UNKNOWN_SCALE",
     "UNLISTED_COUPON",
 ]
 
 _GRAMMAR: Final = "number grammar of the in-tables (README)"
 _TIDY: Final = "contract of the table"
+_BOOK: Final = "cells of a workbook count as they are stored and shown (README)"
 
 ROW_WIDTH: Final = Reason(
     "row-width",
     "the row has more or fewer cells than the header",
     "look for a missing or an unquoted comma in this row",
     _TIDY,
+)
+CUT_OFF: Final = Reason(
+    "cut-off",
+    "the file ends in the middle of this line, which may be cut off",
+    "export the file again, or say last_line_open = true in its layout if it always ends so",
+    "layout of the file",
+)
+HIDDEN_ROW: Final = Reason(
+    "hidden-row",
+    "the row is hidden in the workbook",
+    "show the row if it counts, or delete it",
+    _BOOK,
+)
+MERGED_CELL: Final = Reason(
+    "merged-cell",
+    "the cell is merged with others, so that it is not this row's alone",
+    "unmerge the cells and fill each of them",
+    _BOOK,
+)
+FORMULA_WITHOUT_VALUE: Final = Reason(
+    "formula-without-value",
+    "the cell holds a formula without a value, or with one that the workbook calls outdated",
+    "open the workbook with a spreadsheet program, let it work out the formulas, and save it",
+    _BOOK,
+)
+CELL_ERROR: Final = Reason(
+    "cell-error",
+    "the cell holds an error of the spreadsheet",
+    "mend the formula, or empty the cell",
+    _BOOK,
+)
+DATE_IN_CELL: Final = Reason(
+    "date-in-cell",
+    "the cell holds a date or a time where none belongs",
+    "type what was meant again; spreadsheets turn 3-5 and 3.5 into days",
+    _BOOK,
+)
+SHOWN_OTHERWISE: Final = Reason(
+    "shown-otherwise",
+    "the cell's format shows another value than it stores",
+    "format the cell as General and look at what it holds; keep names as text",
+    _BOOK,
 )
 UNLISTED_COUPON: Final = Reason(
     "unlisted-coupon",
@@ -91,6 +141,13 @@ REPEATED_READING: Final = Reason(
 
 REASONS: Final = (
     ROW_WIDTH,
+    CUT_OFF,
+    HIDDEN_ROW,
+    MERGED_CELL,
+    FORMULA_WITHOUT_VALUE,
+    CELL_ERROR,
+    DATE_IN_CELL,
+    SHOWN_OTHERWISE,
     UNLISTED_COUPON,
     REQUIRED_EMPTY,
     NOT_A_NUMBER,

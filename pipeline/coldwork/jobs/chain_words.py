@@ -1,0 +1,223 @@
+"""What is said of each step of the chain, for records and `trace`: tables, no code."""
+
+from typing import Final, NamedTuple
+
+__all__ = [
+    "AS_INDENTED",
+    "DENSITY",
+    "ENERGY",
+    "FLOW",
+    "FLOW_OF_CURVE",
+    "INDENT",
+    "REPORTED",
+    "UNWOUND",
+    "Line",
+]
+
+
+class Line(NamedTuple):
+    """One step as it is told.
+
+    Attributes
+    ----------
+    step, relation, quantity
+        As `Step` has them.
+    explanation : str
+        With ``{strain}``, ``{baseline}`` and ``{radius}`` where the sheet decides the words.
+    inputs : tuple of str
+        Names of inputs and quantities; ``<...>`` stands for a group of inputs.
+    """
+
+    step: str
+    relation: str
+    quantity: str
+    explanation: str
+    inputs: tuple[str, ...]
+
+
+_BASELINE: Final = Line(
+    "baseline stress",
+    "relation 4",
+    "baseline_stress_mpa",
+    "the part of the flow stress that dislocations do not carry: {baseline}",
+    ("<baseline>",),
+)
+FLOW: Final = (
+    Line(
+        "flow stress",
+        "mean of the readings",
+        "flow_stress_mpa",
+        "at a plastic strain of {strain}: the mean of the repeats there, or interpolated between "
+        "the neighbours; corrected for the tester",
+        ("<mean>",),
+    ),
+    _BASELINE,
+    Line(
+        "dislocation stress",
+        "relation 4",
+        "dislocation_stress_mpa",
+        "flow stress less the baseline",
+        ("flow_stress_mpa", "baseline_stress_mpa"),
+    ),
+)
+FLOW_OF_CURVE: Final = (
+    Line(
+        "flow stress",
+        "ISO 6892-1; true stress at a true plastic strain",
+        "flow_stress_mpa",
+        "true stress of the coupon's curve at a true plastic strain of {strain}: where the curve "
+        "stands and what else it gave is told above",
+        ("<curve>",),
+    ),
+    *FLOW[1:],
+)
+INDENT: Final = (
+    Line(
+        "mean hardness",
+        "relation 1",
+        "hardness",
+        "mean of the readings, each divided by 1 + bias of its tester",
+        ("<mean>",),
+    ),
+    Line(
+        "indentation pressure",
+        "relation 1",
+        "pressure_mpa",
+        "force over the area that the sheet names for this scale",
+        ("hardness",),
+    ),
+    Line(
+        "flow stress under the indent",
+        "relation 2, Tabor 1951",
+        "indented_stress_mpa",
+        "pressure less intercept, over the constraint factor: the stress at the coupon's strain "
+        "plus the strain of the indent",
+        ("pressure_mpa", "<constraint>"),
+    ),
+    _BASELINE,
+)
+AS_INDENTED: Final = (
+    Line(
+        "dislocation stress",
+        "relation 4",
+        "dislocation_stress_mpa",
+        "flow stress under the indent less the baseline",
+        ("indented_stress_mpa", "baseline_stress_mpa"),
+    ),
+)
+UNWOUND: Final = (
+    Line(
+        "excess over the baseline",
+        "relation 4",
+        "excess_mpa",
+        "flow stress under the indent less the baseline",
+        ("indented_stress_mpa", "baseline_stress_mpa"),
+    ),
+    Line(
+        "dislocation stress",
+        "relation 6, Voce 1948; Kocks and Mecking 2003",
+        "dislocation_stress_mpa",
+        "without the hardening that the indent's own strain added; at or above saturation nothing "
+        "is taken out",
+        ("excess_mpa", "<unwinding>"),
+    ),
+)
+REPORTED: Final = (
+    Line(
+        "flow stress of the state reported",
+        "relation 4",
+        "flow_stress_mpa",
+        "dislocation stress plus baseline",
+        ("dislocation_stress_mpa", "baseline_stress_mpa"),
+    ),
+)
+DENSITY: Final = {  # by the hardening law that the sheet names
+    "constant": Line(
+        "dislocation density",
+        "relation 5, Taylor 1934",
+        "dislocation_density_per_m2",
+        "(dislocation stress over M alpha G b) squared",
+        (
+            "dislocation_stress_mpa",
+            "hardening.taylor_factor",
+            "hardening.coefficient",
+            "material.shear_modulus_gpa",
+            "material.burgers_vector_nm",
+        ),
+    ),
+    "slope": Line(
+        "dislocation density",
+        "relation 5, Taylor 1934",
+        "dislocation_density_per_m2",
+        "(dislocation stress over the slope M alpha G b) squared",
+        ("dislocation_stress_mpa", "hardening.slope_n_per_m"),
+    ),
+}
+ENERGY: Final = (
+    Line(
+        "mean spacing",
+        "definition",
+        "mean_spacing_nm",
+        "one over the root of the density",
+        ("dislocation_density_per_m2",),
+    ),
+    Line(
+        "line energy",
+        "relation 7, Hirth and Lothe 1982",
+        "line_energy_j_per_m",
+        "averaged over the character mix; the field reaches to {radius}",
+        (
+            "mean_spacing_nm",
+            "line_energy.outer_radius_factor",
+            "<fixed radius>",
+            "line_energy.core_radius_b",
+            "line_energy.core_energy",
+            "material.shear_modulus_gpa",
+            "material.poisson_ratio",
+            "material.burgers_vector_nm",
+        ),
+    ),
+    Line(
+        "stored energy in dislocations",
+        "relation 8",
+        "stored_energy_j_per_m3",
+        "density times line energy; also the driving pressure for recrystallisation in Pa",
+        ("dislocation_density_per_m2", "line_energy_j_per_m"),
+    ),
+    Line(
+        "stored energy per mole",
+        "relation 8",
+        "stored_energy_j_per_mol",
+        "times the molar volume",
+        (
+            "stored_energy_j_per_m3",
+            "material.mass_density_kg_per_m3",
+            "material.molar_mass_g_per_mol",
+        ),
+    ),
+    Line(
+        "stored energy per gram",
+        "relation 8",
+        "stored_energy_j_per_g",
+        "over the mass density",
+        ("stored_energy_j_per_m3", "material.mass_density_kg_per_m3"),
+    ),
+    Line(
+        "temperature rise",
+        "relation 8",
+        "temperature_rise_k",
+        "if all of it were released as heat in the coupon",
+        (
+            "stored_energy_j_per_m3",
+            "material.mass_density_kg_per_m3",
+            "material.heat_capacity_j_per_kg_k",
+        ),
+    ),
+    Line(
+        "stored fraction of the work",
+        "relation 9",
+        "stored_fraction_of_work",
+        "over the plastic work that coupons.csv states",
+        ("stored_energy_j_per_m3", "prior_plastic_work_j_per_m3"),
+    ),
+)

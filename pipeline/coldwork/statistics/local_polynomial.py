@@ -1,0 +1,247 @@
+"""Value and slope of a smooth curve at a place, through noisy points around it.
+
+A window grows about the place until two further powers of x are needed; the curve is
+then read from the polynomial that has them. Under noise the window is wide, and what
+bends the curve within it is fitted, not smeared; without noise it shrinks to a few
+points, and the error falls with their spacing.
+"""
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from coldwork.errors import InvalidArgument
+from coldwork.statistics.noise import point_noise
+
+__all__ = ["LEAST_POINTS", "LocalFit", "Window", "choose_window", "fit_window"]
+
+FloatArray = NDArray[np.float64]
+
+LEAST_POINTS: Final = 13  # in a window: the 7 coefficients and 6 degrees of freedom
+_BASE: Final = 4  # the order that a window is grown for; it is fitted with two more
+_BLOCKS: Final = 64  # means that a window is fitted through
+_GROWTH: Final = 1.25  # of a window from one try to the next
+_FURTHER: Final = 25.0  # F of two further powers that no noise gives (1e-8): they are needed
+_ROUGH: Final = 4.0  # variance of residuals over that of their roughness: there is a corner
+_ENOUGH: Final = 30  # blocks in which that roughness can be told
+_BACK: Final = 4  # tries from there back to where nothing of it is left in the result
+
+
+@dataclass(frozen=True)
+class Window:
+    """Points ``start`` to ``stop`` (not included) about a place, and the order to fit."""
+
+    start: int
+    stop: int
+    centre: float
+    order: int
+
+
+@dataclass(frozen=True)
+class LocalFit:
+    """A polynomial about a place.
+
+    Attributes
+    ----------
+    centre, scale : float
+        It goes in powers of t = (x - centre) / scale. [unit of x]
+    coefficients : ndarray of float64, shape (order + 1,)
+        From the constant up. [unit of y]
+    covariance : ndarray of float64, shape (order + 1, order + 1)
+        Theirs, from the scatter of block means about the polynomial.
+    """
+
+    centre: float
+    scale: float
+    coefficients: FloatArray
+    covariance: FloatArray
+
+    def value(self, x: float) -> float:
+        """Give y [its unit] at x."""
+        return float(self._powers(x) @ self.coefficients)
+
+    def u_value(self, x: float) -> float:
+        """Give the standard uncertainty of y [its unit] at x."""
+        row = self._powers(x)
+        return float(np.sqrt(row @ self.covariance @ row))
+
+    def slope(self, x: float) -> float:
+        """Give dy/dx [unit of y over unit of x] at x."""
+        return float(self._first(x) @ self.coefficients)
+
+    def u_slope(self, x: float) -> float:
+        """Give the standard uncertainty of dy/dx [as `slope`] at x."""
+        row = self._first(x)
+        return float(np.sqrt(row @ self.covariance @ row))
+
+    def bend(self, x: float) -> float:
+        """Give the second derivative [unit of y over unit of x squared] at x."""
+        t = (x - self.centre) / self.scale
+        k = np.arange(self.coefficients.size)
+        row = k * (k - 1) * np.where(k > 1, t ** np.maximum(k - 2, 0), 0.0)
+        return float(row @ self.coefficients) / self.scale**2
+
+    def root(self, slope: float, level: float, start: float) -> float:
+        """Find x [its unit] near `start` where y = level + slope x, by Newton's steps."""
+        x = start
+        for _ in range(30):
+            steep = self.slope(x) - slope
+            if steep == 0.0:
+                return float("nan")
+            step = (self.value(x) - level - slope * x) / steep
+            x -= step
+            if abs(step) <= 1e-15 * max(abs(x), self.scale):
+                break
+        return x
+
+    def top(self, start: float) -> float:
+        """Find x [its unit] near `start` where the slope is zero, by Newton's steps."""
+        x = start
+        for _ in range(30):
+            bend = self.bend(x)
+            if not bend < 0.0:
+                return float("nan")
+            step = float(np.clip(self.slope(x) / bend, -self.scale, self.scale))
+            x -= step
+            if abs(step) <= 1e-15 * max(abs(x), self.scale):
+                break
+        return x
+
+    def _powers(self, x: float) -> FloatArray:
+        t = (x - self.centre) / self.scale
+        return np.asarray(t ** np.arange(self.coefficients.size), dtype=np.float64)
+
+    def _first(self, x: float) -> FloatArray:
+        t = (x - self.centre) / self.scale
+        k = np.arange(self.coefficients.size)
+        return np.asarray(k * t ** np.maximum(k - 1, 0) / self.scale, dtype=np.float64)
+
+
+def choose_window(
+    x: FloatArray, y: FloatArray, centre: float, between: tuple[int, int]
+) -> Window:
+    """Grow a window about a place for as long as the curve in it is simple enough.
+
+    Parameters
+    ----------
+    x : ndarray of float64, shape (n,)
+        Abscissa, rising but for noise. [any unit]
+    y : ndarray of float64, shape (n,)
+        Ordinate. [any unit]
+    centre : float
+        The place. [unit of x]
+    between : tuple of int
+        Points that may be used, the end not included.
+
+    Returns
+    -------
+    Window
+        Points and order. Where fewer than `LEAST_POINTS` may be used, all of them and
+        an order that they bear.
+
+    Raises
+    ------
+    InvalidArgument
+        If fewer than 3 points may be used.
+
+    Notes
+    -----
+    The test is that of two nested polynomials (F at 5 %); reading the larger one keeps
+    what the test cannot see well below the standard uncertainty.
+
+    References
+    ----------
+    Fan and Gijbels, Local Polynomial Modelling and Its Applications, Chapman and Hall
+    1996 (local fits); Calonico, Cattaneo and Farrell, J. Am. Stat. Assoc. 113 (2018)
+    767-779, doi:10.1080/01621459.2017.1285776 (a higher order than the window's).
+    """
+    low, high = between
+    if high - low < 3:
+        message = f"between must hold 3 points or more (it holds {high - low})"
+        raise InvalidArgument(message)
+    if high - low <= LEAST_POINTS:
+        return Window(low, high, centre, min(_BASE + 2, (high - low - 1) // 2))
+    rising = np.maximum.accumulate(x[low:high])
+    place = int(np.searchsorted(rising, centre))
+    start = int(np.clip(place - LEAST_POINTS // 2, 0, high - low - LEAST_POINTS))
+    window = Window(low + start, low + start + LEAST_POINTS, centre, _BASE + 2)
+    half = max(
+        abs(centre - rising[start]), abs(rising[start + LEAST_POINTS - 1] - centre), 1e-300
+    )
+    tried = [window]
+    while window.stop - window.start < high - low:
+        half *= _GROWTH
+        start = int(np.searchsorted(rising, centre - half))
+        stop = int(np.searchsorted(rising, centre + half, side="right"))
+        wider = Window(
+            min(low + start, window.start), max(low + stop, window.stop), centre, _BASE + 2
+        )
+        if wider != window and _needs_more(x, y, wider):
+            return tried[-min(_BACK, len(tried))]
+        window = wider
+        tried.append(window)
+    return window
+
+
+def fit_window(x: FloatArray, y: FloatArray, window: Window) -> LocalFit:
+    """Fit the polynomial of a window.
+
+    Parameters
+    ----------
+    x, y : ndarray of float64, shape (n,)
+        As for `choose_window`. [any units]
+    window : Window
+        What to fit.
+
+    Returns
+    -------
+    LocalFit
+        The polynomial about the window's centre.
+
+    Notes
+    -----
+    Through the means of up to 64 stretches of equal numbers of points, of powers of x as
+    of y, which is exact for the polynomial; their scatter is that of the noise also
+    where neighbouring points are alike.
+    """
+    basis, means, scale = _blocks(x, y, window)
+    q, r = np.linalg.qr(basis)
+    coefficients = np.linalg.solve(r, q.T @ means)
+    residual = means - basis @ coefficients
+    freedom = means.size - coefficients.size
+    few = freedom / (freedom - 2.0) if freedom > 4 else 3.0
+    variance = few * float(residual @ residual) / max(freedom, 1)
+    inverse = np.linalg.inv(r)
+    return LocalFit(window.centre, scale, coefficients, variance * inverse @ inverse.T)
+
+
+def _blocks(x: FloatArray, y: FloatArray, window: Window) -> tuple[FloatArray, FloatArray, float]:
+    """Weighted means of the powers and of y over stretches of the window."""
+    here = slice(window.start, window.stop)
+    t = x[here] - window.centre
+    scale = max(float(np.abs(t).max()), 1e-300)
+    t = t / scale
+    n = t.size
+    edges = np.arange(min(n, _BLOCKS)) * n // min(n, _BLOCKS)
+    root = np.sqrt(np.diff(np.append(edges, n)))
+    power = np.ones(n)
+    columns = []
+    for _ in range(window.order + 1):
+        columns.append(np.add.reduceat(power, edges) / root)
+        power = power * t
+    return np.column_stack(columns), np.add.reduceat(y[here], edges) / root, scale
+
+
+def _needs_more(x: FloatArray, y: FloatArray, window: Window) -> bool:
+    """Whether the window's curve needs the two highest powers of its order, or still more."""
+    basis, means, _ = _blocks(x, y, window)
+    q, _ = np.linalg.qr(basis)
+    part = q.T @ means
+    residual = means - q @ part
+    rest = float(residual @ residual) / (means.size - part.size)
+    rounding = float(np.finfo(float).eps ** 2 * (means @ means))
+    noise = point_noise(residual) ** 2 if means.size >= _ENOUGH else rest
+    noise = max(noise, rounding)
+    return float(part[-2:] @ part[-2:]) / 2.0 > _FURTHER * noise or rest > _ROUGH * noise
