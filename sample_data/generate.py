@@ -4,7 +4,9 @@ The scenario is invented; no works, no laboratory and no person of it exists, an
 persons are roles. A small strip mill rolls copper for heat exchangers. Its coils
 are annealed between passes, and the furnace wants to know beforehand how much the
 cold work has stored. The laboratory next to the mill cuts coupons after each pass
-and indents them: that is *copper-strip*. A wire shop in the same yard draws
+and indents them: that is *copper-strip*; and since its benches do not write tidy tables,
+the same indents stand once more in *copper-benches*, as each bench would have left them.
+A wire shop in the same yard draws
 low-carbon rod and pulls pieces of each size: that is *steel-wire*. And the
 laboratory keeps a shelf of records with everything in them that has ever gone
 wrong, to try its procedures on: *planted-faults*, with a list of what was planted
@@ -20,24 +22,30 @@ by the code under test would be none.
 import sys
 from pathlib import Path
 
-from scenario import copper_strip, planted_faults, steel_wire
+from scenario import copper_benches, copper_strip, copper_workbook, planted_faults, steel_wire
 
 __all__ = ["batches", "main"]
 
 
-def batches() -> dict[str, str]:
+def batches() -> dict[str, str | bytes]:
     """Make every file of the sample data: path below the folder, and content."""
-    return copper_strip.files() | steel_wire.files() | planted_faults.files()
+    return {
+        **copper_strip.files(),
+        **copper_benches.files(),
+        **copper_workbook.files(),
+        **steel_wire.files(),
+        **planted_faults.files(),
+    }
 
 
 def main(arguments: list[str]) -> int:
     """Write them below the folder that is named, or beside this script."""
     folder = Path(arguments[0]) if arguments else Path(__file__).resolve().parent
     files = batches()
-    for name, text in files.items():
+    for name, content in files.items():
         path = folder / name
         path.parent.mkdir(parents=True, exist_ok=True)
-        path.write_bytes(text.encode("utf-8"))
+        path.write_bytes(content if isinstance(content, bytes) else content.encode("utf-8"))
     print(f"{len(files)} files written below {folder}")
     return 0
 

@@ -43,18 +43,16 @@ def batch(text: str) -> tuple[Reduced, pa.StringArray]:
 
     mean = numbers("mean", 1e6)
     repeats = np.array([int(row["repeats"]) for row in rows])
-    reduced = Reduced(
-        used=np.array([int(row["used"]) for row in rows]),
-        mean=mean,
-        sd=numbers("relative") * mean,
-        repeats=repeats,
-        effective=np.where(repeats > 0, repeats, 1.6),
-        scale=np.array([int(row["scale"]) for row in rows], dtype=np.int8),
-        force=numbers("force"),
-        ball=numbers("ball", 1e-3),
-        mean_diagonal=numbers("diagonal", 1e-6),
-        shares={},
-    )
+    reduced = Reduced.empty(len(rows), ())
+    reduced.used[:] = [int(row["used"]) for row in rows]
+    reduced.mean[:] = mean
+    reduced.sd[:] = numbers("relative") * mean
+    reduced.repeats[:] = repeats
+    reduced.effective[:] = np.where(repeats > 0, repeats, 1.6)
+    reduced.scale[:] = [int(row["scale"]) for row in rows]
+    reduced.force[:] = reduced.applied_force[:] = numbers("force")
+    reduced.ball[:] = numbers("ball", 1e-3)
+    reduced.mean_diagonal[:] = numbers("diagonal", 1e-6)
     return reduced, pa.array([row["condition"] for row in rows])
 
 

@@ -16,6 +16,7 @@ from scenario.workbook_file import Cell, Formula, workbook
 
 __all__ = ["files"]
 
+LAYOUTS: Final = "copper-benches/layouts"
 FOLDER: Final = "copper-benches/workbook"
 _HEADER: Final = (
     *("Coupon", "Indent", "Force", "Diagonal 1", "Diagonal 2", "Mean", "x", "y", "Edge"),
@@ -65,7 +66,7 @@ def files() -> dict[str, str | bytes]:
         f"{FOLDER}/batch.toml": _sheet(tidy[f"{copper_strip.FOLDER}/batch.toml"]),
         f"{FOLDER}/coupons.csv": tidy[f"{copper_strip.FOLDER}/coupons.csv"],
         f"{FOLDER}/indents.xlsx": _book(tidy[f"{copper_strip.FOLDER}/indents.csv"]),
-        f"{FOLDER}/layouts/strip-book.toml": _LAYOUT,
+        f"{LAYOUTS}/strip-book.toml": _LAYOUT,
     }
 
 
@@ -75,7 +76,7 @@ def _sheet(text: str) -> str:
         ('timezone = "UTC"                     # every time in the tables says its own zone', zone),
         (
             'indents = "indents.csv"',
-            'indents = { path = "indents.xlsx", layout = "layouts/strip-book.toml" }',
+            'indents = { path = "indents.xlsx", layout = "../layouts/strip-book.toml" }',
         ),
         (
             "# The truth behind the batch is in truth.csv; generate.py made it.",

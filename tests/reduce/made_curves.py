@@ -156,7 +156,7 @@ class Plan:
     toe_stress: float = 0.0  # at which it has come to 63 %
     fracture: int = 0  # points after the break
     still: int = 0  # points before the start
-    neck: float = np.inf  # strain past the greatest force in which a neck takes all of it
+    neck: float = np.inf  # strain in which a neck takes all of the force, from 1.1 of the uniform
 
     def finer(self, factor: int) -> "Plan":
         """The same test with more points."""
@@ -187,7 +187,7 @@ def points(metal: Metal, plan: Plan) -> tuple[FloatArray, FloatArray]:
     ]
     plastic = np.concatenate(parts)
     s, e = metal.engineering(plastic)
-    past = np.maximum(plastic - uniform, 0.0)
+    past = np.maximum(plastic - 1.1 * uniform, 0.0)
     s = s * (1.0 - (past / plan.neck) ** 4)
     return np.concatenate([metal.slope * elastic, s]), np.concatenate([elastic, e])
 

@@ -12,6 +12,7 @@ from coldwork.contracts import document
 from coldwork.formulas.unwinding import hardening_constants
 from coldwork.inputs.keys import number_specs, schema_of
 from coldwork.inputs.laws import choice
+from coldwork.inputs.layout import Layout
 from coldwork.inputs.method import Method, Tester
 from coldwork.inputs.numbers import Given
 from coldwork.inputs.tensile import tensile_document
@@ -74,6 +75,7 @@ def method_document(
         "limits": [asdict(limit) for limit in method.limits],
         **sections,
         "files": _files(method),
+        "layouts": [_layout(method, layout) for layout in method.used_layouts],
         "defaults": list(dict.fromkeys(_defaults(method, tables, numbers))),
         "derived": _derived(method),
         "versions": {"coldwork": coldwork.__version__}
@@ -130,6 +132,24 @@ def _files(method: Method) -> dict[str, object]:
         "flow_stress": names(method.flow_stress),
         "curves": names(method.curves),
         "exclusions": names(taken_out),
+    }
+
+
+def _layout(method: Method, layout: Layout) -> dict[str, object]:
+    paths = getattr(method, layout.fills)
+    read = zip(paths, method.layouts[layout.fills], strict=True)
+    return {
+        "path": layout.path,
+        "sha256": layout.digest,
+        "id": layout.id,
+        "fills": layout.fills,
+        "files": [
+            path.relative_to(method.folder).as_posix() for path, used in read if used == layout
+        ],
+        "columns": {
+            filled.name: {"from": layout.raw_columns[filled.name], "unit": filled.unit}
+            for filled in layout.filled
+        },
     }
 
 

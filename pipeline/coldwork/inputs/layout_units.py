@@ -15,6 +15,7 @@ References
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
+from functools import cached_property
 from typing import Final
 
 __all__ = ["UNITS", "Step", "WrittenUnit", "spelled", "step_between"]
@@ -64,7 +65,7 @@ class Step:
     times: Fraction = Fraction(1)
     plus: Fraction = Fraction(0)
 
-    @property
+    @cached_property
     def shift(self) -> int | None:
         """By how many places the decimal point moves to the right; None if that is not all."""
         if self.plus:

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from coldwork.errors import BatchRefused, Cause
 from coldwork.inputs.words import shown
-from coldwork.intake.cells import replaced, take, texts
+from coldwork.intake.cells import replaced, texts
 from coldwork.intake.column import Column, Fault
 from coldwork.intake.files import BLOCK_BYTES, SourceFile, TableFiles
 from coldwork.intake.lookup import Lookup
@@ -165,8 +165,8 @@ def _id_causes(column: Column, table: WholeTable) -> list[Cause]:
         empty = fault.reason is REQUIRED_EMPTY
         what = "the name is empty" if empty else "the name cannot be used"
         found = []
-        for row, raw in _cells_at(fault, table):
-            words = "give the coupon a name" if empty else _hint(fault, raw)
+        for row, _, hint in table.hinted(fault):
+            words = "give the coupon a name" if empty else hint
             found.append(Cause(table.where(row, _ID), what, why, f"{words[0].upper()}{words[1:]}."))
         causes += capped(found)
     if len(column.text.unique()) < len(column.text):
@@ -189,24 +189,15 @@ def _repeats(column: Column, table: WholeTable) -> list[Cause]:
 def _bad_cells(columns: Mapping[str, Column], table: WholeTable) -> Iterator[BadCell]:
     for name, column in columns.items():
         for fault in column.faults:
-            for row, raw in _cells_at(fault, table):
-                yield BadCell(row, name, raw, fault.reason.id, _hint(fault, raw))
+            for row, raw, hint in table.hinted(fault):
+                yield BadCell(row, name, raw, fault.reason.id, hint)
     if _U_GRAIN in columns:
         given = columns[_U_GRAIN]
         alone = ~given.absent & ~given.faulty
         if _GRAIN in columns:
             alone &= columns[_GRAIN].absent
-        for row, raw in _cells_at(Fault(REQUIRED_EMPTY, _U_GRAIN, alone), table):
+        for row, raw, _ in table.hinted(Fault(REQUIRED_EMPTY, _U_GRAIN, alone)):
             yield BadCell(row, _U_GRAIN, raw, REQUIRED_EMPTY.id, _U_WITHOUT_VALUE)
-
-
-def _cells_at(fault: Fault, table: WholeTable) -> Iterator[tuple[int, str]]:
-    rows = np.flatnonzero(fault.rows)
-    return zip(map(int, rows), take(table.cells(fault.column), rows), strict=True)
-
-
-def _hint(fault: Fault, raw: str) -> str:
-    return (fault.hint(raw) if fault.hint else "") or fault.reason.hint
 
 
 def _coupons(columns: Mapping[str, Column], table: WholeTable) -> Coupons:

@@ -96,13 +96,20 @@ class RunningCount:
         """Begin again at 1."""
         self._next[:] = 1
 
-    def of(self, coupon: NDArray[np.int32]) -> NDArray[np.int64]:
+    def of(
+        self, coupon: NDArray[np.int32], lines: NDArray[np.int64], torn: Sequence[int] = ()
+    ) -> NDArray[np.int64]:
         """Give each row of a block its number.
 
         Parameters
         ----------
         coupon : ndarray of int32, shape (n,)
             Place of each row's coupon; negative where there is none.
+        lines : ndarray of int64, shape (n,)
+            Line of each row.
+        torn : sequence of int, optional
+            Lines of further rows of the same coupon that take a number too, though they
+            cannot be read: the numbers after them stay when they are mended.
 
         Returns
         -------
@@ -119,6 +126,9 @@ class RunningCount:
         count = np.diff(np.append(starts, rows.size))
         number[rows] = np.arange(rows.size) - np.repeat(starts, count) + self._next[mine]
         self._next[mine[starts]] += count
+        if torn and mine[0] == mine[-1]:
+            number[rows] += np.searchsorted(torn, lines[rows])
+            self._next[mine[0]] += len(torn)
         return number
 
 

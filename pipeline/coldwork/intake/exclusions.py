@@ -164,12 +164,10 @@ def _place(table: WholeTable, row: int) -> str:
 def _cell_causes(column: Column, table: WholeTable) -> list[Cause]:
     causes = []
     for fault in column.faults:
-        rows = np.flatnonzero(fault.rows)
-        for row, raw in zip(rows, take(table.cells(fault.column), rows), strict=True):
-            words = (fault.hint(raw) if fault.hint else "") or fault.reason.hint
+        for row, raw, words in table.hinted(fault):
             what = f"{fault.reason.statement}: {shown(raw)}" if raw else "the cell is empty"
             mend = f"{words[0].upper()}{words[1:]}." if raw else "Fill it."
-            causes.append(Cause(table.where(int(row), fault.column), what, _WHY, mend))
+            causes.append(Cause(table.where(row, fault.column), what, _WHY, mend))
     return capped(causes)
 
 

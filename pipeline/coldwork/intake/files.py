@@ -89,6 +89,20 @@ class TableFiles:
     def _all_layouts(self) -> tuple[Layout | None, ...]:
         return self.layouts or (None,) * len(self.paths)
 
+    def source(self, file: int, sha256: str, size: int, rows: int, aside: int) -> "SourceFile":
+        """Say what was read of one file: its digest, its bytes, its rows and those set aside."""
+        layout = self.layout(file)
+        return SourceFile(
+            path=self.file_names[file],
+            table=self.contract.table,
+            sha256=sha256,
+            bytes=size,
+            rows_read=rows,
+            rows_used=rows - aside,
+            rows_set_aside=aside,
+            sheet=layout.workbook.sheet if layout and layout.workbook else None,
+        )
+
     def layout(self, file: int) -> Layout | None:
         """Give the layout of a file, None where it is tidy."""
         return self.layouts[file] if self.layouts else None
@@ -126,6 +140,8 @@ class SourceFile:
         Columns of the file that its layout passes over.
     kept_lines : tuple of KeptLine
         Lines that close the table.
+    sheet : str or None
+        Which sheet of a workbook was read.
     """
 
     path: str
@@ -137,6 +153,12 @@ class SourceFile:
     rows_set_aside: int
     unused_columns: tuple[str, ...] = ()
     kept_lines: tuple[KeptLine, ...] = ()
+    sheet: str | None = None
+
+    @property
+    def name(self) -> str:
+        """What rows of it are said to stand in: the path, and the sheet of a workbook."""
+        return f"{self.path}!{self.sheet}" if self.sheet else self.path
 
 
 class Lines(NamedTuple):

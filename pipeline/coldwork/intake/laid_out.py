@@ -185,6 +185,7 @@ class LaidOutText:
         rows = rows_of(
             data,
             lines.first,
+            lines.lines,
             [str(place) for place in range(len(self.columns))],
             written=lines.data,
             delimiter=self._form.delimiter,

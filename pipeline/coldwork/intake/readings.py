@@ -16,14 +16,16 @@ from coldwork.contracts import Field
 from coldwork.errors import BatchRefused, Cause
 from coldwork.inputs.method import Tensile
 from coldwork.intake.cells import column_of, take, take_or_null
-from coldwork.intake.column import Column, Fault, read_column
+from coldwork.intake.column import Column, Fault, read_column, with_layout_faults
 from coldwork.intake.coupons import Coupons
 from coldwork.intake.curve_columns import RunningCount, needed_columns
 from coldwork.intake.exclusions import Exclusions
-from coldwork.intake.files import BLOCK_BYTES, SourceFile, TableFiles
+from coldwork.intake.files import BLOCK_BYTES, KeptLine, SourceFile, TableFiles
+from coldwork.intake.printed import FileTally, Printed
 from coldwork.intake.row_checks import curve_faults, filled_scale, indent_faults
 from coldwork.intake.set_aside import SetAside
-from coldwork.intake.text import TableText, TextBlock
+from coldwork.intake.sources import TableSource, table_text
+from coldwork.intake.text import TextBlock
 from coldwork.rules import reasons
 
 __all__ = ["ReadingBlock", "ReadingStream", "read_readings"]
@@ -55,7 +57,7 @@ class ReadingBlock:
         ``measured_at`` since 1970-01-01T00:00Z, `times.ABSENT` where absent; None if
         the file has no such column. [us]
     raw : pyarrow.RecordBatch, n rows
-        The cells as written, columns in the file's order.
+        The cells as written, under the file's own names.
     """
 
     file: int
@@ -97,6 +99,9 @@ class ReadingStream:
     ----------
     seen : ndarray of bool, shape (exclusions,)
         Which exclusions met a reading, once the end was reached.
+    printed : list of Printed
+        Means and scatters that a file prints and that its rows do not give, once the end
+        was reached.
     """
 
     def __init__(
@@ -122,8 +127,9 @@ class ReadingStream:
         self._number = _NUMBERS[self._table]
         self._fields = [_loosened(field) for field in files.contract.fields]
         self._digests: dict[int, str] = {}
-        self._sizes: dict[int, int] = {}
+        self._texts: dict[int, TableSource] = {}
         self._rows: dict[int, int] = {}
+        self.printed: list[Printed] = []
         self.seen = np.zeros(len(exclusions), dtype=np.bool_)
 
     def __iter__(self) -> Iterator[ReadingBlock]:
@@ -136,19 +142,22 @@ class ReadingStream:
         """
         self.seen[:] = False
         self._counted.restart()
+        self.printed.clear()
         causes: list[Cause] = []
         for file in range(len(self._files.paths)):
             self._rows[file] = 0
-            text = TableText(self._files, file, self._block_bytes)
+            tally = FileTally(self._files.layout(file))
+            text = table_text(self._files, file, self._block_bytes)
             try:
                 for block in text:
                     self._rows[file] += len(block.lines) + len(block.torn)
                     if not causes:
-                        yield self._usable(block)
+                        yield self._usable(block, tally)
             except BatchRefused as refused:
                 causes += refused.causes
             else:
                 causes += self._compared(file, text)
+                self.printed += tally.printed(file, text.closing)
         if causes:
             raise BatchRefused(str(self._files.folder), causes)
 
@@ -157,28 +166,30 @@ class ReadingStream:
         """What was read so far; rows that were set aside later on are counted as such."""
         found = []
         for file, sha256 in self._digests.items():
-            name, rows = self._files.names[file], self._rows[file]
-            aside = self._set_aside.count_in(self._table, name)
-            size = self._sizes[file]
-            found.append(SourceFile(name, self._table, sha256, size, rows, rows - aside, aside))
+            rows, text = self._rows[file], self._texts[file]
+            aside = self._set_aside.count_in(self._table, self._files.names[file])
+            source = self._files.source(file, sha256, text.size, rows, aside)
+            kept = tuple(KeptLine(line.line, line.text) for line in text.closing)
+            found.append(replace(source, unused_columns=text.unused_columns, kept_lines=kept))
         return found
 
     def unmatched(self) -> list[Cause]:
         """Say which exclusions matched no reading, once the end was reached."""
         return self._exclusions.unmatched(self.seen)
 
-    def _compared(self, file: int, text: TableText) -> list[Cause]:
+    def _compared(self, file: int, text: TableSource) -> list[Cause]:
         """Note what a file was; refuse one that was something else the last time."""
         before = self._digests.setdefault(file, text.sha256)
-        self._sizes[file] = text.size
+        self._texts[file] = text
         if before == text.sha256:
             return []
         what, why = "changed between two passes", "What was read would be neither."
         mend = "Wait until whatever writes it has finished, then run the batch again."
         return [Cause(self._files.names[file], what, why, mend)]
 
-    def _usable(self, block: TextBlock) -> ReadingBlock:
+    def _usable(self, block: TextBlock, tally: FileTally) -> ReadingBlock:
         typed = self._typed(block)
+        tally.add(typed.columns, typed.coupon)
         self._put_torn_aside(block)
         if not typed.faults:
             return self._block(typed)
@@ -188,7 +199,9 @@ class ReadingStream:
 
     def _typed(self, block: TextBlock) -> _Typed:
         columns = {
-            field.name: read_column(field, column_of(block.cells, field.name), self._zone)
+            field.name: with_layout_faults(
+                read_column(field, column_of(block.cells, field.name), self._zone), block.faults
+            )
             for field in self._fields
             if field.name in block.cells.schema.names
         }
@@ -196,7 +209,7 @@ class ReadingStream:
         number = (
             _integers(columns[self._number])
             if self._number in columns
-            else self._counted.of(coupon)
+            else self._counted.of(coupon, block.lines, self._torn_lines(block))
         )
         exclusion = self._exclusions.find(coupon, number)
         self.seen[exclusion[exclusion >= 0]] = True
@@ -236,8 +249,14 @@ class ReadingStream:
             floats=floats,
             texts=texts,
             times=times,
-            raw=typed.text.cells,
+            raw=typed.text.cells if typed.text.raw is None else typed.text.raw,
         )
+
+    def _torn_lines(self, block: TextBlock) -> list[int]:
+        """Give the lines that count too: those of a file that belongs to one coupon as a whole."""
+        layout = self._files.layout(block.file)
+        one = layout is not None and all(each.name != _ID for each in layout.columns)
+        return [row.line for row in block.torn] if one else []
 
     def _put_torn_aside(self, block: TextBlock) -> None:
         if not block.torn:
@@ -249,7 +268,9 @@ class ReadingStream:
             lines=[row.line for row in block.torn],
             column="",
             raw=[row.text for row in block.torn],
-            hint=[_width_hint(row.found, row.expected) for row in block.torn],
+            hint=[
+                _width_hint(row.found, row.expected, tidy=block.raw is None) for row in block.torn
+            ],
         )
 
     def _put_aside(self, typed: _Typed, rows: NDArray[np.intp]) -> None:
@@ -262,18 +283,17 @@ class ReadingStream:
                 continue
             later = typed.faults[place + 1 :]
             exclusion = typed.exclusion[here]
-            raw = _raw(typed, fault.column, here)
             self._set_aside.add(
                 fault.reason,
                 table=self._table,
                 file=self._files.names[typed.text.file],
                 lines=typed.text.lines[here],
-                column=fault.column,
-                raw=raw,
+                column=typed.text.raw_columns.get(fault.column, fault.column),
+                raw=typed.text.written(fault.column, here),
                 coupon=typed.coupon[here],
                 coupon_ids=typed.columns[_ID].text.take(here),
                 reading_no=typed.number[here],
-                hint=_hints(fault, raw),
+                hint=_hints(fault, typed, here),
                 also=_also(typed, later, here),
                 excluded_by=take_or_null(self._exclusions.by, exclusion),
                 excluded_at=take_or_null(self._exclusions.at, exclusion),
@@ -336,18 +356,15 @@ def _integers(column: Column) -> NDArray[np.int64]:
     return np.asarray(column.values, dtype=np.int64)
 
 
-def _raw(typed: _Typed, column: str, rows: NDArray[np.intp]) -> list[str]:
-    cells = typed.text.cells
-    if column not in cells.schema.names:  # such as ball_mm where a file has none
-        return [""] * len(rows)
-    return take(column_of(cells, column), rows)
-
-
-def _hints(fault: Fault, raw: list[str]) -> list[str | None] | None:
+def _hints(fault: Fault, typed: _Typed, rows: NDArray[np.intp]) -> list[str | None] | None:
     if fault.hint is None:
         return None
-    each = {cell: fault.hint(cell) or None for cell in set(raw)}
-    return [each[cell] for cell in raw]
+    if fault.of_raw or fault.column not in typed.text.cells.schema.names:
+        cells = typed.text.written(fault.column, rows)
+    else:
+        cells = take(column_of(typed.text.cells, fault.column), rows)
+    each = {cell: fault.hint(cell) or None for cell in set(cells)}
+    return [each[cell] for cell in cells]
 
 
 def _also(typed: _Typed, faults: list[Fault], rows: NDArray[np.intp]) -> list[str | None] | None:
@@ -357,13 +374,18 @@ def _also(typed: _Typed, faults: list[Fault], rows: NDArray[np.intp]) -> list[st
     words: list[list[str]] = [[] for _ in rows]
     for fault in faults:
         places = np.flatnonzero(fault.rows[rows])
-        for place, cell in zip(places, _raw(typed, fault.column, rows[places]), strict=True):
-            words[place].append(f"{fault.column}: {fault.reason.id} ({cell!r})")
+        column = typed.text.raw_columns.get(fault.column, fault.column)
+        cells = typed.text.written(fault.column, rows[places])
+        for place, cell in zip(places, cells, strict=True):
+            words[place].append(f"{column}: {fault.reason.id} ({cell!r})")
     return ["; ".join(each) or None for each in words]
 
 
-def _width_hint(found: int, expected: int) -> str:
-    more = "an unquoted comma or a decimal comma" if found > expected else "a missing comma"
+def _width_hint(found: int, expected: int, *, tidy: bool) -> str:
+    if tidy:
+        more = "an unquoted comma or a decimal comma" if found > expected else "a missing comma"
+    else:
+        more = "a delimiter inside a cell" if found > expected else "a missing cell"
     return f"{found} cells where the header has {expected}: look for {more}"
 
 

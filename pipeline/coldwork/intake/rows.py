@@ -51,6 +51,7 @@ class Rows(NamedTuple):
 def rows_of(
     data: bytes,
     first: int,
+    count: int,
     columns: Sequence[str],
     *,
     written: bytes,
@@ -66,6 +67,8 @@ def rows_of(
         Whole lines, ended by line feeds, in UTF-8; with clean quotes.
     first : int
         Number of the first line.
+    count : int
+        How many lines they are.
     columns : sequence of str
         Name of each cell of a row; no two are equal.
     written : bytes
@@ -84,7 +87,7 @@ def rows_of(
     """
     misfits: list[_Misfit] = []
     cells = _parse(data, columns, delimiter, quotes and b'"' in data, kept or columns, misfits)
-    lines = first + _filled(data, cells.num_rows + len(misfits))
+    lines = first + _filled(data, count, cells.num_rows + len(misfits))
     if not misfits:
         return Rows(cells, lines, [])
     places = [misfit.place for misfit in misfits]
@@ -143,9 +146,9 @@ def _parse(
     return batches[0] if batches else pa.RecordBatch.from_pylist([], schema)
 
 
-def _filled(data: bytes, rows: int) -> NDArray[np.int64]:
+def _filled(data: bytes, count: int, rows: int) -> NDArray[np.int64]:
     """Index of the line of each row: of each line that is not empty."""
-    if rows == data.count(b"\n") + (not data.endswith(b"\n")):
+    if rows == count:
         return np.arange(rows, dtype=np.int64)
     feeds = np.flatnonzero(np.frombuffer(data, dtype=np.uint8) == ord("\n"))
     starts = np.concatenate(([0], feeds + 1))

@@ -170,7 +170,7 @@ class TableText:
         return Cause(f"{self._name}, line {line}", what, _OPEN, mend)
 
     def _block(self, lines: Lines, data: bytes) -> TextBlock:
-        rows = rows_of(data, lines.first, self.columns, written=lines.data)
+        rows = rows_of(data, lines.first, lines.lines, self.columns, written=lines.data)
         return TextBlock(self._file, rows.lines, rows.cells, rows.torn)
 
 

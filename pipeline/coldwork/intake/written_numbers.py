@@ -53,7 +53,7 @@ class Signs:
         match = _NUMBER.fullmatch(text)
         if match is None:
             return text if text == AMBIGUOUS else REFUSED
-        if step == Step():
+        if step.shift == 0:
             return text
         return _stepped(text, match, step)
 

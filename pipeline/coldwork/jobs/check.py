@@ -69,8 +69,8 @@ class Checked:
     def _counts(self) -> dict[str, int]:
         return {
             "read": self.batch.readings_read,
-            "used": int(self.batch.reduced.used.sum()),
-            "set_aside": self.batch.set_aside.count,
+            "used": self.batch.readings_used,
+            "set_aside": self.batch.readings_set_aside,
         }
 
     def _set_aside_lines(self) -> list[str]:
@@ -131,8 +131,8 @@ def check(batch: str | Path) -> Checked:
         reduced.mean_diagonal,
         reduced.ball,
     )
-    flags = gathered.findings.table(gathered.coupons.ids, gathered.coupons.lot_ids)
-    return Checked(gathered, gathered.set_aside.table(), flags)
+    flags = pa.concat_tables(list(gathered.flags()))
+    return Checked(gathered, gathered.set_aside_table(), flags)
 
 
 def _hung(words: str) -> list[str]:

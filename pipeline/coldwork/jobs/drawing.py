@@ -7,6 +7,7 @@ import numpy as np
 import pyarrow as pa
 
 from coldwork import contracts
+from coldwork.jobs.curve_frames import curve_frames
 from coldwork.jobs.gather import Gathered
 
 if TYPE_CHECKING:
@@ -23,6 +24,8 @@ _FRAMES: Final = (
     "decisions",
     "quantities",
     "flags",
+    "tensile",
+    "evolution",
 )
 
 
@@ -105,7 +108,9 @@ class Drawing:
             for name, parts in self._parts.items()
             if parts
         }
-        return frames | {"scatter": self._scatter(), "coupons_in": self._coupons_in()}
+        beside = {"scatter": self._scatter(), "coupons_in": self._coupons_in()}
+        curves = self._batch.curves
+        return frames | beside | (curve_frames(curves, self._batch.coupons) if curves else {})
 
     def _scatter(self) -> "pd.DataFrame":
         import pandas as pd

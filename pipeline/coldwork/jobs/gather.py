@@ -1,31 +1,40 @@
 """From a batch folder to one row per coupon: everything before the chain."""
 
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, replace
 from pathlib import Path
+from typing import Final
 
 import numpy as np
+import pyarrow as pa
 from numpy.typing import NDArray
 
 from coldwork import contracts
 from coldwork.errors import BatchRefused, Cause
 from coldwork.inputs.method import Method
 from coldwork.intake.coupons import Coupons, read_coupons
-from coldwork.intake.exclusions import no_exclusions, read_exclusions
+from coldwork.intake.exclusions import Exclusions, no_exclusions, read_exclusions
 from coldwork.intake.files import BLOCK_BYTES, SourceFile, TableFiles
+from coldwork.intake.printed import Printed
 from coldwork.intake.readings import read_readings
 from coldwork.intake.set_aside import SetAside
-from coldwork.intake.text import check_headers
+from coldwork.intake.sources import check_headers
+from coldwork.jobs.curves import CurveReading, check_curves, read_curves
 from coldwork.jobs.kept import KeptReadings
 from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.coupon_rules import judge_coupon_cells, judge_scales
+from coldwork.judge.printed import judge_printed
 from coldwork.reduce.reduced import Reduced
 from coldwork.reduce.stream import Byproducts, reduce_batch
+from coldwork.reduce.tensile import CurveKeep, Curves, flow_of_curves
+from coldwork.rules.bits import with_error
 from coldwork.rules.coupon import SCATTER
 from coldwork.rules.findings import Findings
 from coldwork.scatter import Repeatability, repeatability
 
 __all__ = ["Gathered", "gather"]
+
+_READINGS: Final = frozenset({"indents", "flow_stress", "curves"})
 
 
 @dataclass(frozen=True)
@@ -50,6 +59,8 @@ class Gathered:
         Names of the files that hold readings.
     sources : tuple of SourceFile
         Every table that was read, with digest and counts.
+    curves : Curves or None
+        What its curves came to; they give the flow stresses, or stand beside the readings.
     """
 
     method: Method
@@ -60,11 +71,62 @@ class Gathered:
     set_aside: SetAside
     files: tuple[str, ...]
     sources: tuple[SourceFile, ...]
+    curves: Curves | None = None
 
     @property
     def readings_read(self) -> int:
-        """Rows of readings, used and set aside."""
-        return sum(s.rows_read for s in self.sources if s.table in {"indents", "flow_stress"})
+        """Rows of readings, points of curves among them, used and set aside."""
+        return sum(s.rows_read for s in self.sources if s.table in _READINGS)
+
+    @property
+    def readings_used(self) -> int:
+        """Those that were used."""
+        beside = 0 if self._beside is None or self.curves is None else self.curves.points
+        return int(self.reduced.used.sum()) + beside
+
+    @property
+    def readings_set_aside(self) -> int:
+        """Those that were not."""
+        beside = 0 if self._beside is None else self._beside.set_aside.count
+        return self.set_aside.count + beside
+
+    @property
+    def errors(self) -> int:
+        """Coupons on which, or on whose curve, an error was found."""
+        found = with_error(self.findings.bits)
+        if self._beside is not None:
+            found = found | with_error(self._beside.findings.bits)
+        return int(np.count_nonzero(found))
+
+    def set_aside_table(self) -> pa.Table:
+        """Give all that was set aside, in the columns of out/set_aside."""
+        own = self.set_aside.table()
+        if self._beside is None:
+            return own
+        return pa.concat_tables([self._beside.set_aside.table(), own])  # curves sort first
+
+    def flags(self) -> Iterator[pa.Table]:
+        """Give all findings in pieces, those on curves beside the readings last."""
+        ids, lots = self.coupons.ids, self.coupons.lot_ids
+        yield from self.findings.slices(ids, lots)
+        if self._beside is not None:
+            yield from map(_emptying_nothing, self._beside.findings.slices(ids, lots))
+
+    def flags_of(self, rows: slice) -> pa.Table:
+        """Give the findings on a slice of coupons."""
+        ids, lots = self.coupons.ids, self.coupons.lot_ids
+        own = self.findings.of(rows, ids, lots)
+        if self._beside is None:
+            return own
+        beside = _emptying_nothing(self._beside.findings.of(rows, ids, lots))
+        return pa.concat_tables([own, beside])
+
+    @property
+    def _beside(self) -> Byproducts | None:
+        """What was found on curves that stand beside the readings."""
+        if self.curves is None or self.curves.beside.findings is self.findings:
+            return None
+        return self.curves.beside
 
 
 def gather(
@@ -72,6 +134,8 @@ def gather(
     *,
     keep: Path | None = None,
     block_bytes: int = BLOCK_BYTES,
+    pictures: bool = False,
+    points: CurveKeep | None = None,
 ) -> tuple[Gathered, KeptReadings | None]:
     """Read a batch, reduce its readings and judge their scatter.
 
@@ -83,6 +147,10 @@ def gather(
         A file in which used readings wait until records are written.
     block_bytes : int, optional
         How much is read at once. [byte]
+    pictures : bool, optional
+        Whether thinned curves are kept for plots.
+    points : CurveKeep, optional
+        Where all points of curves are kept, if they are.
 
     Returns
     -------
@@ -96,41 +164,138 @@ def gather(
     BatchRefused
         With everything that is wrong with its files as wholes.
     """
-    table = "flow_stress" if method.laws.route == "flow" else "indents"
-    files = _files(method, table, method.flow_stress if table == "flow_stress" else method.indents)
-    paths = () if method.exclusions is None else (method.exclusions,)
-    excluding = _files(method, "exclusions", paths)
-    coupons = _coupons(method, (files, excluding), block_bytes)
-    zone = method.timezone
-    exclusions = read_exclusions(excluding, coupons, zone) if paths else no_exclusions()
-    findings, set_aside = Findings(len(coupons)), SetAside(len(coupons))
-    kept = None if keep is None else KeptReadings(keep, f"in/{table}")
-    stream = read_readings(files, coupons, exclusions, set_aside, zone, block_bytes=block_bytes)
-    reduced = reduce_batch(stream, files, method, coupons, Byproducts(findings, set_aside, kept))
+    files = _reading_files(method)
+    excluding = _files(method, "exclusions", _one(method.exclusions))
+    curves = _how_curves(method, block_bytes, pictures=pictures, keep=points)
+    coupons = _coupons(method, (files, excluding), curves, block_bytes)
+    exclusions = (
+        read_exclusions(excluding, coupons, method.timezone) if excluding.paths else no_exclusions()
+    )
+    beside = Byproducts(Findings(len(coupons)), SetAside(len(coupons)))
+    kept = None if keep is None else KeptReadings(keep, files.raw_names())
+    if curves is not None and method.laws.flow_from == "curves":
+        found = _read_of_curves(curves, method, coupons, exclusions, beside)
+    else:
+        with_keep = Byproducts(beside.findings, beside.set_aside, kept)
+        found = _read(files, method, coupons, exclusions, with_keep, block_bytes)
+        if curves is not None:
+            found = _with_curves(found, curves, method, coupons)
     if kept is not None:
         kept.close(len(coupons))
-    causes = [*stream.unmatched(), *_nothing_left(reduced.used)]
+    causes = [*found.causes, *_nothing_left(found.reduced.used)]
     if causes:
         raise BatchRefused(str(method.folder), causes)
-    scatter = repeatability(method, reduced, coupons.conditions)
-    _note_scatter(findings, scatter)
-    judge_coupon_cells(findings, method, coupons)
-    judge_scales(findings, method, reduced.scale)
-    judge_inputs(findings, method)
-    sources = (*coupons.sources, *exclusions.sources, *stream.sources)
+    scatter = repeatability(method, found.reduced, coupons.conditions)
+    _note_scatter(beside.findings, scatter)
+    judge_coupon_cells(beside.findings, method, coupons)
+    judge_scales(beside.findings, method, found.reduced.scale)
+    judge_inputs(beside.findings, method)
+    judge_printed(beside.findings, found.printed, files.names)
     gathered = Gathered(
-        method, coupons, reduced, scatter, findings, set_aside, files.names, sources
+        method,
+        coupons,
+        found.reduced,
+        scatter,
+        beside.findings,
+        beside.set_aside,
+        files.names,
+        (*coupons.sources, *exclusions.sources, *found.sources),
+        found.curves,
     )
     return gathered, kept
 
 
+@dataclass(frozen=True)
+class _Found:
+    """What the readings of a batch came to, and why it may have to be refused."""
+
+    reduced: Reduced
+    sources: tuple[SourceFile, ...]
+    causes: tuple[Cause, ...] = ()
+    printed: Sequence[Printed] = ()
+    curves: Curves | None = None
+
+
+def _read(
+    files: TableFiles,
+    method: Method,
+    coupons: Coupons,
+    exclusions: Exclusions,
+    beside: Byproducts,
+    block_bytes: int,
+) -> _Found:
+    """Read and reduce indents or points of flow stress."""
+    stream = read_readings(
+        files,
+        coupons,
+        exclusions,
+        beside.set_aside,
+        method.timezone,
+        block_bytes=block_bytes,
+    )
+    reduced = reduce_batch(stream, files, method, coupons, beside)
+    causes = tuple(stream.unmatched())
+    return _Found(reduced, tuple(stream.sources), causes, stream.printed)
+
+
+def _read_of_curves(
+    how: CurveReading,
+    method: Method,
+    coupons: Coupons,
+    exclusions: Exclusions,
+    beside: Byproducts,
+) -> _Found:
+    """Read and reduce curves, and take the flow stresses from them."""
+    curves, sources = read_curves(how, method, coupons, exclusions, beside)
+    reduced = flow_of_curves(curves, method, len(coupons))
+    return _Found(reduced, tuple(sources), curves=curves)
+
+
+def _with_curves(found: _Found, how: CurveReading, method: Method, coupons: Coupons) -> _Found:
+    """Read and reduce curves that stand beside the readings, and touch nothing of those."""
+    apart = Byproducts(Findings(len(coupons)), SetAside(len(coupons)))
+    curves, sources = read_curves(how, method, coupons, no_exclusions(), apart)
+    return replace(found, sources=(*found.sources, *sources), curves=curves)
+
+
+def _how_curves(
+    method: Method, block_bytes: int, *, pictures: bool, keep: CurveKeep | None
+) -> CurveReading | None:
+    if not method.curves:
+        return None
+    files = _files(method, "curves", method.curves)
+    return CurveReading(files, block_bytes, pictures, keep)
+
+
+def _reading_files(method: Method) -> TableFiles:
+    """Give the files that the strength of the coupons comes from."""
+    if method.laws.route == "indent":
+        return _files(method, "indents", method.indents)
+    if method.laws.flow_from == "curves":
+        return _files(method, "curves", method.curves)
+    return _files(method, "flow_stress", method.flow_stress)
+
+
+def _one(path: Path | None) -> tuple[Path, ...]:
+    return () if path is None else (path,)
+
+
 def _files(method: Method, table: str, paths: tuple[Path, ...]) -> TableFiles:
-    return TableFiles(contracts.load(f"in/{table}"), method.folder, paths)
+    layouts = method.layouts.get(table, ())
+    return TableFiles(contracts.load(f"in/{table}"), method.folder, paths, layouts)
 
 
-def _coupons(method: Method, others: Sequence[TableFiles], block_bytes: int) -> Coupons:
+def _coupons(
+    method: Method,
+    others: Sequence[TableFiles],
+    curves: CurveReading | None,
+    block_bytes: int,
+) -> Coupons:
     """Read the list; tell its faults together with those of the other tables' headers."""
-    causes = [cause for files in others for cause in check_headers(files)]
+    apart = [files for files in others if files.contract.table != "curves"]
+    causes = [cause for files in apart for cause in check_headers(files)]
+    if curves is not None and method.tensile is not None:
+        causes += check_curves(curves.files, method.tensile)
     try:
         coupons = read_coupons(
             _files(method, "coupons", method.coupons), method.timezone, block_bytes=block_bytes
@@ -153,6 +318,12 @@ def _nothing_left(used: NDArray[np.int64]) -> list[Cause]:
             "Run `coldwork check` on it to see why each reading was set aside.",
         )
     ]
+
+
+def _emptying_nothing(flags: pa.Table) -> pa.Table:
+    """Take out which columns of the coupon an error empties, where it empties none of it."""
+    place = flags.column_names.index("empties")
+    return flags.set_column(place, "empties", pa.nulls(len(flags), pa.string()))
 
 
 def _note_scatter(findings: Findings, scatter: Repeatability) -> None:

@@ -1,5 +1,6 @@
 """Readings that wait on the disk until their coupons' records are written."""
 
+from collections.abc import Sequence
 from pathlib import Path
 from typing import Any, Final, TypeAlias
 
@@ -32,13 +33,13 @@ class KeptReadings:
     ----------
     path : Path
         The file; it need not exist.
-    table : str
-        Contract of the readings, ``in/indents`` or ``in/flow_stress``.
+    columns : sequence of str
+        Every name that a cell as written may stand under.
     """
 
-    def __init__(self, path: Path, table: str) -> None:
+    def __init__(self, path: Path, columns: Sequence[str]) -> None:
         self._path = path
-        self._columns = contracts.load(table).columns
+        self._columns = tuple(columns)
         self._schema = pa.schema(
             [("coupon", pa.int32()), ("file", pa.int64()), ("line", pa.int64())]
             + [("reading_no", pa.int64()), ("scale", pa.int8()), ("marks", pa.uint64())]

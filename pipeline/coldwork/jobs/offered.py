@@ -138,5 +138,5 @@ def sheet_lines(found: Offered, source: str) -> str:
         value, u = units.from_si(np.array([found.values[i], found.u[i]]), "MPa").tolist()
         told, told_u = rounded(value, u)
         spread = f", u = {told_u}" if told_u else ""
-        lines.append(f'{key} = {{ value = {told}{spread}, source = {quoted} }}')
+        lines.append(f"{key} = {{ value = {told}{spread}, source = {quoted} }}")
     return "\n".join(lines)

@@ -57,7 +57,7 @@ def process(
     reason : str, optional
         Why; required with `replace`.
     plots : bool, optional
-        Whether plots are drawn into the results.
+        Whether plots are drawn into the results; without `into` there are none.
 
     Returns
     -------

@@ -1,10 +1,6 @@
 """The main job, stage by stage: a batch folder in, its results out, whole or not at all."""
 
-import getpass
-import platform
-import socket
 from collections.abc import Callable, Iterator, Mapping
-from contextlib import suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from hashlib import sha256
@@ -12,22 +8,22 @@ from pathlib import Path
 from tempfile import TemporaryDirectory
 from typing import Any, Final
 
-import numpy as np
 import pyarrow as pa
 
-from coldwork import contracts
+from coldwork.inputs.method import Method
 from coldwork.inputs.sheet import read_method
+from coldwork.jobs.curve_points import CurvePoints
 from coldwork.jobs.drawing import Drawing
 from coldwork.jobs.gather import Gathered, gather
 from coldwork.jobs.kept import KeptReadings
 from coldwork.jobs.lots import Lots
+from coldwork.jobs.manifest import manifest_of
 from coldwork.jobs.slices import Sliced, work_slice
 from coldwork.results.documents import dump
 from coldwork.results.lines import LineWriter
 from coldwork.results.records import Common, Slice, build, seal
 from coldwork.results.tables import TableWriter
 from coldwork.results.target import open_target
-from coldwork.rules.bits import with_error
 
 __all__ = ["Outcome", "record_again", "run"]
 
@@ -125,10 +121,12 @@ def run(
     with open_target(into, method.batch_id, replace=replace, reason=reason) as target:
         full = method.detail == "full"
         tell("reading")
-        batch, kept = gather(method, keep=target.scratch / "readings.arrow" if full else None)
+        points = _points_wanted(method, target.scratch)
+        keep = target.scratch / "readings.arrow" if full else None
+        batch, kept = gather(method, keep=keep, pictures=plots, points=points)
         drawing = Drawing(batch, wanted=plots)
         lots = Lots(batch)
-        names = (*_ALWAYS, *(_FULL if full else ()))
+        names = (*_ALWAYS, *_of_curves(batch), *(_FULL if full else ()))
         tables = _Tables({name: target.table(name, method.tables) for name in names}, drawing)
         target.write("method.json", dump("method", method.document))
         records = target.lines("records.jsonl") if full else None
@@ -136,19 +134,21 @@ def run(
         decisions = lots.write(tables.writers["lots"])
         for writer in tables.writers.values():
             writer.close()
+        if points is not None:
+            points.write(target.table("curve_points", ("parquet",)))
         tell("drawing" if drawing.wanted else "writing")
         for name, data in drawing.files():
             target.write(name, data)
-        path = target.commit(_manifest(batch, started))
+        path = target.commit(manifest_of(batch, started))
     return Outcome(
         path=path,
         batch_id=method.batch_id,
         coupons=len(batch.coupons),
         readings_read=batch.readings_read,
-        readings_used=int(batch.reduced.used.sum()),
-        readings_set_aside=batch.set_aside.count,
+        readings_used=batch.readings_used,
+        readings_set_aside=batch.readings_set_aside,
         decisions=decisions,
-        errors=int(np.count_nonzero(with_error(batch.findings.bits))),
+        errors=batch.errors,
         plots=drawing.said,
     )
 
@@ -173,7 +173,7 @@ def record_again(folder: Path, coupon: str) -> dict[str, Any]:
         batch, kept = gather(method, keep=Path(scratch) / "readings.arrow")
         place = int(batch.coupons.index(pa.array([coupon], pa.string()))[0])
         part = work_slice(batch, slice(place, place + 1), kept)
-        return build(_common(batch), _record_slice(batch, part, batch.set_aside.table()))[0]
+        return build(_common(batch), _record_slice(batch, part, batch.set_aside_table()))[0]
 
 
 @dataclass(frozen=True)
@@ -199,7 +199,7 @@ def _work(
 ) -> None:
     """Work the coupons slice by slice, and write what each slice comes to."""
     common = _common(batch)
-    aside = batch.set_aside.table()
+    aside = batch.set_aside_table()
     tables.write("set_aside", aside)
     done = 0
     for rows in _slices(len(batch.coupons), _FULL_SLICE if kept else _SLICE):
@@ -214,10 +214,22 @@ def _work(
             tables.write(name, table)
         done += part.n
         tell(f"computing, {done} of {len(batch.coupons)} coupons")
-    for piece in batch.findings.slices(batch.coupons.ids, batch.coupons.lot_ids):
+    for piece in batch.flags():
         tables.write("flags", piece)
     if records is not None:
         records.close()
+
+
+def _points_wanted(method: Method, scratch: Path) -> CurvePoints | None:
+    wanted = method.tensile is not None and method.tensile.curve_points
+    return CurvePoints(scratch / "points.arrow") if wanted else None
+
+
+def _of_curves(batch: Gathered) -> tuple[str, ...]:
+    """Name the tables that curves bring."""
+    if batch.curves is None:
+        return ()
+    return ("tensile", "evolution") if batch.method.laws.route == "flow" else ("tensile",)
 
 
 def _common(batch: Gathered) -> Common:
@@ -229,7 +241,7 @@ def _common(batch: Gathered) -> Common:
 
 def _record_slice(batch: Gathered, part: Sliced, aside: pa.Table) -> Slice:
     rows = part.rows
-    paths = [source.path for source in batch.coupons.sources]
+    paths = [source.name for source in batch.coupons.sources]
     tables = part.tables(pa.nulls(part.n, pa.string()))
     return Slice(
         coupons=tables["coupons"],
@@ -244,62 +256,13 @@ def _record_slice(batch: Gathered, part: Sliced, aside: pa.Table) -> Slice:
         decisions=tables["decisions"],
         repeatability=part.repeatability(),
         steps=part.steps(),
+        curves=part.curves(),
     )
 
 
 def _slices(n: int, size: int) -> Iterator[slice]:
     for begin in range(0, n, size):
         yield slice(begin, min(begin + size, n))
-
-
-def _manifest(batch: Gathered, started: datetime) -> dict[str, object]:
-    method = batch.method
-    sheets = [
-        {
-            "path": name,
-            "table": "sheet",
-            "sha256": digest,
-            "bytes": (method.folder / name).stat().st_size,
-            "rows_read": 0,
-            "rows_used": 0,
-            "rows_set_aside": 0,
-        }
-        for name, digest in method.sheets
-    ]
-    tables = [
-        {
-            "path": s.path,
-            "table": s.table,
-            "sha256": s.sha256,
-            "bytes": s.bytes,
-            "rows_read": s.rows_read,
-            "rows_used": s.rows_used,
-            "rows_set_aside": s.rows_set_aside,
-        }
-        for s in batch.sources
-    ]
-    user = "unknown"
-    with suppress(KeyError, OSError):  # an account without a name
-        user = getpass.getuser()
-    return {
-        "schema_version": contracts.document("manifest")["version"],
-        "batch_id": method.batch_id,
-        "inputs": [*sheets, *tables],
-        "reconciled": {
-            "readings_read": batch.readings_read,
-            "readings_used": int(batch.reduced.used.sum()),
-            "readings_set_aside": batch.set_aside.count,
-            "coupons": len(batch.coupons),
-        },
-        "run": {
-            "started_at": started.isoformat(),
-            "finished_at": datetime.now(UTC).isoformat(),
-            "host": socket.gethostname(),
-            "user": user,
-            "python": platform.python_version(),
-            "platform": platform.platform(),
-        },
-    }
 
 
 def _silent(_words: str) -> None:

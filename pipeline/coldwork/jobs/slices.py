@@ -20,17 +20,21 @@ from coldwork.jobs.evaluate import (
     inputs_of,
     start_of,
 )
+from coldwork.jobs.evolution import evolution_table
 from coldwork.jobs.figures import Figures, figures_of
 from coldwork.jobs.gather import Gathered
 from coldwork.jobs.judging import Held, decide_slice, decisions_table, find_in_slice
 from coldwork.jobs.kept import KeptReadings
+from coldwork.jobs.offered import Baseline
 from coldwork.jobs.steps import repeatability_of, steps_of
 from coldwork.jobs.tables import (
     WITH_UNCERTAINTY,
     budget_table,
     coupons_table,
     quantities_table,
+    unit_of_mean,
 )
+from coldwork.jobs.tensile import baselines, curve_records, tensile_table
 from coldwork.judge.decisions import Worst, decision_texts, worst
 from coldwork.measured import value_of
 from coldwork.results.records import Step
@@ -104,7 +108,7 @@ class Sliced:
             "coupons": coupons.set_column(place, "record_sha256", shas),
             "decisions": self._decisions,
         }
-        return found | self._details
+        return found | self._of_curves | self._details
 
     @cached_property
     def _coupons(self) -> pa.Table:
@@ -144,6 +148,27 @@ class Sliced:
             "budget": budget_table(batch, self.rows, self.figures, self.spreads, own),
         }
 
+    @cached_property
+    def _of_curves(self) -> dict[str, pa.Table]:
+        batch = self.batch
+        if batch.curves is None:
+            return {}
+        found = {"tensile": tensile_table(batch, self.rows, self._baselines)}
+        if batch.method.laws.route == "flow":
+            found["evolution"] = evolution_table(batch, self.rows)
+        return found
+
+    @cached_property
+    def _baselines(self) -> list[Baseline]:
+        name = "baseline_stress_mpa"
+        return baselines(self.evaluated.results[name], self.evaluated.combined[name])
+
+    def curves(self) -> list[dict[str, Any] | None] | None:
+        """Tell of each coupon's curve what its record keeps; None where there are none."""
+        if self.batch.curves is None:
+            return None
+        return curve_records(self.batch, self.rows, self._baselines)
+
     @property
     def raw_readings(self) -> pa.Table:
         """The readings' cells as written, row for row with the table of readings."""
@@ -151,12 +176,11 @@ class Sliced:
 
     def flags(self) -> pa.Table:
         """Give the findings on the slice's coupons."""
-        coupons = self.batch.coupons
-        return self.batch.findings.of(self.rows, coupons.ids, coupons.lot_ids)
+        return self.batch.flags_of(self.rows)
 
     def repeatability(self) -> list[dict[str, object]]:
         """Tell what each coupon's scatter was judged by."""
-        unit = "MPa" if self.batch.method.laws.route == "flow" else "kgf/mm2"
+        unit = unit_of_mean(self.batch.method)
         return repeatability_of(self.batch.scatter, self.rows, unit)
 
     def steps(self) -> list[Step]:

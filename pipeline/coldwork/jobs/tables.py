@@ -25,6 +25,7 @@ __all__ = [
     "lots_table",
     "quantities_table",
     "unit_of",
+    "unit_of_mean",
 ]
 
 _Floats = NDArray[np.float64]
@@ -46,6 +47,11 @@ _SPREAD: Final = ("u_own", "u_shared", "u", "lower", "upper")
 def unit_of(quantity: str) -> str:
     """Give the unit in which a quantity is published (UCUM)."""
     return contracts.load("out/coupons").field(quantity).unit or "1"
+
+
+def unit_of_mean(method: Method) -> str:
+    """Give the unit in which the mean of the readings is published (UCUM)."""
+    return unit_of("flow_stress_mpa" if method.laws.route == "flow" else "hardness")
 
 
 def coupons_table(
@@ -297,7 +303,7 @@ def _input_unit(method: Method, source: str) -> str:
     if source == GRAIN:
         return "um"
     if source == REPEATABILITY:
-        return "MPa" if method.laws.route == "flow" else "kgf/mm2"
+        return unit_of_mean(method)
     return method.inputs[source].unit
 
 

@@ -8,7 +8,17 @@ from collections.abc import Iterator
 
 from matplotlib.figure import Figure
 
-from coldwork.plots import budget, density, drift, readings, scatter, stored_energy
+from coldwork.plots import (
+    budget,
+    curves,
+    density,
+    drift,
+    evolution,
+    hardening,
+    readings,
+    scatter,
+    stored_energy,
+)
 from coldwork.plots.columns import Frames
 from coldwork.plots.context import Context
 from coldwork.plots.style import save
@@ -22,6 +32,10 @@ _SUBJECTS = (
     ("uncertainty", budget.draw),
     ("scatter", scatter.draw),
     ("drift", drift.draw),
+    ("curves", curves.draw),
+    ("hardening-rate", hardening.draw),
+    ("density-along-strain", evolution.draw_density),
+    ("energy-along-strain", evolution.draw_energy),
 )
 
 
@@ -35,7 +49,8 @@ def draw_all(frames: Frames, context: Context) -> Iterator[tuple[str, Figure]]:
         `decisions`, `quantities`, `flags`), columns in their contracts' units; `scatter`
         with `coupon_id`, `n`, `relative_s`, `pooled_relative_s`, `limit_relative_s`,
         `left_pool` and `group`; `coupons_in` with `coupon_id` and `prior_true_strain`.
-        A table that is not there is empty.
+        A batch with curves has `tensile`, `evolution`, `curve_lines`, `curve_slopes` and
+        `curve_rates` too, as `curves` and `hardening` say. A table that is not there is empty.
     context : Context
         The batch.
 

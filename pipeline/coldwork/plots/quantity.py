@@ -26,6 +26,7 @@ _HEADINGS = {
     "stored_energy_j_per_g": ("Stored energy in dislocations", "J/g"),
     "temperature_rise_k": ("Temperature rise if the stored energy were released", "K"),
     "stored_fraction_of_work": ("Stored fraction of the plastic work", "1"),
+    "plastic_work_j_per_m3": ("Plastic work of the test", "J/m³"),
 }
 _SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 _WIDE = 50.0  # largest over middle value from which an axis is logarithmic

@@ -19,6 +19,7 @@ FloatArray = NDArray[np.float64]
 
 _COLUMNS: Final = 480  # pixel columns; a panel of three inches has as many [1]
 _BEYOND: Final = 2.5  # the part about yield reaches so many times the strain of the proof stress
+_LEAST: Final = 0.025  # and this far at least, so that coupons can be drawn alike [1]
 _OFFSET: Final = 0.002  # of that proof stress [1]
 
 
@@ -106,6 +107,6 @@ def _end_of_yield(strain: FloatArray, result: CurveResult) -> int:
     proof = result.proof.get(_OFFSET)
     if proof is None or result.slope is None:
         return int(strain.size)
-    limit = _BEYOND * (_OFFSET + proof.value / result.slope.value)
+    limit = max(_LEAST, _BEYOND * (_OFFSET + proof.value / result.slope.value))
     beyond = np.flatnonzero(strain > limit)
     return int(beyond[0]) if beyond.size else int(strain.size)

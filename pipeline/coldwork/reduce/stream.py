@@ -122,13 +122,15 @@ def put_repeats_aside(
     for file in dict.fromkeys(repeats.file.tolist()):
         here = np.flatnonzero(repeats.file == file)
         part = repeats.take(here)
+        own = files.raw_name(file, column)
+        raw = part.raw[own] if own in part.raw.column_names else None
         set_aside.add(
             REPEATED_READING,
             table=table,
             file=files.names[file],
             lines=part.lines,
-            column=column,
-            raw=cast("pa.StringArray", part.raw[column].combine_chunks()),
+            column=own,
+            raw=None if raw is None else cast("pa.StringArray", raw.combine_chunks()),
             coupon=part.coupon,
             coupon_ids=coupons.ids.take(pa.array(part.coupon, pa.int32())),
             reading_no=part.number,

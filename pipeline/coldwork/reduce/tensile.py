@@ -4,9 +4,9 @@ Streams like the readings do: a coupon's points are put together, reduced, and l
 before the next coupon's. What is kept of a curve does not grow with its points.
 """
 
-from collections.abc import Callable, Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, replace
-from typing import Final, TypeAlias
+from typing import Final, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -31,16 +31,22 @@ from coldwork.reduce.curve import (
 from coldwork.reduce.curve_reduction import reduce_curve
 from coldwork.reduce.picture import Picture, picture_of
 from coldwork.reduce.readings import Readings, ScatteredCoupons, regrouped, whole_coupons
+from coldwork.reduce.reduced import Reduced
 from coldwork.reduce.stream import Byproducts, put_repeats_aside
 from coldwork.rules import curve as rules
+from coldwork.rules.coupon import NO_FLOW_STRESS_AT_STRAIN
 from coldwork.rules.rule import Level, Rule
 
-__all__ = ["CurveSummary", "Curves", "Watch", "reduce_curves", "settings_of"]
+__all__ = [
+    "CurveKeep",
+    "CurveSummary",
+    "Curves",
+    "flow_of_curves",
+    "reduce_curves",
+    "settings_of",
+]
 
 FloatArray = NDArray[np.float64]
-
-Watch: TypeAlias = Callable[[Readings, CurveResult], None]
-"""Is shown the points of each reduced curve, with all that came of them."""
 
 _NOTHING: Final = np.empty(0)
 _SAME: Final = 1e-12  # two strains of the sheet are one within this [1]
@@ -63,6 +69,16 @@ _RULES: Final[Mapping[FaultKind, Rule]] = {
     FaultKind.BARRELLING: rules.BARRELLING,
     FaultKind.FRICTION: rules.FRICTION,
 }
+
+
+class CurveKeep(Protocol):
+    """Where the points of curves are kept."""
+
+    def restart(self) -> None:
+        """Forget what was kept."""
+
+    def add(self, coupon_id: str, file: str, points: Readings, result: CurveResult) -> None:
+        """Keep the points of one curve with what came of them."""
 
 
 @dataclass(frozen=True)
@@ -178,7 +194,7 @@ def reduce_curves(
     beside: Byproducts,
     *,
     pictures: bool = False,
-    watch: Watch | None = None,
+    keep: CurveKeep | None = None,
 ) -> Curves:
     """Reduce all curves of a batch, coupon by coupon.
 
@@ -195,8 +211,8 @@ def reduce_curves(
         Still empty; the stream sets points aside in the same one.
     pictures : bool, optional
         Whether thinned curves are kept for plots.
-    watch : callable, optional
-        Is shown the points of each curve.
+    keep : CurveKeep, optional
+        Where the points of each curve are kept, if they are.
 
     Returns
     -------
@@ -206,12 +222,50 @@ def reduce_curves(
     if method.tensile is None:
         message = "the method says nothing of curves"
         raise RuntimeError(message)
-    shell = _Shell(files, method, method.tensile, coupons, beside, pictures=pictures, watch=watch)
+    shell = _Shell(files, method, method.tensile, coupons, beside, pictures=pictures, keep=keep)
     try:
         return shell.run(whole_coupons(iter(stream), len(coupons)))
     except ScatteredCoupons:
         beside.restart()
+        if keep is not None:
+            keep.restart()
         return shell.run(regrouped(iter(stream)))
+
+
+def flow_of_curves(curves: Curves, method: Method, n: int) -> Reduced:
+    """Take the flow stress that the sheet reports from each coupon's curve.
+
+    Parameters
+    ----------
+    curves : Curves
+        Of a batch whose flow stresses they give; what is missing goes to its findings.
+    method : Method
+        The strain that is reported, and the machine's inputs.
+    n : int
+        Coupons of the batch.
+
+    Returns
+    -------
+    Reduced
+        With the noise of the curve in place of a scatter of readings.
+    """
+    reduced = Reduced.empty(n, tuple(tester.id for tester in method.testers))
+    reduced.own_u = np.full(n, np.nan)
+    missing = []
+    for i, summary in curves.summaries.items():
+        reduced.used[i] = summary.points
+        point = summary.at(method.plastic_strain)
+        if point is None:
+            missing += [i] if summary.trusted else []
+            continue
+        stress = point.flow_stress
+        reduced.mean[i], reduced.own_u[i] = stress.value, stress.u_own
+        for name, slope in stress.sensitivities.items():
+            reduced.machine.setdefault(name, np.zeros(n))[i] = slope
+    curves.beside.findings.add(
+        NO_FLOW_STRESS_AT_STRAIN, np.array(missing, dtype=np.int64), limit=method.plastic_strain
+    )
+    return reduced
 
 
 class _Shell:
@@ -226,7 +280,7 @@ class _Shell:
         beside: Byproducts,
         *,
         pictures: bool,
-        watch: Watch | None,
+        keep: CurveKeep | None,
     ) -> None:
         self._files = files
         self._names = files.names
@@ -235,7 +289,7 @@ class _Shell:
         self._coupons = coupons
         self._beside = beside
         self._pictures = pictures
-        self._watch = watch
+        self._keep = keep
 
     def run(self, stretches: Iterable[tuple[Readings, Readings]]) -> Curves:
         summaries: dict[int, CurveSummary] = {}
@@ -257,8 +311,9 @@ class _Shell:
             trusted = False
         else:
             result = reduce_curve(curve, geometry, self._settings)
-            if self._watch is not None:
-                self._watch(points, result)
+            if self._keep is not None:
+                name = self._coupons.ids[coupon].as_py()
+                self._keep.add(name, self._names[points.file[0]], points, result)
             trusted = self._note_faults(points, result, lengths)
         return CurveSummary(
             file=self._names[points.file[0]],
@@ -300,7 +355,7 @@ class _Shell:
         )
 
     def _read_at(self, points: Readings, result: CurveResult) -> dict[str, object]:
-        """The point at which the flow stress was read: the first at or above its strain."""
+        """Find the point at which the flow stress was read: the first at or above its strain."""
         if self._flow_strain is None:
             return {}
         above = np.flatnonzero(result.true_plastic_strain >= self._flow_strain)
@@ -380,7 +435,7 @@ def _without_points(result: CurveResult) -> CurveResult:
 
 
 def _in_unit_of(rule: Rule, fault: CurveFault) -> tuple[float | None, float | None]:
-    """Value and limit of a fault in its rule's unit. [`rule.unit`]"""
+    """Give value and limit of a fault in its rule's unit. [`rule.unit`]."""
     if rule.unit is None:
         return None, None
     value, limit = units.from_si(np.array([fault.value, fault.limit]), rule.unit).tolist()

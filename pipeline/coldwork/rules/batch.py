@@ -4,7 +4,13 @@ from typing import Final
 
 from coldwork.rules.rule import Level, Rule
 
-__all__ = ["BATCH_RULES", "SKEWED_INPUT", "TESTER_OUT_OF_DATE", "TESTER_UNKNOWN"]
+__all__ = [
+    "BATCH_RULES",
+    "PRINTED_MEAN_DIFFERS",
+    "SKEWED_INPUT",
+    "TESTER_OUT_OF_DATE",
+    "TESTER_UNKNOWN",
+]
 
 TESTER_OUT_OF_DATE: Final = Rule(
     "tester-out-of-date",
@@ -34,5 +40,15 @@ SKEWED_INPUT: Final = Rule(
     "common practice",
     "The interval's tails then come out as 2 and 7 % where 5 is meant.",
 )
+PRINTED_MEAN_DIFFERS: Final = Rule(
+    "printed-mean-differs",
+    Level.WARNING,
+    "a mean or scatter that the file prints is not that of its rows; value in times what rounding"
+    " allows",
+    1.0,
+    "1",
+    "common practice",
+    "A row may be lost, changed or read in another unit than the machine meant.",
+)
 
-BATCH_RULES: Final = (TESTER_OUT_OF_DATE, TESTER_UNKNOWN, SKEWED_INPUT)
+BATCH_RULES: Final = (TESTER_OUT_OF_DATE, TESTER_UNKNOWN, SKEWED_INPUT, PRINTED_MEAN_DIFFERS)

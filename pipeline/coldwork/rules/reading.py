@@ -48,8 +48,6 @@ __all__ = [
 
 FloatArray = NDArray[np.float64]
 
-_ISO_6507: Final = "ISO 6507-1:2018, clause 7 (clause from memory)"
-
 UNEQUAL_DIAGONALS: Final = Rule(
     "unequal-diagonals",
     Level.WARNING,

@@ -19,14 +19,14 @@ __all__ = ["LEAST_POINTS", "LocalFit", "Window", "choose_window", "fit_window"]
 
 FloatArray = NDArray[np.float64]
 
-LEAST_POINTS: Final = 13  # in a window: the 7 coefficients and 6 degrees of freedom
-_BASE: Final = 4  # the order that a window is grown for; it is fitted with two more
+LEAST_POINTS: Final = 11  # in a window: the 5 coefficients and 6 degrees of freedom
+_BASE: Final = 2  # the order that a window is grown for; it is fitted with two more
 _BLOCKS: Final = 64  # means that a window is fitted through
 _GROWTH: Final = 1.25  # of a window from one try to the next
 _FURTHER: Final = 25.0  # F of two further powers that no noise gives (1e-8): they are needed
 _ROUGH: Final = 4.0  # variance of residuals over that of their roughness: there is a corner
 _ENOUGH: Final = 30  # blocks in which that roughness can be told
-_BACK: Final = 4  # tries from there back to where nothing of it is left in the result
+_BACK: Final = 3  # tries from there back to where nothing of it is left in the result
 
 
 @dataclass(frozen=True)

@@ -1,0 +1,162 @@
+"""The part of a curve that is reduced: from the start to the break, without unloading loops."""
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from coldwork.reduce.curve_points import Points
+from coldwork.statistics.noise import point_noise
+
+__all__ = ["LOOP_DROP", "Branch", "Loop", "find_branch", "moving_mean"]
+
+FloatArray = NDArray[np.float64]
+
+LOOP_DROP: Final = 0.05  # of R_m: a fall of the stress along the elastic line counts from here
+_NOISE_DROP: Final = 8.0  # and from this many times the noise
+_ELASTIC: Final = 0.5  # the strain goes back by at least this part of the elastic strain
+_BROKEN: Final = 0.5  # of the greatest stress; below it the coupon has broken
+_SMOOTH: Final = 5  # points of the mean that looks for landmarks
+
+
+@dataclass(frozen=True)
+class Loop:
+    """An unloading and reloading, by places in `Points`; `bottom` is the lowest stress."""
+
+    start: int
+    bottom: int
+    stop: int
+    drop: float  # [Pa]
+
+
+@dataclass(frozen=True)
+class Branch:
+    """Points from the start to the break, without loops.
+
+    Attributes
+    ----------
+    place : ndarray of int64, shape (k,)
+        Places in `Points`.
+    stress, strain : ndarray of float64, shape (k,)
+        As in `Points`. [Pa], [1]
+    noise_stress, noise_strain : float
+        Of one point. [Pa], [1]
+    peak : int
+        Place in the branch of the greatest stress (smoothed); in compression its end.
+    loops : tuple of Loop
+        What was taken out.
+    broke : bool
+        Whether the record goes on past the break.
+    """
+
+    place: NDArray[np.int64]
+    stress: FloatArray
+    strain: FloatArray
+    noise_stress: float
+    noise_strain: float
+    peak: int
+    loops: tuple[Loop, ...]
+    broke: bool
+
+    def __len__(self) -> int:
+        return int(self.place.size)
+
+
+def moving_mean(series: FloatArray, length: int = _SMOOTH) -> FloatArray:
+    """Average `length` points (odd) about each; fewer at the ends. [unit of `series`]."""
+    if length <= 1 or series.size < length:
+        return series
+    half = length // 2
+    sums = np.concatenate([[0.0], np.cumsum(series - series[0])])
+    place = np.arange(series.size)
+    low, high = np.maximum(place - half, 0), np.minimum(place + half + 1, series.size)
+    return np.asarray((sums[high] - sums[low]) / (high - low) + series[0])
+
+
+def find_branch(points: Points, stop: int, slope_guess: float | None = None) -> Branch:
+    """Find the part of a curve that is reduced.
+
+    Parameters
+    ----------
+    points : Points
+        The whole curve.
+    stop : int
+        Place up to which the strain can be trusted.
+    slope_guess : float, optional
+        Elastic slope, which tells a loop from a yield point; the steepest chord from
+        the start where it is not given. [Pa]
+
+    Returns
+    -------
+    Branch
+        The part.
+    """
+    stress, strain = points.stress[:stop], points.strain[:stop]
+    noise_s, noise_e = point_noise(stress), point_noise(strain)
+    mean = moving_mean(stress)
+    last = _last_before_break(stress, mean) if points.sense > 0 else int(np.argmax(moving_mean(strain)))
+    broke = last < stop - 2 and points.sense > 0
+    guess = slope_guess if slope_guess is not None else _steepest(mean, strain, last)
+    loops = _loops(mean[: last + 1], strain[: last + 1], guess, noise_s)
+    keep = np.ones(last + 1, dtype=np.bool_)
+    for loop in loops:
+        keep[loop.start + 1 : loop.stop] = False
+    place = np.flatnonzero(keep)
+    kept = mean[place]
+    peak = int(np.argmax(kept)) if points.sense > 0 else place.size - 1
+    return Branch(place, stress[place], strain[place], noise_s, noise_e, peak, loops, broke)
+
+
+def _last_before_break(stress: FloatArray, mean: FloatArray) -> int:
+    """The last point before the force is lost for good."""
+    peak = int(np.argmax(mean))
+    low = np.flatnonzero(stress[peak:] < _BROKEN * mean[peak])
+    if low.size == 0:
+        return stress.size - 1
+    last = peak + int(low[0])
+    falls = -np.diff(stress[peak : last + 1])
+    typical = max(float(np.median(np.abs(falls))), 1e-300)
+    steep = falls > 20.0 * typical
+    while last > peak and steep[last - peak - 1]:
+        last -= 1
+    return last
+
+
+def _steepest(mean: FloatArray, strain: FloatArray, last: int) -> float:
+    """The steepest chord between fixed fractions of the greatest stress."""
+    top = float(mean[: last + 1].max())
+    rising = np.maximum.accumulate(mean[: last + 1])
+    levels = np.linspace(0.05, 0.5, 10) * top
+    at = np.minimum(np.searchsorted(rising, levels), last)
+    run = moving_mean(strain)[at]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        slopes = np.diff(mean[at]) / np.diff(run)
+    usable = slopes[np.isfinite(slopes) & (slopes > 0.0)]
+    return float(np.max(usable)) if usable.size else float("inf")
+
+
+def _loops(
+    mean: FloatArray, strain: FloatArray, slope: float, noise: float
+) -> tuple[Loop, ...]:
+    """Stretches in which the stress falls along the elastic line and comes back."""
+    best = np.maximum.accumulate(mean)
+    least = max(LOOP_DROP * float(best[-1]), _NOISE_DROP * noise)
+    low = mean < best - least
+    edges = np.flatnonzero(np.diff(np.concatenate([[False], low, [False]]).astype(np.int8)))
+    found = []
+    for first, after in edges.reshape(-1, 2):
+        if after >= mean.size:
+            continue  # never came back
+        start = int(np.flatnonzero(mean[:first] >= best[first] - 1e-12 * abs(best[first]))[-1])
+        bottom = int(first + np.argmin(mean[first:after]))
+        drop = float(best[first] - mean[bottom])
+        back = float(strain[start] - strain[bottom])
+        if back < _ELASTIC * drop / slope:
+            continue
+        again = np.flatnonzero(mean[after:] >= best[first])
+        stop = int(after + again[0]) if again.size else int(after)
+        if found and start < found[-1].stop:
+            continue
+        found.append(Loop(start, bottom, stop, drop))
+    return tuple(found)

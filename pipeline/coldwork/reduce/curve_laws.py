@@ -1,0 +1,233 @@
+"""Laws of hardening fitted to a true curve, and the rate of hardening along it."""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from coldwork.formulas.hardening_laws import HOLLOMON_STRESS, VOCE_STRESS
+from coldwork.formulas.formula import Formula
+from coldwork.statistics.least_squares import LeastSquares, fit_least_squares
+from coldwork.statistics.local_polynomial import Window, choose_window, fit_window
+from coldwork.statistics.noise import long_run_ratio
+from coldwork.reduce.curve import Rate
+
+__all__ = ["HOLLOMON", "VOCE", "FittedLaw", "fit_hollomon", "fit_voce", "rate_along"]
+
+FloatArray = NDArray[np.float64]
+
+VOCE: Final = ("yield_stress", "saturation_stress", "initial_hardening")
+HOLLOMON: Final = ("coefficient", "exponent")
+LEAST_FITTED_POINTS: Final = 12
+_BLOCKS: Final = 2000  # means that a fit starts from
+_PLACES: Final = 120  # along the curve where the rate is given
+_KNOTS: Final = 10  # places whose windows are chosen; between them their width is interpolated
+
+
+@dataclass(frozen=True)
+class FittedLaw:
+    """A law through the points of a true curve.
+
+    Attributes
+    ----------
+    names : tuple of str
+        Of the parameters.
+    found : LeastSquares
+        The fit; its covariance takes points as independent.
+    like_neighbours : float
+        Factor on the covariance for residuals that are alike next to each other. [1]
+    by_strain : ndarray of float64, shape (n,)
+        The law's derivative by strain at each point. [Pa]
+    """
+
+    names: tuple[str, ...]
+    found: LeastSquares
+    like_neighbours: float
+    by_strain: FloatArray
+
+    @property
+    def covariance(self) -> FloatArray:
+        """Covariance [the parameters' units], shape (p, p)."""
+        return np.asarray(self.found.covariance * self.like_neighbours)
+
+    def shift(self, stress: FloatArray, strain: FloatArray) -> FloatArray:
+        """Give the change of the parameters, shape (p,), for small changes of the points."""
+        jacobian = self.found.jacobian
+        size = np.sqrt((jacobian**2).sum(axis=0))
+        scaled = jacobian / size
+        wanted = scaled.T @ (stress - self.by_strain * strain)
+        return np.asarray(np.linalg.solve(scaled.T @ scaled, wanted) / size)
+
+
+def fit_voce(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
+    """Fit Voce's law, which is the line of rate against stress, integrated.
+
+    Parameters
+    ----------
+    stress, strain : ndarray of float64, shape (n,)
+        True stress and true plastic strain of the points to fit. [Pa], [1]
+
+    Returns
+    -------
+    FittedLaw or None
+        None where hardening does not slow down, so that there is no saturation, or
+        fewer than `LEAST_FITTED_POINTS` are given.
+
+    Notes
+    -----
+    It starts from the line itself, found without differentiating: the stress is linear in
+    the strain and in its own integral, :math:`\\sigma = c + \\theta_0 \\varepsilon -
+    (\\theta_0 / \\sigma_s) \\int \\sigma d\\varepsilon`.
+    """
+    if stress.size < LEAST_FITTED_POINTS:
+        return None
+    start = _integrated_line(stress, strain)
+    return None if start is None else _fit(VOCE_STRESS, VOCE, stress, strain, start)
+
+
+def fit_hollomon(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
+    """Fit Hollomon's law.
+
+    Parameters
+    ----------
+    stress, strain : ndarray of float64, shape (n,)
+        True stress and true plastic strain of the points to fit, both positive. [Pa], [1]
+
+    Returns
+    -------
+    FittedLaw or None
+        None where the stress does not rise with the strain, or fewer than
+        `LEAST_FITTED_POINTS` are given.
+    """
+    if stress.size < LEAST_FITTED_POINTS:
+        return None
+    x, y = np.log(strain), np.log(stress)
+    exponent, level = np.polyfit(x, y, 1)
+    if not exponent > 0.0:
+        return None
+    start = np.array([np.exp(level), exponent])
+    return _fit(HOLLOMON_STRESS, HOLLOMON, stress, strain, start)
+
+
+def rate_along(
+    stress: FloatArray, strain: FloatArray, between: tuple[float, float]
+) -> Rate | None:
+    """Smooth the hardening rate along a true curve, with its uncertainty.
+
+    Parameters
+    ----------
+    stress, strain : ndarray of float64, shape (n,)
+        True stress and true plastic strain. [Pa], [1]
+    between : tuple of float
+        True plastic strains from which to which. [1]
+
+    Returns
+    -------
+    Rate or None
+        None where there are too few points between.
+    """
+    rising = np.maximum.accumulate(strain)
+    first, last = (int(k) for k in np.searchsorted(rising, between))
+    if last - first < 3 * LEAST_FITTED_POINTS:
+        return None
+    places = np.linspace(*between, _PLACES + 2)[1:-1]
+    knots = np.linspace(*between, _KNOTS + 2)[1:-1]
+    allowed = (first, last)
+    widths = [_half_width(strain, choose_window(strain, stress, c, allowed), c) for c in knots]
+    half = np.exp(np.interp(places, knots, np.log(widths)))
+    rows = []
+    for centre, width in zip(places, half, strict=True):
+        start = int(np.searchsorted(rising, centre - width))
+        stop = int(np.searchsorted(rising, centre + width, side="right"))
+        short = max(0, LEAST_FITTED_POINTS - (stop - start))
+        start = max(first, start - (short + 1) // 2)
+        stop = min(last, max(stop, start + LEAST_FITTED_POINTS))
+        start = min(start, stop - LEAST_FITTED_POINTS)
+        fit = fit_window(strain, stress, Window(start, stop, float(centre), 4))
+        rows.append((fit.value(centre), fit.slope(centre), fit.u_slope(centre)))
+    values, slopes, us = np.array(rows).T
+    return Rate(places, values, slopes, us)
+
+
+def _half_width(strain: FloatArray, window: Window, centre: float) -> float:
+    ends = strain[window.start], strain[window.stop - 1]
+    return max(float(np.abs(np.array(ends) - centre).max()), 1e-12)
+
+
+def _integrated_line(stress: FloatArray, strain: FloatArray) -> FloatArray | None:
+    """Yield stress, saturation stress and initial hardening from the integrated line."""
+    steps = np.diff(strain)
+    area = np.concatenate([[0.0], np.cumsum(0.5 * (stress[1:] + stress[:-1]) * steps)])
+    n = stress.size
+    edges = np.arange(min(n, _BLOCKS)) * n // min(n, _BLOCKS)
+    count = np.diff(np.append(edges, n))
+    y, x, a = (np.add.reduceat(v, edges) / count for v in (stress, strain, area))
+    origin, length, height = float(x[0]), float(np.ptp(x)), float(np.abs(y).max())
+    if length <= 0.0 or height <= 0.0:
+        return None
+    columns = np.column_stack(
+        [np.ones_like(x), (x - origin) / length, a / (height * length)]
+    )
+    (c, slope, decay), *_ = np.linalg.lstsq(columns, y / height, rcond=None)
+    if not (slope > 0.0 and decay < 0.0):
+        return None
+    theta, limit = slope * height / length, -slope / decay * height
+    begin = c * height
+    at_zero = limit - (limit - begin) * np.exp(min(theta * origin / limit, 50.0))
+    return np.array([at_zero, limit, theta])
+
+
+def _fit(
+    law: Formula,
+    names: tuple[str, ...],
+    stress: FloatArray,
+    strain: FloatArray,
+    start: FloatArray,
+) -> FittedLaw | None:
+    """Fit a law; every parameter but the first stays positive by its logarithm."""
+
+    def unpack(p: FloatArray) -> dict[str, float]:
+        return dict(zip(names, np.append(p[0], np.exp(np.clip(p[1:], -700, 700))), strict=True))
+
+    def model(p: FloatArray) -> FloatArray:
+        return law.value(strain=strain, **unpack(p))
+
+    def jacobian(p: FloatArray) -> FloatArray:
+        return _columns(law, names, strain, unpack(p), logarithmic=True)
+
+    first = np.append(start[0], np.log(start[1:]))
+    scale = np.append(max(abs(start[0]), 1e-3 * float(np.abs(stress).max())), np.ones(start.size - 1))
+    found = fit_least_squares(model, jacobian, stress, first, scale)
+    values = unpack(found.parameters)
+    factors = np.append(1.0, [values[name] for name in names[1:]])
+    if not found.converged or not np.isfinite(factors).all():
+        return None
+    slopes = law.sensitivities(strain=strain, **values)
+    residual = stress - law.value(strain=strain, **values)
+    plain = LeastSquares(
+        parameters=np.array(list(values.values())),
+        covariance=found.covariance * np.outer(factors, factors),
+        jacobian=found.jacobian / factors,
+        residual_sum_of_squares=found.residual_sum_of_squares,
+        residual_sd=found.residual_sd,
+        degrees_of_freedom=found.degrees_of_freedom,
+        converged=found.converged,
+    )
+    return FittedLaw(names, plain, long_run_ratio(residual), slopes["strain"])
+
+
+def _columns(
+    law: Formula,
+    names: tuple[str, ...],
+    strain: FloatArray,
+    values: dict[str, float],
+    *,
+    logarithmic: bool,
+) -> FloatArray:
+    slopes = law.sensitivities(strain=strain, **values)
+    columns = [np.broadcast_to(slopes[name], strain.shape) for name in names]
+    if logarithmic:
+        columns[1:] = [c * values[n] for c, n in zip(columns[1:], names[1:], strict=True)]
+    return np.column_stack(columns)
