@@ -2,9 +2,12 @@
 
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import pytest
 from typer.testing import Result
+
+from coldwork.jobs.gather import gather
 
 Cw = Callable[..., Result]
 Batch = Callable[..., Path]
@@ -178,7 +181,7 @@ def test_an_internal_error_is_one_and_says_so(
         message = "a fault"
         raise RuntimeError(message)
 
-    monkeypatch.setattr("coldwork.jobs.run._manifest", breaks)
+    monkeypatch.setattr("coldwork.jobs.run.Lots", breaks)
     result = process(cw, batch(), "--into", tmp_path / "out")
     assert result.exit_code == 1
     assert "internal error" in result.stderr
@@ -190,20 +193,16 @@ def test_an_internal_error_in_one_batch_does_not_hide_the_others(
 ) -> None:
     # gravest of all, yet what was finished before it stays and is named
     first, second = batch("first"), batch("second")
-    monkeypatch.setattr("coldwork.jobs.run._errors", _fails_on_second())
-    result = process(cw, first, second, "--into", tmp_path / "out")
-    assert result.exit_code == 1
-    assert str(tmp_path / "out" / "first") in result.stdout
-
-
-def _fails_on_second() -> Callable[[object], int]:
     calls = []
 
-    def errors(batch: object) -> int:
-        calls.append(batch)
+    def gathered(*words: Any, **named: Any) -> Any:  # noqa: ANN401 - as `gather` has them
+        calls.append(words)
         if len(calls) == 2:
             message = "a fault"
             raise RuntimeError(message)
-        return 0
+        return gather(*words, **named)
 
-    return errors
+    monkeypatch.setattr("coldwork.jobs.run.gather", gathered)
+    result = process(cw, first, second, "--into", tmp_path / "out")
+    assert result.exit_code == 1
+    assert str(tmp_path / "out" / "first") in result.stdout

@@ -40,7 +40,7 @@ main()
 """
 MOMENTS: Final = [
     ("coldwork.jobs.run", "gather"),
-    ("coldwork.jobs.run", "_manifest"),  # every table is written
+    ("coldwork.results.target", "Target.commit"),  # every table is written
     ("coldwork.results.target", "Target._publish"),  # all but the move
 ]
 
@@ -112,11 +112,11 @@ def test_interrupted(
 
 def test_interrupted_between_batches_keeps_what_is_finished(batch: Batch, tmp_path: Path) -> None:
     first, second, out = batch("first"), batch("second"), tmp_path / "out"
-    code = STOPPED.replace(
-        "    Path(flag).touch()\n",
-        "    stopped.calls += 1\n"
-        "    if stopped.calls < 2:\n        return inner(*args, **kwargs)\n    Path(flag).touch()\n",
-    ).replace("setattr(place", "stopped.calls = 0\nsetattr(place")
+    counting = (
+        "    stopped.calls += 1\n    if stopped.calls < 2:\n        return inner(*args, **kwargs)\n"
+    )
+    code = STOPPED.replace("    Path(flag)", counting + "    Path(flag)")
+    code = code.replace("setattr(place", "stopped.calls = 0\nsetattr(place")
     flag = tmp_path / "flag"
     words = ["process", str(first), str(second), "--into", str(out), "--no-plots"]
     job = subprocess.Popen(

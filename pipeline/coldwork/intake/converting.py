@@ -180,8 +180,10 @@ class Converter:
     def _one_by_one(self, cells: pa.StringArray) -> Converted:
         """Turn each distinct cell once."""
         coded = cells.dictionary_encode()
+        if len(coded.dictionary) > max(_MANY, len(cells) // 4) and not self._many:
+            self._many = True
+            return self.convert(cells)
         distinct = texts(cast("pa.StringArray", coded.dictionary))
-        self._many = len(distinct) > max(_MANY, len(cells) // 4)
         turned = [self._remembered(raw) for raw in distinct]
         places = coded.indices.to_numpy(zero_copy_only=False)
         ambiguous = None

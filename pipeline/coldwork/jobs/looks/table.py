@@ -19,7 +19,7 @@ __all__ = ["add_table", "closing_words", "labels_in"]
 _SAMPLES: Final = 4
 _MOST_CLOSING: Final = 8
 _CELLS: Final = 2000  # of a column that are looked at
-_LABEL: Final = re.compile(r"[^:=]{1,60}[:=]")
+_LABEL: Final = re.compile(r"[^\W\d_][^:=]{0,59}[:=]")
 
 
 def add_table(seen: Seen, rows: Sequence[Sequence[str]], shape: Shape, *, text: bool) -> None:
