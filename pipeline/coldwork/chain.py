@@ -17,6 +17,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from coldwork.formulas.baseline import HALL_PETCH_STRESS
+from coldwork.formulas.crystal_factor import (
+    CUBIC_CONSTANTS,
+    HEXAGONAL_CONSTANTS,
+    crystal_energy_factor,
+)
 from coldwork.formulas.line_energy import (
     CORE_RADIUS,
     ENERGY_FACTOR,
@@ -39,6 +44,8 @@ from coldwork.formulas.stored_energy import (
 )
 from coldwork.formulas.tabor import TABOR_FLOW_STRESS
 from coldwork.formulas.taylor import MEAN_SPACING, TAYLOR_DENSITY, TAYLOR_DENSITY_FROM_SLOPE
+from coldwork.formulas.taylor_logarithmic import TAYLOR_DENSITY_LOGARITHMIC
+from coldwork.formulas.taylor_logarithmic_inner import TAYLOR_DENSITY_LOGARITHMIC_INNER
 from coldwork.formulas.unwinding import UNWOUND_STRESS
 from coldwork.inputs.method import Laws
 from coldwork.measured import Value, apply, broadcast, kept_where, select, value_of
@@ -47,6 +54,11 @@ from coldwork.units import to_si
 
 __all__ = ["Start", "Strength", "energy", "energy_per_volume", "line", "strength"]
 
+_TAYLOR: Final = {
+    "constant": TAYLOR_DENSITY,
+    "logarithmic": TAYLOR_DENSITY_LOGARITHMIC,
+    "logarithmic-inner": TAYLOR_DENSITY_LOGARITHMIC_INNER,
+}
 _MISSING: Final = np.float64(np.nan)
 
 
@@ -272,12 +284,7 @@ def _per_volume(
     core = apply(CORE_RADIUS, multiple=inputs["line_energy.core_radius_b"], burgers_vector=burgers)
     per_line = apply(
         LINE_ENERGY,
-        energy_factor=apply(
-            ENERGY_FACTOR,
-            shear_modulus=shear,
-            poisson_ratio=inputs["material.poisson_ratio"],
-            mean_cos2=_mean_cos2(laws),
-        ),
+        energy_factor=_energy_factor(laws, inputs),
         burgers_vector=burgers,
         outer_radius=outer,
         core_radius=core,
@@ -340,8 +347,12 @@ def _density(laws: Laws, inputs: Mapping[str, Value], stress: Value) -> Value:
     if laws.taylor == "slope":
         slope = inputs["hardening.slope_n_per_m"]
         return apply(TAYLOR_DENSITY_FROM_SLOPE, stress=stress, slope=slope)
+    law = _TAYLOR[laws.taylor]
+    reference = "hardening.reference_density_per_m2"
+    more = {"reference_density": inputs[reference]} if reference in inputs else {}
     return apply(
-        TAYLOR_DENSITY,
+        law,
+        **more,
         stress=stress,
         taylor_factor=inputs["hardening.taylor_factor"],
         coefficient=inputs["hardening.coefficient"],
@@ -360,7 +371,18 @@ def _outer_length(laws: Laws, inputs: Mapping[str, Value], spacing: Value, start
     return broadcast(inputs["line_energy.outer_radius_nm"], value_of(spacing).shape)
 
 
-def _mean_cos2(laws: Laws) -> float:
-    if laws.uniform_mix:
-        return UNIFORM_MEAN_COS2
-    return mean_cos2(to_si(laws.angles_deg, "deg"), laws.fractions)
+def _energy_factor(laws: Laws, inputs: Mapping[str, Value]) -> Value:
+    """Mean of K over the character mix; one number for all coupons."""
+    angles = tuple(to_si(laws.angles_deg, "deg").tolist())
+    if laws.slip is None:
+        mean = UNIFORM_MEAN_COS2 if laws.uniform_mix else mean_cos2(angles, laws.fractions)
+        return apply(
+            ENERGY_FACTOR,
+            shear_modulus=inputs["material.shear_modulus_gpa"],
+            poisson_ratio=inputs["material.poisson_ratio"],
+            mean_cos2=mean,
+        )
+    names = HEXAGONAL_CONSTANTS if laws.hexagonal else CUBIC_CONSTANTS
+    constants = {name: inputs[f"material.{name}_gpa"] for name in names}
+    mix = crystal_energy_factor(laws.slip, angles, laws.fractions, hexagonal=laws.hexagonal)
+    return apply(mix, **constants)

@@ -3,8 +3,8 @@
 Both are read by the package from the list of coupons to the last block of typed readings, each in
 a process of its own. The bench file is in a code page, with decimal commas, diagonals in millimetre
 and force in kilonewton; the tidy table holds the same numbers. Printed: seconds, peak memory, and
-the ratio of CPU times, since the machine may be shared, which is to stay under 1.5. Also printed: the same with every diagonal a number of its
-own, where turning each distinct cell once helps least.
+the ratio of CPU times (the machine may be shared), which is to stay under 1.5; then the same with
+every diagonal a number of its own, where turning each distinct cell once helps least.
 
     python tests/benchmarks/bench_layout.py [coupons]
 """
@@ -115,9 +115,7 @@ def write_batch(folder: Path, coupons: int, places: int) -> None:
     number = pa.array(np.tile(np.arange(1, INDENTS + 1), coupons)).cast(pa.string())
     comma = {name: pc.replace_substring(text, ".", ",") for name, text in texts.items()}
     held, by, load = (pa.repeat(word, rows) for word in ("12", "operator-1", "0,09807"))
-    bench = pa.table(
-        {"piece": piece, "no": number, "load": load, **comma, "held": held, "by": by}
-    )
+    bench = pa.table({"piece": piece, "no": number, "load": load, **comma, "held": held, "by": by})
     options = pacsv.WriteOptions(delimiter=";", quoting_style="none")
     with (folder / "indents.txt").open("wb") as file:
         file.write("Prüfstand 2\nREADINGS FOLLOW\n".encode("cp1252"))

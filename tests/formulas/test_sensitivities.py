@@ -8,51 +8,36 @@ is one by another way than the formula goes.
 import importlib
 import inspect
 import pkgutil
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
 
 import mpmath  # type: ignore[import-untyped]
 import numpy as np
 import pytest
 from mpmath import mpf
 from numpy.testing import assert_allclose
+from tests.formulas.physics_twins import PHYSICS
+from tests.formulas.twins import (
+    DENSITY,
+    FORCE,
+    HEAT,
+    KELVIN,
+    LENGTH,
+    LINE,
+    MASS_DENSITY,
+    MOLAR,
+    MOLAR_MASS,
+    ONE,
+    PER_LENGTH,
+    SPECIFIC,
+    STRESS,
+    Case,
+    Dimensions,
+)
 
 import coldwork.formulas
 from coldwork.errors import InvalidArgument
 from coldwork.formulas.formula import Formula
 
-Twin = Callable[..., mpf]
-Dimensions = tuple[float, float, float, float, float]  # powers of kg, m, s, K, mol
-
-ONE: Dimensions = (0, 0, 0, 0, 0)
-FORCE: Dimensions = (1, 1, -2, 0, 0)
-LENGTH: Dimensions = (0, 1, 0, 0, 0)
-STRESS: Dimensions = (1, -1, -2, 0, 0)
-DENSITY: Dimensions = (0, -2, 0, 0, 0)
-PER_LENGTH: Dimensions = (1, 0, -2, 0, 0)  # N/m and J/m^2
-LINE: Dimensions = (1, 1, -2, 0, 0)  # J/m
-MASS_DENSITY: Dimensions = (1, -3, 0, 0, 0)
-MOLAR_MASS: Dimensions = (1, 0, 0, 0, -1)
-MOLAR: Dimensions = (1, 2, -2, 0, -1)
-SPECIFIC: Dimensions = (0, 2, -2, 0, 0)
-HEAT: Dimensions = (0, 2, -2, -1, 0)
-KELVIN: Dimensions = (0, 0, 0, 1, 0)
 NEW_UNITS = (2.0, 3.0, 5.0, 7.0, 11.0)  # how much smaller each base unit becomes
-
-
-@dataclass(frozen=True)
-class Case:
-    """A formula's twin, where to compare them, and what its arguments are."""
-
-    twin: Twin
-    arguments: Mapping[str, Dimensions]
-    result: Dimensions
-    points: tuple[tuple[float, ...], ...]
-    zero_is_fine: frozenset[str] = field(default_factory=frozenset)
-    sign_is_free: frozenset[str] = field(default_factory=frozenset)
-
-    def at(self, place: int) -> dict[str, float]:
-        return dict(zip(self.arguments, self.points[place], strict=True))
 
 
 def degrees(angle: float) -> mpf:
@@ -325,7 +310,7 @@ CASES: dict[str, Case] = {
         ((1.4e6, 3e7), (6e6, 1.6e8)),
         zero_is_fine=frozenset({"stored_energy"}),
     ),
-}
+} | PHYSICS
 
 
 def formulas() -> dict[str, tuple[str, Formula]]:

@@ -92,6 +92,17 @@ def test_numbers_as_stored_text_as_text(blocks: Blocks) -> None:
     assert not found[0].faults
 
 
+def test_text_is_what_its_xml_means(blocks: Blocks) -> None:
+    # Character references and entities (XML 1.0, 4.1 and 4.6), shared and in place.
+    data = xlsx(
+        *HEADER,
+        row(5, "A&#45;1&#x2F;2 &amp; &lt;B&gt;", 98.07, 0.18, 0.18),
+        row(6, cell("A6", "0", "s"), 98.07, 0.18, 0.18),
+        strings=["A&#45;1&#x2F;2 &amp; &lt;B&gt;"],
+    )
+    assert column(blocks(data), "coupon_id") == ["A-1/2 & <B>"] * 2
+
+
 def test_the_same_from_ods(blocks: Blocks) -> None:
     data = ods(*ODS_HEADER, ods_row("A-1", 98.07, 0.1821, 0.1833))
     found = blocks(data, name="b.ods")

@@ -290,10 +290,10 @@ def test_the_end_at_k_has_the_probability_of_k(mpa: float, name: str, probabilit
         assert_allclose(above, 1.0 - probability, rtol=1e-7)
 
 
-@pytest.mark.parametrize("mpa", [200.0, 15.0, 0.0, -6.0, -40.0])
+@pytest.mark.parametrize("mpa", [15.0, -6.0, -40.0])
 def test_probability_falls_as_the_limit_rises(mpa: float) -> None:
     found = reach(mpa)
-    limits = np.geomspace(1e8, 1e18, 11)
+    limits = np.geomspace(1e8, 1e18, 6)
     p = np.array([found.probability_above(DENSITY, float(limit))[0] for limit in limits])
     assert ((p >= 0.0) & (p <= 1.0)).all()
     assert (np.diff(p) <= 1e-12).all()

@@ -7,6 +7,7 @@ from pathlib import Path
 import pytest
 
 Rows = Sequence[Mapping[str, object]]
+Make = Callable[..., Path]
 
 
 def _write(path: Path, table: Rows | str | bytes) -> None:
@@ -22,12 +23,9 @@ def _write(path: Path, table: Rows | str | bytes) -> None:
             writer.writerows(table)
 
 
-@pytest.fixture
-def make(tmp_path: Path) -> Callable[..., Path]:
-    """Write a batch folder: a sheet, and each table from rows, text or bytes."""
-
+def _maker(scratch: Path) -> Make:
     def made(sheet: str, *, name: str = "batch", **tables: Rows | str | bytes) -> Path:
-        folder = tmp_path / name
+        folder = scratch / name
         folder.mkdir()
         (folder / "batch.toml").write_text(sheet, encoding="utf-8")
         for table, content in tables.items():
@@ -35,3 +33,15 @@ def make(tmp_path: Path) -> Callable[..., Path]:
         return folder
 
     return made
+
+
+@pytest.fixture
+def make(tmp_path: Path) -> Make:
+    """Write a batch folder: a sheet, and each table from rows, text or bytes."""
+    return _maker(tmp_path)
+
+
+@pytest.fixture(scope="module")
+def make_once(tmp_path_factory: pytest.TempPathFactory) -> Make:
+    """Do the same for a fixture that a whole module looks at."""
+    return _maker(tmp_path_factory.mktemp("once"))

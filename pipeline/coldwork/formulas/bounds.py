@@ -36,5 +36,7 @@ def refuse(name: str, x: NDArray[np.float64], bad: NDArray[np.bool_], need: str)
     """
     if bad.any():
         first = np.broadcast_to(x, bad.shape)[bad][0]
-        message = f"{name} must be {need} ({int(bad.sum())} bad of {bad.size}, the first is {first:g})"
+        message = (
+            f"{name} must be {need} ({int(bad.sum())} bad of {bad.size}, the first is {first:g})"
+        )
         raise InvalidArgument(message)

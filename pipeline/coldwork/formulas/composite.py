@@ -355,9 +355,7 @@ def wall_density_sensitivities(
     }
 
 
-def mean_over_regions(
-    wall: ArrayLike, interior: ArrayLike, wall_fraction: ArrayLike
-) -> FloatArray:
+def mean_over_regions(wall: ArrayLike, interior: ArrayLike, wall_fraction: ArrayLike) -> FloatArray:
     r"""Compute the mean over the volume of what walls and interiors hold.
 
     .. math:: \bar x = f x_w + (1 - f) x_c

@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from coldwork.formulas.formula import Formula
-from coldwork.guards import finite, not_negative, positive
+from coldwork.guards import finite, positive
 
 __all__ = [
     "HOLLOMON_STRESS",
@@ -98,7 +98,9 @@ def voce_stress_sensitivities(
     InvalidArgument
         As `voce_stress` does.
     """
-    x, start, limit, theta, decay = _voce(strain, yield_stress, saturation_stress, initial_hardening)
+    x, start, limit, theta, decay = _voce(
+        strain, yield_stress, saturation_stress, initial_hardening
+    )
     room = (limit - start) * decay
     return {
         "strain": np.asarray(room * theta / limit),

@@ -1,7 +1,7 @@
 """Plastic work per volume along a measured curve."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
 from coldwork.errors import InvalidArgument
 from coldwork.guards import finite

@@ -313,9 +313,7 @@ def prior_work_sensitivities(
     }
 
 
-def _log_ratio(
-    first: str, initial: ArrayLike, second: str, final: ArrayLike
-) -> FloatArray:
+def _log_ratio(first: str, initial: ArrayLike, second: str, final: ArrayLike) -> FloatArray:
     ratio = positive(first, initial) / positive(second, final)
     return np.asarray(np.log(np.where(ratio >= 1.0, ratio, np.nan)))
 

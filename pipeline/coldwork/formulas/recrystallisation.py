@@ -410,7 +410,7 @@ def _log_need(
 
 def _nodes(furnace: Schedule, activation_energy: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Give weights [s] and temperatures [K] of a rule that is exact for these energies."""
-    most = float(np.nanmax(activation_energy, initial=0.0))
+    most = float(np.max(np.nan_to_num(activation_energy), initial=0.0))
     weights, kelvin = [np.zeros(0)], [np.ones(0)]
     for stretch in furnace.stretches():
         fall = most / GAS_CONSTANT * abs(1.0 / stretch.start - 1.0 / stretch.end)

@@ -105,11 +105,11 @@ def superposed_stress_sensitivities(
     """
     x, ratio, q, room = _room(excess, obstacle, exponent)
     left = room ** (1.0 / q)
-    power = ratio**q
-    by_exponent = -np.log(room) / q - xlogy(power, ratio) / room
+    by_exponent = -np.log(room) / q - xlogy(ratio**q, ratio) / room
+    missing = 0.0 * room  # a missing number to the power of 0 is 1 to numpy
     return {
-        "excess": np.asarray(left ** (1.0 - q)),
-        "obstacle": np.asarray(-((ratio / left) ** (q - 1.0))),
+        "excess": np.asarray(left ** (1.0 - q) + missing),
+        "obstacle": np.asarray(-((ratio / left) ** (q - 1.0)) + missing),
         "exponent": np.asarray(x * left * by_exponent / q),
     }
 

@@ -3,6 +3,7 @@
 from collections.abc import Iterator, Mapping
 from typing import Final
 
+from coldwork.formulas.crystal_factor import HEXAGONAL_CONSTANTS
 from coldwork.inputs.causes import Causes
 from coldwork.inputs.keys import TERMS, KeyName, default_of, number_specs, schema_of, spec_of
 from coldwork.inputs.method import Laws
@@ -126,11 +127,24 @@ def _used_keys(laws: Laws, given: Mapping[KeyName, Given], *, curves: bool) -> l
         unused |= {("hardening", "taylor_factor"), ("hardening", "coefficient")}
     if ("indentation", "HBW", "representative_strain") in given:
         unused.add(("indentation", "HBW", "strain_ratio"))
+    unused |= _unused_of_crystal(laws)
     unread = set() if laws.route == "indent" else {"indentation"}
     if not curves:
         unread.add("tensile")
     keys = [*number_specs(), *(key for key in given if key[:2] == TERMS)]
     return [key for key in keys if key not in unused and key[0] not in unread]
+
+
+def _unused_of_crystal(laws: Laws) -> set[KeyName]:
+    """Constants of the metal that the line's elasticity does not ask for."""
+    unused = {"c_over_a"}  # it is in the slip system already
+    if laws.elasticity == "isotropic":
+        unused |= {f"{name}_gpa" for name in HEXAGONAL_CONSTANTS}
+    else:
+        unused.add("poisson_ratio")
+        if not laws.hexagonal:
+            unused |= {"c13_gpa", "c33_gpa"}
+    return {("material", name) for name in unused}
 
 
 def _from_library(causes: Causes, key: KeyName, material: Material | None) -> Given | None:

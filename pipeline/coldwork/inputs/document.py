@@ -86,6 +86,7 @@ def method_document(
 def _laws(method: Method) -> dict[str, object]:
     laws = method.laws
     return asdict(laws) | {
+        "slip": None if laws.slip is None else laws.slip.text,
         "area": dict(laws.area),
         "angles_deg": list(laws.angles_deg),
         "fractions": list(laws.fractions),
@@ -190,8 +191,8 @@ def _is_said(tables: Mapping[str, Any], key: tuple[str, ...]) -> bool:
 
 def _derived(method: Method) -> dict[str, object]:
     values = {name: found.value for name, found in method.inputs.items()}
-    if not method.laws.unwinding:
-        return {"k1_per_m": None, "k2": None}
+    if not method.laws.unwinding or method.laws.taylor.startswith("logarithmic"):
+        return {"k1_per_m": None, "k2": None}  # they belong to a constant coefficient
     slope = values.get("hardening.slope_n_per_m") or (
         values["hardening.taylor_factor"]
         * values["hardening.coefficient"]

@@ -5,6 +5,7 @@ from math import fsum
 from typing import Any, Final
 
 from coldwork.inputs.causes import Causes
+from coldwork.inputs.crystal import Crystal
 from coldwork.inputs.keys import default_of
 from coldwork.inputs.method import Laws
 from coldwork.inputs.numbers import as_number
@@ -41,8 +42,8 @@ def refuse_bad_mix(causes: Causes) -> None:
         )
 
 
-def laws_of(tables: Mapping[str, Any]) -> Laws:
-    """Read the choices of a sheet that fits its schema."""
+def laws_of(tables: Mapping[str, Any], crystal: Crystal | None = None) -> Laws:
+    """Read the choices of a sheet that fits its schema; of its crystal where that matters."""
     strength, character = tables["strength"], tables["character"]
     indentation, hardening = tables.get("indentation", {}), tables.get("hardening", {})
     route = strength["route"]
@@ -56,8 +57,10 @@ def laws_of(tables: Mapping[str, Any]) -> Laws:
         },
         unwinding=route == "indent" and "initial_hardening_mpa" in indentation,
         baseline="given" if "baseline_mpa" in strength else "parts",
-        taylor="slope" if "slope_n_per_m" in hardening else "constant",
+        taylor="slope" if "slope_n_per_m" in hardening else choice(tables, "hardening", "law"),
         elasticity=choice(tables, "line_energy", "elasticity"),
+        slip=None if crystal is None else crystal.slip,
+        hexagonal=crystal is not None and crystal.hexagonal,
         outer_radius=choice(tables, "line_energy", "outer_radius"),
         angles_deg=angles,
         fractions=fractions,

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from datetime import date
 from pathlib import Path
 
+from coldwork.formulas.slip_systems import SlipSystem
 from coldwork.inputs.layout import Layout
 from coldwork.inputs.quantity import Input
 
@@ -31,9 +32,10 @@ class Laws:
     baseline : str
         ``given`` as one number, or ``parts``.
     taylor : str
-        ``constant`` alpha, or ``slope`` where M alpha G b was given as one.
+        ``constant`` alpha, ``logarithmic`` or ``logarithmic-inner``; ``slope`` where
+        M alpha G b was given as one.
     elasticity : str
-        ``isotropic``.
+        ``isotropic`` or ``anisotropic``.
     outer_radius : str
         ``spacing``, ``half-spacing``, ``grain`` or ``fixed``.
     angles_deg, fractions : tuple of float
@@ -42,6 +44,10 @@ class Laws:
         Whether every angle is alike.
     flow_from : str
         What gives the flow stress: ``points`` or ``curves``; empty by the indent route.
+    slip : SlipSystem or None
+        Whose lines are meant, where elasticity is anisotropic.
+    hexagonal : bool
+        Whether the crystal is hexagonal and not cubic.
     """
 
     route: str
@@ -55,6 +61,8 @@ class Laws:
     fractions: tuple[float, ...]
     uniform_mix: bool
     flow_from: str = ""
+    slip: SlipSystem | None = None
+    hexagonal: bool = False
 
 
 @dataclass(frozen=True)

@@ -12,11 +12,12 @@ from coldwork.inputs.collect import (
     refuse_missing_constants,
     used_numbers,
 )
+from coldwork.inputs.crystal import crystal_of
 from coldwork.inputs.document import method_document
 from coldwork.inputs.identity import refuse_bad_identity
 from coldwork.inputs.laws import choice, laws_of, refuse_bad_mix
 from coldwork.inputs.limits import limits_of, refuse_bad_limits, refuse_bad_testers, testers_of
-from coldwork.inputs.method import Method
+from coldwork.inputs.method import Laws, Method
 from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
 from coldwork.inputs.source import Sheet, read_sheet
 from coldwork.inputs.structure import refuse_misfits
@@ -85,6 +86,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_misfits(causes)
     refuse_missing_constants(causes, material)
     refuse_bad_mix(causes)
+    crystal = crystal_of(causes, given, material)
     refuse_bad_testers(causes)
     refuse_bad_limits(causes)
     refuse_bad_tensile(causes)
@@ -92,9 +94,9 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     files = tables_of(causes, home) if with_files else Tables()
     if causes.found or files.causes:
         raise BatchRefused(str(folder), [*causes.all(), *files.causes])
-    laws = laws_of(sheet.tables)
+    laws = laws_of(sheet.tables, crystal)
     numbers = used_numbers(causes, laws, given, material) | machine_numbers(causes)
-    method = _method(causes, home, material, files, numbers)
+    method = _method(causes, home, material, files, numbers, laws)
     return replace(method, document=method_document(method, sheet.tables, numbers))
 
 
@@ -104,6 +106,7 @@ def _method(
     material: Material | None,
     found: Tables,
     numbers: dict[str, Given],
+    laws: Laws,
 ) -> Method:
     sheet, files = causes.sheet, found.paths
     tables: dict[str, Any] = sheet.tables
@@ -126,7 +129,7 @@ def _method(
         indents=files.get("indents", ()),
         flow_stress=files.get("flow_stress", ()),
         exclusions=files["exclusions"][0] if "exclusions" in files else None,
-        laws=laws_of(tables),
+        laws=laws,
         inputs=inputs,
         testers=testers,
         limits=limits_of(tables),

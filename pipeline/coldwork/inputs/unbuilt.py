@@ -19,12 +19,6 @@ _CHOICES: Final[Mapping[KeyPath, Mapping[str, str]]] = {
     ("strength", "route"): {
         "both": "Comparing the indent and the flow route of one coupon is not built yet.",
     },
-    ("hardening", "law"): {
-        "logarithmic": "The logarithmic law, in which alpha falls with density, is not built yet.",
-    },
-    ("line_energy", "elasticity"): {
-        "anisotropic": "Line energy from anisotropic elasticity is not built yet.",
-    },
     ("uncertainty", "method"): {
         "monte-carlo": "Uncertainty by Monte Carlo is not built yet.",
     },
@@ -35,12 +29,6 @@ _SIZE_EFFECTS: Final[Mapping[str, str]] = {
     "strength": "The indentation size effect from a size strength is not built yet.",
 }
 _KEYS: Final[Mapping[KeyPath, str]] = {
-    ("hardening", "reference_density_per_m2"): (
-        "A reference density belongs to the logarithmic law, which is not built yet."
-    ),
-    ("line_energy", "slip_system"): (
-        "A slip system belongs to anisotropic elasticity, which is not built yet."
-    ),
     ("strength", "obstacle_mpa"): "Joining an obstacle stress by an exponent is not built yet.",
     ("uncertainty", "draws"): "Draws belong to Monte Carlo, which is not built yet.",
     ("uncertainty", "seed"): "A seed belongs to Monte Carlo, which is not built yet.",
@@ -51,9 +39,6 @@ _KEYS: Final[Mapping[KeyPath, str]] = {
 _CONSTANTS: Final[Mapping[str, str]] = {
     "shear_modulus_slope": "correcting the modulus for temperature",
     "melting_point_k": "correcting the modulus for temperature",
-    **dict.fromkeys(
-        ("c11_gpa", "c12_gpa", "c13_gpa", "c33_gpa", "c44_gpa"), "anisotropic elasticity"
-    ),
     "boundary_energy_j_per_m2": "recrystallisation",
     "stacking_fault_energy_j_per_m2": "recovery and recrystallisation",
 }

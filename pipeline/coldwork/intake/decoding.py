@@ -1,6 +1,7 @@
 """Bytes of a file in the encoding that its layout says, as UTF-8, or why they are not that."""
 
 import codecs
+import re
 from typing import Final
 
 from coldwork.errors import Cause
@@ -111,6 +112,9 @@ class Decoder:
 
     def _watch(self, data: bytes) -> None:
         """Note whether a file that is said to have one byte a character could be UTF-8."""
+        if self._sample is not None and len(self._sample[1]) < _SHOWN:
+            line, sample = self._sample
+            self._sample = line, (sample + data)[:_SHOWN]
         if data.isascii():
             if self._utf8 is not None and self._utf8.getstate()[0]:
                 self._utf8 = None  # a character was broken off
@@ -168,8 +172,8 @@ class Decoder:
         self._refuse(f"{self._name}, line {line}", what, mend)
 
     def _refuse_utf8(self, line: int, sample: bytes) -> None:
-        ours = sample.decode(self._codec, "replace").splitlines()[0]
-        theirs = sample.decode("utf-8", "ignore").splitlines()[0]
+        sample = re.split(rb"[\r\n]", sample)[0]
+        ours, theirs = sample.decode(self._codec, "replace"), sample.decode("utf-8", "ignore")
         what = f"is valid UTF-8 throughout, and the layout says {self._encoding}: this line reads "
         what += f"{shown(ours)} in {self._encoding} and {shown(theirs)} in UTF-8"
         mend = "Say encoding = 'utf-8', if the second is right; otherwise export it anew in UTF-8."

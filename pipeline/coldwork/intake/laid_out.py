@@ -150,7 +150,7 @@ class LaidOutText:
 
     def _causes_at_the_end(self) -> list[Cause]:
         if self._begin is None:
-            return [self._form.no_header(self._name)]
+            return [self._form.no_header(self._name, empty=not self._held)]
         if self._layout.ends_before and not self.closing:
             labels = [shown(closing.label) for closing in self._layout.ends_before]
             what = f"the table is not closed: no line begins with {listed(labels)}"
@@ -199,7 +199,7 @@ class LaidOutText:
             causes.append(self._ambiguity(rows, *turned.ambiguous))
         faults = turned.faults
         if not lines.data.endswith(b"\n") and not self._text.last_line_open:
-            faults = (*faults, *self._cut_off(rows, lines))
+            faults = (*self._cut_off(rows, lines), *faults)
         block = TextBlock(
             file=self._file,
             lines=rows.lines,

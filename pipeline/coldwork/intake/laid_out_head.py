@@ -139,7 +139,7 @@ def unit_causes(
         here = f"{where}, column {filled.source}"
         what = f"the units line says {shown(cell)} and the layout {said.name}"
         mend = "Say units_line = false, if this is no line of units."
-        if named is not None:
+        if named is not None and cell.strip(" \t"):
             mend = f"Say unit = {named.name!r} in the layout, if the file is right."
         causes.append(Cause(here, what, "A number has one unit.", mend))
     return causes

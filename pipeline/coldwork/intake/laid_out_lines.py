@@ -19,6 +19,7 @@ _SPLIT: Final = "Split the file, one table to each, or export it without the rep
 _BLANK: Final = b" \t"
 _SPACES: Final = re.compile(rb"[ \t]+")
 _OUTER: Final = re.compile(rb"(?m)^\t|\t$")
+_ONLY_SPACES: Final = re.compile(rb"(?m)^ +$")
 
 
 class Begin(NamedTuple):
@@ -111,12 +112,15 @@ class LineForm:
         return whole or line.strip(" \t") == mark
 
     def plain(self, data: bytes) -> bytes:
-        """Blank the comments, and write one tab where any number of spaces parts cells."""
+        """Blank comments and lines of spaces; write one tab where any number of spaces parts cells.
+
+        No line goes, so that the numbers of the others stay.
+        """
         if self._comment and self._comment in data:
             data = self._comments.sub(b"", data)
         if self.spaces:
-            data = _OUTER.sub(b"", _SPACES.sub(b"\t", data))
-        return data
+            return _OUTER.sub(b"", _SPACES.sub(b"\t", data))
+        return _ONLY_SPACES.sub(b"", data) if b" \n" in data else data
 
     def split(self, lines: Lines) -> tuple[Lines, Lines | None]:
         """Part lines where the table is closed; None where it goes on."""
@@ -166,17 +170,19 @@ class LineForm:
             found.append(WrittenClosing(number, line, closing, _placed(cells, places, columns)))
         return found, []
 
-    def no_header(self, name: str) -> Cause:
-        """Say that a file came to its end before its header."""
+    def no_header(self, name: str, *, empty: bool) -> Cause:
+        """Say that a file came to its end before its header, or that it is empty."""
         mark, line = self.text.table_starts_after, self.text.header_line
         why, mend = "A table has a header.", "Check the layout and the file."
-        if mark is not None:
+        if empty:
+            what = "is empty"
+        elif mark is not None:
             what = f"no header stands after a line {shown(mark)}"
         elif line is not None:
             what = f"has no line {line} for its header"
         else:
-            what = "is empty"
-        if self.units:
+            what = "has no header"
+        if self.units and not empty:
             what += ", with a line of units under it"
         return Cause(name, what, why, mend)
 

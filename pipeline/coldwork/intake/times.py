@@ -75,6 +75,8 @@ def time_hint(raw: str, zone: str) -> str:
         IANA name of the zone in which a time without one is meant.
     """
     moment = _moment(raw)
+    if moment is None and _SHAPE.fullmatch(raw):
+        return "there is no such day, or no such time of a day"
     if moment is None:
         return "write it as 2026-07-31T14:05:00+02:00: year, month, day, then the time and its zone"
     if not _EARLIEST <= moment < _LATEST:

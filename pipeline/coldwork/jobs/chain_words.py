@@ -131,19 +131,36 @@ REPORTED: Final = (
         ("dislocation_stress_mpa", "baseline_stress_mpa"),
     ),
 )
+_PARTS: Final = (
+    "dislocation_stress_mpa",
+    "hardening.taylor_factor",
+    "hardening.coefficient",
+    "material.shear_modulus_gpa",
+    "material.burgers_vector_nm",
+)
+_LOGARITHMIC: Final = (*_PARTS, "hardening.reference_density_per_m2")
 DENSITY: Final = {  # by the hardening law that the sheet names
     "constant": Line(
         "dislocation density",
         "relation 5, Taylor 1934",
         "dislocation_density_per_m2",
         "(dislocation stress over M alpha G b) squared",
-        (
-            "dislocation_stress_mpa",
-            "hardening.taylor_factor",
-            "hardening.coefficient",
-            "material.shear_modulus_gpa",
-            "material.burgers_vector_nm",
-        ),
+        _PARTS,
+    ),
+    "logarithmic": Line(
+        "dislocation density",
+        "relation 5, Devincre, Kubin and Hoc 2006",
+        "dislocation_density_per_m2",
+        "alpha falls with ln(1/(b sqrt(rho))); inverted on the branch of real densities",
+        _LOGARITHMIC,
+    ),
+    "logarithmic-inner": Line(
+        "dislocation density",
+        "relation 5, Kubin, Devincre and Hoc 2008",
+        "dislocation_density_per_m2",
+        "alpha falls with ln(1/(alpha b sqrt(rho))), the coefficient inside the logarithm too; "
+        "inverted on the branch of real densities",
+        _LOGARITHMIC,
     ),
     "slope": Line(
         "dislocation density",
@@ -165,7 +182,7 @@ ENERGY: Final = (
         "line energy",
         "relation 7, Hirth and Lothe 1982",
         "line_energy_j_per_m",
-        "averaged over the character mix; the field reaches to {radius}",
+        "{elasticity}; averaged over the character mix; the field reaches to {radius}",
         (
             "mean_spacing_nm",
             "line_energy.outer_radius_factor",
@@ -173,7 +190,7 @@ ENERGY: Final = (
             "line_energy.core_radius_b",
             "line_energy.core_energy",
             "material.shear_modulus_gpa",
-            "material.poisson_ratio",
+            "<elasticity>",
             "material.burgers_vector_nm",
         ),
     ),

@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from coldwork import units
+from coldwork.formulas.crystal_factor import HEXAGONAL_CONSTANTS
 from coldwork.inputs.method import Laws, Method
 from coldwork.jobs.chain_words import (
     AS_INDENTED,
@@ -48,6 +49,10 @@ _BASELINE_INPUTS: Final = (
     "strength.friction_mpa",
     "strength.hall_petch_mpa_m05",
 )
+_ELASTICITY: Final = (
+    "material.poisson_ratio",
+    *(f"material.{name}_gpa" for name in HEXAGONAL_CONSTANTS),
+)
 _WITHOUT_COLUMN: Final = ("pressure_mpa", "indented_stress_mpa", "excess_mpa")
 _FOR_ALL_SCALES: Final = ("initial_hardening_mpa", "saturation_stress_mpa")
 
@@ -72,6 +77,7 @@ def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
         "strain": f"{method.plastic_strain:g}",
         "baseline": _BASELINES[laws.baseline],
         "radius": _RADII[laws.outer_radius],
+        "elasticity": _elasticity(laws),
     }
     groups = _groups(method)
     values = _values(evaluated)
@@ -137,6 +143,12 @@ def repeatability_of(scatter: Repeatability, rows: slice, unit: str) -> list[dic
     ]
 
 
+def _elasticity(laws: Laws) -> str:
+    if laws.slip is None:
+        return "of lines in an isotropic medium"
+    return f"of {laws.slip.text} lines in the crystal (Stroh 1958)"
+
+
 def _lines(laws: Laws) -> tuple[Line, ...]:
     """Pick the steps that these laws take, in order."""
     energy = (DENSITY[laws.taylor], *ENERGY)
@@ -179,6 +191,7 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
         "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
         "<unwinding>": _of_indentation(method, *unwinding),
         "<fixed radius>": fixed,
+        "<elasticity>": tuple(name for name in method.inputs if name in _ELASTICITY),
     }
 
 

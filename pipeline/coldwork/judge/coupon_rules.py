@@ -253,6 +253,8 @@ def _indent_strain(findings: Findings, state: State) -> None:
 def _density(findings: Findings, state: State) -> None:
     density = state.density
     high = rules.DENSITY_IMPOSSIBLE.above(density)
+    past = (state.stress > 0.0) & np.isnan(density)
+    _note(findings, state, rules.STRESS_PAST_BRANCH, past, units.from_si(state.stress, "MPa"))
     low = rules.DENSITY_TOO_LOW.below(density)
     _note(findings, state, rules.DENSITY_IMPOSSIBLE, high, density)
     _note(findings, state, rules.DENSITY_TOO_LOW, low, density)

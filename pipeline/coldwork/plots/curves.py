@@ -175,7 +175,7 @@ def _draw(
     row = table.iloc[[cell.place]]
     value = {name: float(numbers(row, name)[0]) for name in _NEEDED}
     for axes, part, end in zip(cell.panels, parts, (ends.strain, ends.about_yield), strict=True):
-        Scale("", 1.0, 0.0, 100.0 * end).on(axes, ticks=3 if len(cell.panels) > 1 else 5)
+        Scale("", 1.0, 0.0, 100.0 * end).on(axes, ticks=4)
         Scale("", 1.0, 0.0, ends.stress).on(axes, upright=True, ticks=4)
         if part is not None:
             _draw_line(axes, part, value["elongation_at_maximum_force"])
@@ -218,7 +218,7 @@ def _draw_slope(axes: Axes, slope: float, proof: float, ends: _Ends) -> None:
             color=BLUE,
             linewidth=0.9,
             linestyle=dashes,
-            zorder=2.2,
+            zorder=2.7,
         )
     if np.isfinite(proof):
         _PROOF.put(axes, np.array([100.0 * (_OFFSET + proof / slope)]), np.array([proof]))

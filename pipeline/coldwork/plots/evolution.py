@@ -102,7 +102,7 @@ def _draw(
             [*_notes(table, shown, total=total), *more],
         )
         captions = [Caption(_caption(column, s)) for column, s in zip(columns, scales, strict=True)]
-        below = "prior true strain plus that of the test [1]" if total else "test strain [1]"
+        below = "prior strain plus that of the test [1]" if total else "test strain [1]"
         remarks = [Remark() for _ in shown]
         figures = []
         for figure, cells in grid_pages(sheet, shown, remarks, captions, below):
@@ -165,17 +165,22 @@ def _caption(column: str, scale: Scale) -> str:
     unit = scale.label[scale.label.rindex("[") :]
     short = {
         "Stored energy in dislocations": "stored energy",
-        "Stored fraction of the plastic work": "fraction of the work",
+        "Stored fraction of the plastic work": "share of work",
     }.get(name, f"{name[0].lower()}{name[1:]}")
     return f"{short} {unit}"
 
 
 def _draw_others(axes: Axes, along: dict[str, _Along], column: str, scale: Scale) -> None:
     """Draw every coupon's course in the background, so that each is seen against the others."""
+    gap = np.array([np.nan])
+    strains, values = [], []
     for one in along.values():
         value = one.spans[column].value * scale.factor
         known = np.isfinite(value)
-        axes.plot(one.strain[known], value[known], color=FAINT, linewidth=1.0, zorder=1.2)
+        strains += [one.strain[known], gap]
+        values += [value[known], gap]
+    x, y = np.concatenate(strains), np.concatenate(values)
+    axes.plot(x, y, color=FAINT, linewidth=1.0, zorder=1.2)
 
 
 def _draw_one(axes: Axes, one: _Along, column: str, scale: Scale) -> None:

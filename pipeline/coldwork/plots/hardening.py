@@ -80,7 +80,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
 def _remark(theta: float, limit: float) -> Remark:
     if not np.isfinite(theta) or not np.isfinite(limit):
         return Remark("no line")
-    return Remark(f"theta_0 {theta:.4g}, sigma_s {limit:.4g} MPa")
+    return Remark(f"{theta:.0f}, {limit:.0f} MPa")
 
 
 def _ends(

@@ -15,6 +15,7 @@ FloatArray = NDArray[np.float64]
 
 LOOP_DROP: Final = 0.05  # of R_m: a fall of the stress along the elastic line counts from here
 _NOISE_DROP: Final = 8.0  # and from this many times the noise
+_SAME: Final = 4.0  # times the noise: two stresses this near are one
 _ELASTIC: Final = 0.5  # the strain goes back by at least this part of the elastic strain
 _BROKEN: Final = 0.5  # of the greatest stress; below it the coupon has broken
 _SMOOTH: Final = 5  # points of the mean that looks for landmarks
@@ -95,7 +96,11 @@ def find_branch(points: Points, stop: int, slope_guess: float | None = None) -> 
     stress, strain = points.stress[:stop], points.strain[:stop]
     noise_s, noise_e = point_noise(stress), point_noise(strain)
     mean = moving_mean(stress)
-    last = _last_before_break(stress, mean) if points.sense > 0 else int(np.argmax(moving_mean(strain)))
+    last = (
+        _last_before_break(stress, mean)
+        if points.sense > 0
+        else int(np.argmax(moving_mean(strain)))
+    )
     broke = last < stop - 2 and points.sense > 0
     guess = slope_guess if slope_guess is not None else _steepest(mean, strain, last)
     loops = _loops(mean[: last + 1], strain[: last + 1], guess, noise_s)
@@ -109,7 +114,7 @@ def find_branch(points: Points, stop: int, slope_guess: float | None = None) -> 
 
 
 def _last_before_break(stress: FloatArray, mean: FloatArray) -> int:
-    """The last point before the force is lost for good."""
+    """Find the last point before the force is lost for good."""
     peak = int(np.argmax(mean))
     low = np.flatnonzero(stress[peak:] < _BROKEN * mean[peak])
     if low.size == 0:
@@ -124,7 +129,7 @@ def _last_before_break(stress: FloatArray, mean: FloatArray) -> int:
 
 
 def _steepest(mean: FloatArray, strain: FloatArray, last: int) -> float:
-    """The steepest chord between fixed fractions of the greatest stress."""
+    """Take the steepest chord between fixed fractions of the greatest stress."""
     top = float(mean[: last + 1].max())
     rising = np.maximum.accumulate(mean[: last + 1])
     levels = np.linspace(0.05, 0.5, 10) * top
@@ -136,25 +141,24 @@ def _steepest(mean: FloatArray, strain: FloatArray, last: int) -> float:
     return float(np.max(usable)) if usable.size else float("inf")
 
 
-def _loops(
-    mean: FloatArray, strain: FloatArray, slope: float, noise: float
-) -> tuple[Loop, ...]:
+def _loops(mean: FloatArray, strain: FloatArray, slope: float, noise: float) -> tuple[Loop, ...]:
     """Stretches in which the stress falls along the elastic line and comes back."""
     best = np.maximum.accumulate(mean)
     least = max(LOOP_DROP * float(best[-1]), _NOISE_DROP * noise)
     low = mean < best - least
     edges = np.flatnonzero(np.diff(np.concatenate([[False], low, [False]]).astype(np.int8)))
-    found = []
+    found: list[Loop] = []
     for first, after in edges.reshape(-1, 2):
         if after >= mean.size:
             continue  # never came back
-        start = int(np.flatnonzero(mean[:first] >= best[first] - 1e-12 * abs(best[first]))[-1])
+        level = float(best[first]) - _SAME * noise
+        start = int(np.flatnonzero(mean[:first] >= level)[-1])
         bottom = int(first + np.argmin(mean[first:after]))
         drop = float(best[first] - mean[bottom])
         back = float(strain[start] - strain[bottom])
         if back < _ELASTIC * drop / slope:
             continue
-        again = np.flatnonzero(mean[after:] >= best[first])
+        again = np.flatnonzero(mean[after:] >= level)
         stop = int(after + again[0]) if again.size else int(after)
         if found and start < found[-1].stop:
             continue

@@ -104,9 +104,7 @@ def fitted_places(
     return slice(first, state.strain.size)
 
 
-def _proof_window(
-    branch: Branch, elastic: Elastic, offset: float
-) -> tuple[Window, float] | None:
+def _proof_window(branch: Branch, elastic: Elastic, offset: float) -> tuple[Window, float] | None:
     place = crossing(branch, elastic.line, offset, elastic.stop)
     if place is None or len(branch) - elastic.stop < _LEAST:
         return None
@@ -114,9 +112,7 @@ def _proof_window(
     near = float(np.median(branch.strain[max(place - 2, 0) : place + 3]))
     window = None
     for _ in range(_ROUNDS):
-        window = choose_window(
-            branch.strain, branch.stress, near, (elastic.stop, len(branch))
-        )
+        window = choose_window(branch.strain, branch.stress, near, (elastic.stop, len(branch)))
         fit = fit_window(branch.strain, branch.stress, window)
         at = fit.root(line.slope, line.intercept - line.slope * offset, near)
         if not abs(at - near) <= 3.0 * fit.scale:

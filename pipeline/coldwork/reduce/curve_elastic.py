@@ -95,9 +95,7 @@ def fit_line(
 ) -> Line:
     """Fit the elastic line through the places; stress and strain may be rescaled ones."""
     here = slice(*places)
-    return robust_line(
-        strain[here], stress[here], branch.noise_strain, branch.noise_stress, stated
-    )
+    return robust_line(strain[here], stress[here], branch.noise_strain, branch.noise_stress, stated)
 
 
 def crossing(branch: Branch, line: Line, offset: float, start: int) -> int | None:
@@ -134,7 +132,7 @@ def crossing(branch: Branch, line: Line, offset: float, start: int) -> int | Non
 
 
 def _first_line(branch: Branch, stated: float | None) -> Line | None:
-    """A line to begin with: the steepest stretch that noise does not explain."""
+    """Take a line to begin with: the steepest stretch that noise does not explain."""
     mean, run = moving_mean(branch.stress), moving_mean(branch.strain)
     top = float(mean[branch.peak])
     if not top > 0.0 or branch.peak < 2:
@@ -160,9 +158,7 @@ def _first_line(branch: Branch, stated: float | None) -> Line | None:
     return fit_line(branch, branch.stress, branch.strain, chosen, stated)
 
 
-def _range(
-    branch: Branch, between: tuple[float, float], level: float, top: int
-) -> tuple[int, int]:
+def _range(branch: Branch, between: tuple[float, float], level: float, top: int) -> tuple[int, int]:
     """Places between which the stress goes from one fraction of the level to the other."""
     rough = np.maximum.accumulate(moving_mean(branch.stress)[: top + 1])
     ends = np.array(between) * level

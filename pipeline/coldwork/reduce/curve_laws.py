@@ -1,18 +1,17 @@
 """Laws of hardening fitted to a true curve, and the rate of hardening along it."""
 
-from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
-from coldwork.formulas.hardening_laws import HOLLOMON_STRESS, VOCE_STRESS
 from coldwork.formulas.formula import Formula
+from coldwork.formulas.hardening_laws import HOLLOMON_STRESS, VOCE_STRESS
+from coldwork.reduce.curve import Rate
 from coldwork.statistics.least_squares import LeastSquares, fit_least_squares
 from coldwork.statistics.local_polynomial import Window, choose_window, fit_window
 from coldwork.statistics.noise import long_run_ratio
-from coldwork.reduce.curve import Rate
 
 __all__ = ["HOLLOMON", "VOCE", "FittedLaw", "fit_hollomon", "fit_voce", "rate_along"]
 
@@ -55,14 +54,14 @@ class FittedLaw:
     def shift(self, stress: FloatArray, strain: FloatArray) -> FloatArray:
         """Give the change of the parameters, shape (p,), for small changes of the points."""
         jacobian = self.found.jacobian
-        size = np.sqrt((jacobian**2).sum(axis=0))
+        size = np.maximum(np.sqrt((jacobian**2).sum(axis=0)), 1e-300)
         scaled = jacobian / size
         wanted = scaled.T @ (stress - self.by_strain * strain)
-        return np.asarray(np.linalg.solve(scaled.T @ scaled, wanted) / size)
+        return np.asarray(np.linalg.pinv(scaled.T @ scaled) @ wanted / size)
 
 
 def fit_voce(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
-    """Fit Voce's law, which is the line of rate against stress, integrated.
+    r"""Fit Voce's law, which is the line of rate against stress, integrated.
 
     Parameters
     ----------
@@ -78,8 +77,8 @@ def fit_voce(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
     Notes
     -----
     It starts from the line itself, found without differentiating: the stress is linear in
-    the strain and in its own integral, :math:`\\sigma = c + \\theta_0 \\varepsilon -
-    (\\theta_0 / \\sigma_s) \\int \\sigma d\\varepsilon`.
+    the strain and in its own integral, :math:`\sigma = c + \theta_0 \varepsilon -
+    (\theta_0 / \sigma_s) \int \sigma d\varepsilon`.
     """
     if stress.size < LEAST_FITTED_POINTS:
         return None
@@ -111,9 +110,7 @@ def fit_hollomon(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
     return _fit(HOLLOMON_STRESS, HOLLOMON, stress, strain, start)
 
 
-def rate_along(
-    stress: FloatArray, strain: FloatArray, between: tuple[float, float]
-) -> Rate | None:
+def rate_along(stress: FloatArray, strain: FloatArray, between: tuple[float, float]) -> Rate | None:
     """Smooth the hardening rate along a true curve, with its uncertainty.
 
     Parameters
@@ -167,9 +164,7 @@ def _integrated_line(stress: FloatArray, strain: FloatArray) -> FloatArray | Non
     origin, length, height = float(x[0]), float(np.ptp(x)), float(np.abs(y).max())
     if length <= 0.0 or height <= 0.0:
         return None
-    columns = np.column_stack(
-        [np.ones_like(x), (x - origin) / length, a / (height * length)]
-    )
+    columns = np.column_stack([np.ones_like(x), (x - origin) / length, a / (height * length)])
     (c, slope, decay), *_ = np.linalg.lstsq(columns, y / height, rcond=None)
     if not (slope > 0.0 and decay < 0.0):
         return None
@@ -198,7 +193,9 @@ def _fit(
         return _columns(law, names, strain, unpack(p), logarithmic=True)
 
     first = np.append(start[0], np.log(start[1:]))
-    scale = np.append(max(abs(start[0]), 1e-3 * float(np.abs(stress).max())), np.ones(start.size - 1))
+    scale = np.append(
+        max(abs(start[0]), 1e-3 * float(np.abs(stress).max())), np.ones(start.size - 1)
+    )
     found = fit_least_squares(model, jacobian, stress, first, scale)
     values = unpack(found.parameters)
     factors = np.append(1.0, [values[name] for name in names[1:]])

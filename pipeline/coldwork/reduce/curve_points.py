@@ -15,7 +15,7 @@ from coldwork.formulas.tensile import (
     true_strain,
     true_stress,
 )
-from coldwork.reduce.curve import Curve, CurveSettings, Geometry
+from coldwork.reduce.curve import Curve, CurveFault, CurveSettings, FaultKind, Geometry
 
 __all__ = ["Points", "engineering_points", "plastic_states"]
 
@@ -55,6 +55,14 @@ class Points:
     def __len__(self) -> int:
         return int(self.index.size)
 
+    def fault(
+        self, kind: FaultKind, span: tuple[int, int], value: float, limit: float, unit: str = "1"
+    ) -> CurveFault:
+        """Make a finding [`unit`] at places of these points, turned into points of the file."""
+        start = int(self.index[min(span[0], len(self) - 1)])
+        stop = int(self.index[min(span[1], len(self)) - 1]) + 1
+        return CurveFault(kind, start, stop, value, limit, unit)
+
 
 def engineering_points(curve: Curve, geometry: Geometry, settings: CurveSettings) -> Points:
     """Turn what the machine wrote into engineering stress and strain.
@@ -80,18 +88,10 @@ def engineering_points(curve: Curve, geometry: Geometry, settings: CurveSettings
         dimension is missing, or a setting is none of its choices.
     """
     _check(curve, settings)
-    if curve.stress is not None and curve.strain is not None:
-        stress, strain = curve.stress, curve.strain
-    else:
-        assert curve.force is not None
-        assert curve.length is not None
-        _need("gauge_length", geometry.gauge_length)
-        _need("area", geometry.area)
-        stress = engineering_stress(curve.force, geometry.area)
-        strain = engineering_strain(curve.length, geometry.gauge_length)
+    stress, strain = _given(curve, geometry)
     there = np.isfinite(stress) & np.isfinite(strain)
     index = np.flatnonzero(there)
-    stress, strain = np.asarray(stress)[there], np.asarray(strain)[there]
+    stress, strain = stress[there], strain[there]
     time = None if curve.time is None else curve.time[there]
     sense = 1.0
     if settings.mode == "compression" and index.size:
@@ -128,6 +128,19 @@ def plastic_states(
     sigma = true_stress(sense * stress, signed)
     plastic = true_plastic_strain(true_strain(signed), sigma, slope)
     return sense * sigma, sense * plastic
+
+
+def _given(curve: Curve, geometry: Geometry) -> tuple[FloatArray, FloatArray]:
+    """Give stress and strain as the curve brings them, or from its force and length."""
+    if curve.stress is not None and curve.strain is not None:
+        return curve.stress, curve.strain
+    if curve.force is None or curve.length is None:
+        message = "curve must bring either force and length or stress and strain"
+        raise InvalidArgument(message)
+    _need("gauge_length", geometry.gauge_length)
+    _need("area", geometry.area)
+    stress = engineering_stress(curve.force, geometry.area)
+    return stress, engineering_strain(curve.length, geometry.gauge_length)
 
 
 def _check(curve: Curve, settings: CurveSettings) -> None:

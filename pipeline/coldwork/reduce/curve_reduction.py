@@ -1,11 +1,15 @@
 """One curve to its results: the steps in order."""
 
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from coldwork.reduce.curve import (
+    AREA,
+    EXTENSION,
+    FORCE,
     Curve,
     CurveFault,
     CurveResult,
@@ -18,12 +22,17 @@ from coldwork.reduce.curve import (
 )
 from coldwork.reduce.curve_branch import Branch, find_branch, moving_mean
 from coldwork.reduce.curve_choices import choose, fitted_places
-from coldwork.reduce.curve_elastic import Elastic, find_elastic
+from coldwork.reduce.curve_elastic import PROOF_OFFSET, Elastic, find_elastic
+from coldwork.reduce.curve_findings import in_order, record_faults, test_faults
 from coldwork.reduce.curve_laws import fit_hollomon, fit_voce, rate_along
+from coldwork.reduce.curve_machine_faults import extensometer_off
+from coldwork.reduce.curve_neck import neck_point
 from coldwork.reduce.curve_points import Points, engineering_points
+from coldwork.reduce.curve_rates import rate_changes
 from coldwork.reduce.curve_uncertainty import Budget, budget_of
 from coldwork.reduce.curve_values import Choices
 from coldwork.reduce.curve_yield import Yield, find_yield
+from coldwork.statistics.noise import point_noise
 
 __all__ = ["LEAST_POINTS", "reduce_curve"]
 
@@ -52,43 +61,189 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
     Raises
     ------
     InvalidArgument
-        If the settings contradict each other or the curve, or an array has another
-        length than the rest.
+        If the settings contradict each other or the curve, an array has another length
+        than the rest, or a needed dimension is missing.
     """
     points = engineering_points(curve, geometry, settings)
-    branch = find_branch(points, len(points))
+    if len(points) < LEAST_POINTS:
+        return _unreduced(points, [_too_few(points)])
+    whole = find_branch(points, len(points))
+    last = int(whole.place[-1])
+    stop, off = extensometer_off(points, whole.noise_strain, last)
+    branch = whole if stop == len(points) else find_branch(points, stop)
+    faults = [*record_faults(points), *off]
     elastic = find_elastic(branch, settings.slope_between, settings.slope)
-    assert elastic is not None
+    if elastic is None:
+        faults.append(points.fault(FaultKind.FEW_ELASTIC_POINTS, (0, stop), 0.0, 3.0))
+        return _unreduced(points, faults)
+    faults += test_faults(points, branch, elastic, last, settings, geometry)
     yielding = find_yield(branch, elastic)
     choices = choose(branch, elastic, settings, yielding, points.sense)
+    faults += _unfinished(points, branch, elastic, choices, bool(off))
     budget = budget_of(branch, choices, settings, points.sense)
-    places = fitted_places(budget.state, choices, settings, yielding)
-    x, y = budget.state.strain[places], budget.state.stress[places]
-    fits = {}
-    voce = fit_voce(y, x)
-    km = None
-    if voce is not None:
-        v = budget.fit("voce", voce, places)
-        i = [2, 1]
-        km = Fit("kocks-mecking", ("initial_hardening", "saturation_stress"), v.parameters[i], v.covariance[np.ix_(i, i)], {k: c[i] for k, c in v.u_shared.items()}, v.residual_sd, v.degrees_of_freedom, v.between, v.misfit)
-        if "voce" in settings.fit: fits["voce"] = v
-    if "hollomon" in settings.fit:
-        h = fit_hollomon(y, x)
-        if h is not None: fits["hollomon"] = budget.fit("hollomon", h, places)
-    V = budget.valued
-    top = V(("top", 0.0))
-    rm = float(points.stress.max())
-    bias = rm - (top.value if top else np.nan)
+    result = CurveResult(
+        faults=in_order(faults),
+        noise_stress=branch.noise_stress,
+        noise_strain=branch.noise_strain,
+        engineering_stress=_full(points, points.stress),
+        engineering_strain=_full(points, points.strain - budget.values["toe", 0.0]),
+        true_stress=budget.state.stress,
+        true_plastic_strain=budget.state.strain,
+        true_start=int(points.index[branch.place[choices.begin]]),
+        slope_is_modulus=settings.strain_from != "crosshead",
+        rate_changes=rate_changes(points, int(branch.place[-1]), branch.noise_strain),
+    )
+    result = _with_line(result, points, branch, choices, budget)
+    if points.sense > 0:
+        result = _with_strengths(result, points, branch, yielding, budget)
+    result = _with_laws(result, choices, settings, yielding, budget)
+    if settings.bridgman:
+        neck = neck_point(points, geometry, last, branch.noise_stress, settings.force_u_rel)
+        result = replace(result, neck=neck)
+    return result
+
+
+def _full(points: Points, values: FloatArray) -> FloatArray:
+    """Spread values over all points of the file, NaN where there is none."""
+    if len(points) == points.count:
+        return values
+    full = np.full(points.count, np.nan)
+    full[points.index] = values
+    return full
+
+
+def _unreduced(points: Points, faults: list[CurveFault]) -> CurveResult:
+    """Keep what is left of a curve without an elastic part: its points and its findings."""
+    nothing = np.zeros(0)
     return CurveResult(
-        faults=(), noise_stress=branch.noise_stress, noise_strain=branch.noise_strain,
-        engineering_stress=points.stress, engineering_strain=points.strain,
-        true_stress=budget.state.stress, true_plastic_strain=budget.state.strain, true_start=int(points.index[branch.place[choices.begin]]),
-        slope=V(("slope", 0.0)), toe_strain=V(("toe", 0.0)),
-        proof={o: V(("proof", o)) for o in choices.proof},
-        tensile_strength=budget.recorded(rm, float(np.hypot(bias, top.u_own if top else 0.0))),
+        faults=in_order(faults),
+        noise_stress=point_noise(points.stress),
+        noise_strain=point_noise(points.strain),
+        engineering_stress=_full(points, points.stress),
+        engineering_strain=_full(points, points.strain),
+        true_stress=nothing,
+        true_plastic_strain=nothing,
+    )
+
+
+def _too_few(points: Points) -> CurveFault:
+    stop = int(points.index[-1]) + 1 if len(points) else 0
+    least = float(LEAST_POINTS)
+    return CurveFault(FaultKind.TOO_FEW_POINTS, 0, stop, float(len(points)), least)
+
+
+def _unfinished(
+    points: Points, branch: Branch, elastic: Elastic, choices: Choices, off: bool
+) -> list[CurveFault]:
+    """Say where a curve ends before its proof stress, or before its greatest force."""
+    span = int(branch.place[0]), int(branch.place[-1]) + 1
+    if elastic.proof_at is None:
+        toe = -elastic.line.intercept / elastic.line.slope
+        reached = float(branch.strain[-1]) - toe - float(branch.stress[-1]) / elastic.line.slope
+        return [points.fault(FaultKind.ENDS_BEFORE_YIELD, span, reached, PROOF_OFFSET)]
+    if choices.top is None and points.sense > 0 and not off:
+        greatest = float(moving_mean(branch.stress).max())
+        fall = 1.0 - float(branch.stress[-5:].mean()) / greatest
+        return [points.fault(FaultKind.NO_MAXIMUM, span, fall, 0.0)]
+    return []
+
+
+def _with_line(
+    result: CurveResult, points: Points, branch: Branch, choices: Choices, budget: Budget
+) -> CurveResult:
+    """Add slope, toe, proof stresses and what is read at the reported strains."""
+    places = branch.place[[choices.elastic[0], choices.elastic[1] - 1]]
+    first, last = (int(k) for k in points.index[places])
+    proof = {offset: budget.valued(("proof", offset)) for offset in choices.proof}
+    at_strains = []
+    for strain in choices.strains:
+        flow, work, rate = (budget.valued((name, strain)) for name in ("flow", "work", "rate"))
+        if flow is not None and work is not None and rate is not None:
+            at_strains.append(StrainPoint(strain, flow, work, rate))
+    return replace(
+        result,
+        slope=budget.valued(("slope", 0.0)),
+        slope_range=(first, last + 1) if choices.stated is None else (0, 0),
+        toe_strain=budget.valued(("toe", 0.0)),
+        proof={offset: value for offset, value in proof.items() if value is not None},
+        at_strains=tuple(at_strains),
+    )
+
+
+def _with_strengths(
+    result: CurveResult, points: Points, branch: Branch, yielding: Yield | None, budget: Budget
+) -> CurveResult:
+    """Add the greatest force, where it is, and the yield point. Tension only."""
+    begin = 0 if yielding is None else int(branch.place[yielding.end])
+    greatest = float(points.stress[begin:].max())
+    top = budget.valued(("top", 0.0))
+    smooth = float(moving_mean(points.stress[begin:]).max()) if top is None else top.value
+    u_smooth = branch.noise_stress if top is None else top.u_own
+    bias = greatest - smooth
+    result = replace(
+        result,
+        tensile_strength=budget.recorded(greatest, float(np.hypot(bias, u_smooth))),
         tensile_strength_bias=bias,
-        uniform_elongation=V(("elongation", 0.0)), total_elongation_at_max=V(("total_at_top", 0.0)), uniform_plastic_strain=V(("uniform", 0.0)), work_to_uniform=V(("work_to_uniform", 0.0)),
-        fits=fits, kocks_mecking=km,
-        at_strains=tuple(StrainPoint(s, V(("flow", s)), V(("work", s)), V(("rate", s))) for s in choices.strains),
-        rate=rate_along(budget.state.stress, budget.state.strain, (0.002, float(budget.state.strain[-1]))),
+        uniform_elongation=budget.valued(("elongation", 0.0)),
+        total_elongation_at_max=budget.valued(("total_at_top", 0.0)),
+        uniform_plastic_strain=budget.valued(("uniform", 0.0)),
+        work_to_uniform=budget.valued(("work_to_uniform", 0.0)),
+    )
+    return result if yielding is None else _with_yield(result, branch, yielding, budget)
+
+
+def _with_yield(
+    result: CurveResult, branch: Branch, yielding: Yield, budget: Budget
+) -> CurveResult:
+    """Add upper yield (the greatest recorded point), lower yield and the plateau's length."""
+    noise = branch.noise_stress
+    around = branch.stress[max(yielding.upper - 2, 0) : yielding.upper + 3]
+    low = max(yielding.lower - yielding.length // 2, 0)
+    lower = float(branch.stress[low : low + yielding.length].mean())
+    length = float(np.diff(moving_mean(branch.strain)[[yielding.upper, yielding.end]])[0])
+    by_strain = {FORCE: 0.0, EXTENSION: length, AREA: 0.0}
+    shared = {name: c * budget.units[name] for name, c in by_strain.items()}
+    return replace(
+        result,
+        upper_yield=budget.recorded(float(around.max()), noise),
+        lower_yield=budget.recorded(lower, noise),
+        yield_elongation=Valued(length, branch.noise_strain, by_strain, shared),
+    )
+
+
+def _with_laws(
+    result: CurveResult,
+    choices: Choices,
+    settings: CurveSettings,
+    yielding: Yield | None,
+    budget: Budget,
+) -> CurveResult:
+    """Add the fitted laws, the line of rate against stress, and the rate along the curve."""
+    places = fitted_places(budget.state, choices, settings, yielding)
+    stress, strain = budget.state.stress[places], budget.state.strain[places]
+    fits = {}
+    voce = fit_voce(stress, strain)
+    line = None if voce is None else _line_of(budget.fit("voce", voce, places))
+    if voce is not None and "voce" in settings.fit:
+        fits["voce"] = budget.fit("voce", voce, places)
+    hollomon = fit_hollomon(stress, strain) if "hollomon" in settings.fit else None
+    if hollomon is not None:
+        fits["hollomon"] = budget.fit("hollomon", hollomon, places)
+    rate = None
+    if strain.size:
+        rate = rate_along(stress, strain, (float(strain[0]), float(strain[-1])))
+    return replace(result, fits=fits, kocks_mecking=line, rate=rate)
+
+
+def _line_of(voce: Fit) -> Fit:
+    """Take the line of rate against stress that, integrated, is Voce's law."""
+    names = ("initial_hardening", "saturation_stress")
+    places = [voce.names.index(name) for name in names]
+    return replace(
+        voce,
+        law="kocks-mecking",
+        names=names,
+        parameters=voce.parameters[places],
+        covariance=voce.covariance[np.ix_(places, places)],
+        u_shared={name: c[places] for name, c in voce.u_shared.items()},
     )

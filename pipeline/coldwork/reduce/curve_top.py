@@ -10,6 +10,7 @@ from coldwork.statistics.local_polynomial import Window, choose_window, fit_wind
 __all__ = ["find_top"]
 
 _ROUNDS: Final = 8
+_STILL: Final = 0.02  # of the window: a top that moves less is not looked for again
 _COARSE: Final = 200  # stretches that the first look averages over
 _WITHIN: Final = 2.0  # the record goes on past the top by this many of its u
 
@@ -37,16 +38,15 @@ def find_top(branch: Branch, start: int) -> tuple[Window, float] | None:
     place = start + int(np.argmax(coarse))
     run = moving_mean(branch.strain)
     centre, least, last = float(run[place]), float(run[start]), float(run[-1])
-    window = None
     for _ in range(_ROUNDS):
         window = choose_window(branch.strain, branch.stress, centre, (start, stop))
         fit = fit_window(branch.strain, branch.stress, window)
         top = fit.top(centre)
         if not least <= top <= last:
             return None
-        if abs(top - centre) <= 0.02 * fit.scale:
-            break
+        still = abs(top - centre) <= _STILL * fit.scale
         centre = top
-    assert window is not None
+        if still:
+            break
     u = fit.u_slope(top) / abs(fit.bend(top))
     return (window, top) if top + _WITHIN * u <= last else None

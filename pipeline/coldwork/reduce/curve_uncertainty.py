@@ -102,9 +102,7 @@ class Budget:
         )
 
 
-def budget_of(
-    branch: Branch, choices: Choices, settings: CurveSettings, sense: float
-) -> Budget:
+def budget_of(branch: Branch, choices: Choices, settings: CurveSettings, sense: float) -> Budget:
     """Evaluate a curve as it is, rescaled, and with its elastic line moved.
 
     Parameters

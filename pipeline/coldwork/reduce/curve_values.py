@@ -28,7 +28,6 @@ Key: TypeAlias = tuple[str, float]
 """Name of a result, and the offset or strain that it belongs to (else 0)."""
 
 
-
 @dataclass(frozen=True)
 class Choices:
     """What was decided about a curve, in places of its branch.
@@ -243,7 +242,7 @@ def _work(state: State, stop: int, stress: float, strain: float) -> float:
 
 
 def _work_noise(state: State, stop: int) -> float:
-    """Standard uncertainty of a polyline's work from independent noise of its points."""
+    """Give the standard uncertainty of a polyline's work from independent noise of its points."""
     by_stress = float(np.sum(np.diff(state.strain[:stop]) ** 2))
     by_strain = float(np.sum(np.diff(state.stress[:stop]) ** 2))
     return float(

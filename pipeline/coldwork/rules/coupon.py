@@ -21,6 +21,7 @@ from coldwork.rules.coupon_errors import (
     NO_READINGS,
     SCALE_WITHOUT_CONSTANTS,
     STORED_FRACTION_IMPOSSIBLE,
+    STRESS_PAST_BRANCH,
 )
 from coldwork.rules.rule import Level, Rule
 
@@ -50,6 +51,7 @@ __all__ = [
     "SCATTER",
     "STORED_FRACTION_IMPOSSIBLE",
     "STORED_FRACTION_UNUSUAL",
+    "STRESS_PAST_BRANCH",
     "THIN_COUPON",
     "UNDER_FIVE_READINGS",
     "WEAK_SIGNAL",

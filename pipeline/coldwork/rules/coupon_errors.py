@@ -27,6 +27,7 @@ __all__ = [
     "NO_READINGS",
     "SCALE_WITHOUT_CONSTANTS",
     "STORED_FRACTION_IMPOSSIBLE",
+    "STRESS_PAST_BRANCH",
 ]
 
 _MEANING: Final = "definition of the quantity"
@@ -132,6 +133,18 @@ DENSITY_IMPOSSIBLE: Final = Rule(
     " follows from it is reported; the stresses stay, since they show where to look.",
     DENSITY_ON,
 )
+STRESS_PAST_BRANCH: Final = Rule(
+    "stress-past-branch",
+    Level.ERROR,
+    "the dislocation stress is greater than any that the logarithmic law can carry",
+    None,
+    "MPa",
+    "B. Devincre, L. Kubin, T. Hoc, Scripta Mater. 54 (2006) 741: alpha goes with"
+    " ln(1/(b sqrt(rho))), and the stress has a maximum at b sqrt(rho) = 1/e",
+    "The law holds for spacings far above the Burgers vector; beyond its maximum there is no"
+    " density for the stress.",
+    DENSITY_ON,
+)
 DENSITY_TOO_LOW: Final = Rule(
     "density-too-low",
     Level.ERROR,
@@ -177,6 +190,7 @@ COUPON_ERRORS: Final = (
     GRAIN_SIZE_MISSING,
     GRAIN_SIZE_MISSING_RADIUS,
     DENSITY_IMPOSSIBLE,
+    STRESS_PAST_BRANCH,
     DENSITY_TOO_LOW,
     NO_LINE_ENERGY,
     STORED_FRACTION_IMPOSSIBLE,

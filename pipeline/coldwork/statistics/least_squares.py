@@ -95,8 +95,12 @@ def fit_least_squares(
     if observed.size <= first.size:
         message = f"y must have more points than parameters ({observed.size} for {first.size})"
         raise InvalidArgument(message)
+
+    def residual(parameters: FloatArray) -> FloatArray:
+        return np.asarray(model(parameters) - observed)
+
     found = least_squares(
-        lambda p: model(p) - observed,
+        residual,
         first,
         jac=jacobian,
         method="lm",

@@ -23,6 +23,7 @@ LEAST_POINTS: Final = 11  # in a window: the 5 coefficients and 6 degrees of fre
 _BASE: Final = 2  # the order that a window is grown for; it is fitted with two more
 _BLOCKS: Final = 64  # means that a window is fitted through
 _GROWTH: Final = 1.25  # of a window from one try to the next
+_STRIDE: Final = 3  # windows between two that are tried first
 _FURTHER: Final = 25.0  # F of two further powers that no noise gives (1e-8): they are needed
 _ROUGH: Final = 4.0  # variance of residuals over that of their roughness: there is a corner
 _ENOUGH: Final = 30  # blocks in which that roughness can be told
@@ -119,9 +120,7 @@ class LocalFit:
         return np.asarray(k * t ** np.maximum(k - 1, 0) / self.scale, dtype=np.float64)
 
 
-def choose_window(
-    x: FloatArray, y: FloatArray, centre: float, between: tuple[int, int]
-) -> Window:
+def choose_window(x: FloatArray, y: FloatArray, centre: float, between: tuple[int, int]) -> Window:
     """Grow a window about a place for as long as the curve in it is simple enough.
 
     Parameters
@@ -167,22 +166,31 @@ def choose_window(
     place = int(np.searchsorted(rising, centre))
     start = int(np.clip(place - LEAST_POINTS // 2, 0, high - low - LEAST_POINTS))
     window = Window(low + start, low + start + LEAST_POINTS, centre, _BASE + 2)
-    half = max(
-        abs(centre - rising[start]), abs(rising[start + LEAST_POINTS - 1] - centre), 1e-300
-    )
-    tried = [window]
-    while window.stop - window.start < high - low:
+    half = max(abs(centre - rising[start]), abs(rising[start + LEAST_POINTS - 1] - centre), 1e-300)
+    ladder = _ladder(rising, window, half, low)
+    failed = len(ladder)
+    for k in range(0, len(ladder), _STRIDE):
+        if _needs_more(x, y, ladder[k]):
+            between_them = range(max(k - _STRIDE + 1, 0), k)
+            failed = next((j for j in between_them if _needs_more(x, y, ladder[j])), k)
+            break
+    if failed == len(ladder):
+        return ladder[-1] if ladder else window
+    return ladder[failed - _BACK] if failed >= _BACK else window
+
+
+def _ladder(rising: FloatArray, window: Window, half: float, low: int) -> list[Window]:
+    """List windows about the centre of the first one, each wider, up to all points."""
+    ladder: list[Window] = []
+    while window.stop - window.start < rising.size:
         half *= _GROWTH
-        start = int(np.searchsorted(rising, centre - half))
-        stop = int(np.searchsorted(rising, centre + half, side="right"))
-        wider = Window(
-            min(low + start, window.start), max(low + stop, window.stop), centre, _BASE + 2
+        start = low + int(np.searchsorted(rising, window.centre - half))
+        stop = low + int(np.searchsorted(rising, window.centre + half, side="right"))
+        window = Window(
+            min(start, window.start), max(stop, window.stop), window.centre, window.order
         )
-        if wider != window and _needs_more(x, y, wider):
-            return tried[-min(_BACK, len(tried))]
-        window = wider
-        tried.append(window)
-    return window
+        ladder.append(window)
+    return ladder
 
 
 def fit_window(x: FloatArray, y: FloatArray, window: Window) -> LocalFit:

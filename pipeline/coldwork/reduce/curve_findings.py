@@ -1,0 +1,103 @@
+"""All that is found on a curve, by asking each rule once."""
+
+from collections.abc import Iterable
+from typing import Final
+
+from coldwork.reduce.curve import CurveFault, CurveSettings, FaultKind, Geometry
+from coldwork.reduce.curve_branch import Branch
+from coldwork.reduce.curve_compression import barrelling, friction
+from coldwork.reduce.curve_elastic import LEAST_ELASTIC_POINTS, Elastic
+from coldwork.reduce.curve_machine_faults import (
+    saturation,
+    slope_impossible,
+    stress_impossible,
+    time_backward,
+    time_standing,
+    zero_offset,
+)
+from coldwork.reduce.curve_points import Points
+from coldwork.reduce.curve_test_faults import (
+    find_drops,
+    grip_slip,
+    plateau,
+    serrations,
+    strain_jump,
+    unloading_loops,
+)
+
+__all__ = ["in_order", "record_faults", "test_faults"]
+
+Faults = list[CurveFault]
+
+_ORDER: Final = {kind: place for place, kind in enumerate(FaultKind)}
+
+
+def in_order(faults: Iterable[CurveFault]) -> tuple[CurveFault, ...]:
+    """Sort findings by kind, then by where they are; of equal ones one stays."""
+    unique = {(fault.kind, fault.start): fault for fault in faults}
+    return tuple(sorted(unique.values(), key=lambda fault: (_ORDER[fault.kind], fault.start)))
+
+
+def record_faults(points: Points) -> Faults:
+    """Find what is wrong with the record whatever the metal: time, range, units."""
+    return [
+        *time_backward(points),
+        *time_standing(points),
+        *saturation(points),
+        *stress_impossible(points),
+    ]
+
+
+def test_faults(
+    points: Points,
+    branch: Branch,
+    elastic: Elastic,
+    last: int,
+    settings: CurveSettings,
+    geometry: Geometry,
+) -> Faults:
+    """Find what went wrong in the test, and what is the metal's own.
+
+    Parameters
+    ----------
+    points : Points
+        The curve.
+    branch : Branch
+        The part that is reduced.
+    elastic : Elastic
+        Its elastic part.
+    last : int
+        Place of the last point before the break.
+    settings : CurveSettings
+        Where the strain comes from; the mode.
+    geometry : Geometry
+        Dimensions, for compression.
+
+    Returns
+    -------
+    list of CurveFault
+        Everything found, in no order.
+    """
+    slope = elastic.line.slope
+    by_crosshead = settings.strain_from == "crosshead" and settings.stress_is is None
+    noise = branch.noise_stress, branch.noise_strain
+    proof = float(branch.stress[branch.peak if elastic.proof_at is None else elastic.proof_at])
+    places = int(branch.place[elastic.start]), int(branch.place[elastic.stop - 1]) + 1
+    drops = find_drops(points, noise[0], last)
+    faults = [
+        *zero_offset(points, noise[0], proof, last),
+        *grip_slip(points, drops, slope),
+        *serrations(points, drops),
+        *unloading_loops(points, branch),
+        *strain_jump(points, noise, slope, int(branch.place[-1])),
+        *plateau(points, branch, elastic.proof_at, slope, by_crosshead),
+    ]
+    if not by_crosshead and settings.slope is None:
+        faults += slope_impossible(points, slope, places)
+    count = elastic.stop - elastic.start
+    if count < LEAST_ELASTIC_POINTS:
+        limit = float(LEAST_ELASTIC_POINTS)
+        faults.append(points.fault(FaultKind.FEW_ELASTIC_POINTS, places, float(count), limit))
+    if settings.mode == "compression":
+        faults += [*barrelling(points, geometry), *friction(points, geometry)]
+    return faults
