@@ -307,7 +307,7 @@ BAD: list[tuple[dict[str, Any], str]] = [
         {"indentation": {"HBW": {"representative_strain": 0.08, "strain_ratio": 0.2}}},
         "indentation.HBW.strain_ratio",
     ),
-    ({"hardening": {"law": "logarithmic"}}, "hardening.law"),
+    ({"hardening": {"law": "linear"}}, "hardening.law"),
     (
         {"hardening": {"slope_n_per_m": 18.0, "coefficient": 0.3}},
         "hardening.coefficient",
@@ -329,7 +329,7 @@ BAD: list[tuple[dict[str, Any], str]] = [
     ({"hardening": {"coefficient": {"value": 0.3, "sigma": 0.1}}}, "hardening.coefficient"),
     ({"line_energy": {"outer_radius": "fixed"}}, "line_energy"),
     ({"line_energy": {"outer_radius_nm": 100.0}}, "line_energy.outer_radius_nm"),
-    ({"line_energy": {"elasticity": "anisotropic"}}, "line_energy.elasticity"),
+    ({"line_energy": {"elasticity": "viscous"}}, "line_energy.elasticity"),
     ({"character": {}}, "character"),
     ({"character": {"mix": "random"}}, "character.mix"),
     ({"character": {"mix": "uniform", "edge": 1.0}}, "character.edge"),

@@ -61,14 +61,14 @@ def test_time_of_the_fall_by_quadrature(kelvin: float, stress: float) -> None:
 
 
 def test_a_high_stress_falls_with_the_logarithm_of_time() -> None:
-    # sV >> kT and little lost: sigma_0 - (kT/V) ln(1 + t/tau), the prefactor's square of the
-    # stress taken as it is in the middle (Verdier and Brechet 1995: logarithmic).
+    # sV >> kT and little lost: sigma_0 - (kT/V) ln(1 + t/tau), the square of the stress in the
+    # rate taken as it is at the end, where most of the time goes by (Verdier and Brechet 1995:
+    # logarithmic).
     law = dataclasses.replace(LAW, activation_energy=3.2e-19, activation_volume=1.4e-27)
     heat = boltzmann * 300.0 / law.activation_volume
     times = np.array([1e2, 1e4, 1e6])
     left = np.array([float(recovered_stress(200e6, held(300.0, t), law)) for t in times])
-    middle = (200e6 + left) / 2.0
-    tau = heat / (0.5 * factor(300.0, law) * middle**2 * np.exp(200e6 / heat))
+    tau = heat / (0.5 * factor(300.0, law) * left**2 * np.exp(200e6 / heat))
     assert_allclose(left, 200e6 - heat * np.log1p(times / tau), rtol=2e-3)
     assert_allclose(-np.diff(left), heat * np.log(100.0), rtol=0.05)
 
@@ -99,13 +99,13 @@ def test_two_schedules_in_turn_are_one() -> None:
 
 
 def test_a_ramp_is_many_short_stays() -> None:
-    # 400 stays at the temperatures in their middles come to the ramp as their number squared.
-    edges = np.linspace(0.0, 1800.0, 401)
+    # Stays at the temperatures in their middles come to the ramp with the square of their number.
+    edges = np.linspace(0.0, 1800.0, 101)
     kelvin = 350.0 + 150.0 * (edges[:-1] + edges[1:]) / 2.0 / 1800.0
     stays = schedule(np.repeat(edges, 2)[1:-1], np.repeat(kelvin, 2))
     ramp = schedule([0.0, 1800.0], [350.0, 500.0])
     assert_allclose(
-        recovered_stress(100e6, ramp, LAW), recovered_stress(100e6, stays, LAW), rtol=1e-4
+        recovered_stress(100e6, ramp, LAW), recovered_stress(100e6, stays, LAW), rtol=2e-3
     )
 
 

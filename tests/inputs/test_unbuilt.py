@@ -16,10 +16,6 @@ NOT_YET = "not built yet"
 @pytest.mark.parametrize(
     ("section", "line", "words"),
     [
-        ("hardening", 'law = "logarithmic"', "The logarithmic law"),
-        ("hardening", "reference_density_per_m2 = 1e14", "A reference density"),
-        ("line_energy", 'elasticity = "anisotropic"', "anisotropic elasticity"),
-        ("line_energy", 'slip_system = "{111}<110>"', "A slip system"),
         ("indentation", 'size_effect = "fitted"', "Fitting the indentation size effect"),
         ("indentation", 'size_effect = "length"', "from a characteristic depth"),
         ("indentation", 'size_effect = "strength"', "from a size strength"),
@@ -54,7 +50,6 @@ def test_a_section_asks_for_what_is_not_there_yet(
         ("baseline_mpa", "superposition_exponent = 1.5\nbaseline_mpa", "Superposition by"),
         ("{ value = 50.0, u = 15.0 }", '{ from_coupon = "A0" }', "taken from a coupon"),
         ("{ value = 50.0, u = 15.0 }", '{ calibration = "C1" }', "taken from a calibration"),
-        ("shear_modulus_gpa", "c11_gpa = 168.4\nshear_modulus_gpa", "anisotropic elasticity"),
         ("shear_modulus_gpa", "melting_point_k = 1358\nshear_modulus_gpa", "for temperature"),
         ("shear_modulus_gpa", "shear_modulus_slope = -0.5\nshear_modulus_gpa", "for temperature"),
         (

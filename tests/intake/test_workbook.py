@@ -7,12 +7,14 @@ the number grammar, from the layout and from the definition of the units (1 mm =
 from collections.abc import Callable
 from pathlib import Path
 
+import numpy as np
 import pytest
 from tests.intake.books import LAYOUT, cell, ods, ods_cell, ods_row, row, xlsx
 
 from coldwork import contracts
 from coldwork.errors import BatchRefused
 from coldwork.inputs.layout import read_layout
+from coldwork.intake.coupons import Coupons, read_coupons
 from coldwork.intake.files import TableFiles
 from coldwork.intake.sources import check_headers, table_text
 from coldwork.intake.text import TextBlock
@@ -341,3 +343,53 @@ def test_rows_that_close_the_table_are_kept_and_read(tmp_path: Path) -> None:
 def test_headers_are_checked_before_anything_is_read(tmp_path: Path) -> None:
     files = files_of(tmp_path, xlsx(*HEADER, GOOD), "b.xlsx", "", {})
     assert check_headers(files) == []
+
+
+COUPONS = """\
+[layout]
+id = "list"
+fills = "coupons"
+[workbook]
+sheet = "Indents"
+[columns]
+coupon_id = "Coupon"
+thickness_mm = "Thickness"
+"""
+LISTED = {
+    "hidden": (row(3, "A-2", 2.5, hidden="1"), "", "row is hidden", "Show the row"),
+    "zeros": (row(3, cell("A3", "12", style=3), 2.5), "", "shows another value", "as General"),
+    "merged": (
+        row(3, None, 2.5),
+        '<mergeCells><mergeCell ref="A2:A3"/></mergeCells>',
+        "merged with others",
+        "unmerge the cells",
+    ),
+}
+
+
+def listed(folder: Path, *rows: str, after: str = "") -> Coupons:
+    (folder / "list.toml").write_text(COUPONS, encoding="utf-8")
+    (folder / "c.xlsx").write_bytes(xlsx(row(1, "Coupon", "Thickness"), *rows, after=after))
+    layout = read_layout("list.toml", folder)
+    contract = contracts.load("in/coupons")
+    files = TableFiles(contract, folder, (folder / "c.xlsx",), (layout,))
+    return read_coupons(files, "UTC")
+
+
+@pytest.mark.parametrize("case", LISTED)
+def test_a_coupon_that_must_not_be_guessed_refuses_the_batch(tmp_path: Path, case: str) -> None:
+    bad, after, what, mend = LISTED[case]
+    with pytest.raises(BatchRefused) as caught:
+        listed(tmp_path, row(2, "A-1", 2.5), bad, after=after)
+    cause = caught.value.causes[-1]
+    assert cause.where == "c.xlsx!Indents, line 3, column Coupon"
+    assert what in cause.what
+    assert mend in cause.mend
+
+
+def test_an_error_in_an_optional_cell_of_a_coupon_counts_as_absent(tmp_path: Path) -> None:
+    coupons = listed(tmp_path, row(2, "A-1", 2.5), row(3, "A-2", cell("B3", "#N/A", "e")))
+    assert coupons.thickness[0] == 0.0025
+    assert np.isnan(coupons.thickness[1])
+    (bad,) = coupons.bad_cells
+    assert (bad.column, bad.raw, bad.rule) == ("thickness_mm", "#N/A", "cell-error")

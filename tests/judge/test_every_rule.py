@@ -296,6 +296,7 @@ CASES: Final[list[tuple[Rule, Fires, Fires]]] = [
     (C.GRAIN_SIZE_MISSING, cells(PARTS, coupons(NAN)), cells(PARTS, coupons(25.0))),
     (C.GRAIN_SIZE_MISSING_RADIUS, cells(RADIUS, coupons(NAN)), cells(method(), coupons(NAN))),
     (C.DENSITY_IMPOSSIBLE, judged(density=1.01e17), judged(density=1e17)),
+    (C.STRESS_PAST_BRANCH, judged(stress=9e9, density=NAN), judged(stress=9e9, density=2e16)),
     (C.DENSITY_TOO_LOW, judged(density=0.99e10), judged(density=1e10)),
     (C.NO_LINE_ENERGY, judged(radius_ratio=1.0), judged(radius_ratio=1.01)),
     (C.STORED_FRACTION_IMPOSSIBLE, judged(stored_fraction=1.01), judged(stored_fraction=1.0)),

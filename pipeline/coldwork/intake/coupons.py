@@ -14,13 +14,16 @@ from coldwork.intake.cells import replaced, texts
 from coldwork.intake.column import Column, Fault
 from coldwork.intake.files import BLOCK_BYTES, SourceFile, TableFiles
 from coldwork.intake.lookup import Lookup
+from coldwork.intake.text import REFUSED
 from coldwork.intake.whole import WholeTable, capped, read_whole
-from coldwork.rules.reasons import REQUIRED_EMPTY
+from coldwork.rules.reasons import OUT_OF_RANGE, REQUIRED_EMPTY
 from coldwork.units import to_si
 
 __all__ = ["BadCell", "Coupons", "read_coupons"]
 
 _ID: Final = "coupon_id"
+_NAME: Final = "A coupon's name is any printable text of up to 120 characters."
+_NO_ROW_LOST: Final = "No row of this table may be lost, and no name is guessed."
 _GRAIN: Final = "grain_size_um"
 _U_GRAIN: Final = "u_grain_size_um"
 _DIMENSIONS: Final = (
@@ -159,11 +162,12 @@ def read_coupons(files: TableFiles, zone: str, *, block_bytes: int = BLOCK_BYTES
 
 
 def _id_causes(column: Column, table: WholeTable) -> list[Cause]:
-    why = "A coupon's name is any printable text of up to 120 characters."
     causes = []
     for fault in column.faults:
         empty = fault.reason is REQUIRED_EMPTY
-        what = "the name is empty" if empty else "the name cannot be used"
+        what, why = "the name is empty" if empty else "the name cannot be used", _NAME
+        if not empty and fault.reason is not OUT_OF_RANGE:  # the layout, or a workbook's cell
+            what, why = fault.reason.statement, _NO_ROW_LOST
         found = []
         for row, _, hint in table.hinted(fault):
             words = "give the coupon a name" if empty else hint
@@ -178,7 +182,7 @@ def _repeats(column: Column, table: WholeTable) -> list[Cause]:
     first: dict[str, int] = {}
     causes = []
     for row, name in enumerate(texts(column.text)):
-        if name and first.setdefault(name, row) != row:
+        if name not in ("", REFUSED) and first.setdefault(name, row) != row:
             before = table.where(first[name], _ID)
             what = f"coupon {shown(name)} is listed again; first in {before}"
             mend = "Delete one of the two, or give the other coupon its own name."

@@ -1,0 +1,347 @@
+"""Any batch, written through any layout and read back, gives the same cells as its tidy table.
+
+The writer below knows nothing of the reader: it writes decimal numbers in a unit, signs and
+encoding that were drawn, and works out the tidy cell by exact decimal arithmetic.
+"""
+
+import csv
+import io
+import json
+from dataclasses import dataclass, field
+from datetime import datetime
+from decimal import Decimal
+from pathlib import Path
+from tempfile import TemporaryDirectory
+from typing import Any, Final
+
+from hypothesis import HealthCheck, assume, given, settings
+from hypothesis import strategies as st
+
+from coldwork import contracts
+from coldwork.inputs.layout import read_layout
+from coldwork.intake.coupons import read_coupons
+from coldwork.intake.exclusions import no_exclusions
+from coldwork.intake.files import TableFiles
+from coldwork.intake.readings import ReadingStream, read_readings
+from coldwork.intake.set_aside import SetAside
+
+FORCE: Final = {"N": "1", "kN": "1000", "kgf": "9.80665", "gf": "0.00980665"}
+UNITS: Final[dict[str, dict[str, str]]] = {  # SI brochure; NIST SP 811 for kgf and inch
+    "force_n": FORCE | {"lbf": "4.4482216152605"},
+    "d1_um": {"um": "1", "mm": "1000", "in": "25400"},
+    "d2_um": {"um": "1", "mm": "1000", "in": "25400"},
+    "hardness": {"kgf/mm2": "1"},
+    "x_mm": {"mm": "1", "um": "0.001", "in": "25.4"},
+    "edge_mm": {"mm": "1", "um": "0.001"},
+    "dwell_s": {"s": "1", "min": "60"},
+    "temperature_c": {"C": "1", "K": "1"},
+}
+REQUIRED: Final = ("coupon_id", "force_n", "d1_um", "d2_um")
+TIMES: Final = (None, "%d.%m.%Y %H:%M", "%m/%d/%Y %I:%M %p", "%d %b %Y %H:%M:%S", "%Y%m%d-%H%M%S")
+ENCODINGS: Final = {  # as a layout says it: codec, mark
+    "utf-8": [("utf-8", b""), ("utf-8", b"\xef\xbb\xbf")],
+    "utf-16": [("utf-16-le", b"\xff\xfe"), ("utf-16-be", b"\xfe\xff")],
+    "utf-16-le": [("utf-16-le", b""), ("utf-16-le", b"\xff\xfe")],
+    "utf-16-be": [("utf-16-be", b"")],
+    "cp1252": [("cp1252", b"")],
+    "latin-1": [("latin-1", b"")],
+    "cp437": [("cp437", b"")],
+    "gb18030": [("gb18030", b"")],
+}
+DELIMITERS: Final = {"tab": "\t", ";": ";", "|": "|", ",": ",", "spaces": " "}
+WORDS: Final = ("---", "n.m.")
+
+
+@dataclass
+class Plan:
+    """How one batch is written."""
+
+    encoding: str
+    codec: str
+    mark: bytes
+    delimiter: str
+    decimal: str
+    thousands: str | None
+    end: str
+    begin: str  # marker, header_line or nothing
+    units_line: bool
+    comments: bool
+    padded: bool
+    closed: bool
+    times: str | None
+    absent: tuple[str, ...]
+    units: dict[str, str]
+    place: dict[str, str] = field(default_factory=dict)  # column, above or constant
+    order: list[str] = field(default_factory=list)  # our columns, and `extra` ones
+
+
+@dataclass(frozen=True)
+class Cell:
+    """One cell: as it is written, and as the tidy table has it."""
+
+    written: str
+    tidy: str
+
+
+@st.composite
+def plans(draw: st.DrawFn) -> Plan:
+    encoding = draw(st.sampled_from(list(ENCODINGS)))
+    codec, mark = draw(st.sampled_from(ENCODINGS[encoding]))
+    delimiter = draw(st.sampled_from(list(DELIMITERS)))
+    signs = [(".", None), (",", None), (".", ","), (",", "."), (",", " "), (".", "'")]
+    taken = DELIMITERS[delimiter]
+    decimal, thousands = draw(st.sampled_from([pair for pair in signs if taken not in pair]))
+    spaces = delimiter == "spaces"
+    return Plan(
+        encoding=encoding,
+        codec=codec,
+        mark=mark,
+        delimiter=delimiter,
+        decimal=decimal,
+        thousands=thousands,
+        end=draw(st.sampled_from(["\n", "\r\n", "\r"])),
+        begin=draw(st.sampled_from(["marker", "header_line", ""])),
+        units_line=draw(st.booleans()),
+        comments=draw(st.booleans()),
+        padded=draw(st.booleans()) and not spaces,
+        closed=draw(st.booleans()),
+        times=draw(st.sampled_from([t for t in TIMES if not (spaces and t and " " in t)])),
+        absent=WORDS if spaces else draw(st.sampled_from([("",), ("", *WORDS), WORDS])),
+        units={name: draw(st.sampled_from(list(units))) for name, units in UNITS.items()},
+    )
+
+
+def texts(plan: Plan) -> st.SearchStrategy[str]:
+    """Printable text that can be encoded and is none of the words that mean something."""
+    categories: Any = ("L", "N", "P", "S") if plan.delimiter == "spaces" else ("L", "N", "P", "S", "Zs")
+    letters = st.characters(codec=plan.codec, categories=categories)
+    text = st.text(letters, min_size=1, max_size=12)
+    return text.filter(
+        lambda one: one[0] != "#"
+        and one not in (*WORDS, "end")
+        and not (plan.delimiter == "spaces" and one[0] == '"')
+        and not (plan.padded and one != one.strip(" "))
+        and one.isprintable()
+    )
+
+
+@st.composite
+def numbers(draw: st.DrawFn, plan: Plan, column: str, *, mandatory: bool) -> Cell:
+    if not mandatory and draw(st.integers(0, 4)) == 0:
+        return Cell(draw(st.sampled_from(plan.absent)), "")
+    whole = draw(st.integers(1, 9_999_999))
+    rest = draw(st.from_regex(r"\A[0-9]{0,4}\Z"))
+    value = Decimal(f"{whole}.{rest}" if rest else str(whole))
+    unit = plan.units[column]
+    exact = value * Decimal(UNITS[column][unit])
+    if unit == "K":
+        exact = value - Decimal("273.15")
+    digits = str(whole)
+    if plan.thousands and draw(st.booleans()):
+        digits = f"{whole:,}".replace(",", plan.thousands)
+    return Cell(digits + (plan.decimal + rest if rest else ""), f"{exact:f}")
+
+
+@st.composite
+def moments(draw: st.DrawFn, plan: Plan) -> Cell:
+    if draw(st.integers(0, 4)) == 0:
+        return Cell(draw(st.sampled_from(plan.absent)), "")
+    moment = draw(st.datetimes(datetime(2000, 1, 1), datetime(2050, 1, 1)))  # noqa: DTZ001
+    seconds = plan.times is None or "%S" in plan.times
+    moment = moment.replace(microsecond=0, second=moment.second if seconds else 0)
+    tidy = moment.isoformat(timespec="seconds" if seconds else "minutes")
+    return Cell(moment.strftime(plan.times) if plan.times else tidy, tidy)
+
+
+@st.composite
+def batches(draw: st.DrawFn) -> tuple[Plan, list[dict[str, Cell]]]:
+    plan = draw(plans())
+    optional = [*list(UNITS)[3:], "measured_at", "operator", "tester", "scale", "indent_no"]
+    columns = [*REQUIRED, *draw(st.lists(st.sampled_from(optional), unique=True))]
+    coupons = draw(st.lists(texts(plan), min_size=1, max_size=3, unique=True))
+    rows: list[dict[str, Cell]] = []
+    for number in range(1, draw(st.integers(1, 8)) + 1):
+        name = draw(st.sampled_from(coupons))
+        row = {"coupon_id": Cell(name, name)}
+        for column in columns[1:]:
+            if column in UNITS:
+                row[column] = draw(numbers(plan, column, mandatory=column in REQUIRED))
+            elif column == "measured_at":
+                row[column] = draw(moments(plan))
+            elif column == "indent_no":
+                row[column] = Cell(str(number), str(number))
+            elif column == "scale":
+                row[column] = Cell("HV", "HV")
+            else:
+                text = draw(texts(plan))
+                row[column] = Cell(text, text)
+        rows.append(row)
+    fixed = draw(st.lists(st.sampled_from(columns), unique=True)) if plan.begin else []
+    for column in fixed:
+        if column != "indent_no" and len(columns) - len(plan.place) > 1:
+            plan.place[column] = draw(st.sampled_from(["above", "constant"]))
+            if plan.place[column] == "constant":
+                rows[0][column] = constant(rows[0][column], column, plan)
+            for row in rows[1:]:
+                row[column] = rows[0][column]
+    free = [column for column in columns if column not in plan.place]
+    extra = [f"extra {n}" for n in range(draw(st.integers(0, 3)))]
+    plan.order = draw(st.permutations([*free, *extra]))
+    return plan, rows
+
+
+def constant(cell: Cell, column: str, plan: Plan) -> Cell:
+    """A constant is TOML: a number without thousands marks, a time in ISO 8601, any text."""
+    if column not in UNITS:
+        return Cell(cell.tidy, cell.tidy)
+    digits = "".join(c for c in cell.written if c.isdigit() or c == plan.decimal) or "7"
+    value = float(digits.replace(plan.decimal, "."))
+    exact = Decimal(repr(value)) * Decimal(UNITS[column][plan.units[column]])
+    if plan.units[column] == "K":
+        exact = Decimal(repr(value)) - Decimal("273.15")
+    return Cell(repr(value), f"{exact:f}")
+
+
+def own(column: str, plan: Plan) -> str:
+    name = f"the {column.split('_')[0]} {'(x)' if column in UNITS else ''}".strip()
+    return name.replace(" ", "-") if plan.delimiter == "spaces" else name
+
+
+def layout(plan: Plan, rows: list[dict[str, Cell]], header_line: int) -> str:
+    quoted = lambda text: json.dumps(text, ensure_ascii=False)  # noqa: E731 - TOML's basic strings
+    lines = ["[layout]", 'id = "any"', 'fills = "indents"', "[text]"]
+    lines += [f"encoding = {quoted(plan.encoding)}", f"delimiter = {quoted(plan.delimiter)}"]
+    lines += [f"decimal = {quoted(plan.decimal)}", f"padded = {str(plan.padded).lower()}"]
+    lines += [f"units_line = {str(plan.units_line).lower()}", f"absent = {json.dumps(plan.absent)}"]
+    lines += [f"thousands = {quoted(plan.thousands)}"] if plan.thousands else []
+    lines += [f"times = {quoted(plan.times)}"] if plan.times else []
+    lines += ['comment = "#"'] if plan.comments else []
+    lines += ['ends_before = ["end"]'] if plan.closed else []
+    if plan.begin == "marker":
+        lines.append('table_starts_after = "HERE IT COMES"')
+    elif plan.begin == "header_line":
+        lines.append(f"header_line = {header_line}")
+    for section in ("column", "above", "constant"):
+        lines.append(f"[{section if section == 'above' else section + 's'}]")
+        for column, cell in rows[0].items():
+            if plan.place.get(column, "column") != section:
+                continue
+            unit = f", unit = {quoted(plan.units[column])}" if column in UNITS else ""
+            if section == "constant":
+                value = cell.written if column in UNITS else quoted(cell.written)
+                lines.append(f"{column} = " + (f"{{ value = {value}{unit} }}" if unit else value))
+            else:
+                name = f"{own(column, plan)}:" if section == "above" else own(column, plan)
+                lines.append(f"{column} = {{ from = {quoted(name)}{unit} }}")
+    return "\n".join(lines)
+
+
+def written(plan: Plan, rows: list[dict[str, Cell]]) -> tuple[bytes, int]:
+    """Write the batch; give the file and the line of its header."""
+    mark = DELIMITERS[plan.delimiter]
+
+    def line(cells: list[str]) -> str:
+        if plan.delimiter == "spaces":
+            return "  ".join(cells)
+        cells = [cell.ljust(len(cell) + 2) for cell in cells] if plan.padded else cells
+        out = io.StringIO()
+        csv.writer(out, delimiter=mark, lineterminator="").writerow(cells)
+        return out.getvalue()
+
+    above = [
+        line([f"{own(column, plan)}:", cell.written])
+        for column, cell in rows[0].items()
+        if plan.place.get(column) == "above"
+    ]
+    if plan.begin:
+        above = ["a record", "", *above]
+    if plan.begin == "marker":
+        above.append("HERE IT COMES")
+    lines = [*above, line([own(column, plan) for column in plan.order])]
+    if plan.units_line:
+        nothing = "-" if plan.delimiter == "spaces" else ""
+        lines.append(line([plan.units.get(column, nothing) for column in plan.order]))
+    for number, row in enumerate(rows, 1):
+        cells = [row[each].written if each in row else str(number) for each in plan.order]
+        lines += ["# a remark", ""] if plan.comments and number % 3 == 0 else []
+        lines.append(line(cells))
+    lines += [line(["end", "of", "it"])] if plan.closed else []
+    return plan.mark + "".join(f"{each}{plan.end}" for each in lines).encode(plan.codec), len(above) + 1
+
+
+def tidy(rows: list[dict[str, Cell]]) -> str:
+    out = io.StringIO()
+    writer = csv.writer(out, lineterminator="\n")
+    counts: dict[str, int] = {}
+    names = [*rows[0], *(["indent_no"] if "indent_no" not in rows[0] else [])]
+    writer.writerow(names)
+    for row in rows:
+        coupon = row["coupon_id"].tidy
+        counts[coupon] = counts.get(coupon, 0) + 1
+        cells = {name: cell.tidy for name, cell in row.items()}
+        cells.setdefault("indent_no", str(counts[coupon]))
+        writer.writerow([guarded(cells[name]) for name in names])
+    return out.getvalue()
+
+
+def guarded(text: str) -> str:
+    """Write text as tidy tables have it, where readers take one apostrophe off."""
+    return f"'{text}" if text.startswith("'") else text
+
+
+def cells_of(stream: ReadingStream) -> list[list[Any]]:
+    found: list[list[Any]] = []
+    for block in stream:
+        named = {**block.floats, **block.texts}
+        times = [None] * len(block.lines) if block.times is None else block.times.tolist()
+        columns = [block.coupon.tolist(), block.number.tolist(), times]
+        columns += [
+            [value.hex() if isinstance(value, float) else value for value in named[name].tolist()]
+            for name in sorted(named)
+        ]
+        found += map(list, zip(*columns, strict=True))
+    return found
+
+
+@settings(deadline=None, max_examples=150, suppress_health_check=[HealthCheck.too_slow])
+@given(batches(), st.sampled_from([64, 2 << 20]))
+def test_what_was_written_through_a_layout_is_read_back(
+    batch: tuple[Plan, list[dict[str, Cell]]], block_bytes: int
+) -> None:
+    plan, rows = batch
+    data, header_line = written(plan, rows)
+    if plan.codec in ("cp1252", "latin-1", "cp437"):
+        assume(not could_be_utf_8(data))  # refused, and rightly
+    with TemporaryDirectory() as name:
+        folder = Path(name)
+        (folder / "l.toml").write_text(layout(plan, rows, header_line), encoding="utf-8")
+        (folder / "f.txt").write_bytes(data)
+        (folder / "i.csv").write_text(tidy(rows), encoding="utf-8", newline="")
+        listed = io.StringIO()
+        csv.writer(listed).writerows([["coupon_id"], *({guarded(r["coupon_id"].tidy): 0} for r in rows)])
+        ids = list(dict.fromkeys(guarded(row["coupon_id"].tidy) for row in rows))
+        listed = io.StringIO()
+        csv.writer(listed, lineterminator="\n").writerows([["coupon_id"], *([one] for one in ids)])
+        (folder / "c.csv").write_text(listed.getvalue(), encoding="utf-8", newline="")
+        coupons = read_coupons(
+            TableFiles(contracts.load("in/coupons"), folder, (folder / "c.csv",)), "UTC"
+        )
+        contract, made = contracts.load("in/indents"), read_layout("l.toml", folder)
+        found = []
+        for path, layouts in (("i.csv", ()), ("f.txt", (made,))):
+            files = TableFiles(contract, folder, (folder / path,), layouts)
+            aside = SetAside(len(coupons))
+            stream = read_readings(
+                files, coupons, no_exclusions(), aside, "UTC", block_bytes=block_bytes
+            )
+            found.append(cells_of(stream))
+            assert aside.table().to_pylist() == []
+    assert found[1] == found[0]
+    assert len(found[0]) == len(rows)
+
+
+def could_be_utf_8(data: bytes) -> bool:
+    try:
+        return not data.decode("utf-8").isascii()
+    except UnicodeDecodeError:
+        return False
