@@ -8,7 +8,7 @@ sets a reading aside, is on the list; of what is only information, one line for 
 
 from typing import Final
 
-from scenario import faults_of_flow, faults_of_grains, faults_of_indents, faults_of_rows
+from scenario import faults_of_branch, faults_of_flow, faults_of_grains, faults_of_indents, faults_of_rows
 from scenario.tables import Table
 
 __all__ = ["files"]
@@ -50,6 +50,7 @@ def files() -> dict[str, str]:
         faults_of_grains.baseline_batch(),
         faults_of_grains.radius_batch(),
         faults_of_flow.batch(),
+        faults_of_branch.batch(),
     )
     found = {"planted-faults/house.toml": _HOUSE}
     table = Table(("batch", "coupon_id", "reading_no", "rule_or_reason", "file", "line", "planted"))

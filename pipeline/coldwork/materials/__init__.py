@@ -1,79 +1,30 @@
 """The library of metals: one TOML file each, every value with its source.
 
-To add a metal, add a file beside these; its name is the file's name.
+To add a metal, add a file beside these; its name is the file's name. A file of the same
+form elsewhere is read with `load_file`.
 """
 
-import tomllib
-from collections.abc import Mapping
-from dataclasses import dataclass
 from difflib import get_close_matches
 from importlib.resources import files
-from typing import Any
+from pathlib import Path
+from typing import Final
 
-from coldwork.errors import UsageError
+from coldwork.errors import Cause, UsageError
+from coldwork.materials.entry import KEYS, LATTICES, LibraryValue, Material
+from coldwork.materials.reading import examine
 
-__all__ = ["LibraryValue", "Material", "load", "names"]
+__all__ = [
+    "KEYS",
+    "LATTICES",
+    "LibraryValue",
+    "Material",
+    "faults_of_file",
+    "load",
+    "load_file",
+    "names",
+]
 
-
-@dataclass(frozen=True)
-class LibraryValue:
-    """One constant of a metal.
-
-    Attributes
-    ----------
-    value : float
-        The value. [`unit`]
-    u : float
-        Standard uncertainty, wide enough to take in the values that differ. [`unit`]
-    unit : str
-        UCUM code, the one that the key's name ends in.
-    source : str
-        Where the value was found, with ``from memory`` where it is only remembered.
-    seen : bool
-        Whether the number itself was read somewhere when the entry was made.
-    """
-
-    value: float
-    u: float
-    unit: str
-    source: str
-    seen: bool
-
-
-@dataclass(frozen=True)
-class Material:
-    """A metal of the library.
-
-    Attributes
-    ----------
-    name : str
-        What the batch sheet calls it.
-    title : str
-        What it is.
-    lattice : str
-        ``fcc``, ``bcc`` or ``hcp``.
-    note : str
-        What to know before using the entry; may be empty.
-    values : mapping of str to LibraryValue
-        Constants under the keys of the sheet's ``[material]``, and
-        ``lattice_constant_nm``, ``edge_distance_d``, ``centre_distance_d``.
-    """
-
-    name: str
-    title: str
-    lattice: str
-    note: str
-    values: Mapping[str, LibraryValue]
-
-    @property
-    def edge_distance_d(self) -> float:
-        """Least distance of an indent's centre from an edge, in mean diagonals. [1]."""
-        return self.values["edge_distance_d"].value
-
-    @property
-    def centre_distance_d(self) -> float:
-        """Least distance between the centres of two indents, in mean diagonals. [1]."""
-        return self.values["centre_distance_d"].value
+_LARGEST: Final = 1_000_000  # bytes; an entry of the library has three thousand
 
 
 def names() -> tuple[str, ...]:
@@ -103,13 +54,81 @@ def load(name: str) -> Material:
     known = names()
     if name not in known:
         close = get_close_matches(name.lower(), known, n=1)
-        hint = f"the nearest name is '{close[0]}'" if close else f"it has {', '.join(known)}"
+        hint = (
+            f"the nearest name is '{close[0]}'"
+            if close
+            else f"'coldwork materials' lists the {len(known)} that it has"
+        )
         message = f"the library has no metal '{name}'; {hint}"
         raise UsageError(message)
     text = (files(__name__) / f"{name}.toml").read_text(encoding="utf-8")
-    return _material(tomllib.loads(text))
+    return _sound(text, f"{name}.toml")
 
 
-def _material(entry: dict[str, Any]) -> Material:
-    values = {key: LibraryValue(**value) for key, value in entry.pop("values").items()}
-    return Material(values=values, **entry)
+def load_file(path: Path) -> Material:
+    """Read a metal from a file of one's own, written as those of the library are.
+
+    Parameters
+    ----------
+    path : Path
+        The TOML file; its name does not matter.
+
+    Returns
+    -------
+    Material
+        What the file says. The library may hold a metal of the same name.
+
+    Raises
+    ------
+    UsageError
+        If the file cannot be read or is no entry; the message lists every fault with
+        file, line and key.
+    """
+    faults = faults_of_file(path)
+    if faults:
+        raise UsageError("\n".join(str(fault) for fault in faults))
+    return _sound(_text(path), str(path))
+
+
+def faults_of_file(path: Path) -> tuple[Cause, ...]:
+    """Look for what is wrong with a metal's file.
+
+    Parameters
+    ----------
+    path : Path
+        The TOML file.
+
+    Returns
+    -------
+    tuple of Cause
+        All that `load_file` would refuse it for; empty if it would not.
+    """
+    try:
+        text = _text(path)
+    except UnicodeDecodeError as error:
+        line = error.object[: error.start].count(b"\n") + 1
+        what = f"byte {error.start} is not UTF-8"
+        return (Cause(f"{path}, line {line}", what, "", "Save it as UTF-8."),)
+    except (OSError, ValueError) as error:
+        reason = error.strerror if isinstance(error, OSError) and error.strerror else error
+        return (Cause(str(path), f"it cannot be read: {reason}", "", "Name a readable file."),)
+    return tuple(examine(text, str(path)).faults)
+
+
+def _text(path: Path) -> str:
+    if path.exists() and not path.is_file():
+        message = "it is not a file"
+        raise OSError(message)
+    with path.open("rb") as stream:
+        data = stream.read(_LARGEST + 1)
+    if len(data) > _LARGEST:
+        message = f"it holds more than {_LARGEST // 1_000_000} MB"
+        raise OSError(message)
+    return data.decode("utf-8-sig").replace("\r\n", "\n")
+
+
+def _sound(text: str, where: str) -> Material:
+    examined = examine(text, where)
+    if examined.faults:
+        raise UsageError("\n".join(str(fault) for fault in examined.faults))
+    return examined.material

@@ -141,8 +141,9 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
 
 
 _NOTES = (
-    "Engineering stress and strain, the strain corrected for the toe. Grey: past the end of uniform strain, where nothing is "
-    "evaluated. Curves are thinned for the picture; each pixel column keeps its extremes.",
+    "Engineering stress and strain, the strain corrected for the toe. Grey: past the end of "
+    "uniform strain, where nothing is evaluated. Curves are thinned for the picture; each pixel "
+    "column keeps its extremes.",
 )
 
 

@@ -22,6 +22,7 @@ __all__ = ["Caption", "Cell", "Remark", "grid_pages"]
 _TITLE, _CAPTION, _BELOW = 0.21, 0.17, 0.24  # above and below the panels of a cell [inch]
 _LABEL = 0.3  # for the name of the axis below the lowest row [inch]
 _TICKS, _GAP = 0.44, 0.1  # left of a panel with numbers of its own, and of another one [inch]
+_BOLD = 1.2  # width of a bold word over that of a plain one, at most [1]
 _RIGHT = 0.12  # right of the last panel, for half a number [inch]
 _HIGHEST = 10.2  # of all rows of a page together [inch]
 _FEW, _SOME = 4, 12  # cells up to which two, and three, stand side by side
@@ -105,7 +106,7 @@ def grid_pages(
         A page with its cells in order.
     """
     shape = _shape(len(names), captions)
-    labels = told_apart(list(names), Sizes.words, shape.cell_wide - 0.7)
+    labels = told_apart(list(names), Sizes.words, (shape.cell_wide - _TICKS - 0.1) / _BOLD)
     rows = max(1, int(_HIGHEST / shape.cell_high))
     pages = ceil(len(names) / (rows * shape.across))
     for i, part in enumerate(np.array_split(np.arange(len(names)), pages), 1):
@@ -177,7 +178,7 @@ def _name(
     at = left + shape.lefts[0]
     up = (top - _TITLE + 0.06) / whole
     figure.text(at / WIDTH, up, label, fontsize=Sizes.words, fontweight="bold", va="baseline")
-    after = at + 1.13 * width(label, Sizes.words) + 0.1
+    after = at + _BOLD * width(label, Sizes.words) + 0.1
     room = left + shape.cell_wide - after - _RIGHT
     if remark.text and room > 0.3:
         text = fitted(shown(remark.text), Sizes.small, room)
