@@ -62,7 +62,10 @@ def load(name: str) -> Material:
         message = f"the library has no metal '{name}'; {hint}"
         raise UsageError(message)
     text = (files(__name__) / f"{name}.toml").read_text(encoding="utf-8")
-    return _sound(text, f"{name}.toml")
+    examined = examine(text, f"{name}.toml")
+    if examined.faults:
+        raise UsageError("\n".join(str(fault) for fault in examined.faults))
+    return examined.material
 
 
 def load_file(path: Path) -> Material:
@@ -84,10 +87,10 @@ def load_file(path: Path) -> Material:
         If the file cannot be read or is no entry; the message lists every fault with
         file, line and key.
     """
-    faults = faults_of_file(path)
-    if faults:
+    faults, metal = _examined(path)
+    if metal is None:
         raise UsageError("\n".join(str(fault) for fault in faults))
-    return _sound(_text(path), str(path))
+    return metal
 
 
 def faults_of_file(path: Path) -> tuple[Cause, ...]:
@@ -103,16 +106,25 @@ def faults_of_file(path: Path) -> tuple[Cause, ...]:
     tuple of Cause
         All that `load_file` would refuse it for; empty if it would not.
     """
+    return _examined(path)[0]
+
+
+def _examined(path: Path) -> tuple[tuple[Cause, ...], Material | None]:
+    """Give the faults of a file, or the metal where there are none."""
     try:
         text = _text(path)
     except UnicodeDecodeError as error:
         line = error.object[: error.start].count(b"\n") + 1
         what = f"byte {error.start} is not UTF-8"
-        return (Cause(f"{path}, line {line}", what, "", "Save it as UTF-8."),)
+        return (Cause(f"{path}, line {line}", what, "", "Save it as UTF-8."),), None
     except (OSError, ValueError) as error:
         reason = error.strerror if isinstance(error, OSError) and error.strerror else error
-        return (Cause(str(path), f"it cannot be read: {reason}", "", "Name a readable file."),)
-    return tuple(examine(text, str(path)).faults)
+        return (
+            Cause(str(path), f"it cannot be read: {reason}", "", "Name a readable file."),
+        ), None
+    examined = examine(text, str(path))
+    faults = tuple(examined.faults)
+    return faults, None if faults else examined.material
 
 
 def _text(path: Path) -> str:
@@ -125,10 +137,3 @@ def _text(path: Path) -> str:
         message = f"it holds more than {_LARGEST // 1_000_000} MB"
         raise OSError(message)
     return data.decode("utf-8-sig").replace("\r\n", "\n")
-
-
-def _sound(text: str, where: str) -> Material:
-    examined = examine(text, where)
-    if examined.faults:
-        raise UsageError("\n".join(str(fault) for fault in examined.faults))
-    return examined.material

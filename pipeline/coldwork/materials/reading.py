@@ -127,9 +127,10 @@ class Examined:
     def _check_number(
         self, path: KeyPath, number: object, window: tuple[float, float], unit: str
     ) -> None:
-        if not _is_number(number):
+        value = _number(number)
+        if value is None:
             self._add(path, f"{_shown(number)} is not a number", "Write a number.")
-        elif not window[0] <= float(number) <= window[1]:  # type: ignore[arg-type]
+        elif not window[0] <= value <= window[1]:
             need = f"It must lie between {window[0]:g} and {window[1]:g}"
             what = f"{_shown(number)} is out of range"
             self._add(path, what, f"{need}{'' if unit == '1' else f' {unit}'}.")
@@ -204,13 +205,15 @@ def _is_text(value: object, *, empty: bool) -> bool:
     return isinstance(value, str) and value.isprintable() and (empty or bool(value.strip()))
 
 
-def _is_number(value: object) -> bool:
+def _number(value: object) -> float | None:
+    """Give a finite number, None for anything else."""
     if isinstance(value, bool) or not isinstance(value, int | float):
-        return False
+        return None
     try:
-        return isfinite(float(value))
+        number = float(value)
     except OverflowError:
-        return False
+        return None
+    return number if isfinite(number) else None
 
 
 def _shown(value: object) -> str:
