@@ -1,10 +1,10 @@
 """The batch *copper-tension*: strips of the same copper, rolled by five reductions and pulled.
 
 Two coupons of each. The machine leaves one text file a coupon: a few lines about the
-coupon, then time, load in kN and the travel of its crosshead in mm, with decimal commas.
-The copper hardens by the law of Voce from where rolling left it, so that every result is
-known. The seating of the grips bends the start of each curve, load and travel are noisy,
-and one coupon slipped in its grips.
+coupon, then time, load in kN, travel of the crosshead and stretch of the gauge length in
+mm, with decimal commas. The copper hardens by the law of Voce from where rolling left it,
+so that every result is known. Seating bends the start of each curve, load and stretch are
+noisy, and one coupon slipped in its grips.
 """
 
 from collections.abc import Callable
@@ -31,12 +31,14 @@ SATURATION: Final = 320e6  # sigma_s [Pa]
 REDUCTIONS: Final = (0.0, 0.05, 0.10, 0.15, 0.20)
 WIDTH: Final = 12.50  # [mm]
 THICKNESS: Final = 1.60
-LENGTH: Final = 75.0  # between the grips [mm]
-STIFFNESS: Final = 30e9  # slope of coupon and machine together [Pa]
-TOE: Final = 3e-4  # strain that seating adds [1]
+LENGTH: Final = 50.0  # of the extensometer [mm]
+GRIPS: Final = 90.0  # between them [mm]
+MACHINE: Final = 25e3  # its stiffness [N/mm]
+MODULUS: Final = 2.0 * 44e9 * (1.0 + 0.343)  # of the polycrystal [Pa]
+TOE: Final = 1e-4  # strain that seating adds [1]
 SEATED: Final = 0.9e6  # stress at which 63 % of it has come [Pa]
 LOAD_NOISE: Final = 0.4  # of one point [N]
-TRAVEL_NOISE: Final = 0.25e-3  # [mm]
+STRETCH_NOISE: Final = 0.1e-3  # [mm]
 PIECES: Final = "ab"
 SLIPPED: Final = "CT10b"
 
@@ -72,10 +74,10 @@ plastic_strain = 0.002
 
 [tensile]
 mode = "tension"
-strain_from = "crosshead"            # its slope is the machine's, and no modulus
+strain_from = "extension"
 reported_strains = [0.002, 0.01, 0.03, 0.05, 0.10, 0.15, 0.20, 0.25, 0.30]
 force_u_rel = 0.0029                 # class 0.5 of the machine
-extension_u_rel = 0.0058             # class 1 of its travel
+extension_u_rel = 0.0058             # class 1 of the extensometer
 
 [hardening]
 law = "constant"
@@ -106,10 +108,10 @@ ends_before = [{ line = "END OF TEST", is = "other" }]
 [above]
 coupon_id = "piece:"
 
-[columns]
+[columns]                            # the travel of the crosshead is passed over
 time_s = { from = "clock", unit = "s" }
 force_n = { from = "load", unit = "kN" }
-crosshead_mm = { from = "travel", unit = "mm" }
+extension_mm = { from = "stretch", unit = "mm" }
 """
 
 
@@ -158,21 +160,21 @@ class _Strip:
         return COPPER.baseline * plastic + carried
 
     def drawn(self, plastic: float) -> tuple[float, float]:
-        """Give engineering stress and strain, the machine's own stretch in the strain."""
+        """Give engineering stress and strain."""
         sigma = self.stress(plastic)
-        true = plastic + sigma / STIFFNESS
+        true = plastic + sigma / MODULUS
         return sigma * exp(-true), expm1(true)
 
     @property
     def elastic(self) -> float:
         """Engineering strain at which it begins to yield."""
-        return _root(lambda e: STIFFNESS * e * (1.0 + e) - self.stress(_at(e)), 0.0, 0.05)
+        return _root(lambda e: MODULUS * e * (1.0 + e) - self.stress(_at(e)), 0.0, 0.05)
 
     @property
     def uniform(self) -> float:
         """True plastic strain at the greatest force (Considere 1885)."""
         return _root(
-            lambda p: self.stress(p) - self.rate(p) * (1.0 - self.stress(p) / STIFFNESS), 0.0, 1.0
+            lambda p: self.stress(p) - self.rate(p) * (1.0 - self.stress(p) / MODULUS), 0.0, 1.0
         )
 
     def proof(self, offset: float) -> float:
@@ -180,7 +182,7 @@ class _Strip:
 
         def gap(plastic: float) -> float:
             s, e = self.drawn(plastic)
-            return STIFFNESS * (e - offset) - s
+            return MODULUS * (e - offset) - s
 
         return self.drawn(_root(gap, _at(self.elastic), 4.0 * offset))[0]
 
@@ -235,58 +237,68 @@ def _coupons() -> str:
 
 
 def _points(strip: _Strip) -> tuple[Floats, Floats]:
-    """Give engineering stress and strain of the points that the machine logs, up to the break."""
+    """Give engineering stress and strain of the points that the machine logs, past the break."""
     elastic = np.linspace(0.0, strip.elastic, 110, endpoint=False)
     first, end = _at(strip.elastic), strip.uniform
-    knee = first + np.geomspace(1e-6, 0.006, 70)
-    rest = np.linspace(0.0062, 1.22 * end, int(60 + 700 * end))
+    knee = np.linspace(first, 0.006, 70)
+    rest = np.linspace(0.0062, 1.35 * end, int(80 + 700 * end))
     plastic = np.concatenate([knee, rest])
     drawn = np.array([strip.drawn(float(p)) for p in plastic])
-    necked = np.maximum(plastic / end - 1.0, 0.0)
-    s = np.concatenate([STIFFNESS * elastic, drawn[:, 0] * (1.0 - 3.0 * necked**2)])
-    return s, np.concatenate([elastic, drawn[:, 1]])
+    necked = np.maximum(plastic / end - 1.1, 0.0) / 0.45  # a neck takes the load, slowly first
+    s = np.concatenate([MODULUS * elastic, drawn[:, 0] * (1.0 - necked**4)])
+    e = np.concatenate([elastic, drawn[:, 1]])
+    broken = np.full(3, e[-1] - s[-1] / MODULUS)
+    return np.append(s, np.zeros(3)), np.append(e, broken)
 
 
-def _slip(s: Floats, e: Floats) -> tuple[Floats, Floats]:
-    """Let the grips slip once, early in the plastic part: the load falls, the travel goes on."""
-    at = 210
-    load = s.copy()
-    length = 5
-    load[at : at + length] *= np.array([0.97, 0.90, 0.84, 0.90, 0.96])
-    travel = e.copy()
-    travel[at:] += 0.0045 * np.minimum(np.arange(1.0, s.size - at + 1.0) / length, 1.0)
-    return load, travel
+def _slip(s: Floats, e: Floats) -> tuple[Floats, Floats, Floats]:
+    """Let the grips slip once: the load falls and comes back, the crosshead goes on.
+
+    Gives stress, strain and what the slip adds to the travel [mm].
+    """
+    at = 280
+    load = s[at] * np.concatenate([[0.95, 0.89, 0.84], np.linspace(0.85, 0.9995, 16)])
+    load = np.append(load, np.full(4, s[at]))
+    strain = e[at] + (load - s[at]) / MODULUS
+    slipped = np.concatenate(
+        [np.zeros(at + 1), 0.35 * np.linspace(0.3, 1.0, load.size), np.full(s.size - at - 1, 0.35)]
+    )
+    return np.insert(s, at + 1, load), np.insert(e, at + 1, strain), slipped
 
 
 def _curve(name: str, strip: _Strip, bits: np.random.PCG64, begin: datetime) -> str:
     s, e = _points(strip)
-    e = e + TOE * -np.expm1(-s / SEATED)
+    slipped = np.zeros(s.size)
     if name == SLIPPED:
-        s, e = _slip(s, e)
+        s, e, slipped = _slip(s, e)
+    rate = np.where(e[1:] < 0.01, 0.00025, 0.002)  # ISO 6892-1, method A [1/s]
+    clock = np.append(0.0, np.cumsum(np.abs(np.diff(e)) / rate + 1e-3))
+    e = e + TOE * -np.expm1(-s / SEATED)
     noise = normals(bits, 2 * s.size).reshape(2, s.size)
     load = s * WIDTH * THICKNESS * 1e-6 + LOAD_NOISE * noise[0]  # [N]
-    travel = e * LENGTH + TRAVEL_NOISE * noise[1]
-    clock = np.where(e < 0.01, e / 0.00025, 40.0 + (e - 0.01) / 0.002)  # ISO 6892-1 method A
+    stretch = e * LENGTH + STRETCH_NOISE * noise[1]
+    travel = e * GRIPS + load / MACHINE + slipped
     head = (
         "# puller 1",
         f"piece:;{name}",
         "by:;operator-3",
         f"begun:;{begin:%d.%m.%Y %H:%M}",
         "TEST",
-        "clock;load;travel",
-        "s;kN;mm",
+        "clock;load;travel;stretch",
+        "s;kN;mm;mm",
     )
     rows = (
-        f"{t:.2f};{f / 1e3:.5f};{x:.4f}".replace(".", ",")
-        for t, f, x in zip(clock, load, travel, strict=True)
+        f"{t:.3f};{f / 1e3:.5f};{far:.3f};{x:.5f}".replace(".", ",")
+        for t, f, far, x in zip(clock, load, travel, stretch, strict=True)
     )
-    return "".join(f"{line}\n" for line in (*head, *rows, "END OF TEST;;"))
+    return "".join(f"{line}\n" for line in (*head, *rows, "END OF TEST;;;"))
 
 
 def _truth() -> str:
     table = Table(
         (
-            *("condition", "prior_true_strain", "proof_stress_0_2_mpa", "tensile_strength_mpa"),
+            *("condition", "prior_true_strain", "slope_gpa", "proof_stress_0_2_mpa"),
+            "tensile_strength_mpa",
             *("uniform_elongation", "uniform_plastic_strain", "work_to_uniform_strain_j_per_m3"),
             *("initial_hardening_mpa", "saturation_stress_mpa", "flow_stress_mpa"),
             *("dislocation_density_per_m2", "stored_energy_j_per_g"),
@@ -303,9 +315,10 @@ def _truth() -> str:
             {
                 "condition": _condition(reduction),
                 "prior_true_strain": f"{strip.prior:.4f}",
+                "slope_gpa": f"{MODULUS / 1e9:.3f}",
                 "proof_stress_0_2_mpa": f"{strip.proof(0.002) / 1e6:.3f}",
                 "tensile_strength_mpa": f"{top / 1e6:.3f}",
-                "uniform_elongation": f"{at_top - top / STIFFNESS:.6f}",
+                "uniform_elongation": f"{at_top - top / MODULUS:.6f}",
                 "uniform_plastic_strain": f"{end:.6f}",
                 "work_to_uniform_strain_j_per_m3": f"{strip.work(end):.5e}",
                 "initial_hardening_mpa": f"{INITIAL_HARDENING / 1e6:g}",

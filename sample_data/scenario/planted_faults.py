@@ -8,7 +8,13 @@ sets a reading aside, is on the list; of what is only information, one line for 
 
 from typing import Final
 
-from scenario import faults_of_branch, faults_of_flow, faults_of_grains, faults_of_indents, faults_of_rows
+from scenario import (
+    faults_of_branch,
+    faults_of_flow,
+    faults_of_grains,
+    faults_of_indents,
+    faults_of_rows,
+)
 from scenario.tables import Table
 
 __all__ = ["files"]

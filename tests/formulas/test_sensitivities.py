@@ -15,6 +15,7 @@ import pytest
 from mpmath import mpf
 from numpy.testing import assert_allclose
 from tests.formulas.physics_twins import PHYSICS
+from tests.formulas.tensile_twins import TENSILE
 from tests.formulas.twins import (
     DENSITY,
     FORCE,
@@ -310,7 +311,7 @@ CASES: dict[str, Case] = {
         ((1.4e6, 3e7), (6e6, 1.6e8)),
         zero_is_fine=frozenset({"stored_energy"}),
     ),
-} | PHYSICS
+} | PHYSICS | TENSILE
 
 
 def formulas() -> dict[str, tuple[str, Formula]]:

@@ -63,8 +63,8 @@ def test_a_logarithmic_law_agrees_with_the_constant_one_at_its_reference(
     plain = coldwork.process(STRIP).frames["coupons"].set_index("coupon_id")
     density = float(plain["dislocation_density_per_m2"]["CS30-1"])
     lines = f'law = "{law}"\nreference_density_per_m2 = {density!r}\n'
-    found = coldwork.process(edited(tmp_path, hardening=lines)).frames["coupons"]
-    found = found.set_index("coupon_id")["dislocation_density_per_m2"]
+    coupons = coldwork.process(edited(tmp_path, hardening=lines)).frames["coupons"]
+    found = coupons.set_index("coupon_id")["dislocation_density_per_m2"]
     assert_allclose(found["CS30-1"], density, rtol=1e-12)
     # alpha falls with density: denser coupons hold more than the constant law says, others less.
     assert found["CS40-1"] > plain["dislocation_density_per_m2"]["CS40-1"]

@@ -394,6 +394,23 @@ def test_the_batch_is_valid() -> None:
     assert processed(valid(), *ACCEPT_ALL) == 0
 
 
+def changed(old: bytes, new: bytes) -> Files:
+    files = valid()
+    sheet = files["batch.toml"]
+    files["batch.toml"] = sheet.replace(old, new)
+    assert files["batch.toml"] != sheet
+    return files
+
+
+def test_a_number_without_bounds_of_its_own_is_refused_too() -> None:
+    assert processed(changed(b"resolution_um = 0.1", b"resolution_um = 1e300")) == 4
+
+
+def test_an_uncertainty_beyond_all_measure_can_be_put_into_words() -> None:
+    # exp(theta0 eps / sigma_s) = exp(136): the reason of a decision has to write 0 +- 1e59
+    assert processed(changed(b"saturation_stress_mpa = 320.0", b"saturation_stress_mpa = 1")) == 3
+
+
 @given(st.lists(CORRUPTIONS, min_size=1, max_size=3), st.integers(0, 7))
 @settings(
     max_examples=500,

@@ -20,7 +20,7 @@ CASES: dict[str, Callable[[], Batch]] = {
     "1": lambda: curves(1),
     "5": lambda: curves(5),
     "35": lambda: curves(35),
-    "60": lambda: curves(60),
+    "60": lambda: curves(60).without("evolution"),  # takes long enough without
     "17 odd": lambda: curves(17, odd=True, strains=False, points=500),
 }
 EVERY = pytest.mark.parametrize("case", CASES)
@@ -54,7 +54,7 @@ def words(case: str, subject: str) -> list[str]:
 @EVERY
 def test_there_are_four_subjects(case: str) -> None:
     found = dict.fromkeys(sheet.stem.rstrip("-0123456789") for sheet in sheets(case))
-    assert list(found) == SUBJECTS
+    assert list(found) == (SUBJECTS[:2] if case == "60" else SUBJECTS)
 
 
 @EVERY
@@ -143,7 +143,7 @@ def test_without_prior_strains_the_axis_is_that_of_the_test() -> None:
 
 def test_all_cells_have_the_same_axes() -> None:
     for subject in SUBJECTS:
-        panels = [figure.axes for stem, figure in figures("60") if stem.startswith(subject)]
+        panels = [figure.axes for stem, figure in figures("35") if stem.startswith(subject)]
         kinds = 1 if subject in SUBJECTS[1:3] else 2
         for kind in range(kinds):
             mine = [axes for page in panels for axes in page[kind::kinds]]

@@ -213,7 +213,7 @@ def recorded(
         s = s + plan.noise_stress * rng.standard_normal(s.size)
         e = e + plan.noise_strain * rng.standard_normal(e.size)
     return Curve(
-        time=0.05 * np.arange(s.size),
+        time=0.05 * np.arange(s.size, dtype=np.float64),
         force=s * GEOMETRY.area,
         length=e * GEOMETRY.gauge_length,
     )

@@ -86,7 +86,7 @@ def _computed(
 
 @lru_cache(maxsize=2)
 def _changes(*, hexagonal: bool) -> _Floats:
-    """Derivatives of the stiffness by each constant: it is linear in them."""
+    """Differentiate the stiffness by each constant: it is linear in them."""
     if hexagonal:
         base = np.array([4.0, 1.0, 1.0, 4.0, 1.0])
         whole = hexagonal_stiffness(*base)

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from coldwork.contracts import Field
 from coldwork.errors import BatchRefused, Cause
 from coldwork.inputs.method import Tensile
-from coldwork.intake.cells import column_of, take, take_or_null
+from coldwork.intake.cells import column_of, replaced, same_as, take, take_or_null
 from coldwork.intake.column import Column, Fault, read_column, with_layout_faults
 from coldwork.intake.coupons import Coupons
 from coldwork.intake.curve_columns import RunningCount, needed_columns
@@ -25,7 +25,7 @@ from coldwork.intake.printed import FileTally, Printed
 from coldwork.intake.row_checks import curve_faults, filled_scale, indent_faults
 from coldwork.intake.set_aside import SetAside
 from coldwork.intake.sources import TableSource, table_text
-from coldwork.intake.text import TextBlock
+from coldwork.intake.text import REFUSED, TextBlock
 from coldwork.rules import reasons
 
 __all__ = ["ReadingBlock", "ReadingStream", "read_readings"]
@@ -214,7 +214,8 @@ class ReadingStream:
         exclusion = self._exclusions.find(coupon, number)
         self.seen[exclusion[exclusion >= 0]] = True
         scale = None
-        unlisted = (coupon < 0) & ~columns[_ID].absent
+        refused = same_as(columns[_ID].text, REFUSED)  # whatever its name is, it has its reason
+        unlisted = (coupon < 0) & ~columns[_ID].absent & ~refused
         faults = [
             Fault(reasons.UNLISTED_COUPON, _ID, unlisted, self._unlisted_hint),
             Fault(reasons.EXCLUDED, self._number, exclusion >= 0),
@@ -291,7 +292,7 @@ class ReadingStream:
                 column=typed.text.raw_columns.get(fault.column, fault.column),
                 raw=typed.text.written(fault.column, here),
                 coupon=typed.coupon[here],
-                coupon_ids=typed.columns[_ID].text.take(here),
+                coupon_ids=_known_names(typed).take(here),
                 reading_no=typed.number[here],
                 hint=_hints(fault, typed, here),
                 also=_also(typed, later, here),
@@ -354,6 +355,12 @@ def _loosened(field: Field) -> Field:
 
 def _integers(column: Column) -> NDArray[np.int64]:
     return np.asarray(column.values, dtype=np.int64)
+
+
+def _known_names(typed: _Typed) -> pa.StringArray:
+    """Give the coupon of each row, empty where its layout refuses the cell."""
+    names = typed.columns[_ID].text
+    return replaced(names, same_as(names, REFUSED), "")
 
 
 def _hints(fault: Fault, typed: _Typed, rows: NDArray[np.intp]) -> list[str | None] | None:

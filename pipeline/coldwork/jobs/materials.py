@@ -73,8 +73,8 @@ def as_json(name: str | None = None) -> dict[str, Any]:
     Returns
     -------
     dict
-        ``materials``, by name: title, lattice, note, and each constant with
-        value, u, unit, source and whether the number was seen.
+        ``materials``, by name: title, lattice, slip system, note, and each constant
+        with value, u, unit, source and whether the number was seen.
 
     Raises
     ------
@@ -94,7 +94,8 @@ def _short(metal: Material, key: str) -> str:
 
 
 def _lines(metal: Material) -> Iterator[str]:
-    yield f"{metal.name}: {metal.title} ({metal.lattice})"
+    yield from wrap(f"{metal.name}: {metal.title} ({metal.lattice})", _WIDTH)
+    yield f"slip system {metal.slip_system}"
     if metal.note:
         yield from wrap(metal.note, _WIDTH)
     for key, entry in metal.values.items():

@@ -116,12 +116,12 @@ def _examined(path: Path) -> tuple[tuple[Cause, ...], Material | None]:
     except UnicodeDecodeError as error:
         line = error.object[: error.start].count(b"\n") + 1
         what = f"byte {error.start} is not UTF-8"
-        return (Cause(f"{path}, line {line}", what, "", "Save it as UTF-8."),), None
+        why = "A metal's file is UTF-8 text."
+        return (Cause(f"{path}, line {line}", what, why, "Save it as UTF-8."),), None
     except (OSError, ValueError) as error:
-        reason = error.strerror if isinstance(error, OSError) and error.strerror else error
-        return (
-            Cause(str(path), f"it cannot be read: {reason}", "", "Name a readable file."),
-        ), None
+        what = f"it cannot be read: {getattr(error, 'strerror', None) or error}"
+        why = "A metal is a readable TOML file."
+        return (Cause(str(path), what, why, "Name another, or mend it."),), None
     examined = examine(text, str(path))
     faults = tuple(examined.faults)
     return faults, None if faults else examined.material

@@ -19,6 +19,7 @@ __all__ = ["Examined", "examine"]
 _TEXTS: Final = ("name", "title", "lattice", "slip_system", "note")
 _NEEDED_TEXTS: Final = ("name", "title", "lattice")
 _FIELDS: Final = ("value", "u", "unit", "source", "seen")
+_A_LINE: Final = "It is text in quotes, on one line."
 _LONGEST: Final = 60  # characters of a value that a message repeats
 
 
@@ -70,7 +71,7 @@ class Examined:
         self._check_names(self._entry, (*_TEXTS, "values"), (*_NEEDED_TEXTS, "values"), ())
         for name in _TEXTS:
             if name in self._entry and not _is_text(self._entry[name], empty=name == "note"):
-                self._add((name,), "it is not a line of text", "Write it in quotes, on one line.")
+                self._add((name,), "it is not a line of text", _A_LINE, "Write it so.")
         self._check_lattice()
         values = self._entry.get("values")
         if isinstance(values, dict):
@@ -79,11 +80,12 @@ class Examined:
                 if key in KEYS:
                     self._check_value(key, values[key])
         elif "values" in self._entry:
-            self._add(("values",), "it is not a table", "Give each constant as [values.NAME].")
+            what, why = "it is not a table", "It holds a table for each constant."
+            self._add(("values",), what, why, "Give each as [values.NAME].")
         if not self.faults:
             self._check_crystal()
 
-    def _add(self, path: KeyPath, what: str, mend: str, why: str = "") -> None:
+    def _add(self, path: KeyPath, what: str, why: str, mend: str) -> None:
         line = line_of(self._lines, path)
         at = "" if line is None else f", line {line}"
         self.faults.append(Cause(f"{self._where}{at}, key {_key(path)}", what, why, mend))
@@ -93,22 +95,25 @@ class Examined:
     ) -> None:
         for name in table:
             if name not in known:
-                self._add((*path, name), "unknown key", _nearest(name, known))
+                why = "Unknown keys are errors."
+                self._add((*path, name), "unknown key", why, _nearest(name, known))
         for name in needed:
             if name not in table:
-                self._add((*path, name), "this key is missing", "Add it.")
+                why = "Every entry has it." if len(path) < 2 else "Every constant has it."
+                self._add((*path, name), "this key is missing", why, "Add it.")
 
     def _check_lattice(self) -> None:
         lattice = self._entry.get("lattice")
         if _is_text(lattice, empty=False) and lattice not in LATTICES:
             what = f"{_shown(lattice)} is no lattice of the library"
-            self._add(("lattice",), what, f"It is one of {', '.join(LATTICES)}.")
+            why = f"It is one of {', '.join(LATTICES)}."
+            self._add(("lattice",), what, why, "Write one of them.")
 
     def _check_value(self, key: str, said: object) -> None:
         path, spec = ("values", key), KEYS[key]
         if not isinstance(said, dict):
-            what = "it is not a table"
-            self._add(path, what, f"Give it as [values.{key}] with {', '.join(_FIELDS)}.")
+            why = f"A constant is a table with {', '.join(_FIELDS)}."
+            self._add(path, "it is not a table", why, f"Give it as [values.{key}].")
             return
         self._check_names(said, _FIELDS, _FIELDS, path)
         for name, low, high in (("value", spec.low, spec.high), ("u", 0.0, spec.high - spec.low)):
@@ -116,24 +121,27 @@ class Examined:
                 self._check_number((*path, name), said[name], (low, high), spec.unit)
         if "unit" in said and said["unit"] != spec.unit:
             what = f"the unit is {_shown(said['unit'])}, not {spec.unit!r}"
-            self._add((*path, "unit"), what, "The key's name says the unit; convert the value.")
+            self._add((*path, "unit"), what, "The key's name says the unit.", "Convert the value.")
         if "source" in said and not _is_text(said["source"], empty=False):
-            what = "it is not a line of text"
-            self._add((*path, "source"), what, "Say where the value was found, or 'from memory'.")
+            mend = "Say where the value was found, or 'from memory'."
+            self._add((*path, "source"), "it is not a line of text", _A_LINE, mend)
         if "seen" in said and not isinstance(said["seen"], bool):
             what = f"{_shown(said['seen'])} is not true or false"
-            self._add((*path, "seen"), what, "True only if the number itself was read.")
+            why = "It says whether the number itself was read."
+            self._add((*path, "seen"), what, why, "Write true or false.")
 
     def _check_number(
         self, path: KeyPath, number: object, window: tuple[float, float], unit: str
     ) -> None:
         value = _number(number)
         if value is None:
-            self._add(path, f"{_shown(number)} is not a number", "Write a number.")
+            what, why = f"{_shown(number)} is not a number", "It must be a finite number."
+            self._add(path, what, why, "Write it so.")
         elif not window[0] <= value <= window[1]:
             need = f"It must lie between {window[0]:g} and {window[1]:g}"
             what = f"{_shown(number)} is out of range"
-            self._add(path, what, f"{need}{'' if unit == '1' else f' {unit}'}.")
+            why = f"{need}{'' if unit == '1' else f' {unit}'}."
+            self._add(path, what, why, "Check the number.")
 
     def _check_crystal(self) -> None:
         metal = self.material
@@ -142,12 +150,13 @@ class Examined:
         for key in ("c13_gpa", "c33_gpa", "c_over_a"):
             if key in metal.values and not hexagonal:
                 what = f"a cubic metal ({metal.lattice}) has no {key}"
-                self._add(("values", key), what, "Take it out, or mend the lattice.")
+                why = "It belongs to hexagonal crystals."
+                self._add(("values", key), what, why, "Take it out, or mend the lattice.")
         given = [key for key in wanted if key in metal.values]
         missing = [key for key in wanted if key not in metal.values]
         if given and missing:
             why = f"The elastic constants of {metal.lattice} are {', '.join(wanted)}."
-            self._add(("values", given[0]), f"{', '.join(missing)} missing", "Give all.", why)
+            self._add(("values", given[0]), f"{', '.join(missing)} missing", why, "Give all.")
         elif given and not self.faults:
             self._check_stable([metal.values[key].value for key in wanted])
         self._check_slip(metal, hexagonal=hexagonal)
@@ -158,7 +167,8 @@ class Examined:
                 *constants
             )
         except InvalidArgument as error:
-            self._add(("values", "c11_gpa"), str(error), "Check the elastic constants.")
+            why = "No crystal has such constants."
+            self._add(("values", "c11_gpa"), str(error), why, "Check the elastic constants.")
 
     def _check_slip(self, metal: Material, *, hexagonal: bool) -> None:
         ratio = metal.values.get("c_over_a")
@@ -166,8 +176,9 @@ class Examined:
         try:
             slip_system(metal.slip_system, hexagonal=hexagonal, c_over_a=axes)
         except InvalidArgument as error:
+            why = "It must fit the lattice."
             mend = f"For {metal.lattice}, write it like {LATTICES[metal.lattice]}."
-            self._add(("slip_system",), str(error), mend)
+            self._add(("slip_system",), str(error), why, mend)
 
 
 def examine(text: str, where: str) -> Examined:
@@ -192,7 +203,8 @@ def examine(text: str, where: str) -> Examined:
 
 def _syntax(where: str, error: Exception) -> Cause:
     if isinstance(error, RecursionError):
-        return Cause(where, "its values are nested too deeply", "", "Undo that.")
+        why = "No key of an entry is deeper than three tables."
+        return Cause(where, "its values are nested too deeply", why, "Undo that.")
     reason = str(error) if isinstance(error, tomllib.TOMLDecodeError) else "a number is too long"
     at = re.search(r" \(at line (\d+), column (\d+)\)$", reason)
     place = f"{where}, line {at[1]}, column {at[2]}" if at else where

@@ -33,6 +33,7 @@ _GRAVE = frozenset(
         "few-elastic-points",
         "ends-before-yield",
         "stress-impossible",
+        "slope-impossible",
         "grip-slip",
         "extensometer-slip",
         "curve-without-geometry",

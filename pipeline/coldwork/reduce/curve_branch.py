@@ -41,24 +41,25 @@ class Branch:
         Places in `Points`.
     stress, strain : ndarray of float64, shape (k,)
         As in `Points`. [Pa], [1]
+    mean, run : ndarray of float64, shape (k,)
+        Stress and strain averaged over 5 points about each, for landmarks. [Pa], [1]
     noise_stress, noise_strain : float
         Of one point. [Pa], [1]
     peak : int
         Place in the branch of the greatest stress (smoothed); in compression its end.
     loops : tuple of Loop
         What was taken out.
-    broke : bool
-        Whether the record goes on past the break.
     """
 
     place: NDArray[np.int64]
     stress: FloatArray
     strain: FloatArray
+    mean: FloatArray
+    run: FloatArray
     noise_stress: float
     noise_strain: float
     peak: int
     loops: tuple[Loop, ...]
-    broke: bool
 
     def __len__(self) -> int:
         return int(self.place.size)
@@ -70,12 +71,15 @@ def moving_mean(series: FloatArray, length: int = _SMOOTH) -> FloatArray:
         return series
     half = length // 2
     sums = np.concatenate([[0.0], np.cumsum(series - series[0])])
-    place = np.arange(series.size)
-    low, high = np.maximum(place - half, 0), np.minimum(place + half + 1, series.size)
-    return np.asarray((sums[high] - sums[low]) / (high - low) + series[0])
+    mean = np.empty_like(series)
+    mean[half : series.size - half] = (sums[length:] - sums[:-length]) / length
+    count = np.arange(half + 1, length)
+    mean[:half] = sums[count] / count
+    mean[series.size - half :] = ((sums[-1] - sums[-1 - count]) / count)[::-1]
+    return np.asarray(mean + series[0])
 
 
-def find_branch(points: Points, stop: int, slope_guess: float | None = None) -> Branch:
+def find_branch(points: Points, stop: int) -> Branch:
     """Find the part of a curve that is reduced.
 
     Parameters
@@ -84,9 +88,6 @@ def find_branch(points: Points, stop: int, slope_guess: float | None = None) -> 
         The whole curve.
     stop : int
         Place up to which the strain can be trusted.
-    slope_guess : float, optional
-        Elastic slope, which tells a loop from a yield point; the steepest chord from
-        the start where it is not given. [Pa]
 
     Returns
     -------
@@ -101,16 +102,25 @@ def find_branch(points: Points, stop: int, slope_guess: float | None = None) -> 
         if points.sense > 0
         else int(np.argmax(moving_mean(strain)))
     )
-    broke = last < stop - 2 and points.sense > 0
-    guess = slope_guess if slope_guess is not None else _steepest(mean, strain, last)
-    loops = _loops(mean[: last + 1], strain[: last + 1], guess, noise_s)
+    slope = _steepest(mean, strain, last)
+    loops = _loops(mean[: last + 1], strain[: last + 1], slope, noise_s)
     keep = np.ones(last + 1, dtype=np.bool_)
     for loop in loops:
         keep[loop.start + 1 : loop.stop] = False
     place = np.flatnonzero(keep)
     kept = mean[place]
     peak = int(np.argmax(kept)) if points.sense > 0 else place.size - 1
-    return Branch(place, stress[place], strain[place], noise_s, noise_e, peak, loops, broke)
+    return Branch(
+        place=place,
+        stress=stress[place],
+        strain=strain[place],
+        mean=kept,
+        run=moving_mean(strain)[place],
+        noise_stress=noise_s,
+        noise_strain=noise_e,
+        peak=peak,
+        loops=loops,
+    )
 
 
 def _last_before_break(stress: FloatArray, mean: FloatArray) -> int:

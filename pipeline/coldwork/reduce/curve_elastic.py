@@ -74,8 +74,8 @@ def find_elastic(
     proof_at = crossing(branch, line, PROOF_OFFSET, 0)
     for _ in range(_ROUNDS):
         top = branch.peak if proof_at is None else proof_at
-        level = float(moving_mean(branch.stress)[top])
-        start, stop = _range(branch, between, level, top)
+        level = float(branch.mean[top])
+        start, stop = _range(branch, line, between, level, top)
         if stop - start < 3 or np.ptp(branch.strain[start:stop]) == 0.0:
             return None
         line = fit_line(branch, branch.stress, branch.strain, (start, stop), stated)
@@ -133,7 +133,7 @@ def crossing(branch: Branch, line: Line, offset: float, start: int) -> int | Non
 
 def _first_line(branch: Branch, stated: float | None) -> Line | None:
     """Take a line to begin with: the steepest stretch that noise does not explain."""
-    mean, run = moving_mean(branch.stress), moving_mean(branch.strain)
+    mean, run = branch.mean, branch.run
     top = float(mean[branch.peak])
     if not top > 0.0 or branch.peak < 2:
         return None
@@ -158,12 +158,23 @@ def _first_line(branch: Branch, stated: float | None) -> Line | None:
     return fit_line(branch, branch.stress, branch.strain, chosen, stated)
 
 
-def _range(branch: Branch, between: tuple[float, float], level: float, top: int) -> tuple[int, int]:
-    """Places between which the stress goes from one fraction of the level to the other."""
-    rough = np.maximum.accumulate(moving_mean(branch.stress)[: top + 1])
+def _range(
+    branch: Branch, line: Line, between: tuple[float, float], level: float, top: int
+) -> tuple[int, int]:
+    """Find the places between which the stress goes from one fraction of the level to the other.
+
+    The stress is the one on the line that a point most likely stands for, from its stress
+    and its strain. Its error has nothing to do with the point's distance from the line, so
+    that points are not taken in or left out for being above or below it.
+    """
+    by_strain = (line.slope * branch.noise_strain) ** 2
+    by_stress = branch.noise_stress**2
+    share = by_strain / (by_strain + by_stress) if by_strain + by_stress > 0.0 else 1.0
+    here = slice(0, top + 1)
+    rough = np.maximum.accumulate(branch.mean[here])
     ends = np.array(between) * level
     count = int(np.diff(np.searchsorted(rough, ends))[0])
     length = min(9, 2 * (count // 16) + 1)
-    rising = np.maximum.accumulate(moving_mean(branch.stress, length)[: top + 1])
-    start, stop = np.searchsorted(rising, ends)
-    return int(start), int(stop)
+    likely = share * branch.stress[here] + (1.0 - share) * line.at(branch.strain[here])
+    start, stop = np.searchsorted(np.maximum.accumulate(moving_mean(likely, length)), ends)
+    return int(start), min(int(stop), top + 1)

@@ -51,13 +51,16 @@ class FittedLaw:
         """Covariance [the parameters' units], shape (p, p)."""
         return np.asarray(self.found.covariance * self.like_neighbours)
 
-    def shift(self, stress: FloatArray, strain: FloatArray) -> FloatArray:
-        """Give the change of the parameters, shape (p,), for small changes of the points."""
+    def shifts(self, stress: FloatArray, strain: FloatArray) -> FloatArray:
+        """Give the change of the parameters, shape (p, k), for k small changes of the points.
+
+        The changes of stress [Pa] and strain [1] have the shape (n, k).
+        """
         jacobian = self.found.jacobian
         size = np.maximum(np.sqrt((jacobian**2).sum(axis=0)), 1e-300)
         scaled = jacobian / size
-        wanted = scaled.T @ (stress - self.by_strain * strain)
-        return np.asarray(np.linalg.pinv(scaled.T @ scaled) @ wanted / size)
+        wanted = scaled.T @ (stress - self.by_strain[:, None] * strain)
+        return np.asarray(np.linalg.pinv(scaled.T @ scaled) @ wanted / size[:, None])
 
 
 def fit_voce(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
@@ -157,10 +160,7 @@ def _integrated_line(stress: FloatArray, strain: FloatArray) -> FloatArray | Non
     """Yield stress, saturation stress and initial hardening from the integrated line."""
     steps = np.diff(strain)
     area = np.concatenate([[0.0], np.cumsum(0.5 * (stress[1:] + stress[:-1]) * steps)])
-    n = stress.size
-    edges = np.arange(min(n, _BLOCKS)) * n // min(n, _BLOCKS)
-    count = np.diff(np.append(edges, n))
-    y, x, a = (np.add.reduceat(v, edges) / count for v in (stress, strain, area))
+    y, x, a = (_block_means(v, _BLOCKS) for v in (stress, strain, area))
     origin, length, height = float(x[0]), float(np.ptp(x)), float(np.abs(y).max())
     if length <= 0.0 or height <= 0.0:
         return None
@@ -174,6 +174,13 @@ def _integrated_line(stress: FloatArray, strain: FloatArray) -> FloatArray | Non
     return np.array([at_zero, limit, theta])
 
 
+def _block_means(series: FloatArray, blocks: int) -> FloatArray:
+    """Average a series over stretches of equal numbers of points, as many as it can bear."""
+    n = series.size
+    edges = np.arange(min(n, blocks)) * n // min(n, blocks)
+    return np.asarray(np.add.reduceat(series, edges) / np.diff(np.append(edges, n)))
+
+
 def _fit(
     law: Formula,
     names: tuple[str, ...],
@@ -182,6 +189,12 @@ def _fit(
     start: FloatArray,
 ) -> FittedLaw | None:
     """Fit a law; every parameter but the first stays positive by its logarithm."""
+    first = np.append(start[0], np.log(start[1:]))
+    if stress.size > 2 * _BLOCKS:
+        means = [_block_means(v, _BLOCKS) for v in (stress, strain)]
+        rough = _fit(law, names, means[0], means[1], start)
+        if rough is not None:
+            first = np.append(rough.found.parameters[0], np.log(rough.found.parameters[1:]))
 
     def unpack(p: FloatArray) -> dict[str, float]:
         return dict(zip(names, np.append(p[0], np.exp(np.clip(p[1:], -700, 700))), strict=True))
@@ -192,10 +205,8 @@ def _fit(
     def jacobian(p: FloatArray) -> FloatArray:
         return _columns(law, names, strain, unpack(p), logarithmic=True)
 
-    first = np.append(start[0], np.log(start[1:]))
-    scale = np.append(
-        max(abs(start[0]), 1e-3 * float(np.abs(stress).max())), np.ones(start.size - 1)
-    )
+    height = 1e-3 * float(np.abs(stress).max())
+    scale = np.append(max(abs(start[0]), height), np.ones(start.size - 1))
     found = fit_least_squares(model, jacobian, stress, first, scale)
     values = unpack(found.parameters)
     factors = np.append(1.0, [values[name] for name in names[1:]])

@@ -142,7 +142,7 @@ def _unfinished(
         reached = float(branch.strain[-1]) - toe - float(branch.stress[-1]) / elastic.line.slope
         return [points.fault(FaultKind.ENDS_BEFORE_YIELD, span, reached, PROOF_OFFSET)]
     if choices.top is None and points.sense > 0 and not off:
-        greatest = float(moving_mean(branch.stress).max())
+        greatest = float(branch.mean.max())
         fall = 1.0 - float(branch.stress[-5:].mean()) / greatest
         return [points.fault(FaultKind.NO_MAXIMUM, span, fall, 0.0)]
     return []
@@ -200,7 +200,7 @@ def _with_yield(
     around = branch.stress[max(yielding.upper - 2, 0) : yielding.upper + 3]
     low = max(yielding.lower - yielding.length // 2, 0)
     lower = float(branch.stress[low : low + yielding.length].mean())
-    length = float(np.diff(moving_mean(branch.strain)[[yielding.upper, yielding.end]])[0])
+    length = float(np.diff(branch.run[[yielding.upper, yielding.end]])[0])
     by_strain = {FORCE: 0.0, EXTENSION: length, AREA: 0.0}
     shared = {name: c * budget.units[name] for name, c in by_strain.items()}
     return replace(
@@ -222,17 +222,19 @@ def _with_laws(
     places = fitted_places(budget.state, choices, settings, yielding)
     stress, strain = budget.state.stress[places], budget.state.strain[places]
     fits = {}
-    voce = fit_voce(stress, strain)
-    line = None if voce is None else _line_of(budget.fit("voce", voce, places))
+    fitted = fit_voce(stress, strain)
+    voce = None if fitted is None else budget.fit("voce", fitted, places)
     if voce is not None and "voce" in settings.fit:
-        fits["voce"] = budget.fit("voce", voce, places)
+        fits["voce"] = voce
     hollomon = fit_hollomon(stress, strain) if "hollomon" in settings.fit else None
     if hollomon is not None:
         fits["hollomon"] = budget.fit("hollomon", hollomon, places)
     rate = None
     if strain.size:
         rate = rate_along(stress, strain, (float(strain[0]), float(strain[-1])))
-    return replace(result, fits=fits, kocks_mecking=line, rate=rate)
+    return replace(
+        result, fits=fits, kocks_mecking=None if voce is None else _line_of(voce), rate=rate
+    )
 
 
 def _line_of(voce: Fit) -> Fit:

@@ -244,7 +244,7 @@ def plateau(
     if ends is None or proof_at is None:
         return []
     end, on = ends
-    run, mean = moving_mean(branch.strain), moving_mean(branch.stress)
+    run, mean = branch.run, branch.mean
     length = float(run[end] - run[proof_at])
     ahead = run[end] + length * np.array([0.125, 0.25, 0.5, 1.0])
     places = np.searchsorted(np.maximum.accumulate(run), ahead)
@@ -265,7 +265,7 @@ def _flat_stretch(branch: Branch, proof_at: int | None) -> tuple[int, float] | N
     """Where the stress has risen 3 % above that past yield, and its slope until halfway there."""
     if proof_at is None or len(branch) - proof_at < 8 * _LAG:
         return None
-    run = np.maximum.accumulate(moving_mean(branch.strain))
+    run = np.maximum.accumulate(branch.run)
     some = int(np.searchsorted(run, run[proof_at] + PLATEAU_STRAIN))
     if some >= len(branch) - 2:
         return None

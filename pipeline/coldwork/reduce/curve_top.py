@@ -36,8 +36,7 @@ def find_top(branch: Branch, start: int) -> tuple[Window, float] | None:
         return None
     coarse = moving_mean(branch.stress[start:], 2 * ((stop - start) // _COARSE // 2) + 1)
     place = start + int(np.argmax(coarse))
-    run = moving_mean(branch.strain)
-    centre, least, last = float(run[place]), float(run[start]), float(run[-1])
+    centre, least, last = (float(branch.run[k]) for k in (place, start, -1))
     for _ in range(_ROUNDS):
         window = choose_window(branch.strain, branch.stress, centre, (start, stop))
         fit = fit_window(branch.strain, branch.stress, window)
@@ -48,5 +47,4 @@ def find_top(branch: Branch, start: int) -> tuple[Window, float] | None:
         centre = top
         if still:
             break
-    u = fit.u_slope(top) / abs(fit.bend(top))
-    return (window, top) if top + _WITHIN * u <= last else None
+    return (window, top) if top + _WITHIN * fit.u_top(top) <= last else None

@@ -78,13 +78,13 @@ class Budget:
 
     def fit(self, law: str, fitted: FittedLaw, places: slice) -> Fit:
         """Make a result of a fitted law, with the line and the machine in its uncertainty."""
-        shifts = {
-            name: fitted.shift(stress[places], strain[places])
-            for name, (stress, strain) in self.moves.items()
-        }
+        stress, strain = (
+            np.column_stack([move[k][places] for move in self.moves.values()]) for k in (0, 1)
+        )
+        shifts = dict(zip(self.moves, fitted.shifts(stress, strain).T, strict=True))
         line = np.column_stack([shifts["intercept"], shifts["slope"]])
         covariance = fitted.covariance + line @ self.state.line.covariance @ line.T
-        strain = self.state.strain[places]
+        fitted_strain = self.state.strain[places]
         noise = np.hypot(
             self.state.branch.noise_stress,
             float(np.median(fitted.by_strain)) * self.state.branch.noise_strain,
@@ -97,7 +97,7 @@ class Budget:
             u_shared={name: shifts[name] * u for name, u in self.units.items()},
             residual_sd=fitted.found.residual_sd,
             degrees_of_freedom=float(fitted.found.degrees_of_freedom),
-            between=(float(strain[0]), float(strain[-1])),
+            between=(float(fitted_strain[0]), float(fitted_strain[-1])),
             misfit=fitted.found.residual_sd / max(float(noise), 1e-300),
         )
 

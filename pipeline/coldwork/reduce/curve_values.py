@@ -209,7 +209,7 @@ def own_noise(state: State, choices: Choices) -> dict[Key, float]:
         window, near = choices.top
         fit = fit_window(branch.strain, branch.stress, window)
         at = fit.top(near)
-        u_at = fit.u_slope(at) / abs(fit.bend(at))
+        u_at = fit.u_top(at)
         sigma = float(fit.value(at)) * (1.0 + at)
         noise |= {
             ("top", 0.0): fit.u_value(at),

@@ -51,7 +51,7 @@ def find_yield(branch: Branch, elastic: Elastic) -> Yield | None:
     """
     if elastic.proof_at is None:
         return None
-    mean, run = moving_mean(branch.stress, 3), moving_mean(branch.strain)
+    mean, run = moving_mean(branch.stress, 3), branch.run
     rising = np.maximum.accumulate(run)
     reach = int(np.searchsorted(rising, run[elastic.proof_at] + _EARLY))
     best = np.maximum.accumulate(mean[:reach])
@@ -70,7 +70,7 @@ def find_yield(branch: Branch, elastic: Elastic) -> Yield | None:
 
 def _plateau(branch: Branch, upper: int, first: int) -> Yield:
     """Follow the stress from the first fall to where it has clearly risen again."""
-    rising = np.maximum.accumulate(moving_mean(branch.strain))
+    rising = np.maximum.accumulate(branch.run)
     some = int(np.searchsorted(rising, rising[first] + _LONG))
     level = float(np.median(branch.stress[first : max(some, first + 3)]))
     length = max(3, 2 * ((some - first) // 40) + 1)

@@ -55,6 +55,7 @@ _RULES: Final[Mapping[FaultKind, Rule]] = {
     FaultKind.FEW_ELASTIC_POINTS: rules.FEW_ELASTIC_POINTS,
     FaultKind.ENDS_BEFORE_YIELD: rules.ENDS_BEFORE_YIELD,
     FaultKind.STRESS_IMPOSSIBLE: rules.STRESS_IMPOSSIBLE,
+    FaultKind.SLOPE_IMPOSSIBLE: rules.SLOPE_IMPOSSIBLE,
     FaultKind.ZERO_OFFSET: rules.ZERO_OFFSET,
     FaultKind.GRIP_SLIP: rules.GRIP_SLIP,
     FaultKind.EXTENSOMETER_SLIP: rules.EXTENSOMETER_SLIP,
@@ -314,7 +315,7 @@ class _Shell:
             if self._keep is not None:
                 name = self._coupons.ids[coupon].as_py()
                 self._keep.add(name, self._names[points.file[0]], points, result)
-            trusted = self._note_faults(points, result, lengths)
+            trusted = self._note_faults(points, result)
         return CurveSummary(
             file=self._names[points.file[0]],
             first_line=int(points.lines[0]),
@@ -327,12 +328,10 @@ class _Shell:
             picture=picture_of(result) if self._pictures and result is not None else None,
         )
 
-    def _note_faults(self, points: Readings, result: CurveResult, lengths: str) -> bool:
+    def _note_faults(self, points: Readings, result: CurveResult) -> bool:
         trusted = True
         for fault in result.faults:
             rule = _RULES[fault.kind]
-            if rule is rules.GRIP_SLIP and lengths != "crosshead":
-                rule = rules.GRIP_SLIP_BESIDE
             self._note(rule, points, fault)
             trusted = trusted and rule.level is not Level.ERROR
         return trusted

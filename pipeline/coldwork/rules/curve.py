@@ -21,11 +21,11 @@ __all__ = [
     "FEW_ELASTIC_POINTS",
     "FRICTION",
     "GRIP_SLIP",
-    "GRIP_SLIP_BESIDE",
     "LUEDERS_PLATEAU",
     "NO_MAXIMUM",
     "SATURATION",
     "SERRATIONS",
+    "SLOPE_IMPOSSIBLE",
     "STRESS_IMPOSSIBLE",
     "TIME_BACKWARD",
     "TIME_STANDING",
@@ -74,18 +74,29 @@ STRESS_IMPOSSIBLE: Final = Rule(
     "the greatest stress of the curve is none that a metal has",
     None,
     "MPa",
-    f"{_COMMON}: between a soft wire and a whisker",
+    f"{_COMMON}: from lead to the strongest wire",
     "Force, section or unit must be wrong, such as a force in kN read as one in N.",
+    STRENGTH_ON,
+)
+SLOPE_IMPOSSIBLE: Final = Rule(
+    "slope-impossible",
+    Level.ERROR,
+    "the elastic slope of the curve is none that a metal has",
+    None,
+    "GPa",
+    f"{_COMMON}: from half of lead's modulus to above that of iridium",
+    "Extension, gauge length or unit must be wrong, or the strain is not that of the coupon.",
     STRENGTH_ON,
 )
 GRIP_SLIP: Final = Rule(
     "grip-slip",
     Level.ERROR,
-    "the coupon slipped in its grips, and the strain is that of the crosshead",
+    "the coupon slipped in its grips; value and limit as drop of stress",
     None,
-    "1",
+    "MPa",
     _COMMON,
-    "The travel holds the slip, so every strain after it is too large by an unknown part.",
+    "Travel holds the slip, and force, strain and rate jump with it: nothing that is taken from"
+    " the whole curve holds.",
     STRENGTH_ON,
 )
 EXTENSOMETER_SLIP: Final = Rule(
@@ -111,20 +122,11 @@ CURVE_WITHOUT_GEOMETRY: Final = Rule(
 ZERO_OFFSET: Final = Rule(
     "zero-offset",
     Level.WARNING,
-    "force or extension does not begin at zero; value over the whole rise",
+    "the force does not begin at zero, or does not come back to it",
     None,
-    "1",
+    "MPa",
     _COMMON,
-    "The strain is corrected by the toe of the curve; a force that is off stays off.",
-)
-GRIP_SLIP_BESIDE: Final = Rule(
-    "grip-slip-beside",
-    Level.WARNING,
-    "the coupon slipped in its grips; the strain does not come from the crosshead",
-    None,
-    "1",
-    _COMMON,
-    "The strain was measured on the coupon and holds; force and strain rate had a jump.",
+    "The strain is corrected by the toe of the curve; a force that is off is not.",
 )
 EXTENSOMETER_OFF: Final = Rule(
     "extensometer-off",
@@ -165,7 +167,7 @@ TIME_STANDING: Final = Rule(
 NO_MAXIMUM: Final = Rule(
     "no-maximum",
     Level.WARNING,
-    "the force still rises at the end of the curve",
+    "the curve ends before its force is greatest; value as what it has fallen by, of the greatest",
     None,
     "1",
     "A. Considere, Ann. Ponts et Chaussees 9 (1885) 574: uniform strain ends at the greatest force",
@@ -183,16 +185,17 @@ BARRELLING: Final = Rule(
 FRICTION: Final = Rule(
     "friction",
     Level.WARNING,
-    "the pressed coupon is of a shape in which friction at its ends tells",
+    "the pressed coupon is of a shape in which friction at its ends tells, or it may buckle;"
+    " value and limit as height over diameter",
     None,
     "1",
-    "ASTM E9: height over diameter from 1.5 to 2 (from memory)",
-    "Friction at the ends adds to the force.",
+    "ASTM E9, proportions of specimens (from memory)",
+    "Friction at the ends adds to the force on a short coupon, and a long one bends.",
 )
 UNLOADING_LOOP: Final = Rule(
     "unloading-loop",
     Level.INFORMATION,
-    "the coupon was unloaded and loaded again; value as fall of stress",
+    "the coupon was unloaded and loaded again; value and limit as fall of stress",
     None,
     "MPa",
     _COMMON,
@@ -201,9 +204,9 @@ UNLOADING_LOOP: Final = Rule(
 SERRATIONS: Final = Rule(
     "serrations",
     Level.INFORMATION,
-    "the curve is serrated; value as drop of stress",
+    "the curve is serrated; value and limit as number of drops",
     None,
-    "MPa",
+    "1",
     "A. Portevin, F. Le Chatelier, C. R. Acad. Sci. 176 (1923) 507 (from memory)",
     "Solutes age the dislocations during the test: it is the metal, not the machine.",
 )
@@ -222,11 +225,11 @@ CURVE_RULES: Final = (
     FEW_ELASTIC_POINTS,
     ENDS_BEFORE_YIELD,
     STRESS_IMPOSSIBLE,
+    SLOPE_IMPOSSIBLE,
     GRIP_SLIP,
     EXTENSOMETER_SLIP,
     CURVE_WITHOUT_GEOMETRY,
     ZERO_OFFSET,
-    GRIP_SLIP_BESIDE,
     EXTENSOMETER_OFF,
     SATURATION,
     TIME_BACKWARD,

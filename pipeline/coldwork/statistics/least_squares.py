@@ -105,9 +105,9 @@ def fit_least_squares(
         jac=jacobian,
         method="lm",
         x_scale=positive("scale", scale),
-        xtol=1e-14,
-        ftol=1e-14,
-        gtol=1e-14,
+        xtol=1e-13,
+        ftol=1e-13,
+        gtol=1e-13,
         max_nfev=400,
     )
     slopes = np.asarray(jacobian(found.x), dtype=np.float64)

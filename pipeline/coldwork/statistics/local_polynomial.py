@@ -79,10 +79,16 @@ class LocalFit:
 
     def bend(self, x: float) -> float:
         """Give the second derivative [unit of y over unit of x squared] at x."""
-        t = (x - self.centre) / self.scale
-        k = np.arange(self.coefficients.size)
-        row = k * (k - 1) * np.where(k > 1, t ** np.maximum(k - 2, 0), 0.0)
-        return float(row @ self.coefficients) / self.scale**2
+        return float(self._second(x) @ self.coefficients)
+
+    def u_top(self, x: float) -> float:
+        """Give the standard uncertainty of a top [unit of x] found at x.
+
+        To second order in the uncertainty of the bend, by which the slope's is divided.
+        """
+        row, bend = self._second(x), self.bend(x)
+        relative = float(row @ self.covariance @ row) / bend**2
+        return self.u_slope(x) / abs(bend) * float(np.sqrt(1.0 + 3.0 * relative))
 
     def root(self, slope: float, level: float, start: float) -> float:
         """Find x [its unit] near `start` where y = level + slope x, by Newton's steps."""
@@ -113,6 +119,12 @@ class LocalFit:
     def _powers(self, x: float) -> FloatArray:
         t = (x - self.centre) / self.scale
         return np.asarray(t ** np.arange(self.coefficients.size), dtype=np.float64)
+
+    def _second(self, x: float) -> FloatArray:
+        t = (x - self.centre) / self.scale
+        k = np.arange(self.coefficients.size)
+        row = k * (k - 1) * t ** np.maximum(k - 2, 0) / self.scale**2
+        return np.asarray(row, dtype=np.float64)
 
     def _first(self, x: float) -> FloatArray:
         t = (x - self.centre) / self.scale

@@ -10,7 +10,7 @@ from coldwork.guards import finite
 __all__ = ["long_run_ratio", "point_noise"]
 
 _KEPT: Final = 0.95  # of the differences, the smallest; jumps and corners are in the rest [1]
-_SHARE: Final = 0.7588606  # of the variance of a normal that its inner 95 % carry [1]
+_SHARE: Final = 0.7588416  # of the variance of a normal that its inner 95 % carry [1]
 _WEIGHTS: Final = 20.0  # 1 + 9 + 9 + 1: variance of a third difference over that of a point [1]
 _REPEATS: Final = 0.3  # share of equal neighbours from which the steps of the reading show [1]
 _BATCHES: Final = 20  # stretches that `long_run_ratio` compares
