@@ -238,7 +238,7 @@ def test_a_term_has_a_plain_name(refusals: Refusals, sheet: str) -> None:
 
 
 def test_a_new_metal_needs_its_constants(refusals: Refusals, sheet: str) -> None:
-    (cause,) = refusals(sheet.replace('"copper"', '"tungsten"'))
+    (cause,) = refusals(sheet.replace('"copper"', '"palladium"'))
     assert "does not give poisson_ratio, burgers_vector_nm, mass_density_kg_per_m3" in cause
 
 

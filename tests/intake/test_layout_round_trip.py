@@ -190,7 +190,8 @@ def batches(draw: st.DrawFn) -> tuple[Plan, list[dict[str, Cell]]]:
                 each[column] = rows[0][column]
     free = [column for column in columns if column not in plan.place]
     plan.units_line &= any(column in UNITS for column in free)  # it would be a blank line
-    plan.order = [*free, *(f"extra {n}" for n in range(rng.randint(0, 3)))]
+    least = int(len(free) == 1)  # an empty cell alone in its line would be a blank line
+    plan.order = [*free, *(f"extra {n}" for n in range(rng.randint(least, 3)))]
     rng.shuffle(plan.order)
     return plan, rows
 

@@ -112,7 +112,7 @@ class Strip:
         random = np.random.default_rng(seed)
         force = s * AREA + noise * random.standard_normal(s.size)
         length = e * LENGTH + 1e-4 * noise * random.standard_normal(s.size)
-        return 0.1 * np.arange(s.size), force, length
+        return 0.1 * np.arange(s.size, dtype=np.float64), force, length
 
 
 def rows(name: str, strip: Strip, **how: object) -> list[dict[str, object]]:
