@@ -6,6 +6,7 @@ are annealed between passes, and the furnace wants to know beforehand how much t
 cold work has stored. The laboratory next to the mill cuts coupons after each pass
 and indents them: that is *copper-strip*; and since its benches do not write tidy tables,
 the same indents stand once more in *copper-benches*, as each bench would have left them.
+The same copper is pulled too, and the puller's own files are *copper-tension*.
 A wire shop in the same yard draws
 low-carbon rod and pulls pieces of each size: that is *steel-wire*. And the
 laboratory keeps a shelf of records with everything in them that has ever gone
@@ -22,7 +23,14 @@ by the code under test would be none.
 import sys
 from pathlib import Path
 
-from scenario import copper_benches, copper_strip, copper_workbook, planted_faults, steel_wire
+from scenario import (
+    copper_benches,
+    copper_strip,
+    copper_tension,
+    copper_workbook,
+    planted_faults,
+    steel_wire,
+)
 
 __all__ = ["batches", "main"]
 
@@ -33,6 +41,7 @@ def batches() -> dict[str, str | bytes]:
         **copper_strip.files(),
         **copper_benches.files(),
         **copper_workbook.files(),
+        **copper_tension.files(),
         **steel_wire.files(),
         **planted_faults.files(),
     }

@@ -5,10 +5,10 @@ Every console block of the README is run again, in order, and must print what st
 """
 
 import doctest
-import importlib
 import re
 import shlex
 import subprocess
+import tomllib
 from pathlib import Path
 from typing import Final
 
@@ -19,7 +19,7 @@ from typer.testing import CliRunner
 import coldwork
 from coldwork import contracts
 from coldwork.cli import app
-from coldwork.errors import Exit
+from coldwork.errors import Exit, UsageError
 
 ROOT: Final = Path(__file__).parents[1]
 PACKAGE: Final = Path(coldwork.__file__).parent
@@ -169,12 +169,23 @@ def test_python_prints_what_the_readme_says(folder: Path) -> None:
     assert not out, "".join(out)
 
 
-def test_the_sheet_of_the_readme_is_that_of_the_batch() -> None:
-    (body,) = (body for kind, body in BLOCKS if kind == "toml")
-    tomllib = importlib.import_module("tomllib")
-    shown = tomllib.loads(body)
-    whole = tomllib.loads((ROOT / "sample_data/copper-strip/batch.toml").read_text("utf-8"))
-    for section, keys in shown.items():
-        for key, value in keys.items() if isinstance(keys, dict) else ():
-            assert whole[section][key] == value, f"[{section}] {key}"
-    assert shown["limits"] == whole["limits"]
+def test_the_sheet_and_the_layout_of_the_readme_are_those_of_the_samples() -> None:
+    shown = [tomllib.loads(body) for kind, body in BLOCKS if kind == "toml"]
+    samples = ("copper-strip/batch.toml", "copper-benches/layouts/bench-1.toml")
+    for some, sample in zip(shown, samples, strict=True):
+        whole = tomllib.loads((ROOT / "sample_data" / sample).read_text(encoding="utf-8"))
+        for section, keys in some.items():
+            if isinstance(keys, list):
+                assert keys == whole[section], section
+            else:
+                assert keys.items() <= whole[section].items(), section
+
+
+def test_what_is_said_not_to_be_built_is_refused_by_name() -> None:
+    (told,) = re.findall(r"^- Choices that are not built yet.*?(?=^- |^$)", README, re.M | re.S)
+    choices = re.findall(r"`([a-z_.]+ = [^`]+)`", told)
+    assert len(choices) > 2
+    baseline = "strength.baseline_mpa = 50.0"
+    for choice in choices:
+        with pytest.raises(UsageError, match="not built yet"):
+            coldwork.estimate("copper", stress_mpa=200.0, settings=[baseline, choice])

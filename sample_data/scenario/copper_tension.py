@@ -18,7 +18,7 @@ from numpy.typing import NDArray
 from scenario.metal import Metal, hardened, hardening_work, rolling_strain
 from scenario.tables import Table, normals
 
-__all__ = ["COPPER", "files"]
+__all__ = ["COPPER", "MODULUS", "SEATED", "TOE", "Strip", "files", "points"]
 
 Floats = NDArray[np.float64]
 
@@ -128,12 +128,12 @@ def files() -> dict[str, str]:
     for reduction in REDUCTIONS:
         for piece in PIECES:
             name = _name(reduction, piece)
-            made[f"{FOLDER}/curves/{name}.txt"] = _curve(name, _Strip(reduction), bits, begin)
+            made[f"{FOLDER}/curves/{name}.txt"] = _curve(name, Strip(reduction), bits, begin)
             begin += timedelta(minutes=17)
     return made
 
 
-class _Strip:
+class Strip:
     """The copper after a reduction: its curve in closed form. [Pa], [1]."""
 
     def __init__(self, reduction: float) -> None:
@@ -168,12 +168,12 @@ class _Strip:
     @property
     def elastic(self) -> float:
         """Engineering strain at which it begins to yield."""
-        return _root(lambda e: MODULUS * e * (1.0 + e) - self.stress(_at(e)), 0.0, 0.05)
+        return root(lambda e: MODULUS * e * (1.0 + e) - self.stress(plastic_at(e)), 0.0, 0.05)
 
     @property
     def uniform(self) -> float:
         """True plastic strain at the greatest force (Considere 1885)."""
-        return _root(
+        return root(
             lambda p: self.stress(p) - self.rate(p) * (1.0 - self.stress(p) / MODULUS), 0.0, 1.0
         )
 
@@ -184,15 +184,15 @@ class _Strip:
             s, e = self.drawn(plastic)
             return MODULUS * (e - offset) - s
 
-        return self.drawn(_root(gap, _at(self.elastic), 4.0 * offset))[0]
+        return self.drawn(root(gap, plastic_at(self.elastic), 4.0 * offset))[0]
 
 
-def _at(e: float) -> float:
+def plastic_at(e: float) -> float:
     """Plastic strain on the elastic line, which is straight in engineering terms."""
     return log1p(e) - e * (1.0 + e)
 
 
-def _root(function: Callable[[float], float], low: float, high: float) -> float:
+def root(function: Callable[[float], float], low: float, high: float) -> float:
     """Halve until nothing is left to halve; the function rises."""
     for _ in range(200):
         middle = (low + high) / 2.0
@@ -217,7 +217,7 @@ def _coupons() -> str:
         )
     )
     for reduction in REDUCTIONS:
-        strip = _Strip(reduction)
+        strip = Strip(reduction)
         for piece in PIECES:
             table.add(
                 {
@@ -236,15 +236,19 @@ def _coupons() -> str:
     return table.text()
 
 
-def _points(strip: _Strip) -> tuple[Floats, Floats]:
-    """Give engineering stress and strain of the points that the machine logs, past the break."""
-    elastic = np.linspace(0.0, strip.elastic, 110, endpoint=False)
-    first, end = _at(strip.elastic), strip.uniform
-    knee = np.linspace(first, 0.006, 70)
-    rest = np.linspace(0.0062, 1.35 * end, int(80 + 700 * end))
+def points(strip: Strip, dense: float = 1.0) -> tuple[Floats, Floats]:
+    """Give engineering stress [Pa] and strain of the points that the machine logs.
+
+    Up to the break and a little past it; `dense` says how many there are.
+    """
+    first, end = plastic_at(strip.elastic), strip.uniform
+    last = end + max(0.28 * end, 0.05)
+    elastic = np.linspace(0.0, strip.elastic, int(110 * dense), endpoint=False)
+    knee = np.linspace(first, 0.006, int(70 * dense))
+    rest = np.linspace(0.0062, last, int((100 + 700 * last) * dense))
     plastic = np.concatenate([knee, rest])
     drawn = np.array([strip.drawn(float(p)) for p in plastic])
-    necked = np.maximum(plastic / end - 1.1, 0.0) / 0.45  # a neck takes the load, slowly first
+    necked = np.maximum(plastic - 1.1 * end, 0.0) / (3.0 * last - 3.0 * end)  # slowly at first
     s = np.concatenate([MODULUS * elastic, drawn[:, 0] * (1.0 - necked**4)])
     e = np.concatenate([elastic, drawn[:, 1]])
     broken = np.full(3, e[-1] - s[-1] / MODULUS)
@@ -266,8 +270,8 @@ def _slip(s: Floats, e: Floats) -> tuple[Floats, Floats, Floats]:
     return np.insert(s, at + 1, load), np.insert(e, at + 1, strain), slipped
 
 
-def _curve(name: str, strip: _Strip, bits: np.random.PCG64, begin: datetime) -> str:
-    s, e = _points(strip)
+def _curve(name: str, strip: Strip, bits: np.random.PCG64, begin: datetime) -> str:
+    s, e = points(strip)
     slipped = np.zeros(s.size)
     if name == SLIPPED:
         s, e, slipped = _slip(s, e)
@@ -305,7 +309,7 @@ def _truth() -> str:
         )
     )
     for reduction in REDUCTIONS:
-        strip = _Strip(reduction)
+        strip = Strip(reduction)
         end = strip.uniform
         top, at_top = strip.drawn(end)
         flow = strip.stress(0.002)

@@ -10,6 +10,7 @@ from typing import Final
 
 from scenario import (
     faults_of_branch,
+    faults_of_curves,
     faults_of_flow,
     faults_of_grains,
     faults_of_indents,
@@ -57,6 +58,8 @@ def files() -> dict[str, str]:
         faults_of_grains.radius_batch(),
         faults_of_flow.batch(),
         faults_of_branch.batch(),
+        faults_of_curves.pulled_batch(),
+        faults_of_curves.pressed_batch(),
     )
     found = {"planted-faults/house.toml": _HOUSE}
     table = Table(("batch", "coupon_id", "reading_no", "rule_or_reason", "file", "line", "planted"))

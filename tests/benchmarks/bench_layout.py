@@ -20,6 +20,7 @@ import numpy as np
 import pyarrow as pa
 import pyarrow.compute as pc
 import pyarrow.csv as pacsv
+from numpy.typing import NDArray
 
 INDENTS: Final = 5  # of a coupon
 LAYOUT: Final = """
@@ -111,7 +112,7 @@ def write_batch(folder: Path, coupons: int, places: int) -> None:
         "along": fixed(d - 0.0003, places + 3),
         "rim": fixed(2 + 3 * rng.random(rows), 2),
     }
-    piece = ids.take(pa.array(np.repeat(np.arange(coupons), INDENTS)))
+    piece = ids.take(np.repeat(np.arange(coupons), INDENTS))
     number = pa.array(np.tile(np.arange(1, INDENTS + 1), coupons)).cast(pa.string())
     comma = {name: pc.replace_substring(text, ".", ",") for name, text in texts.items()}
     held, by, load = (pa.repeat(word, rows) for word in ("12", "operator-1", "0,09807"))
@@ -136,19 +137,17 @@ def write_batch(folder: Path, coupons: int, places: int) -> None:
     (folder / "bench.toml").write_text(LAYOUT)
 
 
-def fixed(values: "np.ndarray[tuple[int], np.dtype[np.float64]]", places: int) -> pa.StringArray:
+def fixed(values: NDArray[np.float64], places: int) -> pa.StringArray:
     """Write numbers below ten with so many decimal places, none left out."""
-    units = pa.array(np.round(values * 10**places).astype(np.int64)).cast(pa.string())
+    units = pa.array(np.round(values * 10**places).astype(np.int64), pa.int64()).cast(pa.string())
     digits = pc.utf8_lpad(units, places + 1, "0")
-    whole = pc.utf8_slice_codeunits(digits, 0, 1)
-    return pc.binary_join_element_wise(whole, pc.utf8_slice_codeunits(digits, 1), ".")
+    return pc.replace_substring_regex(digits, pattern="^(.)", replacement=r"\1.")
 
 
 def micrometres(millimetres: pa.StringArray) -> pa.StringArray:
     """Move the point of numbers such as 0.1821 by three places, on the text."""
-    whole = pc.utf8_slice_codeunits(millimetres, 2, 5)
-    rest = pc.utf8_slice_codeunits(millimetres, 5)
-    return pc.binary_join_element_wise(pc.utf8_ltrim(whole, "0"), rest, ".")
+    moved = pc.replace_substring_regex(millimetres, pattern=r"^0\.(...)", replacement=r"\1.")
+    return pc.replace_substring_regex(moved, pattern=r"^0+", replacement="")
 
 
 def read(folder: Path, name: str) -> Spent:

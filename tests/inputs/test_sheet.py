@@ -185,7 +185,7 @@ def test_a_full_sheet(write: Write) -> None:
     home = folder.resolve()
     assert method.indents == (home / "indents.csv", home / "indents-2.csv")
     assert method.coupons == (home / "coupons.csv",)
-    assert method.exclusions == home / "exclusions.csv"
+    assert method.exclusions == (home / "exclusions.csv",)
     laws = method.laws
     assert (laws.baseline, laws.taylor, laws.unwinding) == ("parts", "slope", True)
     assert (laws.area["HV"], laws.outer_radius) == ("projected", "fixed")

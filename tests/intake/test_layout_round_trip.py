@@ -210,8 +210,12 @@ def own(column: str, plan: Plan) -> str:
     return name.replace(" ", "-") if plan.delimiter == "spaces" else name
 
 
+def quoted(text: str) -> str:
+    """Write text as a basic string of TOML, which JSON's are too."""
+    return json.dumps(text, ensure_ascii=False)
+
+
 def layout(plan: Plan, rows: list[dict[str, Cell]], header_line: int) -> str:
-    quoted = lambda text: json.dumps(text, ensure_ascii=False)  # noqa: E731 - TOML's basic strings
     lines = ["[layout]", 'id = "any"', 'fills = "indents"', "[text]"]
     lines += [f"encoding = {quoted(plan.encoding)}", f"delimiter = {quoted(plan.delimiter)}"]
     lines += [f"decimal = {quoted(plan.decimal)}", f"padded = {str(plan.padded).lower()}"]
@@ -297,11 +301,12 @@ def guarded(text: str) -> str:
 def cells_of(stream: ReadingStream) -> list[list[Any]]:
     found: list[list[Any]] = []
     for block in stream:
-        named = {**block.floats, **block.texts}
+        named: dict[str, list[Any]] = {k: v.tolist() for k, v in block.floats.items()}
+        named |= {k: v.to_pylist() for k, v in block.texts.items()}
         times = [None] * len(block.lines) if block.times is None else block.times.tolist()
         columns = [block.coupon.tolist(), block.number.tolist(), times]
         columns += [
-            [value.hex() if isinstance(value, float) else value for value in named[name].tolist()]
+            [value.hex() if isinstance(value, float) else value for value in named[name]]
             for name in sorted(named)
         ]
         found += map(list, zip(*columns, strict=True))

@@ -379,8 +379,8 @@ def test_each_has_its_one_verdict(tmp_path: Path, case: Case, block_bytes: int) 
     if case.refused:
         causes = refusal(tmp_path, case.data, case.layout, block_bytes=block_bytes)
         assert [words for words in case.refused if words not in causes[0]] == [], causes
-        line = case.refused[0].partition(", column")[0]
-        assert all(cause.startswith(line) for cause in causes)  # all of the one hazard
+        where = case.refused[0].partition(", column")[0]
+        assert all(cause.startswith(where) for cause in causes)  # all of the one hazard
         return
     found = read(tmp_path, case.data, case.layout, block_bytes=block_bytes)
     told = {row["line"]: row for row in found.aside}

@@ -14,7 +14,9 @@ from hypothesis import strategies as st
 from coldwork import contracts
 from coldwork.errors import BatchRefused
 from coldwork.intake.files import TableFiles
-from coldwork.intake.text import TableText, Torn, check_headers
+from coldwork.intake.rows import Torn
+from coldwork.intake.sources import check_headers
+from coldwork.intake.text import TableText
 
 Tables = Callable[..., TableFiles]
 Row = tuple[int, tuple[str, ...]]

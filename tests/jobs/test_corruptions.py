@@ -406,6 +406,13 @@ def test_a_number_without_bounds_of_its_own_is_refused_too() -> None:
     assert processed(changed(b"resolution_um = 0.1", b"resolution_um = 1e300")) == 4
 
 
+def test_a_pattern_that_matches_too_much_is_refused() -> None:
+    for name in ("coupons", "indents", "exclusions"):
+        assert (
+            processed(changed(f'{name} = "{name}.csv"'.encode(), f'{name} = "*.csv"'.encode())) == 4
+        )
+
+
 def test_an_uncertainty_beyond_all_measure_can_be_put_into_words() -> None:
     # exp(theta0 eps / sigma_s) = exp(136): the reason of a decision has to write 0 +- 1e59
     assert processed(changed(b"saturation_stress_mpa = 320.0", b"saturation_stress_mpa = 1")) == 3

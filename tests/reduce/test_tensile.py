@@ -1,6 +1,6 @@
 """The shell around the reduction of curves: rules for what is found, and what is kept."""
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
 
@@ -13,6 +13,7 @@ from coldwork.inputs.sheet import read_method
 from coldwork.jobs.gather import Gathered, gather
 from coldwork.reduce import tensile as shell
 from coldwork.reduce.curve import Curve, CurveFault, CurveResult, FaultKind
+from coldwork.reduce.curve_reduction import reduce_curve
 from coldwork.reduce.tensile import settings_of
 from coldwork.rules.curve import CURVE_RULES, CURVE_WITHOUT_GEOMETRY
 from coldwork.rules.rule import Level
@@ -42,10 +43,8 @@ def test_what_the_metal_does_is_no_fault_of_the_test() -> None:
 def test_an_error_takes_the_trust_away_and_nothing_else_does(
     make: Make, monkeypatch: pytest.MonkeyPatch, kind: FaultKind
 ) -> None:
-    reduce = shell.reduce_curve
-
     def faulty(*arguments: object) -> CurveResult:
-        result = reduce(*arguments)  # type: ignore[arg-type]
+        result = reduce_curve(*arguments)  # type: ignore[arg-type]
         unit = shell._RULES[kind].unit or "1"
         size = 1e6 if unit in ("MPa", "GPa") else 2.0
         return replace(result, faults=(CurveFault(kind, 10, 20, size, size / 2.0),))
@@ -67,12 +66,11 @@ def test_an_error_takes_the_trust_away_and_nothing_else_does(
 
 def test_one_curve_is_held_at_a_time(make: Make, monkeypatch: pytest.MonkeyPatch) -> None:
     sizes: list[int] = []
-    reduce = shell.reduce_curve
 
     def watched(curve: Curve, *rest: object) -> CurveResult:
         assert curve.force is not None
         sizes.append(curve.force.size)
-        return reduce(curve, *rest)  # type: ignore[arg-type]
+        return reduce_curve(curve, *rest)  # type: ignore[arg-type]
 
     monkeypatch.setattr(shell, "reduce_curve", watched)
     batch = gathered(make, 50.0, 100.0, 150.0, points=300)
@@ -126,7 +124,7 @@ def test_small_blocks_give_the_same(make: Make) -> None:
 
 
 @pytest.fixture
-def make(tmp_path: Path) -> Iterator[Make]:
+def make(tmp_path: Path) -> Make:
     """Write a batch folder from a sheet and rows."""
 
     def made(sheet: str, *, name: str = "batch", **tables: list[dict[str, object]]) -> Path:
@@ -140,4 +138,4 @@ def make(tmp_path: Path) -> Iterator[Make]:
             (folder / f"{table}.csv").write_text("\n".join(lines) + "\n", encoding="utf-8")
         return folder
 
-    yield made
+    return made

@@ -126,7 +126,7 @@ def _files(method: Method) -> dict[str, object]:
     def names(paths: tuple[Path, ...]) -> list[str]:
         return [path.relative_to(method.folder).as_posix() for path in paths]
 
-    taken_out = (method.exclusions,) if method.exclusions else ()
+    taken_out = method.exclusions
     return {
         "coupons": names(method.coupons),
         "indents": names(method.indents),

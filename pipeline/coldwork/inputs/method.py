@@ -179,8 +179,8 @@ class Method:
         mean diagonals. [1]
     coupons, indents, flow_stress : tuple of Path
         The tables' files in order, all inside the batch folder.
-    exclusions : Path or None
-        The readings that a person takes out.
+    exclusions : tuple of Path
+        The files of the readings that a person takes out.
     laws : Laws
         The choices by name.
     inputs : mapping of str to Input
@@ -230,7 +230,7 @@ class Method:
     coupons: tuple[Path, ...]
     indents: tuple[Path, ...]
     flow_stress: tuple[Path, ...]
-    exclusions: Path | None
+    exclusions: tuple[Path, ...]
     laws: Laws
     inputs: Mapping[str, Input]
     testers: tuple[Tester, ...]

@@ -128,7 +128,7 @@ def _method(
         coupons=files.get("coupons", ()),
         indents=files.get("indents", ()),
         flow_stress=files.get("flow_stress", ()),
-        exclusions=files["exclusions"][0] if "exclusions" in files else None,
+        exclusions=files.get("exclusions", ()),
         laws=laws,
         inputs=inputs,
         testers=testers,

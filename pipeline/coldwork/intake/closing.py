@@ -96,7 +96,7 @@ class _Sums:
         if statistic == "range":
             return self.most - self.least, 2.0 * cell
         if self.count < 2:
-            return np.nan, cell
+            return 0.0, 0.0  # what machines print for one reading
         freedom = self.count - 1
         return sqrt(self.squares / freedom), cell * sqrt(self.count / freedom)
 

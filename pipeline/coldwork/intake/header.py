@@ -36,7 +36,8 @@ def header_causes(columns: list[str], contract: Contract, where: str) -> list[Ca
         for mark, words in _SEPARATORS.items():
             if mark in columns[0]:
                 what = f"the cells are separated by {words}"
-                mend = "Save it with commas between the cells and a point in the numbers."
+                mend = "Save it with commas between the cells and a point in the numbers, or name a"
+                mend += " layout for it in [files]."
                 return [Cause(where, what, "Tables are CSV with commas.", mend)]
     return [
         *_unknown(columns, contract, where),

@@ -134,7 +134,8 @@ def unit_causes(
         place = places[filled.name]
         cell = units[place] if place < len(units) else ""
         named = spelled(cell)
-        if named is not None and named.same(said):
+        silent = filled.unit is None and cell.strip(" \t") in ("", "-")  # as of hardness numbers
+        if silent or (named is not None and named.same(said)):
             continue
         here = f"{where}, column {filled.source}"
         what = f"the units line says {shown(cell)} and the layout {said.name}"

@@ -236,7 +236,7 @@ def _type_words(schema: dict[str, Any]) -> str:
     if schema.get("$ref") == "#/$defs/input":
         return "number, bare or with its uncertainty"
     if schema.get("$ref") == "#/$defs/paths":
-        return "path, pattern or list"
+        return "path or pattern, table of path and layout, or list of these"
     words = {"string": "text", "object": "table", "array": "list", "integer": "whole number"}
     kinds = schema.get("type", "string")
     kinds = [kinds] if isinstance(kinds, str) else kinds

@@ -165,7 +165,7 @@ def gather(
         With everything that is wrong with its files as wholes.
     """
     files = _reading_files(method)
-    excluding = _files(method, "exclusions", _one(method.exclusions))
+    excluding = _files(method, "exclusions", method.exclusions)
     curves = _how_curves(method, block_bytes, pictures=pictures, keep=points)
     coupons = _coupons(method, (files, excluding), curves, block_bytes)
     exclusions = (
@@ -274,10 +274,6 @@ def _reading_files(method: Method) -> TableFiles:
     if method.laws.flow_from == "curves":
         return _files(method, "curves", method.curves)
     return _files(method, "flow_stress", method.flow_stress)
-
-
-def _one(path: Path | None) -> tuple[Path, ...]:
-    return () if path is None else (path,)
 
 
 def _files(method: Method, table: str, paths: tuple[Path, ...]) -> TableFiles:

@@ -154,7 +154,8 @@ def _written(x: FloatArray, place: int, *, scientific: bool) -> pa.StringArray:
     if scientific:
         return sentence(sign, _with_exponent(digits, place))
     if place >= 0:
-        return sentence(sign, _counted(np.abs(whole) * 10**place))
+        zeros = pa.array(np.where(whole == 0, "", "0" * place), pa.string())
+        return sentence(sign, digits, zeros)
     padded = pc.utf8_lpad(digits, 1 - place, "0")
     before = pc.utf8_slice_codeunits(padded, 0, place)
     after = pc.utf8_slice_codeunits(padded, place)

@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from coldwork.reduce.curve_points import Points
-from coldwork.statistics.noise import point_noise
+from coldwork.statistics.noise import noise_of
 
 __all__ = ["LOOP_DROP", "Branch", "Loop", "find_branch", "moving_mean"]
 
@@ -45,6 +45,10 @@ class Branch:
         Stress and strain averaged over 5 points about each, for landmarks. [Pa], [1]
     noise_stress, noise_strain : float
         Of one point. [Pa], [1]
+    alike : int
+        Over how many points the noise is alike, as a filter leaves it.
+    long_run : float
+        Variance of a mean of many points over that of independent ones.
     peak : int
         Place in the branch of the greatest stress (smoothed); in compression its end.
     loops : tuple of Loop
@@ -58,6 +62,8 @@ class Branch:
     run: FloatArray
     noise_stress: float
     noise_strain: float
+    alike: int
+    long_run: float
     peak: int
     loops: tuple[Loop, ...]
 
@@ -95,7 +101,7 @@ def find_branch(points: Points, stop: int) -> Branch:
         The part.
     """
     stress, strain = points.stress[:stop], points.strain[:stop]
-    noise_s, noise_e = point_noise(stress), point_noise(strain)
+    noise_s, noise_e = noise_of(stress), noise_of(strain)
     mean = moving_mean(stress)
     last = (
         _last_before_break(stress, mean)
@@ -103,7 +109,7 @@ def find_branch(points: Points, stop: int) -> Branch:
         else int(np.argmax(moving_mean(strain)))
     )
     slope = _steepest(mean, strain, last)
-    loops = _loops(mean[: last + 1], strain[: last + 1], slope, noise_s)
+    loops = _loops(mean[: last + 1], strain[: last + 1], slope, noise_s.sd)
     keep = np.ones(last + 1, dtype=np.bool_)
     for loop in loops:
         keep[loop.start + 1 : loop.stop] = False
@@ -116,8 +122,10 @@ def find_branch(points: Points, stop: int) -> Branch:
         strain=strain[place],
         mean=kept,
         run=moving_mean(strain)[place],
-        noise_stress=noise_s,
-        noise_strain=noise_e,
+        noise_stress=noise_s.sd,
+        noise_strain=noise_e.sd,
+        alike=max(noise_s.alike, noise_e.alike),
+        long_run=max(noise_s.long_run, noise_e.long_run),
         peak=peak,
         loops=loops,
     )
@@ -131,6 +139,8 @@ def _last_before_break(stress: FloatArray, mean: FloatArray) -> int:
         return stress.size - 1
     last = peak + int(low[0])
     falls = -np.diff(stress[peak : last + 1])
+    if falls.size == 0:
+        return last
     typical = max(float(np.median(np.abs(falls))), 1e-300)
     steep = falls > 20.0 * typical
     while last > peak and steep[last - peak - 1]:

@@ -14,9 +14,10 @@ from coldwork.reduce.curve_values import Choices, State, state_of
 from coldwork.reduce.curve_yield import Yield
 from coldwork.statistics.local_polynomial import Window, choose_window, fit_window
 
-__all__ = ["choose", "fitted_places"]
+__all__ = ["choose", "fitted_places", "is_by_crosshead"]
 
 FloatArray = NDArray[np.float64]
+IntArray = NDArray[np.int64]
 
 _LEAST: Final = 5  # points that a window needs
 _ROUNDS: Final = 3
@@ -61,6 +62,8 @@ def choose(
         rising = np.maximum.accumulate(branch.strain)
         end = int(np.searchsorted(rising, top[1])) - 1
     bare = Choices(
+        sense=sense,
+        by_crosshead=is_by_crosshead(settings),
         elastic=(elastic.start, elastic.stop),
         stated=settings.slope,
         proof=proof,
@@ -70,12 +73,12 @@ def choose(
         stops={},
         end=max(end, elastic.stop),
     )
-    return _with_strains(branch, bare, settings.reported_strains, sense)
+    return _with_strains(branch, bare, settings.reported_strains)
 
 
 def fitted_places(
     state: State, choices: Choices, settings: CurveSettings, yielding: Yield | None
-) -> slice:
+) -> IntArray:
     """Give the places of the true curve that the laws are fitted to.
 
     Parameters
@@ -91,17 +94,25 @@ def fitted_places(
 
     Returns
     -------
-    slice
-        Places, by default from the 0.2 % proof stress to the end of uniform strain.
+    ndarray of int64, shape (k,)
+        Places of positive stress and strain, by default from the 0.2 % proof stress to the
+        end of uniform strain.
     """
     rising = np.maximum.accumulate(state.strain)
+    last = state.strain.size
     if settings.fit_between is not None:
-        first, last = np.searchsorted(rising, settings.fit_between)
-        return slice(int(first), int(last))
-    first = int(np.searchsorted(rising, PROOF_OFFSET))
-    if yielding is not None:
-        first = max(first, yielding.end - choices.begin)
-    return slice(first, state.strain.size)
+        first, last = (int(k) for k in np.searchsorted(rising, settings.fit_between))
+    else:
+        first = int(np.searchsorted(rising, PROOF_OFFSET))
+        if yielding is not None:
+            first = max(first, yielding.end - choices.begin)
+    positive = (state.strain[first:last] > 0.0) & (state.stress[first:last] > 0.0)
+    return first + np.flatnonzero(positive)
+
+
+def is_by_crosshead(settings: CurveSettings) -> bool:
+    """Say whether the strain of the curve is the crosshead's."""
+    return settings.strain_from == "crosshead" and settings.stress_is is None
 
 
 def _proof_window(branch: Branch, elastic: Elastic, offset: float) -> tuple[Window, float] | None:
@@ -112,7 +123,9 @@ def _proof_window(branch: Branch, elastic: Elastic, offset: float) -> tuple[Wind
     near = float(np.median(branch.strain[max(place - 2, 0) : place + 3]))
     window = None
     for _ in range(_ROUNDS):
-        window = choose_window(branch.strain, branch.stress, near, (elastic.stop, len(branch)))
+        window = choose_window(
+            branch.strain, branch.stress, near, (elastic.stop, len(branch)), branch.alike
+        )
         fit = fit_window(branch.strain, branch.stress, window)
         at = fit.root(line.slope, line.intercept - line.slope * offset, near)
         if not abs(at - near) <= 3.0 * fit.scale:
@@ -121,13 +134,11 @@ def _proof_window(branch: Branch, elastic: Elastic, offset: float) -> tuple[Wind
     return None if window is None else (window, near)
 
 
-def _with_strains(
-    branch: Branch, bare: Choices, wanted: tuple[float, ...], sense: float
-) -> Choices:
+def _with_strains(branch: Branch, bare: Choices, wanted: tuple[float, ...]) -> Choices:
     """Add the reported strains that lie on the true curve."""
     if not wanted:
         return bare
-    state = state_of(branch, bare, sense)
+    state = state_of(branch, bare)
     rising = np.maximum.accumulate(state.strain)
     low = bare.elastic[1] - bare.begin
     strains: dict[float, Window] = {}
@@ -137,7 +148,7 @@ def _with_strains(
     for strain in sorted(set(wanted)):
         if rising[low] < strain <= rising[-1]:
             strains[strain] = choose_window(
-                state.strain, state.stress, strain, (low, state.strain.size)
+                state.strain, state.stress, strain, (low, state.strain.size), branch.alike
             )
             stops[strain] = int(np.searchsorted(rising, strain)) - 1
     return replace(bare, strains=strains, stops=stops)

@@ -74,16 +74,25 @@ def find_elastic(
     proof_at = crossing(branch, line, PROOF_OFFSET, 0)
     for _ in range(_ROUNDS):
         top = branch.peak if proof_at is None else proof_at
-        level = float(branch.mean[top])
-        start, stop = _range(branch, line, between, level, top)
-        if stop - start < 3 or np.ptp(branch.strain[start:stop]) == 0.0:
+        start, stop = _range(branch, line, between, float(branch.mean[top]), top)
+        found = _line_through(branch, (start, stop), stated)
+        if found is None:
             return None
-        line = fit_line(branch, branch.stress, branch.strain, (start, stop), stated)
+        line = found
         proof_at = crossing(branch, line, PROOF_OFFSET, stop)
         if (start, stop) in seen:
             break
         seen.append((start, stop))
     return Elastic(line, start, stop, proof_at)
+
+
+def _line_through(branch: Branch, places: tuple[int, int], stated: float | None) -> Line | None:
+    """Fit the line where there are 3 points that rise; None where there are not."""
+    strain = branch.strain[slice(*places)]
+    if strain.size < 3 or not float(np.ptp(strain)) > 0.0:
+        return None
+    line = fit_line(branch, branch.stress, branch.strain, places, stated)
+    return line if np.isfinite(line.slope) and line.slope > 0.0 else None
 
 
 def fit_line(
@@ -95,7 +104,14 @@ def fit_line(
 ) -> Line:
     """Fit the elastic line through the places; stress and strain may be rescaled ones."""
     here = slice(*places)
-    return robust_line(strain[here], stress[here], branch.noise_strain, branch.noise_stress, stated)
+    return robust_line(
+        strain[here],
+        stress[here],
+        branch.noise_strain,
+        branch.noise_stress,
+        stated,
+        branch.long_run,
+    )
 
 
 def crossing(branch: Branch, line: Line, offset: float, start: int) -> int | None:
@@ -153,9 +169,7 @@ def _first_line(branch: Branch, stated: float | None) -> Line | None:
         k = int(np.argmax(sure))
         if sure[k] > best:
             best, chosen = float(sure[k]), (int(low[k]), int(high[k]) + 1)
-    if chosen is None or chosen[1] - chosen[0] < 3:
-        return None
-    return fit_line(branch, branch.stress, branch.strain, chosen, stated)
+    return None if chosen is None else _line_through(branch, chosen, stated)
 
 
 def _range(

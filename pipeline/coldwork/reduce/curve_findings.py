@@ -5,6 +5,7 @@ from typing import Final
 
 from coldwork.reduce.curve import CurveFault, CurveSettings, FaultKind, Geometry
 from coldwork.reduce.curve_branch import Branch
+from coldwork.reduce.curve_choices import is_by_crosshead
 from coldwork.reduce.curve_compression import barrelling, friction
 from coldwork.reduce.curve_elastic import LEAST_ELASTIC_POINTS, Elastic
 from coldwork.reduce.curve_machine_faults import (
@@ -79,7 +80,7 @@ def test_faults(
         Everything found, in no order.
     """
     slope = elastic.line.slope
-    by_crosshead = settings.strain_from == "crosshead" and settings.stress_is is None
+    by_crosshead = is_by_crosshead(settings)
     noise = branch.noise_stress, branch.noise_strain
     proof = float(branch.stress[branch.peak if elastic.proof_at is None else elastic.proof_at])
     places = int(branch.place[elastic.start]), int(branch.place[elastic.stop - 1]) + 1

@@ -21,8 +21,8 @@ VOCE: Final = ("yield_stress", "saturation_stress", "initial_hardening")
 HOLLOMON: Final = ("coefficient", "exponent")
 LEAST_FITTED_POINTS: Final = 12
 _BLOCKS: Final = 2000  # means that a fit starts from
-_PLACES: Final = 120  # along the curve where the rate is given
-_KNOTS: Final = 10  # places whose windows are chosen; between them their width is interpolated
+_PLACES: Final = 60  # along the curve where the rate is given
+_KNOTS: Final = 8  # places whose windows are chosen; between them their width is interpolated
 
 
 @dataclass(frozen=True)
@@ -45,11 +45,6 @@ class FittedLaw:
     found: LeastSquares
     like_neighbours: float
     by_strain: FloatArray
-
-    @property
-    def covariance(self) -> FloatArray:
-        """Covariance [the parameters' units], shape (p, p)."""
-        return np.asarray(self.found.covariance * self.like_neighbours)
 
     def shifts(self, stress: FloatArray, strain: FloatArray) -> FloatArray:
         """Give the change of the parameters, shape (p, k), for k small changes of the points.
@@ -113,7 +108,9 @@ def fit_hollomon(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
     return _fit(HOLLOMON_STRESS, HOLLOMON, stress, strain, start)
 
 
-def rate_along(stress: FloatArray, strain: FloatArray, between: tuple[float, float]) -> Rate | None:
+def rate_along(
+    stress: FloatArray, strain: FloatArray, between: tuple[float, float], alike: int = 1
+) -> Rate | None:
     """Smooth the hardening rate along a true curve, with its uncertainty.
 
     Parameters
@@ -122,6 +119,8 @@ def rate_along(stress: FloatArray, strain: FloatArray, between: tuple[float, flo
         True stress and true plastic strain. [Pa], [1]
     between : tuple of float
         True plastic strains from which to which. [1]
+    alike : int
+        Over how many points the noise is alike.
 
     Returns
     -------
@@ -130,22 +129,24 @@ def rate_along(stress: FloatArray, strain: FloatArray, between: tuple[float, flo
     """
     rising = np.maximum.accumulate(strain)
     first, last = (int(k) for k in np.searchsorted(rising, between))
-    if last - first < 3 * LEAST_FITTED_POINTS:
+    block = 1 if alike == 1 else 2 * alike
+    least = LEAST_FITTED_POINTS * block
+    if last - first < 3 * least:
         return None
     places = np.linspace(*between, _PLACES + 2)[1:-1]
     knots = np.linspace(*between, _KNOTS + 2)[1:-1]
-    allowed = (first, last)
-    widths = [_half_width(strain, choose_window(strain, stress, c, allowed), c) for c in knots]
+    chosen = [choose_window(strain, stress, c, (first, last), alike) for c in knots]
+    widths = [_half_width(strain, window, c) for window, c in zip(chosen, knots, strict=True)]
     half = np.exp(np.interp(places, knots, np.log(widths)))
     rows = []
     for centre, width in zip(places, half, strict=True):
         start = int(np.searchsorted(rising, centre - width))
         stop = int(np.searchsorted(rising, centre + width, side="right"))
-        short = max(0, LEAST_FITTED_POINTS - (stop - start))
+        short = max(0, least - (stop - start))
         start = max(first, start - (short + 1) // 2)
-        stop = min(last, max(stop, start + LEAST_FITTED_POINTS))
-        start = min(start, stop - LEAST_FITTED_POINTS)
-        fit = fit_window(strain, stress, Window(start, stop, float(centre), 4))
+        stop = min(last, max(stop, start + least))
+        window = Window(min(start, stop - least), stop, float(centre), 4, block)
+        fit = fit_window(strain, stress, window)
         rows.append((fit.value(centre), fit.slope(centre), fit.u_slope(centre)))
     values, slopes, us = np.array(rows).T
     return Rate(places, values, slopes, us)

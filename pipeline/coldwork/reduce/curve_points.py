@@ -106,7 +106,7 @@ def engineering_points(curve: Curve, geometry: Geometry, settings: CurveSettings
 
 
 def plastic_states(
-    stress: FloatArray, strain: FloatArray, slope: float, sense: float
+    stress: FloatArray, strain: FloatArray, slope: float, sense: float, *, by_crosshead: bool
 ) -> tuple[FloatArray, FloatArray]:
     """Compute true stress and true plastic strain, positive in the sense of the test.
 
@@ -118,12 +118,18 @@ def plastic_states(
         Of the elastic part. [Pa]
     sense : float
         1 in tension, -1 in compression. [1]
+    by_crosshead : bool
+        Whether the elastic part of the strain is mostly the machine's. It then takes no
+        part in the coupon's change of section, and the coupon's own, R / E, is neglected.
 
     Returns
     -------
     stress, strain : ndarray of float64, shape (n,)
         True. [Pa], [1]
     """
+    if by_crosshead:
+        plastic = sense * (strain - stress / slope)
+        return sense * true_stress(sense * stress, plastic), sense * true_strain(plastic)
     signed = sense * strain
     sigma = true_stress(sense * stress, signed)
     plastic = true_plastic_strain(true_strain(signed), sigma, slope)

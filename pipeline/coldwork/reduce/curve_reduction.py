@@ -66,12 +66,14 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
     """
     points = engineering_points(curve, geometry, settings)
     if len(points) < LEAST_POINTS:
-        return _unreduced(points, [_too_few(points)])
+        return _unreduced(points, [_too_few(points, len(points))])
     whole = find_branch(points, len(points))
     last = int(whole.place[-1])
     stop, off = extensometer_off(points, whole.noise_strain, last)
-    branch = whole if stop == len(points) else find_branch(points, stop)
     faults = [*record_faults(points), *off]
+    if stop < LEAST_POINTS:
+        return _unreduced(points, [*faults, _too_few(points, stop)])
+    branch = whole if stop == len(points) else find_branch(points, stop)
     elastic = find_elastic(branch, settings.slope_between, settings.slope)
     if elastic is None:
         faults.append(points.fault(FaultKind.FEW_ELASTIC_POINTS, (0, stop), 0.0, 3.0))
@@ -80,7 +82,7 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
     yielding = find_yield(branch, elastic)
     choices = choose(branch, elastic, settings, yielding, points.sense)
     faults += _unfinished(points, branch, elastic, choices, bool(off))
-    budget = budget_of(branch, choices, settings, points.sense)
+    budget = budget_of(branch, choices, settings)
     result = CurveResult(
         faults=in_order(faults),
         noise_stress=branch.noise_stress,
@@ -90,7 +92,7 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
         true_stress=budget.state.stress,
         true_plastic_strain=budget.state.strain,
         true_start=int(points.index[branch.place[choices.begin]]),
-        slope_is_modulus=settings.strain_from != "crosshead",
+        slope_is_modulus=not choices.by_crosshead,
         rate_changes=rate_changes(points, int(branch.place[-1]), branch.noise_strain),
     )
     result = _with_line(result, points, branch, choices, budget)
@@ -126,10 +128,9 @@ def _unreduced(points: Points, faults: list[CurveFault]) -> CurveResult:
     )
 
 
-def _too_few(points: Points) -> CurveFault:
+def _too_few(points: Points, count: int) -> CurveFault:
     stop = int(points.index[-1]) + 1 if len(points) else 0
-    least = float(LEAST_POINTS)
-    return CurveFault(FaultKind.TOO_FEW_POINTS, 0, stop, float(len(points)), least)
+    return CurveFault(FaultKind.TOO_FEW_POINTS, 0, stop, float(count), float(LEAST_POINTS))
 
 
 def _unfinished(
@@ -231,7 +232,9 @@ def _with_laws(
         fits["hollomon"] = budget.fit("hollomon", hollomon, places)
     rate = None
     if strain.size:
-        rate = rate_along(stress, strain, (float(strain[0]), float(strain[-1])))
+        rate = rate_along(
+            stress, strain, (float(strain[0]), float(strain[-1])), budget.state.branch.alike
+        )
     return replace(
         result, fits=fits, kocks_mecking=None if voce is None else _line_of(voce), rate=rate
     )

@@ -38,7 +38,7 @@ def find_top(branch: Branch, start: int) -> tuple[Window, float] | None:
     place = start + int(np.argmax(coarse))
     centre, least, last = (float(branch.run[k]) for k in (place, start, -1))
     for _ in range(_ROUNDS):
-        window = choose_window(branch.strain, branch.stress, centre, (start, stop))
+        window = choose_window(branch.strain, branch.stress, centre, (start, stop), branch.alike)
         fit = fit_window(branch.strain, branch.stress, window)
         top = fit.top(centre)
         if not least <= top <= last:

@@ -76,14 +76,15 @@ class Budget:
         shared = {name: c * self.units[name] for name, c in sensitivities.items()}
         return Valued(value, u_own, sensitivities, shared)
 
-    def fit(self, law: str, fitted: FittedLaw, places: slice) -> Fit:
+    def fit(self, law: str, fitted: FittedLaw, places: NDArray[np.int64]) -> Fit:
         """Make a result of a fitted law, with the line and the machine in its uncertainty."""
         stress, strain = (
             np.column_stack([move[k][places] for move in self.moves.values()]) for k in (0, 1)
         )
         shifts = dict(zip(self.moves, fitted.shifts(stress, strain).T, strict=True))
         line = np.column_stack([shifts["intercept"], shifts["slope"]])
-        covariance = fitted.covariance + line @ self.state.line.covariance @ line.T
+        alike = max(fitted.like_neighbours, self.state.branch.long_run)
+        covariance = fitted.found.covariance * alike + line @ self.state.line.covariance @ line.T
         fitted_strain = self.state.strain[places]
         noise = np.hypot(
             self.state.branch.noise_stress,
@@ -102,7 +103,7 @@ class Budget:
         )
 
 
-def budget_of(branch: Branch, choices: Choices, settings: CurveSettings, sense: float) -> Budget:
+def budget_of(branch: Branch, choices: Choices, settings: CurveSettings) -> Budget:
     """Evaluate a curve as it is, rescaled, and with its elastic line moved.
 
     Parameters
@@ -113,15 +114,13 @@ def budget_of(branch: Branch, choices: Choices, settings: CurveSettings, sense: 
         What was decided about it.
     settings : CurveSettings
         The machine's uncertainties.
-    sense : float
-        1 in tension, -1 in compression. [1]
 
     Returns
     -------
     Budget
         All results.
     """
-    state = state_of(branch, choices, sense)
+    state = state_of(branch, choices)
     slope = state.line.slope
     height = float(np.abs(state.stress).max(initial=1.0))
     steps: dict[str, tuple[tuple[float, float], tuple[float, float], float]] = {
@@ -137,13 +136,12 @@ def budget_of(branch: Branch, choices: Choices, settings: CurveSettings, sense: 
             state_of(
                 branch,
                 choices,
-                sense,
                 (1.0 + sign * scaled[0], 1.0 + sign * scaled[1]),
                 (sign * moved[0], sign * moved[1]),
             )
             for sign in (1.0, -1.0)
         ]
-        high, low = (values_of(end, choices, sense) for end in ends)
+        high, low = (values_of(end, choices) for end in ends)
         slopes[name] = {key: (high[key] - low[key]) / (2.0 * size) for key in high}
         moves[name] = (
             (ends[0].stress - ends[1].stress) / (2.0 * size),
@@ -159,7 +157,7 @@ def budget_of(branch: Branch, choices: Choices, settings: CurveSettings, sense: 
     if settings.slope is not None:
         units[SLOPE] = settings.slope_u
         slopes[SLOPE], moves[SLOPE] = slopes["slope"], moves["slope"]
-    values = values_of(state, choices, sense)
+    values = values_of(state, choices)
     return Budget(
         values=values,
         noise=own_noise(state, choices),

@@ -34,6 +34,10 @@ class Choices:
 
     Attributes
     ----------
+    sense : float
+        1 in tension, -1 in compression. [1]
+    by_crosshead : bool
+        Whether the strain is the crosshead's.
     elastic : tuple of int
         Where the line is fitted.
     stated : float or None
@@ -52,6 +56,8 @@ class Choices:
         Last place before the end of uniform strain.
     """
 
+    sense: float
+    by_crosshead: bool
     elastic: tuple[int, int]
     stated: float | None
     proof: Mapping[float, tuple[Window, float]]
@@ -89,7 +95,6 @@ class State:
 def state_of(
     branch: Branch,
     choices: Choices,
-    sense: float,
     scales: tuple[float, float] = (1.0, 1.0),
     moved: tuple[float, float] = (0.0, 0.0),
 ) -> State:
@@ -101,8 +106,6 @@ def state_of(
         The points as recorded.
     choices : Choices
         What was decided.
-    sense : float
-        1 in tension, -1 in compression. [1]
     scales : tuple of float
         Factors on stress and strain. [1]
     moved : tuple of float
@@ -128,14 +131,15 @@ def state_of(
     line = replace(line, intercept=line.intercept + moved[0], slope=line.slope + free)
     here = slice(choices.begin, choices.end + 1)
     toe = -line.intercept / line.slope
-    stress, strain = plastic_states(
-        branch.stress[here], branch.strain[here] - toe, line.slope, sense
-    )
-    first = sense * (float(branch.strain[choices.begin]) - toe)
-    return State(branch, line, stress, strain, elastic_line_work(line.slope, first))
+    stress, strain = _true(choices, branch.stress[here], branch.strain[here] - toe, line)
+    before = 0.0  # by definition where the elastic line is the machine's
+    if not choices.by_crosshead:
+        first = choices.sense * (float(branch.strain[choices.begin]) - toe)
+        before = elastic_line_work(line.slope, first)
+    return State(branch, line, stress, strain, before)
 
 
-def values_of(state: State, choices: Choices, sense: float) -> dict[Key, float]:
+def values_of(state: State, choices: Choices) -> dict[Key, float]:
     """Evaluate every result that the points determine.
 
     Parameters
@@ -144,8 +148,6 @@ def values_of(state: State, choices: Choices, sense: float) -> dict[Key, float]:
         The curve.
     choices : Choices
         What was decided.
-    sense : float
-        1 in tension, -1 in compression. [1]
 
     Returns
     -------
@@ -165,7 +167,7 @@ def values_of(state: State, choices: Choices, sense: float) -> dict[Key, float]:
         fit = fit_window(branch.strain, branch.stress, window)
         at = fit.top(near)
         top = fit.value(at)
-        sigma, uniform = plastic_states(np.array([top]), np.array([at - toe]), line.slope, sense)
+        sigma, uniform = _true(choices, np.array([top]), np.array([at - toe]), line)
         values |= {
             ("top", 0.0): top,
             ("total_at_top", 0.0): at - toe,
@@ -226,6 +228,14 @@ def own_noise(state: State, choices: Choices) -> dict[Key, float]:
         noise["rate", strain] = fit.u_slope(strain)
         noise["work", strain] = _work_noise(state, choices.stops[strain])
     return noise
+
+
+def _true(
+    choices: Choices, stress: FloatArray, strain: FloatArray, line: Line
+) -> tuple[FloatArray, FloatArray]:
+    return plastic_states(
+        stress, strain, line.slope, choices.sense, by_crosshead=choices.by_crosshead
+    )
 
 
 def _meet(fit: LocalFit, line: Line, offset: float, near: float) -> float:

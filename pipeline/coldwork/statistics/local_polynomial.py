@@ -6,14 +6,14 @@ bends the curve within it is fitted, not smeared; without noise it shrinks to a 
 points, and the error falls with their spacing.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
 
 from coldwork.errors import InvalidArgument
-from coldwork.statistics.noise import point_noise
+from coldwork.statistics.noise import roughness
 
 __all__ = ["LEAST_POINTS", "LocalFit", "Window", "choose_window", "fit_window"]
 
@@ -32,12 +32,25 @@ _BACK: Final = 3  # tries from there back to where nothing of it is left in the 
 
 @dataclass(frozen=True)
 class Window:
-    """Points ``start`` to ``stop`` (not included) about a place, and the order to fit."""
+    """What a polynomial is fitted to.
+
+    Attributes
+    ----------
+    start, stop : int
+        Points, `stop` not included.
+    centre : float
+        The place. [unit of x]
+    order : int
+        Of the polynomial.
+    least_block : int
+        Points that are averaged at least, for noise that neighbours share.
+    """
 
     start: int
     stop: int
     centre: float
     order: int
+    least_block: int = 1
 
 
 @dataclass(frozen=True)
@@ -132,7 +145,9 @@ class LocalFit:
         return np.asarray(k * t ** np.maximum(k - 1, 0) / self.scale, dtype=np.float64)
 
 
-def choose_window(x: FloatArray, y: FloatArray, centre: float, between: tuple[int, int]) -> Window:
+def choose_window(
+    x: FloatArray, y: FloatArray, centre: float, between: tuple[int, int], alike: int = 1
+) -> Window:
     """Grow a window about a place for as long as the curve in it is simple enough.
 
     Parameters
@@ -145,6 +160,8 @@ def choose_window(x: FloatArray, y: FloatArray, centre: float, between: tuple[in
         The place. [unit of x]
     between : tuple of int
         Points that may be used, the end not included.
+    alike : int
+        Over how many points the noise is alike.
 
     Returns
     -------
@@ -175,10 +192,12 @@ def choose_window(x: FloatArray, y: FloatArray, centre: float, between: tuple[in
     if high - low <= LEAST_POINTS:
         return Window(low, high, centre, min(_BASE + 2, (high - low - 1) // 2))
     rising = np.maximum.accumulate(x[low:high])
+    block = min(1 if alike == 1 else 2 * alike, (high - low) // LEAST_POINTS)
+    least = LEAST_POINTS * block
     place = int(np.searchsorted(rising, centre))
-    start = int(np.clip(place - LEAST_POINTS // 2, 0, high - low - LEAST_POINTS))
-    window = Window(low + start, low + start + LEAST_POINTS, centre, _BASE + 2)
-    half = max(abs(centre - rising[start]), abs(rising[start + LEAST_POINTS - 1] - centre), 1e-300)
+    start = int(np.clip(place - least // 2, 0, high - low - least))
+    window = Window(low + start, low + start + least, centre, _BASE + 2, block)
+    half = max(abs(centre - rising[start]), abs(rising[start + least - 1] - centre), 1e-300)
     ladder = _ladder(rising, window, half, low)
     failed = len(ladder)
     for k in range(0, len(ladder), _STRIDE):
@@ -198,9 +217,7 @@ def _ladder(rising: FloatArray, window: Window, half: float, low: int) -> list[W
         half *= _GROWTH
         start = low + int(np.searchsorted(rising, window.centre - half))
         stop = low + int(np.searchsorted(rising, window.centre + half, side="right"))
-        window = Window(
-            min(start, window.start), max(stop, window.stop), window.centre, window.order
-        )
+        window = replace(window, start=min(start, window.start), stop=max(stop, window.stop))
         ladder.append(window)
     return ladder
 
@@ -228,12 +245,12 @@ def fit_window(x: FloatArray, y: FloatArray, window: Window) -> LocalFit:
     """
     basis, means, scale = _blocks(x, y, window)
     q, r = np.linalg.qr(basis)
-    coefficients = np.linalg.solve(r, q.T @ means)
+    inverse = np.linalg.pinv(r)  # few different x bear fewer powers
+    coefficients = inverse @ (q.T @ means)
     residual = means - basis @ coefficients
     freedom = means.size - coefficients.size
     few = freedom / (freedom - 2.0) if freedom > 4 else 3.0
     variance = few * float(residual @ residual) / max(freedom, 1)
-    inverse = np.linalg.inv(r)
     return LocalFit(window.centre, scale, coefficients, variance * inverse @ inverse.T)
 
 
@@ -244,7 +261,8 @@ def _blocks(x: FloatArray, y: FloatArray, window: Window) -> tuple[FloatArray, F
     scale = max(float(np.abs(t).max()), 1e-300)
     t = t / scale
     n = t.size
-    edges = np.arange(min(n, _BLOCKS)) * n // min(n, _BLOCKS)
+    count = min(max(n // window.least_block, window.order + 1), n, _BLOCKS)
+    edges = np.arange(count) * n // count
     root = np.sqrt(np.diff(np.append(edges, n)))
     power = np.ones(n)
     columns = []
@@ -262,6 +280,6 @@ def _needs_more(x: FloatArray, y: FloatArray, window: Window) -> bool:
     residual = means - q @ part
     rest = float(residual @ residual) / (means.size - part.size)
     rounding = float(np.finfo(float).eps ** 2 * (means @ means))
-    noise = point_noise(residual) ** 2 if means.size >= _ENOUGH else rest
+    noise = roughness(residual) ** 2 if means.size >= _ENOUGH else rest
     noise = max(noise, rounding)
     return float(part[-2:] @ part[-2:]) / 2.0 > _FURTHER * noise or rest > _ROUGH * noise

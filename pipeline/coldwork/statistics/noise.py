@@ -1,5 +1,6 @@
 """How noisy a series of points is, read off the series itself."""
 
+from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -7,23 +8,92 @@ from numpy.typing import ArrayLike, NDArray
 
 from coldwork.guards import finite
 
-__all__ = ["long_run_ratio", "point_noise"]
+__all__ = ["Noise", "long_run_ratio", "noise_of", "point_noise", "roughness"]
 
 _KEPT: Final = 0.95  # of the differences, the smallest; jumps and corners are in the rest [1]
 _SHARE: Final = 0.7588416  # of the variance of a normal that its inner 95 % carry [1]
 _WEIGHTS: Final = 20.0  # 1 + 9 + 9 + 1: variance of a third difference over that of a point [1]
 _REPEATS: Final = 0.3  # share of equal neighbours from which the steps of the reading show [1]
+_GROWS: Final = 1.15  # factor by which the estimate may rise when the lag is doubled
+_LONGEST: Final = 32  # lag that is tried, and its double
+_ROOM: Final = 20  # lags that a series must hold
 _BATCHES: Final = 20  # stretches that `long_run_ratio` compares
 _SIGNIFICANT: Final = 1.6  # chi-squared over its 19 degrees of freedom exceeds it in 5 % [1]
 
 
+@dataclass(frozen=True)
+class Noise:
+    """The noise of a series.
+
+    Attributes
+    ----------
+    sd : float
+        Standard deviation of one point. [unit of the series]
+    alike : int
+        Over how many points the noise is alike, as a filter leaves it; 1 where every point
+        has noise of its own.
+    long_run : float
+        Variance of a mean of many points over what it would be if they were independent.
+    """
+
+    sd: float
+    alike: int
+    long_run: float
+
+
+def noise_of(series: ArrayLike) -> Noise:
+    r"""Estimate the noise about the smooth course of a series.
+
+    From third differences over a lag d, in which a course that is smooth over 3 d points
+    leaves nothing; the largest 5 % are left out, so that corners and jumps do not count.
+
+    .. math:: s_d^2 = \overline{(y_{i+3d} - 3 y_{i+2d} + 3 y_{i+d} - y_i)^2} / 20
+
+    The noise of a filter's output shows only from a lag that is longer than its memory:
+    the lag is doubled until the estimate no longer grows. Where it never stops growing
+    it is the course that is seen, and lag 1 counts.
+
+    Parameters
+    ----------
+    series : array_like, shape (n,)
+        Points in their order. [any unit]
+
+    Returns
+    -------
+    Noise
+        Where the reading moves in steps, the standard deviation is at least the step over
+        root 12; 0 for fewer than 8 points.
+
+    Raises
+    ------
+    InvalidArgument
+        If a point is infinite.
+
+    References
+    ----------
+    Gasser, Sroka and Jennen-Steinmetz, Biometrika 73 (1986) 625-633,
+    doi:10.2307/2336527 (idea, second differences); Herrmann, Gasser and Kneip, Biometrika
+    79 (1992) 783-795, doi:10.1093/biomet/79.4.783 (correlated noise, by lags);
+    step / sqrt(12): JCGM 100:2008, F.2.2.1.
+    """
+    y = finite("series", series)
+    y = y[np.isfinite(y)]
+    if y.size < 8:
+        return Noise(0.0, 1, 1.0)
+    alike, sd = _plateau(y)
+    long_run = 1.0
+    length = 4 * alike
+    if alike > 1 and sd > 0.0:
+        means = y[: y.size // length * length].reshape(-1, length).mean(axis=1)
+        long_run = max(1.0, length * (_third(means, 1) / sd) ** 2)
+    steps = np.abs(np.diff(y))
+    if np.mean(steps == 0.0) > _REPEATS and steps.any():
+        sd = max(sd, float(steps[steps > 0.0].min()) / np.sqrt(12.0))
+    return Noise(sd, alike, long_run)
+
+
 def point_noise(series: ArrayLike) -> float:
-    r"""Estimate the standard deviation of one point about the smooth course of a series.
-
-    From third differences, in which a course that is smooth over four points leaves
-    nothing; the largest 5 % are left out, so that corners and jumps do not count.
-
-    .. math:: s^2 = \frac{\overline{(\Delta^3 y)^2}}{20}
+    """Estimate the standard deviation of one point [unit of `series`], as `noise_of` does.
 
     Parameters
     ----------
@@ -33,36 +103,43 @@ def point_noise(series: ArrayLike) -> float:
     Returns
     -------
     float
-        Standard deviation; where the reading moves in steps, at least the step over
-        root 12; 0 for fewer than 8 points. [unit of `series`]
+        Standard deviation. [unit of `series`]
 
     Raises
     ------
     InvalidArgument
         If a point is infinite.
-
-    Notes
-    -----
-    For noise that is independent from point to point. A filtered signal looks better
-    than it is: see `long_run_ratio`.
-
-    References
-    ----------
-    Gasser, Sroka and Jennen-Steinmetz, Biometrika 73 (1986) 625-633,
-    doi:10.2307/2336527 (idea, second differences); step / sqrt(12): JCGM 100:2008, F.2.2.1.
     """
-    y = finite("series", series)
-    y = y[np.isfinite(y)]
-    if y.size < 8:
+    return noise_of(series).sd
+
+
+def roughness(series: NDArray[np.float64]) -> float:
+    """Estimate the noise [unit of `series`] of points that are independent: lag 1 alone."""
+    return _third(series, 1)
+
+
+def _plateau(y: NDArray[np.float64]) -> tuple[int, float]:
+    """Find the lag from which the estimate no longer grows, and the estimate there."""
+    first = here = _third(y, 1)
+    lag = 1
+    while lag <= _LONGEST and _ROOM * 2 * lag < y.size:
+        further = _third(y, 2 * lag)
+        if further <= _GROWS * here:
+            return lag, here
+        lag, here = 2 * lag, further
+    return 1, first
+
+
+def _third(y: NDArray[np.float64], lag: int) -> float:
+    """Take the standard deviation from third differences over a lag, the largest 5 % left out."""
+    d = y[lag:] - y[:-lag]
+    d = d[lag:] - d[:-lag]
+    squares = (d[lag:] - d[:-lag]) ** 2
+    if squares.size == 0:
         return 0.0
-    squares = np.diff(y, 3) ** 2
     kept = max(1, int(_KEPT * squares.size))
     inner = np.partition(squares, kept - 1)[:kept]
-    noise = float(np.sqrt(inner.mean() / (_WEIGHTS * _SHARE)))
-    steps = np.abs(np.diff(y))
-    if np.mean(steps == 0.0) > _REPEATS and steps.any():
-        noise = max(noise, float(steps[steps > 0.0].min()) / np.sqrt(12.0))
-    return noise
+    return float(np.sqrt(inner.mean() / (_WEIGHTS * _SHARE)))
 
 
 def long_run_ratio(residuals: ArrayLike) -> float:

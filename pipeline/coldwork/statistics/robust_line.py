@@ -1,6 +1,6 @@
 """A straight line through points that are noisy in both coordinates, outliers held down."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -56,6 +56,7 @@ def robust_line(
     noise_x: float = 0.0,
     noise_y: float = 0.0,
     slope: float | None = None,
+    long_run: float = 1.0,
 ) -> Line:
     r"""Fit a line whose slope does not suffer from noise in x, by Huber's weights.
 
@@ -71,6 +72,9 @@ def robust_line(
         ordinary regression of y. [those units]
     slope : float, optional
         Held fixed, so that only the intercept is fitted. [unit of y over unit of x]
+    long_run : float
+        Variance of a mean of many points over that of independent ones, where it is known
+        to be above 1; the residuals may show still more.
 
     Returns
     -------
@@ -111,7 +115,9 @@ def robust_line(
         before = line[1] if slope is None else before
         weight = _FULL_WEIGHT / np.maximum(np.abs(residual) / scale, _FULL_WEIGHT)
     residual = b - line[0] - line[1] * a
-    return _with_covariance(a, residual, weight, line, noise_x, slope is None)
+    variance_ratio = max(long_run, long_run_ratio(residual))
+    found = _with_covariance(a, residual, weight, line, noise_x, slope is None)
+    return replace(found, covariance=found.covariance * variance_ratio)
 
 
 def _weighted(
@@ -124,7 +130,8 @@ def _weighted(
         dx, dy = x - mean_x, y - mean_y
         xx, yy, xy = weight @ dx**2, weight @ dy**2, weight @ (dx * dy)
         d = xx - yy * ratio
-        slope = float(2.0 * xy / (d + np.sqrt(d**2 + 4.0 * xy**2 * ratio)))
+        reach = float(d + np.sqrt(d**2 + 4.0 * xy**2 * ratio))
+        slope = float(2.0 * xy) / reach if reach > 0.0 else 0.0
     return mean_y - slope * mean_x, slope
 
 
@@ -142,7 +149,7 @@ def _with_covariance(
     inner = float(np.mean(weight == 1.0))  # mean derivative of Huber's function
     variance = float(pulled @ pulled) / max(freedom, 1) / max(inner, 0.5) ** 2
     few = freedom / (freedom - 2.0) if freedom > 4 else 3.0
-    size = variance * few * long_run_ratio(residual)
+    size = variance * few
     mean = float(x.mean())
     spread = float(((x - mean) ** 2).sum())
     spread = max(spread - n * noise_x**2, 0.5 * spread)  # of the points without their noise
