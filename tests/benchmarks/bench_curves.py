@@ -58,7 +58,11 @@ def curve(start: float, points: int, seed: int) -> tuple[FloatArray, FloatArray,
     e = np.concatenate([elastic, np.expm1(total)])
     random = np.random.default_rng(seed)
     force = s * AREA + 0.5 * random.standard_normal(s.size)
-    return 0.02 * np.arange(s.size, dtype=np.float64), force, e * LENGTH + 1e-4 * random.standard_normal(s.size)
+    return (
+        0.02 * np.arange(s.size, dtype=np.float64),
+        force,
+        e * LENGTH + 1e-4 * random.standard_normal(s.size),
+    )
 
 
 def batch(folder: Path, name: str, coupons: int, points: int) -> Path:

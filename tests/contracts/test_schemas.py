@@ -24,18 +24,38 @@ NAMED = [
     "stored_energy_j_per_mol",
     "stored_energy_j_per_g",
 ]
-OF_A_CURVE = (
-    "slope_gpa toe_strain proof_stress_0_2_mpa upper_yield_mpa lower_yield_mpa yield_elongation "
-    "tensile_strength_mpa uniform_elongation elongation_at_maximum_force uniform_plastic_strain "
-    "work_to_uniform_strain_j_per_m3 initial_hardening_mpa saturation_stress_mpa "
-    "hardening_at_zero_stress_mpa stress_at_zero_hardening_mpa voce_yield_stress_mpa "
-    "voce_saturation_stress_mpa voce_initial_hardening_mpa hollomon_coefficient_mpa "
-    "hollomon_exponent neck_stress_mpa"
-).split()
-ALONG_THE_STRAIN = (
-    "flow_stress_mpa dislocation_stress_mpa dislocation_density_per_m2 stored_energy_j_per_m3 "
-    "stored_energy_j_per_g plastic_work_j_per_m3 stored_fraction_of_work"
-).split()
+OF_A_CURVE = [
+    "slope_gpa",
+    "toe_strain",
+    "proof_stress_0_2_mpa",
+    "upper_yield_mpa",
+    "lower_yield_mpa",
+    "yield_elongation",
+    "tensile_strength_mpa",
+    "uniform_elongation",
+    "elongation_at_maximum_force",
+    "uniform_plastic_strain",
+    "work_to_uniform_strain_j_per_m3",
+    "initial_hardening_mpa",
+    "saturation_stress_mpa",
+    "hardening_at_zero_stress_mpa",
+    "stress_at_zero_hardening_mpa",
+    "voce_yield_stress_mpa",
+    "voce_saturation_stress_mpa",
+    "voce_initial_hardening_mpa",
+    "hollomon_coefficient_mpa",
+    "hollomon_exponent",
+    "neck_stress_mpa",
+]
+ALONG_THE_STRAIN = [
+    "flow_stress_mpa",
+    "dislocation_stress_mpa",
+    "dislocation_density_per_m2",
+    "stored_energy_j_per_m3",
+    "stored_energy_j_per_g",
+    "plastic_work_j_per_m3",
+    "stored_fraction_of_work",
+]
 # Written out from the design of the tables, not read from the schemas.
 COLUMNS = {
     "in/coupons": "coupon_id lot_id condition prior_true_strain prior_plastic_work_j_per_m3 "
@@ -73,7 +93,8 @@ COLUMNS = {
     "file line detail",
     "out/decisions": "coupon_id limit_id quantity value u lower_limit upper_limit bound rule basis "
     "coverage probability decision reason",
-    "out/tensile": "coupon_id lot_id condition mode strain_from file first_line last_line points_used "
+    "out/tensile": "coupon_id lot_id condition mode strain_from file first_line last_line "
+    "points_used "
     "points_set_aside slope_gpa toe_strain proof_stress_0_2_mpa upper_yield_mpa lower_yield_mpa "
     "yield_elongation tensile_strength_mpa tensile_strength_bias_mpa uniform_elongation "
     "elongation_at_maximum_force uniform_plastic_strain work_to_uniform_strain_j_per_m3 "

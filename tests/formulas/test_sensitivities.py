@@ -102,216 +102,222 @@ UNWINDING = {
 BALL = {"hardness": STRESS, "force": FORCE, "ball": LENGTH}
 BALL_POINTS = ((2.29e9, 29420.0, 10e-3), (4.2e8, 612.9, 2.5e-3), (1.1e8, 306.5, 2.5e-3))
 
-CASES: dict[str, Case] = {
-    "vickers_hardness": Case(
-        vickers_hardness,
-        {"force": FORCE, "diagonal_1": LENGTH, "diagonal_2": LENGTH},
-        STRESS,
-        ((9.807, 100e-6, 104e-6), (98.07, 0.31e-3, 0.29e-3), (0.0981, 7.5e-6, 8e-6)),
-    ),
-    "vickers_diagonal": Case(
-        lambda force, hardness: mpmath.sqrt(force / hardness / pyramid_contact_area(1)),
-        {"force": FORCE, "hardness": STRESS},
-        LENGTH,
-        ((9.807, 1.2e9), (294.2, 8e9)),
-    ),
-    "knoop_hardness": Case(
-        lambda force, long_diagonal: force / knoop_area(long_diagonal),
-        {"force": FORCE, "long_diagonal": LENGTH},
-        STRESS,
-        ((0.9807, 80e-6), (4.903, 210e-6)),
-    ),
-    "knoop_diagonal": Case(
-        lambda force, hardness: mpmath.sqrt(force / hardness / knoop_area(1)),
-        {"force": FORCE, "hardness": STRESS},
-        LENGTH,
-        ((0.9807, 1.2e9), (4.903, 8e9)),
-    ),
-    "brinell_hardness": Case(
-        brinell_hardness,
-        {"force": FORCE, "diameter_1": LENGTH, "diameter_2": LENGTH, "ball": LENGTH},
-        STRESS,
-        ((29420.0, 4e-3, 4.1e-3, 10e-3), (306.5, 0.71e-3, 0.7e-3, 2.5e-3)),
-    ),
-    "brinell_diameter": Case(
-        lambda force, hardness, ball: cap_diameter(force, hardness, ball),
-        {"force": FORCE, "hardness": STRESS, "ball": LENGTH},
-        LENGTH,
-        ((29420.0, 2.29e9, 10e-3), (306.5, 1.1e8, 2.5e-3)),
-    ),
-    "projected_pressure": Case(
-        lambda hardness: hardness * pyramid_contact_area(1) / (mpf(1) / 2),
-        {"hardness": STRESS},
-        STRESS,
-        ((1.2e9,), (8e9,)),
-    ),
-    "brinell_projected_pressure": Case(
-        lambda hardness, force, ball: (
-            4 * force / (mpmath.pi * cap_diameter(force, hardness, ball) ** 2)
+CASES: dict[str, Case] = (
+    {
+        "vickers_hardness": Case(
+            vickers_hardness,
+            {"force": FORCE, "diagonal_1": LENGTH, "diagonal_2": LENGTH},
+            STRESS,
+            ((9.807, 100e-6, 104e-6), (98.07, 0.31e-3, 0.29e-3), (0.0981, 7.5e-6, 8e-6)),
         ),
-        BALL,
-        STRESS,
-        BALL_POINTS,
-    ),
-    "brinell_strain": Case(
-        lambda hardness, force, ball, strain_ratio: (
-            strain_ratio * cap_diameter(force, hardness, ball) / ball
+        "vickers_diagonal": Case(
+            lambda force, hardness: mpmath.sqrt(force / hardness / pyramid_contact_area(1)),
+            {"force": FORCE, "hardness": STRESS},
+            LENGTH,
+            ((9.807, 1.2e9), (294.2, 8e9)),
         ),
-        BALL | {"strain_ratio": ONE},
-        ONE,
-        tuple((*point, 0.2) for point in BALL_POINTS),
-    ),
-    "tabor_flow_stress": Case(
-        lambda pressure, intercept, constraint_factor: (
-            pressure / constraint_factor - intercept / constraint_factor
+        "knoop_hardness": Case(
+            lambda force, long_diagonal: force / knoop_area(long_diagonal),
+            {"force": FORCE, "long_diagonal": LENGTH},
+            STRESS,
+            ((0.9807, 80e-6), (4.903, 210e-6)),
         ),
-        {"pressure": STRESS, "intercept": STRESS, "constraint_factor": ONE},
-        STRESS,
-        ((1.2e9, 3e7, 3.0), (5e8, -2e8, 2.8), (9e8, 0.0, 2.5)),
-        sign_is_free=frozenset({"intercept"}),
-    ),
-    "hall_petch_stress": Case(
-        lambda grain_size, coefficient: coefficient * grain_size ** (-mpf(1) / 2),
-        {"grain_size": LENGTH, "coefficient": (1, -0.5, -2, 0, 0)},
-        STRESS,
-        ((25e-6, 0.74e6), (3e-6, 0.11e6)),
-        zero_is_fine=frozenset({"coefficient"}),
-    ),
-    "taylor_density": Case(
-        lambda stress, taylor_factor, coefficient, shear_modulus, burgers_vector: (
-            stress**2 / (taylor_factor * coefficient * shear_modulus * burgers_vector) ** 2
+        "knoop_diagonal": Case(
+            lambda force, hardness: mpmath.sqrt(force / hardness / knoop_area(1)),
+            {"force": FORCE, "hardness": STRESS},
+            LENGTH,
+            ((0.9807, 1.2e9), (4.903, 8e9)),
         ),
-        {"stress": STRESS} | TAYLOR,
-        DENSITY,
-        ((250e6, *TAYLOR_POINT), (12e6, 2.75, 0.25, 82e9, 0.2482e-9)),
-    ),
-    "taylor_density_from_slope": Case(
-        lambda stress, slope: stress**2 / slope**2,
-        {"stress": STRESS, "slope": PER_LENGTH},
-        DENSITY,
-        ((180e6, 18.0), (7e8, 9.5)),
-    ),
-    "taylor_stress": Case(
-        lambda density, taylor_factor, coefficient, shear_modulus, burgers_vector: (
-            taylor_factor * coefficient * shear_modulus * burgers_vector * mpmath.sqrt(density)
+        "brinell_hardness": Case(
+            brinell_hardness,
+            {"force": FORCE, "diameter_1": LENGTH, "diameter_2": LENGTH, "ball": LENGTH},
+            STRESS,
+            ((29420.0, 4e-3, 4.1e-3, 10e-3), (306.5, 0.71e-3, 0.7e-3, 2.5e-3)),
         ),
-        {"density": DENSITY} | TAYLOR,
-        STRESS,
-        ((1e15, *TAYLOR_POINT), (3e12, 2.75, 0.25, 82e9, 0.2482e-9)),
-    ),
-    "taylor_stress_from_slope": Case(
-        lambda density, slope: slope * mpmath.sqrt(density),
-        {"density": DENSITY, "slope": PER_LENGTH},
-        STRESS,
-        ((1e14, 18.0), (4e15, 9.5)),
-    ),
-    "mean_spacing": Case(
-        lambda density: density ** (-mpf(1) / 2),
-        {"density": DENSITY},
-        LENGTH,
-        ((1e14,), (3e10,), (9e16,)),
-    ),
-    "unwound_stress": Case(
-        lambda stress, initial_hardening, saturation_stress, strain: (
-            saturation_stress
-            + (stress - saturation_stress)
-            * mpmath.exp(initial_hardening * strain / saturation_stress)
+        "brinell_diameter": Case(
+            lambda force, hardness, ball: cap_diameter(force, hardness, ball),
+            {"force": FORCE, "hardness": STRESS, "ball": LENGTH},
+            LENGTH,
+            ((29420.0, 2.29e9, 10e-3), (306.5, 1.1e8, 2.5e-3)),
         ),
-        UNWINDING,
-        STRESS,
-        (
-            (180e6, 1.7e9, 320e6, 0.08),
-            (-40e6, 1.7e9, 320e6, 0.08),
-            (319e6, 2.5e9, 320e6, 0.02),
-            (90e6, 1.2e9, 1e12, 0.08),
+        "projected_pressure": Case(
+            lambda hardness: hardness * pyramid_contact_area(1) / (mpf(1) / 2),
+            {"hardness": STRESS},
+            STRESS,
+            ((1.2e9,), (8e9,)),
         ),
-        zero_is_fine=frozenset({"strain"}),
-        sign_is_free=frozenset({"stress"}),
-    ),
-    "energy_factor": Case(
-        lambda shear_modulus, poisson_ratio, mean_cos2: (
-            mean_cos2 * shear_modulus + (1 - mean_cos2) * shear_modulus / (1 - poisson_ratio)
+        "brinell_projected_pressure": Case(
+            lambda hardness, force, ball: (
+                4 * force / (mpmath.pi * cap_diameter(force, hardness, ball) ** 2)
+            ),
+            BALL,
+            STRESS,
+            BALL_POINTS,
         ),
-        {"shear_modulus": STRESS, "poisson_ratio": ONE, "mean_cos2": ONE},
-        STRESS,
-        ((42.1e9, 0.343, 0.5), (82e9, 0.29, 0.1), (27e9, 0.44, 0.97)),
-        zero_is_fine=frozenset({"mean_cos2", "poisson_ratio"}),
-        sign_is_free=frozenset({"poisson_ratio"}),
-    ),
-    "core_radius": Case(
-        lambda multiple, burgers_vector: multiple * burgers_vector,
-        {"multiple": ONE, "burgers_vector": LENGTH},
-        LENGTH,
-        ((1.0, 0.256e-9), (0.25, 0.286e-9)),
-    ),
-    "outer_radius": Case(
-        lambda length, factor: length * factor,
-        {"length": LENGTH, "factor": ONE},
-        LENGTH,
-        ((1e-7, 1.0), (25e-6, 0.5)),
-    ),
-    "line_energy": Case(
-        line_energy,
-        {
-            "energy_factor": STRESS,
-            "burgers_vector": LENGTH,
-            "outer_radius": LENGTH,
-            "core_radius": LENGTH,
-            "shear_modulus": STRESS,
-            "core_energy": ONE,
-        },
-        LINE,
-        (
-            (53e9, 0.256e-9, 1e-7, 0.256e-9, 42e9, 0.05),
-            (53e9, 0.256e-9, 1e-6, 0.6e-9, 42e9, 0.0),
-            (80e9, 0.248e-9, 2e-9, 0.5e-9, 82e9, -0.02),
+        "brinell_strain": Case(
+            lambda hardness, force, ball, strain_ratio: (
+                strain_ratio * cap_diameter(force, hardness, ball) / ball
+            ),
+            BALL | {"strain_ratio": ONE},
+            ONE,
+            tuple((*point, 0.2) for point in BALL_POINTS),
         ),
-        sign_is_free=frozenset({"core_energy"}),
-    ),
-    "line_energy_rule_of_thumb": Case(
-        lambda shear_modulus, burgers_vector: shear_modulus * burgers_vector**2 / 2,
-        {"shear_modulus": STRESS, "burgers_vector": LENGTH},
-        LINE,
-        ((42.1e9, 0.256e-9), (82e9, 0.248e-9)),
-    ),
-    "stored_energy": Case(
-        lambda density, line_energy: density * line_energy,
-        {"density": DENSITY, "line_energy": LINE},
-        STRESS,
-        ((1e15, 1.4e-9), (2e12, 3e-9)),
-        zero_is_fine=frozenset({"density"}),
-    ),
-    "stored_energy_molar": Case(
-        lambda stored_energy, molar_mass, mass_density: stored_energy * (molar_mass / mass_density),
-        {"stored_energy": STRESS, "molar_mass": MOLAR_MASS, "mass_density": MASS_DENSITY},
-        MOLAR,
-        ((1.4e6, 63.546e-3, 8960.0), (3e4, 26.98e-3, 2699.0)),
-        zero_is_fine=frozenset({"stored_energy"}),
-    ),
-    "stored_energy_specific": Case(
-        lambda stored_energy, mass_density: stored_energy / mass_density,
-        {"stored_energy": STRESS, "mass_density": MASS_DENSITY},
-        SPECIFIC,
-        ((1.4e6, 8960.0), (3e4, 2699.0)),
-        zero_is_fine=frozenset({"stored_energy"}),
-    ),
-    "temperature_rise": Case(
-        lambda stored_energy, mass_density, heat_capacity: (
-            stored_energy / mass_density / heat_capacity
+        "tabor_flow_stress": Case(
+            lambda pressure, intercept, constraint_factor: (
+                pressure / constraint_factor - intercept / constraint_factor
+            ),
+            {"pressure": STRESS, "intercept": STRESS, "constraint_factor": ONE},
+            STRESS,
+            ((1.2e9, 3e7, 3.0), (5e8, -2e8, 2.8), (9e8, 0.0, 2.5)),
+            sign_is_free=frozenset({"intercept"}),
         ),
-        {"stored_energy": STRESS, "mass_density": MASS_DENSITY, "heat_capacity": HEAT},
-        KELVIN,
-        ((1.4e6, 8960.0, 385.0), (3e4, 2699.0, 897.0)),
-        zero_is_fine=frozenset({"stored_energy"}),
-    ),
-    "stored_fraction": Case(
-        lambda stored_energy, plastic_work: stored_energy / plastic_work,
-        {"stored_energy": STRESS, "plastic_work": STRESS},
-        ONE,
-        ((1.4e6, 3e7), (6e6, 1.6e8)),
-        zero_is_fine=frozenset({"stored_energy"}),
-    ),
-} | PHYSICS | TENSILE
+        "hall_petch_stress": Case(
+            lambda grain_size, coefficient: coefficient * grain_size ** (-mpf(1) / 2),
+            {"grain_size": LENGTH, "coefficient": (1, -0.5, -2, 0, 0)},
+            STRESS,
+            ((25e-6, 0.74e6), (3e-6, 0.11e6)),
+            zero_is_fine=frozenset({"coefficient"}),
+        ),
+        "taylor_density": Case(
+            lambda stress, taylor_factor, coefficient, shear_modulus, burgers_vector: (
+                stress**2 / (taylor_factor * coefficient * shear_modulus * burgers_vector) ** 2
+            ),
+            {"stress": STRESS} | TAYLOR,
+            DENSITY,
+            ((250e6, *TAYLOR_POINT), (12e6, 2.75, 0.25, 82e9, 0.2482e-9)),
+        ),
+        "taylor_density_from_slope": Case(
+            lambda stress, slope: stress**2 / slope**2,
+            {"stress": STRESS, "slope": PER_LENGTH},
+            DENSITY,
+            ((180e6, 18.0), (7e8, 9.5)),
+        ),
+        "taylor_stress": Case(
+            lambda density, taylor_factor, coefficient, shear_modulus, burgers_vector: (
+                taylor_factor * coefficient * shear_modulus * burgers_vector * mpmath.sqrt(density)
+            ),
+            {"density": DENSITY} | TAYLOR,
+            STRESS,
+            ((1e15, *TAYLOR_POINT), (3e12, 2.75, 0.25, 82e9, 0.2482e-9)),
+        ),
+        "taylor_stress_from_slope": Case(
+            lambda density, slope: slope * mpmath.sqrt(density),
+            {"density": DENSITY, "slope": PER_LENGTH},
+            STRESS,
+            ((1e14, 18.0), (4e15, 9.5)),
+        ),
+        "mean_spacing": Case(
+            lambda density: density ** (-mpf(1) / 2),
+            {"density": DENSITY},
+            LENGTH,
+            ((1e14,), (3e10,), (9e16,)),
+        ),
+        "unwound_stress": Case(
+            lambda stress, initial_hardening, saturation_stress, strain: (
+                saturation_stress
+                + (stress - saturation_stress)
+                * mpmath.exp(initial_hardening * strain / saturation_stress)
+            ),
+            UNWINDING,
+            STRESS,
+            (
+                (180e6, 1.7e9, 320e6, 0.08),
+                (-40e6, 1.7e9, 320e6, 0.08),
+                (319e6, 2.5e9, 320e6, 0.02),
+                (90e6, 1.2e9, 1e12, 0.08),
+            ),
+            zero_is_fine=frozenset({"strain"}),
+            sign_is_free=frozenset({"stress"}),
+        ),
+        "energy_factor": Case(
+            lambda shear_modulus, poisson_ratio, mean_cos2: (
+                mean_cos2 * shear_modulus + (1 - mean_cos2) * shear_modulus / (1 - poisson_ratio)
+            ),
+            {"shear_modulus": STRESS, "poisson_ratio": ONE, "mean_cos2": ONE},
+            STRESS,
+            ((42.1e9, 0.343, 0.5), (82e9, 0.29, 0.1), (27e9, 0.44, 0.97)),
+            zero_is_fine=frozenset({"mean_cos2", "poisson_ratio"}),
+            sign_is_free=frozenset({"poisson_ratio"}),
+        ),
+        "core_radius": Case(
+            lambda multiple, burgers_vector: multiple * burgers_vector,
+            {"multiple": ONE, "burgers_vector": LENGTH},
+            LENGTH,
+            ((1.0, 0.256e-9), (0.25, 0.286e-9)),
+        ),
+        "outer_radius": Case(
+            lambda length, factor: length * factor,
+            {"length": LENGTH, "factor": ONE},
+            LENGTH,
+            ((1e-7, 1.0), (25e-6, 0.5)),
+        ),
+        "line_energy": Case(
+            line_energy,
+            {
+                "energy_factor": STRESS,
+                "burgers_vector": LENGTH,
+                "outer_radius": LENGTH,
+                "core_radius": LENGTH,
+                "shear_modulus": STRESS,
+                "core_energy": ONE,
+            },
+            LINE,
+            (
+                (53e9, 0.256e-9, 1e-7, 0.256e-9, 42e9, 0.05),
+                (53e9, 0.256e-9, 1e-6, 0.6e-9, 42e9, 0.0),
+                (80e9, 0.248e-9, 2e-9, 0.5e-9, 82e9, -0.02),
+            ),
+            sign_is_free=frozenset({"core_energy"}),
+        ),
+        "line_energy_rule_of_thumb": Case(
+            lambda shear_modulus, burgers_vector: shear_modulus * burgers_vector**2 / 2,
+            {"shear_modulus": STRESS, "burgers_vector": LENGTH},
+            LINE,
+            ((42.1e9, 0.256e-9), (82e9, 0.248e-9)),
+        ),
+        "stored_energy": Case(
+            lambda density, line_energy: density * line_energy,
+            {"density": DENSITY, "line_energy": LINE},
+            STRESS,
+            ((1e15, 1.4e-9), (2e12, 3e-9)),
+            zero_is_fine=frozenset({"density"}),
+        ),
+        "stored_energy_molar": Case(
+            lambda stored_energy, molar_mass, mass_density: (
+                stored_energy * (molar_mass / mass_density)
+            ),
+            {"stored_energy": STRESS, "molar_mass": MOLAR_MASS, "mass_density": MASS_DENSITY},
+            MOLAR,
+            ((1.4e6, 63.546e-3, 8960.0), (3e4, 26.98e-3, 2699.0)),
+            zero_is_fine=frozenset({"stored_energy"}),
+        ),
+        "stored_energy_specific": Case(
+            lambda stored_energy, mass_density: stored_energy / mass_density,
+            {"stored_energy": STRESS, "mass_density": MASS_DENSITY},
+            SPECIFIC,
+            ((1.4e6, 8960.0), (3e4, 2699.0)),
+            zero_is_fine=frozenset({"stored_energy"}),
+        ),
+        "temperature_rise": Case(
+            lambda stored_energy, mass_density, heat_capacity: (
+                stored_energy / mass_density / heat_capacity
+            ),
+            {"stored_energy": STRESS, "mass_density": MASS_DENSITY, "heat_capacity": HEAT},
+            KELVIN,
+            ((1.4e6, 8960.0, 385.0), (3e4, 2699.0, 897.0)),
+            zero_is_fine=frozenset({"stored_energy"}),
+        ),
+        "stored_fraction": Case(
+            lambda stored_energy, plastic_work: stored_energy / plastic_work,
+            {"stored_energy": STRESS, "plastic_work": STRESS},
+            ONE,
+            ((1.4e6, 3e7), (6e6, 1.6e8)),
+            zero_is_fine=frozenset({"stored_energy"}),
+        ),
+    }
+    | PHYSICS
+    | TENSILE
+)
 
 
 def formulas() -> dict[str, tuple[str, Formula]]:
