@@ -25,7 +25,7 @@ def contents(folder: Path) -> dict[str, bytes]:
     return {
         path.relative_to(folder).as_posix(): path.read_bytes()
         for path in folder.rglob("*")
-        if path.is_file() and path.relative_to(folder).parts[0] not in CODE
+        if path.is_file() and path.relative_to(folder).parts[0] not in {*CODE, "pictures"}
     }
 
 
