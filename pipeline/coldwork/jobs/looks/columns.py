@@ -36,7 +36,7 @@ _WORDS: Final[Mapping[str, str]] = {  # our column: what its names look like
     "flow_stress_mpa": r"(true |flow )?stress",
     "strain_rate_per_s": r"(strain )?rate",
     "time_s": r"time|t|zeit|clock",
-    "extension_mm": r"ext(ension|ensometer)?.*|gauge.*",
+    "extension_mm": r"ext(ension|ensometer)?.*|gauge.*|stretch.*",
     "crosshead_mm": r"crosshead.*|travel|stroke|traverse.*",
     "stress_mpa": r"stress|sigma",
     "strain": r"strain|epsilon",
