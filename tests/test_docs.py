@@ -171,7 +171,11 @@ def test_python_prints_what_the_readme_says(folder: Path) -> None:
 
 def test_the_sheet_and_the_layout_of_the_readme_are_those_of_the_samples() -> None:
     shown = [tomllib.loads(body) for kind, body in BLOCKS if kind == "toml"]
-    samples = ("copper-strip/batch.toml", "copper-benches/layouts/bench-1.toml")
+    samples = (
+        "copper-strip/batch.toml",
+        "copper-benches/layouts/bench-1.toml",
+        "copper-tension/batch.toml",
+    )
     for some, sample in zip(shown, samples, strict=True):
         whole = tomllib.loads((ROOT / "sample_data" / sample).read_text(encoding="utf-8"))
         for section, keys in some.items():

@@ -262,8 +262,8 @@ def _standing(test: _Test) -> _Test:
 def _serrated(test: _Test) -> _Test:
     stress = test.stress.copy()
     place = np.arange(stress.size)
-    on = (place > 540) & (place < 840)
-    stress[on] *= 1.0 - 0.012 * (1.0 - (place[on] % 30) / 30.0)
+    on = (place > 540) & (place < 960)
+    stress[on] *= 1.0 - 0.02 * (1.0 - (place[on] % 60) / 60.0)
     return replace(test, stress=stress)
 
 
@@ -310,7 +310,7 @@ _CHANGES: Final[tuple[tuple[tuple[str, ...], str, Change, int], ...]] = (
     (("time-backward",), "the clock was set back by 3 s", _backward, 179),
     (("time-standing",), "thirty points of one time", _standing, 160),
     (("unloading-loop",), "unloaded by six tenths and loaded again", _loop, 700),
-    (("serrations",), "ten drops by 1 %", _serrated, 540),
+    (("serrations",), "seven drops by 2 %", _serrated, 540),
     (("lueders-plateau",), "a plateau of 1.5 %", _plateau, 80),
     (("no-maximum",), "stopped while the force still rose", lambda test: _cut(test, 190), 0),
     (

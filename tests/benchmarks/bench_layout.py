@@ -14,7 +14,7 @@ import sys
 import tempfile
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Final
+from typing import Final, cast
 
 import numpy as np
 import pyarrow as pa
@@ -140,7 +140,7 @@ def write_batch(folder: Path, coupons: int, places: int) -> None:
 def fixed(values: NDArray[np.float64], places: int) -> pa.StringArray:
     """Write numbers below ten with so many decimal places, none left out."""
     units = pa.array(np.round(values * 10**places).astype(np.int64), pa.int64()).cast(pa.string())
-    digits = pc.utf8_lpad(units, places + 1, "0")
+    digits = cast("pa.StringArray", pc.utf8_lpad(units, places + 1, "0"))
     return pc.replace_substring_regex(digits, pattern="^(.)", replacement=r"\1.")
 
 

@@ -11,6 +11,7 @@ from hypothesis import strategies as st
 from coldwork import contracts
 from coldwork.inputs.layout import Filled, Layout
 from coldwork.inputs.layout_units import Step, step_between
+from coldwork.intake.cells import decoded
 from coldwork.intake.converting import Converter
 from coldwork.intake.numbers import parse_floats
 from coldwork.intake.text import REFUSED
@@ -189,8 +190,8 @@ def test_a_whole_column_at_once_gives_the_same_doubles(
     raw = pa.array([cell.replace(".", sign) for cell in cells], pa.string())
     one_by_one, at_once = (converter(layout(sign), column, written) for _ in range(2))
     at_once._many = True  # as in a column of very many distinct cells
-    slow = parse_floats(one_by_one.convert(raw).cells).values
-    fast = parse_floats(at_once.convert(raw).cells).values
+    slow = parse_floats(decoded(one_by_one.convert(raw).cells)).values
+    fast = parse_floats(decoded(at_once.convert(raw).cells)).values
     assert slow.tobytes() == fast.tobytes()
 
 
@@ -219,7 +220,7 @@ def test_only_what_is_declared_stands_for_no_value(
 ) -> None:
     made = converter(layout(",", absent=absent), "x_mm", None)
     assert made.one(cell) == text
-    parsed = parse_floats(made.convert(pa.array([cell, "5"], pa.string())).cells)
+    parsed = parse_floats(decoded(made.convert(pa.array([cell, "5"], pa.string())).cells))
     assert parsed.bad.tolist() == [text == REFUSED, False]
     assert parsed.absent.tolist() == [text == "", False]
 

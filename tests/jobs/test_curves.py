@@ -4,7 +4,7 @@ import csv
 import json
 import tomllib
 from collections.abc import Callable
-from math import log, pi, sqrt
+from math import exp, log, pi, sqrt
 from pathlib import Path
 from typing import Any
 
@@ -404,6 +404,61 @@ def test_a_strain_beyond_the_curve_gives_no_flow_stress(make: Make) -> None:
     assert "no-flow-stress-at-strain" in made["coupons"]["flags"][0]
     assert pd.isna(made["coupons"]["flow_stress_mpa"][0])
     assert pd.notna(made["tensile"]["proof_stress_0_2_mpa"][0])
+
+
+def test_a_stated_slope_is_an_input_like_any_other(make: Make) -> None:
+    slope = "slope_gpa = { value = 118.0, u = 2.0 }\noffsets = [0.002, 0.01]\n"
+    sheet = SHEET.replace("[tensile]\n", f"[tensile]\n{slope}")
+    folder = make(sheet, coupons=[coupon("c0")], curves=rows("c0", Strip(), noise=0.2))
+    made = frames(folder)
+    row = made["tensile"].iloc[0]
+    assert_allclose(row["slope_gpa"], 118.0, rtol=1e-12)
+    assert_allclose(row["u_shared_slope_gpa"], 2.0, rtol=1e-9)
+    inputs = set(made["budget"]["input"])
+    assert "tensile.slope_gpa" in inputs
+    told = record_again(folder, "c0")["curve"]["proof_stresses_mpa"]
+    assert [x["offset"] for x in told] == [0.002, 0.01]
+    assert told[0]["value"] == pytest.approx(row["proof_stress_0_2_mpa"])
+    assert told[1]["value"] > told[0]["value"]
+
+
+def test_a_piece_that_is_pressed(make: Make) -> None:
+    # the section grows: force over S0 is sigma exp(strain); both may be written below zero
+    strip, height, wide = Strip(), 15.0, 10.0
+    area = pi * wide**2 / 4.0
+    elastic = [i * strip.stress(0.0) / 118e3 / 100 for i in range(100)]
+    plastic = [i * 0.25 / 400 for i in range(401)]
+    points = [(118e3 * e, e) for e in elastic]
+    for p in plastic:
+        total = p + strip.stress(p) / 118e3
+        points.append((strip.stress(p) * exp(total), 1.0 - exp(-total)))
+    curves = [
+        {"coupon_id": "c0", "force_n": repr(-s * area), "extension_mm": repr(-e * height)}
+        for s, e in points
+    ]
+    cells = {"gauge_length_mm": height, "initial_diameter_mm": wide}
+    sheet = SHEET.replace('mode = "tension"', 'mode = "compression"')
+    made = frames(make(sheet, coupons=[coupon("c0", **cells)], curves=curves))
+    states = made["evolution"].set_index("test_strain")
+    for strain in (0.05, 0.1):
+        assert_allclose(states.loc[strain, "flow_stress_mpa"], strip.stress(strain), rtol=1e-3)
+        assert_allclose(states.loc[strain, "plastic_work_j_per_m3"], strip.work(strain), rtol=0.01)
+    assert pd.isna(made["tensile"]["uniform_elongation"][0])
+    assert "no-maximum" not in made["tensile"]["flags"][0]
+
+
+def test_a_measured_neck_gives_one_state_more(make: Make) -> None:
+    # Bridgman (1952): mean stress over (1 + 2R/a) ln(1 + a/2R), a the radius of the neck
+    neck = {"final_diameter_mm": 3.6, "neck_radius_mm": 2.0}
+    sheet = SHEET.replace("[tensile]\n", "[tensile]\nbridgman = true\n")
+    curves = rows("c0", Strip())
+    row = frames(make(sheet, coupons=[coupon("c0", **neck)], curves=curves))["tensile"].iloc[0]
+    last = float(str(curves[-1]["force_n"])) / (pi * 1.8**2)
+    factor = 1.0 / ((1.0 + 2.0 * 2.0 / 1.8) * log(1.0 + 1.8 / 4.0))
+    assert_allclose(row["neck_stress_mpa"], last * factor, rtol=5e-3)
+    assert_allclose(row["neck_strain"], 2.0 * log(5.0 / 3.6), rtol=1e-9)
+    plain = frames(make(SHEET, name="plain", coupons=[coupon("c0", **neck)], curves=curves))
+    assert pd.isna(plain["tensile"]["neck_stress_mpa"][0])  # only where it is asked for
 
 
 def refused(folder: Path) -> str:

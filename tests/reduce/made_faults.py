@@ -77,6 +77,20 @@ def grip_slip_by_crosshead(rng: np.random.Generator) -> Made:
     return Made(recorded(STEEL, NOISY, rng, change), BY_CROSSHEAD, FaultKind.GRIP_SLIP)
 
 
+def slow_slip_by_crosshead(rng: np.random.Generator) -> Made:
+    """The jaws creep at one force in the elastic part, and hold again."""
+    size, at = rng.uniform(0.006, 0.02), rng.uniform(0.4, 0.85)
+
+    def change(s: FloatArray, e: FloatArray) -> tuple[FloatArray, FloatArray]:
+        s, e = _through_machine(s, e)
+        place = int(np.searchsorted(s, at * STEEL.slope * STEEL.limit))
+        creep = e[place] + np.linspace(0.0, size, 300)
+        e = np.concatenate([e[: place + 1], creep, e[place + 1 :] + size])
+        return np.insert(s, place + 1, np.full(300, s[place])), e
+
+    return Made(recorded(STEEL, NOISY, rng, change), BY_CROSSHEAD, FaultKind.GRIP_SLIP)
+
+
 def extensometer_slip(rng: np.random.Generator) -> Made:
     """A knife edge jumps along the coupon."""
     size = rng.uniform(0.0006, 0.004) * rng.choice([-1.0, 1.0])
@@ -235,6 +249,7 @@ def no_maximum(rng: np.random.Generator) -> Made:
 PLANTED: Final[Mapping[str, Callable[[np.random.Generator], Made]]] = {
     "grip slip": grip_slip,
     "grip slip, crosshead": grip_slip_by_crosshead,
+    "slow slip, crosshead": slow_slip_by_crosshead,
     "extensometer slip": extensometer_slip,
     "extensometer off": extensometer_off,
     "saturation": saturation,

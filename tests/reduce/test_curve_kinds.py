@@ -11,7 +11,9 @@ from tests.reduce.made_curves import (
     GEOMETRY,
     NOISY,
     STEEL,
+    Metal,
     Plan,
+    Voce,
     points,
     recorded,
 )
@@ -159,6 +161,18 @@ def test_nothing_past_uniform_strain_is_reported_without_it() -> None:
     assert 0.15 < result.uniform_plastic_strain.value < 0.16
     assert [p.strain for p in result.at_strains] == [0.1, 0.15]
     assert result.neck is None
+
+
+def test_a_greatest_force_before_the_proof_stress_is_no_end_before_yield() -> None:
+    # Drawn wire again, without noise: A_g below the offset, R_p0.2 past the greatest force.
+    metal = Metal(118e9, Voce(390e6, 400e6, 3000.0))
+    settings = CurveSettings(reported_strains=(0.001, 0.002))
+    result = reduce_curve(recorded(metal, Plan(end=4.0)), GEOMETRY, settings)
+    assert result.faults == ()
+    assert result.uniform_elongation is not None
+    assert_allclose(result.uniform_elongation.value, metal.elongation, rtol=1e-6)
+    assert_allclose(result.proof[0.002].value, metal.proof(0.002), rtol=1e-9)
+    assert [p.strain for p in result.at_strains] == [0.001]
 
 
 def test_a_stated_range_of_the_fits_is_kept() -> None:

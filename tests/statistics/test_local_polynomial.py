@@ -70,6 +70,28 @@ def test_noise_that_is_alike_next_to_each_other_is_seen() -> None:
     assert (np.abs(z) <= 2.0).mean() > 0.88
 
 
+def test_noise_that_a_filter_left_is_not_taken_for_the_curve() -> None:
+    rng = np.random.default_rng(19)
+    z = []
+    for _ in range(200):
+        noise = np.convolve(rng.standard_normal(X.size + 4), np.ones(5) / np.sqrt(5), "valid")
+        y = bent(X) + 0.01 * noise
+        fit = fit_window(X, y, choose_window(X, y, 0.4, (0, X.size), alike=8))
+        z.append((fit.value(0.4) - bent(np.array(0.4))) / fit.u_value(0.4))
+    assert (np.abs(z) <= 2.0).mean() > 0.91
+
+
+def test_steps_of_the_reading_are_not_taken_for_the_curve() -> None:
+    # Rounded to a hundredth and no noise: without being told it follows the steps.
+    y = np.round(bent(X), 2)
+    lasting = 0.01 / (np.pi * np.sqrt(2.0))
+    told = choose_window(X, y, 0.7, (0, X.size), lasting=lasting)
+    assert told.stop - told.start > 5 * LEAST_POINTS
+    fit = fit_window(X, y, told)
+    assert abs(fit.value(0.7) - bent(np.array(0.7))) < 2.0 * fit.u_value(0.7)
+    assert fit.u_value(0.7) < 0.01
+
+
 def test_a_corner_stays_out_of_the_window() -> None:
     rng = np.random.default_rng(10)
     y = np.where(X < 0.3, 10.0 * X, 3.0 + 0.5 * (X - 0.3)) + 0.01 * rng.standard_normal(X.size)

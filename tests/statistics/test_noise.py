@@ -8,7 +8,7 @@ from scipy.stats import norm
 
 from coldwork.errors import InvalidArgument
 from coldwork.statistics import noise
-from coldwork.statistics.noise import long_run_ratio, point_noise
+from coldwork.statistics.noise import long_run_ratio, noise_of, point_noise, roughness
 
 T = np.linspace(0.0, 1.0, 20_000)
 COURSE = 200.0 * (1.0 - np.exp(-5.0 * T)) + 1e3 * np.minimum(T, 0.02)  # with a corner
@@ -43,6 +43,35 @@ def test_a_reading_in_steps_has_at_least_the_step_over_root_12() -> None:
     assert_allclose(point_noise(np.round(COURSE, 1)), 0.1 / np.sqrt(12.0), rtol=0.2)
 
 
+@pytest.mark.parametrize("memory", [3, 5, 11])
+def test_a_filter_is_seen_with_its_memory(memory: int) -> None:
+    # Moving means of independent points, scaled to a standard deviation of 0.3: the
+    # variance of a long mean is that of as many times fewer points.
+    rng = np.random.default_rng(20)
+    raw = rng.standard_normal(T.size + memory - 1)
+    found = noise_of(COURSE + 0.3 * np.convolve(raw, np.ones(memory) / np.sqrt(memory), "valid"))
+    assert_allclose(found.sd, 0.3, rtol=0.06)
+    assert memory / 2 < found.alike <= 2 * memory
+    assert_allclose(found.long_run, memory, rtol=0.2)
+
+
+def test_independent_noise_is_alike_over_no_neighbours() -> None:
+    rng = np.random.default_rng(21)
+    found = noise_of(COURSE + 0.3 * rng.standard_normal(T.size))
+    assert (found.alike, found.long_run, found.lasting) == (1, 1.0, 0.0)
+
+
+@pytest.mark.parametrize("ratio", [0.1, 0.2, 0.3])
+def test_what_steps_leave_in_a_mean(ratio: float) -> None:
+    # Directly: the mean of rounded normal values, over places within a step.
+    rng = np.random.default_rng(22)
+    places = np.linspace(0.0, 1.0, 40, endpoint=False)
+    off = [np.mean(np.round(p + ratio * rng.standard_normal(100_000))) - p for p in places]
+    slow = np.linspace(0.0, 40.0, T.size)
+    found = noise_of(np.round(slow + ratio * rng.standard_normal(T.size)))
+    assert 0.8 * np.std(off) < found.lasting < 1.8 * np.std(off)  # rather too much
+
+
 def test_scales_with_its_unit_and_ignores_missing_points() -> None:
     rng = np.random.default_rng(13)
     series = COURSE + 0.3 * rng.standard_normal(T.size)
@@ -50,6 +79,12 @@ def test_scales_with_its_unit_and_ignores_missing_points() -> None:
     holed = series.copy()
     holed[::1000] = np.nan
     assert_allclose(point_noise(holed), point_noise(series), rtol=0.02)
+
+
+def test_roughness_is_the_noise_of_independent_points() -> None:
+    rng = np.random.default_rng(23)
+    assert_allclose(roughness(0.3 * rng.standard_normal(20_000)), 0.3, rtol=0.03)
+    assert roughness(np.arange(3.0)) == 0.0
 
 
 def test_few_points_tell_nothing() -> None:

@@ -96,6 +96,15 @@ def test_another_unit_scales_it() -> None:
     assert_allclose(scaled.covariance[1, 1], 1e18 * plain.covariance[1, 1], rtol=1e-9)
 
 
+def test_a_known_filter_widens_its_uncertainty() -> None:
+    rng = np.random.default_rng(16)
+    x = np.linspace(0.0, 1.0, 60)
+    y = 3.0 * x + 0.1 * rng.standard_normal(x.size)
+    plain, told = robust_line(x, y), robust_line(x, y, long_run=4.0)
+    assert_allclose(told.covariance, 4.0 * plain.covariance, rtol=1e-12)
+    assert told.slope == plain.slope
+
+
 def test_refuses_by_name() -> None:
     with pytest.raises(InvalidArgument, match="3 points or more in pairs"):
         robust_line([0.0, 1.0], [0.0, 1.0])

@@ -1,13 +1,25 @@
 """Columns of text as Arrow holds them: their bytes, their lengths, their apostrophes."""
 
-from typing import Final, cast
+from typing import Any, Final, cast
 
 import numpy as np
 import pyarrow as pa
 import pyarrow.compute as pc
 from numpy.typing import NDArray
 
-__all__ = ["as_mask", "byte_lengths", "content", "only", "take", "texts", "without_apostrophe"]
+__all__ = [
+    "as_mask",
+    "byte_lengths",
+    "content",
+    "decoded",
+    "distinct",
+    "encoded",
+    "only",
+    "places_of",
+    "take",
+    "texts",
+    "without_apostrophe",
+]
 
 _APOSTROPHE: Final = "^'"
 
@@ -54,6 +66,33 @@ def only(cells: pa.StringArray, kept: NDArray[np.bool_]) -> pa.StringArray:
     if offsets is None or data is None:  # no text at all
         return cells
     return pa.StringArray.from_buffers(len(cells), offsets, data, valid, -1, cells.offset)
+
+
+def encoded(words: pa.StringArray, places: NDArray[np.int32]) -> pa.StringArray:
+    """Give n cells as their distinct words and the place of each among them.
+
+    A dictionary in Arrow's sense; to the type checker, and to whoever takes rows of it or
+    asks for its texts, it is like any other column of text.
+    """
+    made = pa.DictionaryArray.from_arrays(pa.array(places, pa.int32()), words)
+    return cast("pa.StringArray", made)
+
+
+def distinct(cells: pa.StringArray) -> pa.StringArray:
+    """Give the distinct words of cells that are encoded in a dictionary."""
+    return cast("pa.StringArray", cast("Any", cells).dictionary)
+
+
+def places_of(cells: pa.StringArray) -> NDArray[np.int32]:
+    """Give the place of each cell among the distinct words, shape (n,)."""
+    return np.asarray(cast("Any", cells).indices.to_numpy(zero_copy_only=False))
+
+
+def decoded(cells: pa.StringArray) -> pa.StringArray:
+    """Give cells as plain text, whether they are encoded in a dictionary or not."""
+    if pa.types.is_dictionary(cells.type):
+        return distinct(cells).take(cast("Any", cells).indices)
+    return cells
 
 
 def column_of(cells: pa.RecordBatch, name: str) -> pa.StringArray:

@@ -12,7 +12,13 @@ from numpy.typing import NDArray
 from coldwork.contracts import Field
 from coldwork.contracts.arrays import violations
 from coldwork.intake import numbers
-from coldwork.intake.cells import as_mask, byte_lengths, without_apostrophe
+from coldwork.intake.cells import (
+    as_mask,
+    byte_lengths,
+    distinct,
+    places_of,
+    without_apostrophe,
+)
 from coldwork.intake.numbers import Parsed
 from coldwork.intake.times import parse_times, time_hint
 from coldwork.rules import reasons
@@ -59,7 +65,8 @@ class Column:
     field : Field
         What the contract says of it.
     text : pyarrow.StringArray, n cells
-        The cells, without the apostrophe that keeps text from being run as a formula.
+        The cells, without the apostrophe that keeps text from being run as a formula;
+        of numbers possibly encoded in a dictionary.
     values : ndarray, shape (n,), or None
         float64 for numbers, NaN where there is none [the field's unit]; int64 for
         integers, -1 where there is none [1], and for times, `times.ABSENT` where there
@@ -93,7 +100,8 @@ def read_column(field: Field, cells: pa.StringArray, zone: str) -> Column:
     field : Field
         The contract's field of that name.
     cells : pyarrow.StringArray, n cells
-        The cells as written, without nulls.
+        The cells as written, without nulls. Numbers may come encoded in a dictionary:
+        each distinct cell is then parsed once.
     zone : str
         IANA name of the zone in which a time without one is meant.
 
@@ -103,6 +111,8 @@ def read_column(field: Field, cells: pa.StringArray, zone: str) -> Column:
         With a fault for each cell that is not of the field's type, is outside
         what it allows, or is empty though required.
     """
+    if pa.types.is_dictionary(cells.type):
+        return _spread(read_column(field, distinct(cells), zone), cells)
     if field.type == "number":
         return _number(field, cells, numbers.parse_floats(cells))
     if field.type == "integer":
@@ -138,6 +148,14 @@ def with_layout_faults(column: Column, faults: tuple[Fault, ...]) -> Column:
         if rows.any():
             kept.append(replace(fault, rows=rows))
     return replace(column, faults=tuple(kept))
+
+
+def _spread(column: Column, cells: pa.StringArray) -> Column:
+    """Give every row what its distinct cell came to."""
+    places = places_of(cells)
+    values = None if column.values is None else column.values[places]
+    faults = tuple(replace(fault, rows=fault.rows[places]) for fault in column.faults)
+    return Column(column.field, cells, values, column.absent[places], faults)
 
 
 def _number(field: Field, cells: pa.StringArray, parsed: Parsed) -> Column:
@@ -178,14 +196,14 @@ def _text(field: Field, cells: pa.StringArray) -> Column:
 def _unfit(field: Field, text: pa.StringArray, absent: NDArray[np.bool_]) -> Fault:
     """Text too long or of another form; each distinct one is looked at once."""
     coded = text.dictionary_encode()
-    distinct = cast("pa.StringArray", coded.dictionary)
-    unfit = np.zeros(len(distinct), dtype=np.bool_)
+    words = cast("pa.StringArray", coded.dictionary)
+    unfit = np.zeros(len(words), dtype=np.bool_)
     if field.max_length:
-        lengths = pc.utf8_length(distinct).to_numpy(zero_copy_only=False)
+        lengths = pc.utf8_length(words).to_numpy(zero_copy_only=False)
         unfit |= lengths > field.max_length
     if field.pattern:
         whole = rf"\A(?:{field.pattern})\z"
-        unfit |= ~as_mask(pc.match_substring_regex(distinct, pattern=whole))
+        unfit |= ~as_mask(pc.match_substring_regex(words, pattern=whole))
     rows = np.zeros(len(text), dtype=np.bool_)
     if unfit.any():
         rows = unfit[coded.indices.to_numpy(zero_copy_only=False)] & ~absent

@@ -18,7 +18,7 @@ from coldwork.contracts import Field
 from coldwork.inputs.layout import Filled, Layout
 from coldwork.inputs.time_form import TimeForm, time_form
 from coldwork.intake import written_numbers, written_times
-from coldwork.intake.cells import as_mask, byte_lengths, content, replaced, texts
+from coldwork.intake.cells import as_mask, byte_lengths, content, decoded, encoded, replaced, texts
 from coldwork.intake.column import Fault
 from coldwork.intake.text import REFUSED
 from coldwork.intake.written_numbers import AMBIGUOUS, Signs
@@ -40,7 +40,8 @@ class Converted:
     Attributes
     ----------
     cells : pyarrow.StringArray, n cells
-        In the contract's form and unit, `REFUSED` where the layout refuses the cell.
+        In the contract's form and unit, `REFUSED` where the layout refuses the cell;
+        numbers possibly encoded in a dictionary.
     faults : tuple of Fault
         The refused ones; empty where all is well.
     ambiguous : int or None
@@ -183,18 +184,18 @@ class Converter:
         if len(coded.dictionary) > max(_MANY, len(cells) // 4) and not self._many:
             self._many = True
             return self.convert(cells)
-        distinct = texts(cast("pa.StringArray", coded.dictionary))
-        turned = [self._remembered(raw) for raw in distinct]
-        places = coded.indices.to_numpy(zero_copy_only=False)
-        ambiguous = None
-        if AMBIGUOUS in turned:
-            two = np.array([text == AMBIGUOUS for text in turned])
-            ambiguous = int(np.argmax(two[places]))
-        bad = np.array([text.startswith(REFUSED) for text in turned], dtype=np.bool_)
-        new = pa.array(turned, pa.string()).take(coded.indices)
-        if not bad.any():
-            return Converted(new, (), ambiguous)
-        return Converted(new, (self._fault(bad[places]),), ambiguous)
+        known, words = self._known, texts(cast("pa.StringArray", coded.dictionary))
+        turned = [known[raw] if raw in known else self._remembered(raw) for raw in words]
+        places = np.asarray(coded.indices.to_numpy(zero_copy_only=False))
+        new = encoded(pa.array(turned, pa.string()), places)
+        if not self._field.numeric:
+            new = decoded(new)
+        if {REFUSED, AMBIGUOUS}.isdisjoint(turned):
+            return Converted(new)
+        bad = np.array([text.startswith(REFUSED) for text in turned], dtype=np.bool_)[places]
+        two = np.array([text == AMBIGUOUS for text in turned], dtype=np.bool_)[places]
+        ambiguous = int(np.argmax(two)) if two.any() else None
+        return Converted(new, (self._fault(bad),), ambiguous)
 
     def _fault(self, rows: NDArray[np.bool_]) -> Fault:
         time = self._field.type == "datetime"
@@ -202,11 +203,9 @@ class Converter:
         return Fault(reason, self._field.name, rows, self.hint, of_raw=True)
 
     def _remembered(self, raw: str) -> str:
-        text = self._known.get(raw)
-        if text is None:
-            text = self._turned(raw)
-            if len(raw) <= _LONGEST_KNOWN and len(self._known) < _MOST_KNOWN:
-                self._known[raw] = text
+        text = self._turned(raw)
+        if len(raw) <= _LONGEST_KNOWN and len(self._known) < _MOST_KNOWN:
+            self._known[raw] = text
         return text
 
     def _turned(self, raw: str) -> str:

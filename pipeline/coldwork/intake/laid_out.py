@@ -183,11 +183,9 @@ class LaidOutText:
                 where = f"{self._name}, line {lines.first + broken}"
                 return None, [Cause(where, what, _OPEN, mend)]
         rows = rows_of(
+            lines,
             data,
-            lines.first,
-            lines.lines,
             [str(place) for place in range(len(self.columns))],
-            written=lines.data,
             delimiter=self._form.delimiter,
             quotes=quotes,
             kept=[str(place) for place in sorted({0, *self._places.values()})],

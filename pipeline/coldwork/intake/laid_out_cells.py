@@ -3,12 +3,14 @@
 from collections.abc import Mapping
 from typing import NamedTuple
 
+import numpy as np
 import pyarrow as pa
 
 from coldwork.contracts import Contract
 from coldwork.errors import Cause
 from coldwork.inputs.layout import Layout, running_number
 from coldwork.inputs.words import shown
+from coldwork.intake.cells import encoded
 from coldwork.intake.closing import ClosingLine
 from coldwork.intake.column import Fault
 from coldwork.intake.converting import Converter
@@ -27,7 +29,7 @@ class ConvertedBlock(NamedTuple):
     Attributes
     ----------
     cells : pyarrow.RecordBatch, n rows
-        Columns of the contract.
+        Columns of the contract; numbers possibly encoded in a dictionary.
     raw : pyarrow.RecordBatch, n rows
         The same cells as written, under `Layout.raw_columns`.
     faults : tuple of Fault
@@ -114,6 +116,8 @@ class LaidOutCells:
                 ambiguous = name, row, str(column[row].as_py())
         for name, (text, value) in self._fixed.items():
             cells[name] = pa.repeat(text, rows)
+            if self._contract.field(name).numeric:  # to be parsed once
+                cells[name] = encoded(pa.array([text], pa.string()), np.zeros(rows, np.int32))
             raw[self._layout.raw_columns[name]] = pa.repeat(value, rows)
         return ConvertedBlock(_batch(cells), _batch(raw), tuple(faults), ambiguous)
 

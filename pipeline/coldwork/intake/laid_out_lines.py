@@ -120,7 +120,9 @@ class LineForm:
             data = self._comments.sub(b"", data)
         if self.spaces:
             return _OUTER.sub(b"", _SPACES.sub(b"\t", data))
-        return _ONLY_SPACES.sub(b"", data) if b" \n" in data else data
+        if b" " in data and b" \n" in data:
+            return _ONLY_SPACES.sub(b"", data)
+        return data
 
     def split(self, lines: Lines) -> tuple[Lines, Lines | None]:
         """Part lines where the table is closed; None where it goes on."""

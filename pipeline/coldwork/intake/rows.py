@@ -8,6 +8,8 @@ import pyarrow as pa
 import pyarrow.csv as pv
 from numpy.typing import NDArray
 
+from coldwork.intake.files import Lines
+
 __all__ = ["Rows", "Torn", "rows_of"]
 
 
@@ -49,12 +51,10 @@ class Rows(NamedTuple):
 
 
 def rows_of(
+    lines: Lines,
     data: bytes,
-    first: int,
-    count: int,
     columns: Sequence[str],
     *,
-    written: bytes,
     delimiter: str = ",",
     quotes: bool = True,
     kept: Sequence[str] | None = None,
@@ -63,16 +63,12 @@ def rows_of(
 
     Parameters
     ----------
+    lines : Lines
+        The lines as they were written.
     data : bytes
-        Whole lines, ended by line feeds, in UTF-8; with clean quotes.
-    first : int
-        Number of the first line.
-    count : int
-        How many lines they are.
+        The same lines with clean quotes; what is no row of theirs may be blanked.
     columns : sequence of str
         Name of each cell of a row; no two are equal.
-    written : bytes
-        The same lines as they were written, for what is torn.
     delimiter : str, optional
         What stands between cells.
     quotes : bool, optional
@@ -87,18 +83,18 @@ def rows_of(
     """
     misfits: list[_Misfit] = []
     cells = _parse(data, columns, delimiter, quotes and b'"' in data, kept or columns, misfits)
-    lines = first + _filled(data, count, cells.num_rows + len(misfits))
+    numbers = lines.first + _filled(data, lines.lines, cells.num_rows + len(misfits))
     if not misfits:
-        return Rows(cells, lines, [])
+        return Rows(cells, numbers, [])
     places = [misfit.place for misfit in misfits]
-    texts = written.split(b"\n")
+    texts = lines.data.split(b"\n")
     torn = []
     for place, misfit in zip(places, misfits, strict=True):
-        line = int(lines[place])
-        text = texts[line - first].decode("utf-8")
+        line = int(numbers[place])
+        text = texts[line - lines.first].decode("utf-8")
         if text.strip(" \t"):  # a line of spaces is a blank one
             torn.append(Torn(line, text, misfit.found, len(columns)))
-    return Rows(cells, np.delete(lines, places), torn)
+    return Rows(cells, np.delete(numbers, places), torn)
 
 
 class _Misfit(NamedTuple):

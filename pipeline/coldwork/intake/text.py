@@ -34,7 +34,8 @@ class TextBlock:
     lines : ndarray of int64, shape (n,)
         Number of each row's line, from 1.
     cells : pyarrow.RecordBatch, n rows
-        The cells as written, columns in the header's order, no nulls.
+        The cells as written, columns in the header's order, no nulls. Behind a layout,
+        numbers may be encoded in a dictionary.
     torn : list of Torn
         The rows of these lines that do not fit the header; they are not among the n.
     raw : pyarrow.RecordBatch, n rows, or None
@@ -170,11 +171,5 @@ class TableText:
         return Cause(f"{self._name}, line {line}", what, _OPEN, mend)
 
     def _block(self, lines: Lines, data: bytes) -> TextBlock:
-        rows = rows_of(data, lines.first, lines.lines, self.columns, written=lines.data)
+        rows = rows_of(lines, data, self.columns)
         return TextBlock(self._file, rows.lines, rows.cells, rows.torn)
-
-
-def check_headers(files: TableFiles) -> list[Cause]:
-    """Say why the files of a table cannot be read, as far as their headers tell."""
-    texts = (TableText(files, file) for file in range(len(files.paths)))
-    return [cause for text in texts for cause in text.header_causes()]

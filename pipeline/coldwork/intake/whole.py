@@ -9,7 +9,7 @@ import pyarrow as pa
 from numpy.typing import NDArray
 
 from coldwork.errors import BatchRefused, Cause
-from coldwork.intake.cells import column_of
+from coldwork.intake.cells import column_of, decoded
 from coldwork.intake.column import Column, Fault, read_column, with_layout_faults
 from coldwork.intake.files import KeptLine, SourceFile, TableFiles
 from coldwork.intake.rows import Torn
@@ -195,7 +195,7 @@ def _joined(
 
 def _cells(block: pa.RecordBatch, name: str, lacking: str | None) -> pa.StringArray:
     if name in block.schema.names:
-        return column_of(block, name)
+        return decoded(column_of(block, name))
     if lacking is None:
         return pa.nulls(block.num_rows, pa.string())
     return pa.repeat(lacking, block.num_rows)

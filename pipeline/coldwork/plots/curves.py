@@ -176,8 +176,9 @@ def _draw(
 ) -> None:
     row = table.iloc[[cell.place]]
     value = {name: float(numbers(row, name)[0]) for name in _NEEDED}
-    for axes, part, end in zip(cell.panels, parts, (ends.strain, ends.about_yield), strict=True):
-        Scale("", 1.0, 0.0, 100.0 * end).on(axes, ticks=4)
+    each = zip(cell.panels, parts, (ends.strain, ends.about_yield), (4, 3), strict=True)
+    for axes, part, end, ticks in each:
+        Scale("", 1.0, 0.0, 100.0 * end).on(axes, ticks=ticks)
         Scale("", 1.0, 0.0, ends.stress).on(axes, upright=True, ticks=4)
         if part is not None:
             _draw_line(axes, part, value["elongation_at_maximum_force"])

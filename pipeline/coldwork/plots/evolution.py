@@ -73,7 +73,8 @@ def draw_energy(frames: Frames, context: Context) -> list[Figure]:
         "Stored energy in dislocations only: calorimetry finds more, "
         "since point defects and stacking faults also release heat.",
     ]
-    return _draw(frames, context, _ENERGY, "Stored energy and its share of the work", notes)
+    title = "Stored energy in dislocations along the strain, and its share of the work"
+    return _draw(frames, context, _ENERGY, title, notes)
 
 
 def _draw(

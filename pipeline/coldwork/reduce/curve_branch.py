@@ -49,6 +49,8 @@ class Branch:
         Over how many points the noise is alike, as a filter leaves it.
     long_run : float
         Variance of a mean of many points over that of independent ones.
+    lasting : float
+        Error of the stress that means do not lose, where it is read in steps. [Pa]
     peak : int
         Place in the branch of the greatest stress (smoothed); in compression its end.
     loops : tuple of Loop
@@ -64,6 +66,7 @@ class Branch:
     noise_strain: float
     alike: int
     long_run: float
+    lasting: float
     peak: int
     loops: tuple[Loop, ...]
 
@@ -126,6 +129,7 @@ def find_branch(points: Points, stop: int) -> Branch:
         noise_strain=noise_e.sd,
         alike=max(noise_s.alike, noise_e.alike),
         long_run=max(noise_s.long_run, noise_e.long_run),
+        lasting=noise_s.lasting,
         peak=peak,
         loops=loops,
     )

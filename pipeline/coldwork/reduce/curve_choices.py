@@ -60,7 +60,7 @@ def choose(
     end = len(branch) - 1
     if top is not None:
         rising = np.maximum.accumulate(branch.strain)
-        end = int(np.searchsorted(rising, top[1])) - 1
+        end = int(np.searchsorted(rising, top.near)) - 1
     bare = Choices(
         sense=sense,
         by_crosshead=is_by_crosshead(settings),
@@ -124,7 +124,12 @@ def _proof_window(branch: Branch, elastic: Elastic, offset: float) -> tuple[Wind
     window = None
     for _ in range(_ROUNDS):
         window = choose_window(
-            branch.strain, branch.stress, near, (elastic.stop, len(branch)), branch.alike
+            branch.strain,
+            branch.stress,
+            near,
+            (elastic.stop, len(branch)),
+            branch.alike,
+            branch.lasting,
         )
         fit = fit_window(branch.strain, branch.stress, window)
         at = fit.root(line.slope, line.intercept - line.slope * offset, near)
@@ -148,7 +153,12 @@ def _with_strains(branch: Branch, bare: Choices, wanted: tuple[float, ...]) -> C
     for strain in sorted(set(wanted)):
         if rising[low] < strain <= rising[-1]:
             strains[strain] = choose_window(
-                state.strain, state.stress, strain, (low, state.strain.size), branch.alike
+                state.strain,
+                state.stress,
+                strain,
+                (low, state.strain.size),
+                branch.alike,
+                branch.lasting,
             )
             stops[strain] = int(np.searchsorted(rising, strain)) - 1
     return replace(bare, strains=strains, stops=stops)

@@ -24,6 +24,7 @@ LEAST_ELASTIC_POINTS: Final = 8  # in the stated range, for a slope that may be 
 PROOF_OFFSET: Final = 0.002  # that the stated range refers to [1]
 _ROUNDS: Final = 15
 _CLIP: Final = 4.0  # distances from a line count up to this many standard deviations
+_FAR: Final = 6.0  # standard deviations from the line beyond which a point is not of it
 _EVIDENCE: Final = 2.5  # points well below a parallel that the end of a curve must show
 _LEVELS: Final = 60
 
@@ -134,7 +135,7 @@ def crossing(branch: Branch, line: Line, offset: float, start: int) -> int | Non
         The first place below, by the balance of all points before and after; None where
         the curve ends above.
     """
-    stop = branch.peak + 1
+    stop = len(branch)
     if stop - start < 3:
         return None
     above = branch.stress[start:stop] - line.at(branch.strain[start:stop] - offset)
@@ -189,6 +190,8 @@ def _range(
     ends = np.array(between) * level
     count = int(np.diff(np.searchsorted(rough, ends))[0])
     length = min(9, 2 * (count // 16) + 1)
-    likely = share * branch.stress[here] + (1.0 - share) * line.at(branch.strain[here])
+    reach = _FAR * float(np.sqrt(by_strain + by_stress))
+    off = np.clip(line.at(branch.strain[here]) - branch.stress[here], -reach, reach)
+    likely = branch.stress[here] + (1.0 - share) * off
     start, stop = np.searchsorted(np.maximum.accumulate(moving_mean(likely, length)), ends)
     return int(start), min(int(stop), top + 1)

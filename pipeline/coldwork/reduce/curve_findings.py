@@ -25,8 +25,9 @@ from coldwork.reduce.curve_test_faults import (
     strain_jump,
     unloading_loops,
 )
+from coldwork.statistics.noise import quiet_noise
 
-__all__ = ["in_order", "record_faults", "test_faults"]
+__all__ = ["faults_of_record", "faults_of_test", "in_order"]
 
 Faults = list[CurveFault]
 
@@ -39,7 +40,7 @@ def in_order(faults: Iterable[CurveFault]) -> tuple[CurveFault, ...]:
     return tuple(sorted(unique.values(), key=lambda fault: (_ORDER[fault.kind], fault.start)))
 
 
-def record_faults(points: Points) -> Faults:
+def faults_of_record(points: Points) -> Faults:
     """Find what is wrong with the record whatever the metal: time, range, units."""
     return [
         *time_backward(points),
@@ -49,7 +50,7 @@ def record_faults(points: Points) -> Faults:
     ]
 
 
-def test_faults(
+def faults_of_test(
     points: Points,
     branch: Branch,
     elastic: Elastic,
@@ -84,7 +85,7 @@ def test_faults(
     noise = branch.noise_stress, branch.noise_strain
     proof = float(branch.stress[branch.peak if elastic.proof_at is None else elastic.proof_at])
     places = int(branch.place[elastic.start]), int(branch.place[elastic.stop - 1]) + 1
-    drops = find_drops(points, noise[0], last)
+    drops = find_drops(points, quiet_noise(points.stress[: last + 1]), last)
     faults = [
         *zero_offset(points, noise[0], proof, last),
         *grip_slip(points, drops, slope),

@@ -1,6 +1,6 @@
 """Laws of hardening fitted to a true curve, and the rate of hardening along it."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -13,13 +13,25 @@ from coldwork.statistics.least_squares import LeastSquares, fit_least_squares
 from coldwork.statistics.local_polynomial import Window, choose_window, fit_window
 from coldwork.statistics.noise import long_run_ratio
 
-__all__ = ["HOLLOMON", "VOCE", "FittedLaw", "fit_hollomon", "fit_voce", "rate_along"]
+__all__ = [
+    "HOLLOMON",
+    "LEAST_FITTED_POINTS",
+    "VOCE",
+    "FittedLaw",
+    "fit_hollomon",
+    "fit_voce",
+    "rate_along",
+]
 
 FloatArray = NDArray[np.float64]
 
 VOCE: Final = ("yield_stress", "saturation_stress", "initial_hardening")
 HOLLOMON: Final = ("coefficient", "exponent")
 LEAST_FITTED_POINTS: Final = 12
+_STEEPEST: Final = 5.0  # exponent of a power law to begin from
+_HIGHEST: Final = 50.0  # logarithm of its coefficient, in Pa
+_ANY_SIGN: Final = frozenset({"yield_stress"})  # every other parameter is positive
+_LOGARITHM: Final = 200.0  # of a parameter, at most
 _BLOCKS: Final = 2000  # means that a fit starts from
 _PLACES: Final = 60  # along the curve where the rate is given
 _KNOTS: Final = 8  # places whose windows are chosen; between them their width is interpolated
@@ -102,14 +114,18 @@ def fit_hollomon(stress: FloatArray, strain: FloatArray) -> FittedLaw | None:
         return None
     x, y = np.log(strain), np.log(stress)
     exponent, level = np.polyfit(x, y, 1)
-    if not exponent > 0.0:
+    if not 0.0 < exponent < _STEEPEST or not level < _HIGHEST:
         return None
     start = np.array([np.exp(level), exponent])
     return _fit(HOLLOMON_STRESS, HOLLOMON, stress, strain, start)
 
 
 def rate_along(
-    stress: FloatArray, strain: FloatArray, between: tuple[float, float], alike: int = 1
+    stress: FloatArray,
+    strain: FloatArray,
+    between: tuple[float, float],
+    alike: int = 1,
+    lasting: float = 0.0,
 ) -> Rate | None:
     """Smooth the hardening rate along a true curve, with its uncertainty.
 
@@ -121,6 +137,8 @@ def rate_along(
         True plastic strains from which to which. [1]
     alike : int
         Over how many points the noise is alike.
+    lasting : float
+        Error of the stress that means do not lose. [Pa]
 
     Returns
     -------
@@ -135,7 +153,7 @@ def rate_along(
         return None
     places = np.linspace(*between, _PLACES + 2)[1:-1]
     knots = np.linspace(*between, _KNOTS + 2)[1:-1]
-    chosen = [choose_window(strain, stress, c, (first, last), alike) for c in knots]
+    chosen = [choose_window(strain, stress, c, (first, last), alike, lasting) for c in knots]
     widths = [_half_width(strain, window, c) for window, c in zip(chosen, knots, strict=True)]
     half = np.exp(np.interp(places, knots, np.log(widths)))
     rows = []
@@ -145,7 +163,7 @@ def rate_along(
         short = max(0, least - (stop - start))
         start = max(first, start - (short + 1) // 2)
         stop = min(last, max(stop, start + least))
-        window = Window(min(start, stop - least), stop, float(centre), 4, block)
+        window = Window(min(start, stop - least), stop, float(centre), 4, block, lasting)
         fit = fit_window(strain, stress, window)
         rows.append((fit.value(centre), fit.slope(centre), fit.u_slope(centre)))
     values, slopes, us = np.array(rows).T
@@ -189,54 +207,41 @@ def _fit(
     strain: FloatArray,
     start: FloatArray,
 ) -> FittedLaw | None:
-    """Fit a law; every parameter but the first stays positive by its logarithm."""
-    first = np.append(start[0], np.log(start[1:]))
+    """Fit a law, begun from block means; what must be positive is fitted by its logarithm."""
     if stress.size > 2 * _BLOCKS:
         means = [_block_means(v, _BLOCKS) for v in (stress, strain)]
         rough = _fit(law, names, means[0], means[1], start)
-        if rough is not None:
-            first = np.append(rough.found.parameters[0], np.log(rough.found.parameters[1:]))
+        start = start if rough is None else rough.found.parameters
+    logged = np.array([name not in _ANY_SIGN for name in names])
 
-    def unpack(p: FloatArray) -> dict[str, float]:
-        return dict(zip(names, np.append(p[0], np.exp(np.clip(p[1:], -700, 700))), strict=True))
+    def unpacked(p: FloatArray) -> FloatArray:
+        return np.where(logged, np.exp(np.clip(p, -_LOGARITHM, _LOGARITHM)), p)
 
     def model(p: FloatArray) -> FloatArray:
-        return law.value(strain=strain, **unpack(p))
+        return law.value(strain, *unpacked(p))
 
     def jacobian(p: FloatArray) -> FloatArray:
-        return _columns(law, names, strain, unpack(p), logarithmic=True)
+        values = unpacked(p)
+        slopes = law.sensitivities(strain, *values)
+        factors = np.where(logged, values, 1.0)
+        columns = [slopes[name] * f for name, f in zip(names, factors, strict=True)]
+        return np.column_stack([np.broadcast_to(c, strain.shape) for c in columns])
 
-    height = 1e-3 * float(np.abs(stress).max())
-    scale = np.append(max(abs(start[0]), height), np.ones(start.size - 1))
-    found = fit_least_squares(model, jacobian, stress, first, scale)
-    values = unpack(found.parameters)
-    factors = np.append(1.0, [values[name] for name in names[1:]])
-    if not found.converged or not np.isfinite(factors).all():
+    positive = np.where(logged, start, 1.0)
+    height = np.maximum(np.abs(start), 1e-3 * float(np.abs(stress).max()))
+    first, scale = np.where(logged, np.log(positive), start), np.where(logged, 1.0, height)
+    with np.errstate(over="ignore", invalid="ignore"):
+        found = fit_least_squares(model, jacobian, stress, first, scale)
+    values = unpacked(found.parameters)
+    factors = np.where(logged, values, 1.0)
+    if not found.converged or not np.isfinite(found.covariance).all():
         return None
-    slopes = law.sensitivities(strain=strain, **values)
-    residual = stress - law.value(strain=strain, **values)
-    plain = LeastSquares(
-        parameters=np.array(list(values.values())),
+    plain = replace(
+        found,
+        parameters=values,
         covariance=found.covariance * np.outer(factors, factors),
         jacobian=found.jacobian / factors,
-        residual_sum_of_squares=found.residual_sum_of_squares,
-        residual_sd=found.residual_sd,
-        degrees_of_freedom=found.degrees_of_freedom,
-        converged=found.converged,
     )
+    residual = stress - law.value(strain, *values)
+    slopes = law.sensitivities(strain, *values)
     return FittedLaw(names, plain, long_run_ratio(residual), slopes["strain"])
-
-
-def _columns(
-    law: Formula,
-    names: tuple[str, ...],
-    strain: FloatArray,
-    values: dict[str, float],
-    *,
-    logarithmic: bool,
-) -> FloatArray:
-    slopes = law.sensitivities(strain=strain, **values)
-    columns = [np.broadcast_to(slopes[name], strain.shape) for name in names]
-    if logarithmic:
-        columns[1:] = [c * values[n] for c, n in zip(columns[1:], names[1:], strict=True)]
-    return np.column_stack(columns)

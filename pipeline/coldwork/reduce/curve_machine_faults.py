@@ -18,6 +18,7 @@ __all__ = [
     "GREATEST_STRESS",
     "LEAST_SLOPE",
     "LEAST_STRESS",
+    "NOTHING_LEFT",
     "OFF_POINTS",
     "PRELOAD_SHARE",
     "REST_SHARE",
@@ -45,7 +46,7 @@ LEAST_SLOPE: Final = 8e9  # half of lead's modulus, for slopes of an extensomete
 GREATEST_SLOPE: Final = 8e11  # above iridium and osmium [Pa]
 PRELOAD_SHARE: Final = 0.05  # of the proof stress may be on at the start (ISO 6892-1)
 REST_SHARE: Final = 0.02  # of R_m may be left after the break, or below zero at the start
-_NOTHING_LEFT: Final = -0.95  # engineering strain at which hardly any length is left [1]
+NOTHING_LEFT: Final = -0.95  # engineering strain at which hardly any length is left [1]
 _NOISE: Final = 6.0
 _COARSE: Final = 3.0  # a standing run is longer than the clock's usual one by this factor
 _STEEPER: Final = 8.0  # how far a signal would have gone on, in its steps or its noise
@@ -131,12 +132,12 @@ def extensometer_off(points: Points, noise: float, last: int) -> tuple[int, Faul
         coupon can have, since it leaves no length.
     """
     whole = len(points)
-    gone = np.flatnonzero(points.sense * points.strain <= _NOTHING_LEFT)
+    gone = np.flatnonzero(points.sense * points.strain <= NOTHING_LEFT)
     if gone.size:
         stop = int(gone[0])
         value = float(points.sense * points.strain[stop])
         span = stop, whole
-        return stop, [points.fault(FaultKind.EXTENSOMETER_OFF, span, value, _NOTHING_LEFT)]
+        return stop, [points.fault(FaultKind.EXTENSOMETER_OFF, span, value, NOTHING_LEFT)]
     strain = moving_mean(points.strain[: last + 1])
     if strain.size < 3 * OFF_POINTS:
         return whole, []

@@ -17,7 +17,7 @@ from coldwork.formulas.tensile import (
 )
 from coldwork.reduce.curve import Curve, CurveFault, CurveSettings, FaultKind, Geometry
 
-__all__ = ["Points", "engineering_points", "plastic_states"]
+__all__ = ["Points", "engineering_points", "plastic_part", "plastic_states"]
 
 FloatArray = NDArray[np.float64]
 
@@ -128,12 +128,17 @@ def plastic_states(
         True. [Pa], [1]
     """
     if by_crosshead:
-        plastic = sense * (strain - stress / slope)
+        plastic = sense * plastic_part(strain, stress, slope)
         return sense * true_stress(sense * stress, plastic), sense * true_strain(plastic)
     signed = sense * strain
     sigma = true_stress(sense * stress, signed)
     plastic = true_plastic_strain(true_strain(signed), sigma, slope)
     return sense * sigma, sense * plastic
+
+
+def plastic_part(strain: FloatArray, stress: FloatArray, slope: float) -> FloatArray:
+    """Take the elastic part, of the slope [Pa], off engineering strains [1]."""
+    return np.asarray(strain - stress / slope)
 
 
 def _given(curve: Curve, geometry: Geometry) -> tuple[FloatArray, FloatArray]:

@@ -21,13 +21,16 @@ from coldwork.reduce.curve import (
     Valued,
 )
 from coldwork.reduce.curve_branch import Branch, find_branch, moving_mean
-from coldwork.reduce.curve_choices import choose, fitted_places
+from coldwork.reduce.curve_choices import choose, fitted_places, is_by_crosshead
 from coldwork.reduce.curve_elastic import PROOF_OFFSET, Elastic, find_elastic
-from coldwork.reduce.curve_findings import in_order, record_faults, test_faults
+from coldwork.reduce.curve_findings import faults_of_record, faults_of_test, in_order
 from coldwork.reduce.curve_laws import fit_hollomon, fit_voce, rate_along
-from coldwork.reduce.curve_machine_faults import extensometer_off
+from coldwork.reduce.curve_machine_faults import (
+    NOTHING_LEFT,
+    extensometer_off,
+)
 from coldwork.reduce.curve_neck import neck_point
-from coldwork.reduce.curve_points import Points, engineering_points
+from coldwork.reduce.curve_points import Points, engineering_points, plastic_part
 from coldwork.reduce.curve_rates import rate_changes
 from coldwork.reduce.curve_uncertainty import Budget, budget_of
 from coldwork.reduce.curve_values import Choices
@@ -70,15 +73,15 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
     whole = find_branch(points, len(points))
     last = int(whole.place[-1])
     stop, off = extensometer_off(points, whole.noise_strain, last)
-    faults = [*record_faults(points), *off]
+    faults = [*faults_of_record(points), *off]
     if stop < LEAST_POINTS:
         return _unreduced(points, [*faults, _too_few(points, stop)])
     branch = whole if stop == len(points) else find_branch(points, stop)
     elastic = find_elastic(branch, settings.slope_between, settings.slope)
-    if elastic is None:
+    if elastic is None or not _leaves_a_length(points, branch, elastic, settings):
         faults.append(points.fault(FaultKind.FEW_ELASTIC_POINTS, (0, stop), 0.0, 3.0))
         return _unreduced(points, faults)
-    faults += test_faults(points, branch, elastic, last, settings, geometry)
+    faults += faults_of_test(points, branch, elastic, last, settings, geometry)
     yielding = find_yield(branch, elastic)
     choices = choose(branch, elastic, settings, yielding, points.sense)
     faults += _unfinished(points, branch, elastic, choices, bool(off))
@@ -103,6 +106,17 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
         neck = neck_point(points, geometry, last, branch.noise_stress, settings.force_u_rel)
         result = replace(result, neck=neck)
     return result
+
+
+def _leaves_a_length(
+    points: Points, branch: Branch, elastic: Elastic, settings: CurveSettings
+) -> bool:
+    """Whether the toe-corrected strains can be a coupon's: wrong units may end up here."""
+    line = elastic.line
+    strain = branch.strain + line.intercept / line.slope
+    if is_by_crosshead(settings):
+        strain = plastic_part(strain, branch.stress, line.slope)
+    return bool((points.sense * strain).min() > NOTHING_LEFT)
 
 
 def _full(points: Points, values: FloatArray) -> FloatArray:
@@ -232,9 +246,9 @@ def _with_laws(
         fits["hollomon"] = budget.fit("hollomon", hollomon, places)
     rate = None
     if strain.size:
-        rate = rate_along(
-            stress, strain, (float(strain[0]), float(strain[-1])), budget.state.branch.alike
-        )
+        branch = budget.state.branch
+        ends = float(strain[0]), float(strain[-1])
+        rate = rate_along(stress, strain, ends, branch.alike, branch.lasting)
     return replace(
         result, fits=fits, kocks_mecking=None if voce is None else _line_of(voce), rate=rate
     )

@@ -49,6 +49,7 @@ JUMP_STRAIN: Final = 0.0002  # in one go: a tenth of the offset of the proof str
 SERRATION_DROP: Final = 0.003  # of R_m
 SERRATIONS: Final = 5  # drops, from which it is the metal and no slip
 PLATEAU_STRAIN: Final = 0.004  # over which the stress stays [1]
+_REGAINED: Final = 0.8  # of a drop, over which its way back is looked at
 _RELOAD: Final = 0.4  # of the elastic slope, at least, on the way back from a slip
 _LAG: Final = 3  # points in which a slip is over
 _NOISE: Final = 8.0
@@ -63,7 +64,7 @@ class Drop:
 
     start: int
     bottom: int
-    back: int | None  # where the stress is what it was; None where it never is
+    back: int | None  # where four fifths of it are regained; None where they never are
     size: float  # [Pa]
 
 
@@ -75,7 +76,7 @@ def find_drops(points: Points, noise: float, last: int) -> list[Drop]:
     points : Points
         The curve.
     noise : float
-        Of one stress. [Pa]
+        Of one stress, where the curve is quiet. [Pa]
     last : int
         Place of the break, or of the end; drops that end there are not counted.
 
@@ -97,9 +98,10 @@ def find_drops(points: Points, noise: float, last: int) -> list[Drop]:
         if rise is None:
             break
         bottom = rise[0]
-        level = np.flatnonzero(mean[bottom:] >= mean[top] - 0.1 * least)
-        back = bottom + int(level[0]) if level.size else None
-        drops.append(Drop(top, bottom, back, float(mean[top] - mean[bottom])))
+        size = float(mean[top] - mean[bottom])
+        regained = np.flatnonzero(mean[bottom:] >= mean[bottom] + _REGAINED * size)
+        back = bottom + int(regained[0]) if regained.size else None
+        drops.append(Drop(top, bottom, back, size))
         place = bottom
     return drops
 
@@ -296,7 +298,7 @@ def _comes_back(points: Points, drop: Drop, slope: float) -> bool:
         return False
     rise = float(np.median(points.strain[drop.back - 1 : drop.back + 2]))
     rise -= float(np.median(points.strain[drop.bottom - 1 : drop.bottom + 2]))
-    return drop.size >= _RELOAD * slope * rise
+    return _REGAINED * drop.size >= _RELOAD * slope * rise
 
 
 def _usual_step(step: FloatArray, candidates: NDArray[np.int64]) -> FloatArray:

@@ -24,6 +24,7 @@ __all__ = ["Budget", "budget_of"]
 FloatArray = NDArray[np.float64]
 
 _STEP: Final = 1e-5  # relative, of the central differences
+_TOE_STEP: Final = 1e-7  # of the toe strain, for the intercept [1]
 
 
 @dataclass(frozen=True)
@@ -57,18 +58,17 @@ class Budget:
     units: Mapping[str, float]
 
     def valued(self, key: Key) -> Valued | None:
-        """Give one result with its uncertainties; None where the curve has none."""
+        """Give one result with its uncertainties; None where the curve bears none."""
         if not np.isfinite(self.values.get(key, np.nan)):
             return None
         by_line = self.by_line[key]
         of_line = float(by_line @ self.state.line.covariance @ by_line)
+        u_own = float(np.sqrt(self.noise[key] ** 2 + of_line))
         sensitivities = {name: by[key] for name, by in self.by_input.items()}
-        return Valued(
-            self.values[key],
-            float(np.sqrt(self.noise[key] ** 2 + of_line)),
-            sensitivities,
-            {name: c * self.units[name] for name, c in sensitivities.items()},
-        )
+        if not np.isfinite([u_own, *sensitivities.values()]).all():
+            return None
+        shared = {name: c * self.units[name] for name, c in sensitivities.items()}
+        return Valued(self.values[key], u_own, sensitivities, shared)
 
     def recorded(self, value: float, u_own: float) -> Valued:
         """Make a result of a recorded stress: it goes with force over area alone."""
@@ -122,9 +122,8 @@ def budget_of(branch: Branch, choices: Choices, settings: CurveSettings) -> Budg
     """
     state = state_of(branch, choices)
     slope = state.line.slope
-    height = float(np.abs(state.stress).max(initial=1.0))
     steps: dict[str, tuple[tuple[float, float], tuple[float, float], float]] = {
-        "intercept": ((0.0, 0.0), (_STEP * height, 0.0), _STEP * height),
+        "intercept": ((0.0, 0.0), (_TOE_STEP * slope, 0.0), _TOE_STEP * slope),
         "slope": ((0.0, 0.0), (0.0, _STEP * slope), _STEP * slope),
         FORCE: ((_STEP, 0.0), (0.0, 0.0), _STEP),
         EXTENSION: ((0.0, _STEP), (0.0, 0.0), _STEP),

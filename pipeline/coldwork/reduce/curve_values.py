@@ -17,6 +17,7 @@ from coldwork.formulas.plastic_work import elastic_line_work, polyline_work
 from coldwork.reduce.curve_branch import Branch
 from coldwork.reduce.curve_elastic import fit_line
 from coldwork.reduce.curve_points import plastic_states
+from coldwork.reduce.curve_top import Top
 from coldwork.statistics.local_polynomial import LocalFit, Window, fit_window
 from coldwork.statistics.robust_line import Line
 
@@ -44,7 +45,7 @@ class Choices:
         Slope as stated. [Pa]
     proof : mapping of float to tuple of Window and float
         By offset: where to fit stress against strain, and the strain to begin from. [1]
-    top : tuple of Window and float, or None
+    top : Top or None
         The same for the greatest stress.
     strains : mapping of float to Window
         By true plastic strain: where to fit true stress against it.
@@ -61,7 +62,7 @@ class Choices:
     elastic: tuple[int, int]
     stated: float | None
     proof: Mapping[float, tuple[Window, float]]
-    top: tuple[Window, float] | None
+    top: Top | None
     strains: Mapping[float, Window]
     begin: int
     stops: Mapping[float, int]
@@ -163,10 +164,7 @@ def values_of(state: State, choices: Choices) -> dict[Key, float]:
         fit = fit_window(branch.strain, branch.stress, window)
         values["proof", offset] = fit.value(_meet(fit, line, offset, near))
     if choices.top is not None:
-        window, near = choices.top
-        fit = fit_window(branch.strain, branch.stress, window)
-        at = fit.top(near)
-        top = fit.value(at)
+        top, at = _top(state, choices)
         sigma, uniform = _true(choices, np.array([top]), np.array([at - toe]), line)
         values |= {
             ("top", 0.0): top,
@@ -208,10 +206,9 @@ def own_noise(state: State, choices: Choices) -> dict[Key, float]:
         at = _meet(fit, line, offset, near)
         noise["proof", offset] = fit.u_value(at) * line.slope / abs(line.slope - fit.slope(at))
     if choices.top is not None:
-        window, near = choices.top
-        fit = fit_window(branch.strain, branch.stress, window)
-        at = fit.top(near)
-        u_at = fit.u_top(at)
+        fit = fit_window(branch.strain, branch.stress, choices.top.window)
+        at = fit.top(choices.top.near)
+        u_at = max(fit.u_top(at), choices.top.least_u)
         sigma = float(fit.value(at)) * (1.0 + at)
         noise |= {
             ("top", 0.0): fit.u_value(at),
@@ -236,6 +233,17 @@ def _true(
     return plastic_states(
         stress, strain, line.slope, choices.sense, by_crosshead=choices.by_crosshead
     )
+
+
+def _top(state: State, choices: Choices) -> tuple[float, float]:
+    """Stress and strain as recorded of the top; NaN where it runs away from its window."""
+    if choices.top is None:
+        return np.nan, np.nan
+    fit = fit_window(state.branch.strain, state.branch.stress, choices.top.window)
+    at = fit.top(choices.top.near)
+    greatest = float(state.branch.mean.max())
+    value = fit.value(at)
+    return (value, at) if 0.5 * greatest < value < 2.0 * greatest else (np.nan, np.nan)
 
 
 def _meet(fit: LocalFit, line: Line, offset: float, near: float) -> float:

@@ -15,18 +15,21 @@ from numpy.typing import NDArray
 from coldwork.errors import InvalidArgument
 from coldwork.statistics.noise import roughness
 
-__all__ = ["LEAST_POINTS", "LocalFit", "Window", "choose_window", "fit_window"]
+__all__ = ["BASE", "LEAST_POINTS", "LocalFit", "Window", "choose_window", "fit_window"]
 
 FloatArray = NDArray[np.float64]
 
 LEAST_POINTS: Final = 11  # in a window: the 5 coefficients and 6 degrees of freedom
-_BASE: Final = 2  # the order that a window is grown for; it is fitted with two more
+BASE: Final = 2  # the order that a window is grown for; it is fitted with two more
 _BLOCKS: Final = 64  # means that a window is fitted through
 _GROWTH: Final = 1.25  # of a window from one try to the next
 _STRIDE: Final = 3  # windows between two that are tried first
-_FURTHER: Final = 25.0  # F of two further powers that no noise gives (1e-8): they are needed
+_CHANCE: Final = 1e-8  # that noise alone makes two further powers look needed
 _ROUGH: Final = 4.0  # variance of residuals over that of their roughness: there is a corner
-_ENOUGH: Final = 30  # blocks in which that roughness can be told
+_COHERENT: Final = 8.0  # of the means at a time a lasting error may bend alike
+_ENOUGH: Final = 48  # blocks in which that roughness can be told
+_STEPS: Final = 30  # of Newton's, at most
+_STANDS: Final = 1e-15  # relative step at which it stands
 _BACK: Final = 3  # tries from there back to where nothing of it is left in the result
 
 
@@ -44,6 +47,8 @@ class Window:
         Of the polynomial.
     least_block : int
         Points that are averaged at least, for noise that neighbours share.
+    lasting : float
+        Error of y that means do not lose. [unit of y]
     """
 
     start: int
@@ -51,6 +56,7 @@ class Window:
     centre: float
     order: int
     least_block: int = 1
+    lasting: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -94,40 +100,58 @@ class LocalFit:
         """Give the second derivative [unit of y over unit of x squared] at x."""
         return float(self._second(x) @ self.coefficients)
 
+    def u_bend(self, x: float) -> float:
+        """Give the standard uncertainty of the second derivative [as `bend`] at x."""
+        row = self._second(x)
+        return float(np.sqrt(row @ self.covariance @ row))
+
     def u_top(self, x: float) -> float:
         """Give the standard uncertainty of a top [unit of x] found at x.
 
         To second order in the uncertainty of the bend, by which the slope's is divided.
         """
-        row, bend = self._second(x), self.bend(x)
-        relative = float(row @ self.covariance @ row) / bend**2
-        return self.u_slope(x) / abs(bend) * float(np.sqrt(1.0 + 3.0 * relative))
+        bend = abs(self.bend(x))
+        more = 1.0 + 3.0 * (self.u_bend(x) / bend) ** 2
+        return self.u_slope(x) / bend * float(np.sqrt(more))
 
     def root(self, slope: float, level: float, start: float) -> float:
-        """Find x [its unit] near `start` where y = level + slope x, by Newton's steps."""
+        """Find x [its unit] near `start` where y = level + slope x, by Newton's steps.
+
+        NaN where there is none within twice the window.
+        """
         x = start
-        for _ in range(30):
+        for _ in range(_STEPS):
             steep = self.slope(x) - slope
             if steep == 0.0:
                 return float("nan")
             step = (self.value(x) - level - slope * x) / steep
             x -= step
-            if abs(step) <= 1e-15 * max(abs(x), self.scale):
+            if self._outside(x):
+                return float("nan")
+            if abs(step) <= _STANDS * max(abs(x), self.scale):
                 break
         return x
 
     def top(self, start: float) -> float:
-        """Find x [its unit] near `start` where the slope is zero, by Newton's steps."""
+        """Find x [its unit] near `start` where the slope is zero, by Newton's steps.
+
+        NaN where there is no top within twice the window.
+        """
         x = start
-        for _ in range(30):
+        for _ in range(_STEPS):
             bend = self.bend(x)
             if not bend < 0.0:
                 return float("nan")
             step = float(np.clip(self.slope(x) / bend, -self.scale, self.scale))
             x -= step
-            if abs(step) <= 1e-15 * max(abs(x), self.scale):
+            if self._outside(x):
+                return float("nan")
+            if abs(step) <= _STANDS * max(abs(x), self.scale):
                 break
         return x
+
+    def _outside(self, x: float) -> bool:
+        return not abs(x - self.centre) <= 2.0 * self.scale
 
     def _powers(self, x: float) -> FloatArray:
         t = (x - self.centre) / self.scale
@@ -146,7 +170,13 @@ class LocalFit:
 
 
 def choose_window(
-    x: FloatArray, y: FloatArray, centre: float, between: tuple[int, int], alike: int = 1
+    x: FloatArray,
+    y: FloatArray,
+    centre: float,
+    between: tuple[int, int],
+    alike: int = 1,
+    lasting: float = 0.0,
+    base: int = BASE,
 ) -> Window:
     """Grow a window about a place for as long as the curve in it is simple enough.
 
@@ -162,6 +192,11 @@ def choose_window(
         Points that may be used, the end not included.
     alike : int
         Over how many points the noise is alike.
+    lasting : float
+        Error of y that means do not lose, such as that of a reading in steps; what bends
+        no more than it is not fitted. [unit of y]
+    base : int
+        Order that the window is grown for: the polynomial has two more.
 
     Returns
     -------
@@ -176,7 +211,7 @@ def choose_window(
 
     Notes
     -----
-    The test is that of two nested polynomials (F at 5 %); reading the larger one keeps
+    The test is that of two nested polynomials (F at 1e-8); reading the larger one keeps
     what the test cannot see well below the standard uncertainty.
 
     References
@@ -189,14 +224,15 @@ def choose_window(
     if high - low < 3:
         message = f"between must hold 3 points or more (it holds {high - low})"
         raise InvalidArgument(message)
-    if high - low <= LEAST_POINTS:
-        return Window(low, high, centre, min(_BASE + 2, (high - low - 1) // 2))
+    fewest = LEAST_POINTS + base - BASE
+    if high - low <= fewest:
+        return Window(low, high, centre, min(base + 2, (high - low - 1) // 2), 1, lasting)
     rising = np.maximum.accumulate(x[low:high])
-    block = min(1 if alike == 1 else 2 * alike, (high - low) // LEAST_POINTS)
-    least = LEAST_POINTS * block
+    block = min(1 if alike == 1 else 2 * alike, (high - low) // fewest)
+    least = fewest * block
     place = int(np.searchsorted(rising, centre))
     start = int(np.clip(place - least // 2, 0, high - low - least))
-    window = Window(low + start, low + start + least, centre, _BASE + 2, block)
+    window = Window(low + start, low + start + least, centre, base + 2, block, lasting)
     half = max(abs(centre - rising[start]), abs(rising[start + least - 1] - centre), 1e-300)
     ladder = _ladder(rising, window, half, low)
     failed = len(ladder)
@@ -251,7 +287,11 @@ def fit_window(x: FloatArray, y: FloatArray, window: Window) -> LocalFit:
     freedom = means.size - coefficients.size
     few = freedom / (freedom - 2.0) if freedom > 4 else 3.0
     variance = few * float(residual @ residual) / max(freedom, 1)
-    return LocalFit(window.centre, scale, coefficients, variance * inverse @ inverse.T)
+    covariance = variance * inverse @ inverse.T
+    if window.lasting > 0.0:  # it goes round once a step, and steps are 4.4 of it wide
+        span = float(np.ptp(y[window.start : window.stop]))
+        covariance[0, 0] += window.lasting**2 * min(1.0, 4.4 * window.lasting / max(span, 1e-300))
+    return LocalFit(window.centre, scale, coefficients, covariance)
 
 
 def _blocks(x: FloatArray, y: FloatArray, window: Window) -> tuple[FloatArray, FloatArray, float]:
@@ -278,8 +318,13 @@ def _needs_more(x: FloatArray, y: FloatArray, window: Window) -> bool:
     q, _ = np.linalg.qr(basis)
     part = q.T @ means
     residual = means - q @ part
-    rest = float(residual @ residual) / (means.size - part.size)
+    freedom = means.size - part.size
+    rest = float(residual @ residual) / freedom
+    enough = means.size >= _ENOUGH
+    noise = roughness(residual) ** 2 if enough else rest
+    size = (window.stop - window.start) / means.size
+    steps = window.lasting**2 * size * max(1.0, means.size / _COHERENT)
     rounding = float(np.finfo(float).eps ** 2 * (means @ means))
-    noise = roughness(residual) ** 2 if means.size >= _ENOUGH else rest
-    noise = max(noise, rounding)
-    return float(part[-2:] @ part[-2:]) / 2.0 > _FURTHER * noise or rest > _ROUGH * noise
+    noise = max(noise, rounding, steps)
+    further = 0.5 * freedom * (_CHANCE ** (-2.0 / freedom) - 1.0)  # F(2, freedom) by chance
+    return float(part[-2:] @ part[-2:]) / 2.0 > further * noise or rest > _ROUGH * noise

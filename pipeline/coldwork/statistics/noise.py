@@ -8,15 +8,17 @@ from numpy.typing import ArrayLike, NDArray
 
 from coldwork.guards import finite
 
-__all__ = ["Noise", "long_run_ratio", "noise_of", "point_noise", "roughness"]
+__all__ = ["Noise", "long_run_ratio", "noise_of", "point_noise", "quiet_noise", "roughness"]
 
 _KEPT: Final = 0.95  # of the differences, the smallest; jumps and corners are in the rest [1]
 _SHARE: Final = 0.7588416  # of the variance of a normal that its inner 95 % carry [1]
 _WEIGHTS: Final = 20.0  # 1 + 9 + 9 + 1: variance of a third difference over that of a point [1]
-_REPEATS: Final = 0.3  # share of equal neighbours from which the steps of the reading show [1]
+_REPEATS: Final = 0.1  # share of equal neighbours from which the steps of the reading show [1]
 _GROWS: Final = 1.15  # factor by which the estimate may rise when the lag is doubled
 _LONGEST: Final = 32  # lag that is tried, and its double
 _ROOM: Final = 20  # lags that a series must hold
+_STRETCHES: Final = 16  # that `quiet_noise` looks at
+_STRETCH: Final = 50  # points that each must hold
 _BATCHES: Final = 20  # stretches that `long_run_ratio` compares
 _SIGNIFICANT: Final = 1.6  # chi-squared over its 19 degrees of freedom exceeds it in 5 % [1]
 
@@ -34,11 +36,16 @@ class Noise:
         has noise of its own.
     long_run : float
         Variance of a mean of many points over what it would be if they were independent.
+    lasting : float
+        Part of the standard deviation that a mean does not lose: what the steps of the
+        reading leave while the series stands within one of them, and noise too small to
+        carry it over their edges. [unit of the series]
     """
 
     sd: float
-    alike: int
-    long_run: float
+    alike: int = 1
+    long_run: float = 1.0
+    lasting: float = 0.0
 
 
 def noise_of(series: ArrayLike) -> Noise:
@@ -74,22 +81,28 @@ def noise_of(series: ArrayLike) -> Noise:
     Gasser, Sroka and Jennen-Steinmetz, Biometrika 73 (1986) 625-633,
     doi:10.2307/2336527 (idea, second differences); Herrmann, Gasser and Kneip, Biometrika
     79 (1992) 783-795, doi:10.1093/biomet/79.4.783 (correlated noise, by lags);
-    step / sqrt(12): JCGM 100:2008, F.2.2.1.
+    step / sqrt(12): JCGM 100:2008, F.2.2.1. What lasts is the first harmonic of a
+    quantiser's error under normal noise: Widrow and Kollar, Quantization Noise, Cambridge
+    2008 (from memory).
     """
     y = finite("series", series)
     y = y[np.isfinite(y)]
     if y.size < 8:
-        return Noise(0.0, 1, 1.0)
+        return Noise(0.0)
     alike, sd = _plateau(y)
     long_run = 1.0
-    length = 4 * alike
+    length = alike * int(np.clip(y.size // (16 * alike), 4, 8))
     if alike > 1 and sd > 0.0:
         means = y[: y.size // length * length].reshape(-1, length).mean(axis=1)
         long_run = max(1.0, length * (_third(means, 1) / sd) ** 2)
     steps = np.abs(np.diff(y))
-    if np.mean(steps == 0.0) > _REPEATS and steps.any():
-        sd = max(sd, float(steps[steps > 0.0].min()) / np.sqrt(12.0))
-    return Noise(sd, alike, long_run)
+    if not steps.any() or np.mean(steps == 0.0) <= _REPEATS:
+        return Noise(sd, alike, long_run)
+    step = float(steps[steps > 0.0].min())
+    sd = max(sd, step / np.sqrt(12.0))
+    rest = sd**2 / step**2 - 1.0 / 12.0  # of the noise before it was read in steps
+    lasting = step / (np.pi * np.sqrt(2.0)) * float(np.exp(-2.0 * np.pi**2 * rest))
+    return Noise(sd, alike, long_run, lasting)
 
 
 def point_noise(series: ArrayLike) -> float:
@@ -111,6 +124,33 @@ def point_noise(series: ArrayLike) -> float:
         If a point is infinite.
     """
     return noise_of(series).sd
+
+
+def quiet_noise(series: ArrayLike) -> float:
+    """Estimate the noise [unit of `series`] of the quieter stretches of a series.
+
+    The lower quartile of `noise_of` over 16 stretches, so that what disturbs the others,
+    such as serrations, does not count as noise; `noise_of` itself for fewer than 800 points.
+
+    Parameters
+    ----------
+    series : array_like, shape (n,)
+        Points in their order. [any unit]
+
+    Returns
+    -------
+    float
+        Standard deviation of a point. [unit of `series`]
+
+    Raises
+    ------
+    InvalidArgument
+        If a point is infinite.
+    """
+    y = finite("series", series)
+    if y.size < _STRETCHES * _STRETCH:
+        return noise_of(y).sd
+    return float(np.quantile([noise_of(part).sd for part in np.array_split(y, _STRETCHES)], 0.25))
 
 
 def roughness(series: NDArray[np.float64]) -> float:
