@@ -124,8 +124,7 @@ def saturation(rng: np.random.Generator) -> Made:
     assert curve.force is not None
     most = rng.uniform(0.8, 0.97) * STEEL.strength * GEOMETRY.area
     made = replace(curve, force=np.minimum(curve.force, most))
-    may = frozenset({FaultKind.NO_MAXIMUM, FaultKind.LUEDERS_PLATEAU})
-    return Made(made, BY_EXTENSION, FaultKind.SATURATION, may)
+    return Made(made, BY_EXTENSION, FaultKind.SATURATION)
 
 
 def time_backward(rng: np.random.Generator) -> Made:

@@ -11,6 +11,7 @@ from tests.reduce.made_faults import (
     extensometer_off,
     grip_slip,
     lueders,
+    saturation,
     time_standing,
     unloading_loop,
 )
@@ -27,6 +28,7 @@ from coldwork.reduce.curve_reduction import LEAST_POINTS, reduce_curve
 from coldwork.reduce.curve_test_faults import SLIP_DROP
 
 SEEDS = 4
+STRAINS = (0.002, 0.01, 0.03, 0.1)
 
 
 @pytest.mark.parametrize("name", PLANTED)
@@ -100,6 +102,38 @@ def test_past_an_extensometer_that_was_taken_off_no_strain_is_used() -> None:
     assert result.tensile_strength is not None  # the force is still good
     assert abs(result.tensile_strength.value / STEEL.strength - 1.0) < 0.01
     assert result.proof[0.002].value == pytest.approx(STEEL.proof(0.002), rel=1e-3)
+
+
+def test_past_a_force_that_stood_at_its_end_nothing_is_told() -> None:
+    made = saturation(np.random.default_rng(6))
+    result = reduce_curve(made.curve, GEOMETRY, replace(made.settings, reported_strains=STRAINS))
+    (fault,) = result.faults
+    assert fault.kind == FaultKind.SATURATION
+    assert result.tensile_strength is None
+    assert result.uniform_elongation is None
+    assert np.isnan(result.tensile_strength_bias)
+    assert 0 < len(result.at_strains) < len(STRAINS)
+    for point in result.at_strains:
+        truth = float(STEEL.law.stress(point.strain))
+        assert abs(point.flow_stress.value - truth) < 4.0 * point.flow_stress.u_own
+    line = result.kocks_mecking
+    assert line is not None
+    assert line.misfit < 1.5  # nothing of the stretch at one force is in it
+    assert (
+        abs(line.valued("saturation_stress").value - 650e6)
+        < 4.0 * line.valued("saturation_stress").u_own
+    )
+
+
+def test_an_extensometer_at_the_end_of_its_range_leaves_the_force_good() -> None:
+    curve = recorded(STEEL, NOISY, np.random.default_rng(6))
+    assert curve.length is not None
+    at_end = replace(curve, length=np.minimum(curve.length, 0.05 * GEOMETRY.gauge_length))
+    result = reduce_curve(at_end, GEOMETRY, CurveSettings())
+    assert result.found(FaultKind.SATURATION)
+    assert result.uniform_elongation is None
+    assert result.tensile_strength is not None
+    assert abs(result.tensile_strength.value / STEEL.strength - 1.0) < 0.01
 
 
 def test_a_yield_point_gives_its_three_results() -> None:

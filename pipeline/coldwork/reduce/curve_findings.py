@@ -9,7 +9,6 @@ from coldwork.reduce.curve_choices import is_by_crosshead
 from coldwork.reduce.curve_compression import barrelling, friction
 from coldwork.reduce.curve_elastic import LEAST_ELASTIC_POINTS, Elastic
 from coldwork.reduce.curve_machine_faults import (
-    saturation,
     slope_impossible,
     stress_impossible,
     time_backward,
@@ -41,11 +40,10 @@ def in_order(faults: Iterable[CurveFault]) -> tuple[CurveFault, ...]:
 
 
 def faults_of_record(points: Points) -> Faults:
-    """Find what is wrong with the record whatever the metal: time, range, units."""
+    """Find what is wrong with the record whatever the metal: time, units."""
     return [
         *time_backward(points),
         *time_standing(points),
-        *saturation(points),
         *stress_impossible(points),
     ]
 

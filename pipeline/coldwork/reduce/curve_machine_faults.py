@@ -83,31 +83,50 @@ def time_standing(points: Points) -> Faults:
     return [points.fault(FaultKind.TIME_STANDING, span, float(runs[longest]), limit)]
 
 
-def saturation(points: Points) -> Faults:
+def saturation(points: Points) -> tuple[int, bool, Faults]:
     """Find force or length that stays at exactly its greatest reading.
 
-    The run must hold `SATURATED_POINTS` of one reading, and the signal must have come to
-    it so steeply that in as many points it would have gone on by 8 of its own steps.
+    Parameters
+    ----------
+    points : Points
+        The curve.
+
+    Returns
+    -------
+    stop : int
+        Place up to which both can be trusted.
+    capped : bool
+        Whether it was the force, so that the greatest one is not in the record.
+    faults : list of CurveFault
+        None or one: a run of `SATURATED_POINTS` of one reading, to which the signal came so
+        steeply that in as many points it would have gone on by 8 of its own steps.
     """
-    found = []
-    for series in (points.stress, points.strain):
-        top = series == series.max()
-        edges = np.flatnonzero(np.diff(np.concatenate([[0], top.view(np.int8), [0]])))
-        runs = edges.reshape(-1, 2)
-        lengths = runs[:, 1] - runs[:, 0]
-        longest = int(np.argmax(lengths))
-        count, (start, stop) = int(lengths[longest]), runs[longest]
-        if count < SATURATED_POINTS or start < 3:
-            continue
-        before = series[max(0, start - count) : start]
-        come = float(series[start] - before.mean()) * 2.0  # over as many points
-        steps = np.abs(np.diff(before))
-        step = max(float(np.median(steps)), float(steps[steps > 0].min(initial=np.inf)))
-        if np.isfinite(step) and come > min(_STEEPER, 0.5 * before.size) * step:
-            span = int(start), int(stop)
-            limit = float(SATURATED_POINTS)
-            found.append(points.fault(FaultKind.SATURATION, span, float(count), limit))
-    return found[:1]
+    whole = len(points)
+    runs = [_run_at_end(series) for series in (points.stress, points.strain)]
+    found = [run for run in runs if run is not None]
+    if not found:
+        return whole, False, []
+    first = [int(np.argmax(points.stress == points.stress.max()))] if runs[0] else []
+    stop = min(first + [start for start, _ in found])
+    count = float(found[0][1] - found[0][0])
+    fault = points.fault(FaultKind.SATURATION, found[0], count, float(SATURATED_POINTS))
+    return stop, runs[0] is not None, [fault]
+
+
+def _run_at_end(series: FloatArray) -> tuple[int, int] | None:
+    """Find the longest run of exactly the greatest reading, if the signal went on behind it."""
+    edges = np.flatnonzero(np.diff(np.pad((series == series.max()).view(np.int8), 1)))
+    runs = edges.reshape(-1, 2)
+    start, stop = (int(k) for k in runs[np.argmax(runs[:, 1] - runs[:, 0])])
+    count = stop - start
+    if count < SATURATED_POINTS or start < 3:
+        return None
+    before = series[max(0, start - count) : start]
+    come = float(series[start] - before.mean()) * 2.0  # over as many points
+    steps = np.abs(np.diff(before))
+    step = max(float(np.median(steps)), float(steps[steps > 0].min(initial=np.inf)))
+    goes_on = np.isfinite(step) and come > min(_STEEPER, 0.5 * before.size) * step
+    return (start, stop) if goes_on else None
 
 
 def extensometer_off(points: Points, noise: float, last: int) -> tuple[int, Faults]:

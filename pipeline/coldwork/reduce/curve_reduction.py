@@ -28,6 +28,7 @@ from coldwork.reduce.curve_laws import fit_hollomon, fit_voce, rate_along
 from coldwork.reduce.curve_machine_faults import (
     NOTHING_LEFT,
     extensometer_off,
+    saturation,
 )
 from coldwork.reduce.curve_neck import neck_point
 from coldwork.reduce.curve_points import Points, engineering_points, plastic_part
@@ -72,8 +73,10 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
         return _unreduced(points, [_too_few(points, len(points))])
     whole = find_branch(points, len(points))
     last = int(whole.place[-1])
+    within, capped, saturated = saturation(points)
     stop, off = extensometer_off(points, whole.noise_strain, last)
-    faults = [*faults_of_record(points), *off]
+    stop = min(stop, within)
+    faults = [*faults_of_record(points), *saturated, *off]
     if stop < LEAST_POINTS:
         return _unreduced(points, [*faults, _too_few(points, stop)])
     branch = whole if stop == len(points) else find_branch(points, stop)
@@ -84,7 +87,7 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
     faults += faults_of_test(points, branch, elastic, last, settings, geometry)
     yielding = find_yield(branch, elastic)
     choices = choose(branch, elastic, settings, yielding, points.sense)
-    faults += _unfinished(points, branch, elastic, choices, bool(off))
+    faults += _unfinished(points, branch, elastic, choices, cut=bool(saturated or off))
     budget = budget_of(branch, choices, settings)
     result = CurveResult(
         faults=in_order(faults),
@@ -101,6 +104,8 @@ def reduce_curve(curve: Curve, geometry: Geometry, settings: CurveSettings) -> C
     result = _with_line(result, points, branch, choices, budget)
     if points.sense > 0:
         result = _with_strengths(result, points, branch, yielding, budget)
+    if capped:
+        result = replace(result, tensile_strength=None, tensile_strength_bias=float("nan"))
     result = _with_laws(result, choices, settings, yielding, budget)
     if settings.bridgman:
         neck = neck_point(points, geometry, last, branch.noise_stress, settings.force_u_rel)
@@ -148,7 +153,7 @@ def _too_few(points: Points, count: int) -> CurveFault:
 
 
 def _unfinished(
-    points: Points, branch: Branch, elastic: Elastic, choices: Choices, off: bool
+    points: Points, branch: Branch, elastic: Elastic, choices: Choices, *, cut: bool
 ) -> list[CurveFault]:
     """Say where a curve ends before its proof stress, or before its greatest force."""
     span = int(branch.place[0]), int(branch.place[-1]) + 1
@@ -156,7 +161,7 @@ def _unfinished(
         toe = -elastic.line.intercept / elastic.line.slope
         reached = float(branch.strain[-1]) - toe - float(branch.stress[-1]) / elastic.line.slope
         return [points.fault(FaultKind.ENDS_BEFORE_YIELD, span, reached, PROOF_OFFSET)]
-    if choices.top is None and points.sense > 0 and not off:
+    if choices.top is None and points.sense > 0 and not cut:
         greatest = float(branch.mean.max())
         fall = 1.0 - float(branch.stress[-5:].mean()) / greatest
         return [points.fault(FaultKind.NO_MAXIMUM, span, fall, 0.0)]
