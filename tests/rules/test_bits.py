@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from coldwork.rules import RULES
-from coldwork.rules.bits import bit_of, emptied, place_of, rule_ids, with_error
+from coldwork.rules.bits import bit_of, blank, emptied, fired, place_of, rule_ids, with_error
 from coldwork.rules.coupon import (
     DENSITY_IMPOSSIBLE,
     DENSITY_TOO_LOW,
@@ -14,7 +14,7 @@ from coldwork.rules.coupon import (
 from coldwork.rules.reading import UNEQUAL_DIAGONALS
 from coldwork.rules.rule import Level, Rule
 
-NOTHING = np.uint64(0)
+NOTHING = blank(1)[0]
 
 
 def words(*fired: tuple[Rule, ...]) -> np.ndarray:
@@ -24,7 +24,7 @@ def words(*fired: tuple[Rule, ...]) -> np.ndarray:
 @pytest.mark.parametrize("rule", RULES, ids=[rule.id for rule in RULES])
 def test_every_rule_has_the_bit_of_its_place(rule: Rule) -> None:
     assert RULES[place_of(rule)] is rule
-    assert int(bit_of(rule)) == 2 ** RULES.index(rule)
+    assert int.from_bytes(bit_of(rule).tobytes(), "little") == 2 ** RULES.index(rule)
     assert rule_ids(words((rule,))).to_pylist() == [rule.id]
     assert with_error(words((rule,))).tolist() == [rule.level is Level.ERROR]
 
@@ -34,8 +34,17 @@ def test_ids_stand_in_the_order_of_the_rules() -> None:
     assert told.to_pylist() == ["unequal-diagonals;few-readings", "", "no-readings"]
 
 
-def test_no_words_have_no_ids() -> None:
-    assert rule_ids(np.zeros(0, dtype=np.uint64)).to_pylist() == []
+def test_rules_that_fired_are_found_in_any_word() -> None:
+    every = words(*((rule,) for rule in RULES), ())
+    assert rule_ids(every).to_pylist() == [*(rule.id for rule in RULES), ""]
+    for i, rule in enumerate(RULES):
+        assert np.flatnonzero(fired(bit_of(rule), every)).tolist() == [i]
+    ends = bit_of(RULES[0]) | bit_of(RULES[-1])
+    assert np.flatnonzero(fired(ends, every)).tolist() == [0, len(RULES) - 1]
+
+
+def test_no_rows_have_no_ids() -> None:
+    assert rule_ids(blank(0)).to_pylist() == []
 
 
 def test_errors_empty_columns_and_some_leave_the_ends() -> None:

@@ -101,8 +101,8 @@ def test_which_rules_fired_on_which_coupons() -> None:
         "no-readings",
         "unequal-diagonals;few-readings",
     ]
-    places = [[i for i in range(64) if int(word) >> i & 1] for word in findings.bits]
-    assert [[RULES[i].id for i in p] for p in places] == [
+    rows = [int.from_bytes(row.tobytes(), "little") for row in findings.bits]
+    assert [[rule.id for i, rule in enumerate(RULES) if row >> i & 1] for row in rows] == [
         ["unequal-diagonals"],
         ["no-readings"],
         ["unequal-diagonals", "few-readings"],

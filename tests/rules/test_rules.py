@@ -16,10 +16,6 @@ def by_id(rule: Rule | Reason) -> str:
     return rule.id
 
 
-def test_a_rule_fits_into_a_word_of_64_bits() -> None:
-    assert len(RULES) <= 64
-
-
 def test_errors_stand_first_then_warnings_then_information() -> None:
     ranks = [list(Level).index(rule.level) for rule in RULES]
     assert ranks == sorted(ranks)

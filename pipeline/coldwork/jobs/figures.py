@@ -41,7 +41,7 @@ def figures_of(evaluated: Evaluated, bits: NDArray[np.uint64]) -> dict[str, Figu
     ----------
     evaluated : Evaluated
         The slice.
-    bits : ndarray of uint64, shape (n,)
+    bits : ndarray of uint64, shape (n, words)
         Findings of its coupons.
 
     Returns

@@ -111,7 +111,7 @@ def decide_slice(
         The slice.
     figures : mapping of str to Figures
         Its quantities, emptied where errors say so. [SI]
-    bits : ndarray of uint64, shape (n,)
+    bits : ndarray of uint64, shape (n, words)
         Findings of its coupons.
 
     Returns
@@ -203,7 +203,7 @@ def _evidence(
         above_lower=_above(limit.lower, limit.quantity, unit, found, combined, reach),
         above_upper=_above(limit.upper, limit.quantity, unit, found, combined, reach),
         blocked=emptied(limit.quantity, bits, ends=True),
-        with_indent=np.full(bits.shape, added),
+        with_indent=np.full(len(bits), added),
         coverage=method.coverage,
         unit=unit,
     )

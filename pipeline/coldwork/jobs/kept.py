@@ -42,9 +42,9 @@ class KeptReadings:
         self._columns = tuple(columns)
         self._schema = pa.schema(
             [("coupon", pa.int32()), ("file", pa.int64()), ("line", pa.int64())]
-            + [("reading_no", pa.int64()), ("scale", pa.int8()), ("marks", pa.uint64())]
+            + [("reading_no", pa.int64()), ("scale", pa.int8())]
             + [(name, pa.float64()) for name in _NUMBERS]
-            + [(name, pa.string()) for name in _TEXTS]
+            + [(name, pa.string()) for name in ("flags", *_TEXTS)]
             + [(RAW + name, pa.string()) for name in self._columns]
         )
         self._writer: pa.ipc.RecordBatchFileWriter | None = None
@@ -71,7 +71,6 @@ class KeptReadings:
             "line": readings.lines,
             "reading_no": readings.number,
             "scale": results.scale,
-            "marks": results.marks,
             "force": results.force,
             "mean_diagonal": results.mean_diagonal,
             "strength": results.strength,
@@ -81,6 +80,7 @@ class KeptReadings:
         }
         columns: dict[str, _Column] = {
             **{name: pa.array(x, self._schema.field(name).type) for name, x in numbers.items()},
+            "flags": rule_ids(results.marks),
             **{name: readings.texts.get(name, blank) for name in _TEXTS},
             **{
                 RAW + name: raw[name] if name in raw.column_names else blank
@@ -158,7 +158,7 @@ class KeptReadings:
                 for name, x in numbers.items()
             },
             **{name: kept[name] for name in (*_PLACES, *_TEXTS)},
-            "flags": rule_ids(kept["marks"].to_numpy()),
+            "flags": kept["flags"],
             "file": pa.array(files, pa.string()).take(
                 pa.array(kept["file"].to_numpy(), pa.int64())
             ),

@@ -50,7 +50,7 @@ _MISFITS: Final = {
     "voce_misfit": "voce",
     "hollomon_misfit": "hollomon",
 }
-_CURVE_BITS: Final = np.bitwise_or.reduce([bit_of(rule) for rule in CURVE_RULES])
+_CURVE_BITS: Final = np.bitwise_or.reduce([bit_of(rule) for rule in CURVE_RULES], axis=0)
 _SPREAD: Final = ("u_own", "u_shared", "u")
 
 

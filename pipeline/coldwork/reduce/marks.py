@@ -7,7 +7,7 @@ import pyarrow as pa
 from numpy.typing import NDArray
 
 from coldwork.reduce.readings import Readings
-from coldwork.rules.bits import bit_of
+from coldwork.rules.bits import bit_of, blank
 from coldwork.rules.findings import Findings
 from coldwork.rules.rule import Rule
 
@@ -28,7 +28,7 @@ class Marks:
 
     Attributes
     ----------
-    bits : ndarray of uint64, shape (n,)
+    bits : ndarray of uint64, shape (n, words)
         Bit i is set where ``RULES[i]`` fired on the reading.
     """
 
@@ -36,7 +36,7 @@ class Marks:
         self._readings = readings
         self._findings = findings
         self._files = files
-        self.bits = np.zeros(len(readings), dtype=np.uint64)
+        self.bits = blank(len(readings))
 
     def note(
         self,

@@ -82,7 +82,7 @@ class Reduced:
 
 @dataclass(frozen=True)
 class ReadingResults:
-    """What each reading of a stretch came to, all of shape (n,), NaN where it does not apply.
+    """What each reading of a stretch came to; shape (n,), NaN where it does not apply.
 
     Attributes
     ----------
@@ -96,7 +96,7 @@ class ReadingResults:
         Of a point of a flow curve. [1]
     weight : ndarray
         Share of the reading in its coupon's mean. [1]
-    marks : ndarray of uint64
+    marks : ndarray of uint64, shape (n, words)
         Which rules fired on it: bit i stands for ``RULES[i]``.
     """
 

@@ -1,7 +1,7 @@
 """What the rules found: collected column by column, published as out/flags.
 
 A million coupons may each carry findings, so nothing here loops over rows: findings
-wait as arrays, and which rules fired on a coupon is one 64-bit word.
+wait as arrays, and which rules fired on a coupon is one row of bits.
 """
 
 from collections.abc import Iterator, Sequence
@@ -13,7 +13,7 @@ import pyarrow as pa
 from numpy.typing import NDArray
 
 from coldwork.rules import RULES
-from coldwork.rules.bits import bit_of, place_of, rule_ids
+from coldwork.rules.bits import bit_of, blank, fired, place_of, rule_ids
 from coldwork.rules.rule import Rule
 
 __all__ = ["Findings", "Numbers", "Texts"]
@@ -71,7 +71,7 @@ class Findings:
     def restart(self) -> None:
         """Forget everything that was found."""
         self._chunks: list[_Chunk] = []
-        self._bits = np.zeros(self._n_coupons, dtype=np.uint64)
+        self._bits = blank(self._n_coupons)
         self._counts = np.zeros(len(RULES), dtype=np.int64)
 
     def add(
@@ -144,11 +144,11 @@ class Findings:
 
     def has(self, rule: Rule) -> NDArray[np.bool_]:
         """Say on which coupons, or on whose readings, a rule fired. Shape (coupons,)."""
-        return np.asarray((self._bits & bit_of(rule)) != 0)
+        return fired(bit_of(rule), self._bits)
 
     @property
     def bits(self) -> NDArray[np.uint64]:
-        """A word for each coupon: bit i is set where ``RULES[i]`` fired. Shape (coupons,)."""
+        """A row for each coupon: bit i is set where ``RULES[i]`` fired. Shape (coupons, words)."""
         return self._bits
 
     @property
