@@ -42,6 +42,7 @@ from coldwork.formulas.stored_energy import (
     STORED_FRACTION,
     TEMPERATURE_RISE,
 )
+from coldwork.formulas.superposition import COMBINED_STRESS, SUPERPOSED_STRESS
 from coldwork.formulas.tabor import TABOR_FLOW_STRESS
 from coldwork.formulas.taylor import MEAN_SPACING, TAYLOR_DENSITY, TAYLOR_DENSITY_FROM_SLOPE
 from coldwork.formulas.taylor_logarithmic import TAYLOR_DENSITY_LOGARITHMIC
@@ -52,7 +53,16 @@ from coldwork.measured import Value, apply, broadcast, kept_where, select, value
 from coldwork.rules.forces import HBW, HV, SCALES, SECTIONS
 from coldwork.units import to_si
 
-__all__ = ["Start", "Strength", "energy", "energy_per_volume", "line", "strength"]
+__all__ = [
+    "Start",
+    "Strength",
+    "dislocation_stress",
+    "energy",
+    "energy_per_volume",
+    "line",
+    "strength",
+    "with_obstacle",
+]
 
 _TAYLOR: Final = {
     "constant": TAYLOR_DENSITY,
@@ -97,7 +107,7 @@ class Start:
 
 @dataclass(frozen=True)
 class Strength:
-    """The first half's outcome, all in the state at `test_strain` but for the first three.
+    """The first half's outcome, all in the state at `test_strain` but for the first four.
 
     Attributes
     ----------
@@ -106,7 +116,9 @@ class Strength:
     indented_stress : Value
         Flow stress as tested, the indent's own strain included. [Pa]
     excess : Value
-        That less the baseline, before unwinding. [Pa]
+        That less the baseline. [Pa]
+    tested_stress : Value
+        What dislocations carry of the excess, before unwinding. [Pa]
     flow_stress, baseline_stress, dislocation_stress : Value
         As their columns say. [Pa]
     strain : Value
@@ -120,6 +132,7 @@ class Strength:
     pressure: Value | None
     indented_stress: Value
     excess: Value
+    tested_stress: Value
     flow_stress: Value
     baseline_stress: Value
     dislocation_stress: Value
@@ -146,40 +159,92 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
         Arrays of shape (n,).
     """
     n = start.scale.shape[0]
+    pressure, strain, tested = _tested(laws, inputs, start)
     baseline = _baseline(laws, inputs, start.grain_size)
-    if laws.route == "flow":
-        stress = start.mean - baseline
-        held = np.full(n, start.plastic_strain)
-        nothing = np.zeros(n, dtype=bool)
-        return Strength(None, start.mean, stress, start.mean, baseline, stress, 0.0, held, nothing)
-    present = [k for k in range(len(SCALES)) if bool((start.scale == k).any())]
-    pressure = select(start.scale, {k: _pressure(laws, k, start) for k in present})
-    strain = select(start.scale, {k: _strain(inputs, k, start) for k in present})
-    indented = apply(
-        TABOR_FLOW_STRESS,
-        pressure=pressure,
-        intercept=_by_scale(inputs, start.scale, "intercept_mpa"),
-        constraint_factor=_by_scale(inputs, start.scale, "constraint_factor"),
+    excess = tested - baseline
+    as_tested, stress = dislocation_stress(laws, inputs, excess, strain)
+    flow, unwound = tested, np.zeros(n, dtype=bool)
+    if laws.unwinding:
+        flow = with_obstacle(laws, inputs, stress) + baseline
+        saturation = inputs["indentation.saturation_stress_mpa"]
+        unwound = value_of(as_tested) < value_of(saturation)
+    added = np.full(n, start.plastic_strain) if laws.route == "flow" else value_of(strain)
+    held = np.where(unwound, 0.0, added)
+    return Strength(
+        pressure, tested, excess, as_tested, flow, baseline, stress, strain, held, unwound
     )
-    excess = indented - baseline
-    if not laws.unwinding:
-        held = np.broadcast_to(value_of(strain), (n,))
-        nothing = np.zeros(n, dtype=bool)
-        return Strength(
-            pressure, indented, excess, indented, baseline, excess, strain, held, nothing
+
+
+def dislocation_stress(
+    laws: Laws, inputs: Mapping[str, Value], excess: Value, strain: Value
+) -> tuple[Value, Value]:
+    """Go from the excess over the baseline to the dislocation stress (relations 4, 6).
+
+    Parameters
+    ----------
+    laws, inputs
+        As for `strength`.
+    excess : Value, shape (n,)
+        Flow stress as tested less the baseline. [Pa]
+    strain : Value
+        Strain of the indent itself; not used where nothing is unwound. [1]
+
+    Returns
+    -------
+    tuple of Value
+        As tested, and in the state that is reported. Where the excess is below the
+        obstacle stress nothing is left for dislocations: there it is the difference of
+        the two, zero or less, as it is for an exponent of 1. [Pa]
+    """
+    tested = excess
+    if laws.superposed:
+        obstacle = inputs["strength.obstacle_mpa"]
+        left = apply(
+            SUPERPOSED_STRESS,
+            excess=excess,
+            obstacle=obstacle,
+            exponent=inputs["strength.superposition_exponent"],
         )
-    saturation = inputs["indentation.saturation_stress_mpa"]
+        above = value_of(excess) > value_of(obstacle)
+        tested = select(above.astype(np.int8), {1: left, 0: excess - obstacle})
+    if not laws.unwinding:
+        return tested, tested
     stress = apply(
         UNWOUND_STRESS,
-        stress=excess,
+        stress=tested,
         initial_hardening=inputs["indentation.initial_hardening_mpa"],
-        saturation_stress=saturation,
+        saturation_stress=inputs["indentation.saturation_stress_mpa"],
         strain=strain,
     )
-    unwound = value_of(excess) < value_of(saturation)
-    held = np.where(unwound, 0.0, value_of(strain))
-    flow = stress + baseline
-    return Strength(pressure, indented, excess, flow, baseline, stress, strain, held, unwound)
+    return tested, stress
+
+
+def with_obstacle(laws: Laws, inputs: Mapping[str, Value], stress: Value) -> Value:
+    """Give what dislocations and obstacles carry together (relation 4).
+
+    Parameters
+    ----------
+    laws, inputs
+        As for `strength`.
+    stress : Value, shape (n,)
+        Dislocation stress. [Pa]
+
+    Returns
+    -------
+    Value, shape (n,)
+        The excess over the baseline that goes with it. [Pa]
+    """
+    if not laws.superposed:
+        return stress
+    obstacle = inputs["strength.obstacle_mpa"]
+    positive = value_of(stress) > 0.0
+    both = apply(
+        COMBINED_STRESS,
+        stress=kept_where(stress, positive),
+        obstacle=obstacle,
+        exponent=inputs["strength.superposition_exponent"],
+    )
+    return select(positive.astype(np.int8), {1: both, 0: stress + obstacle})
 
 
 def energy(
@@ -317,6 +382,23 @@ def _baseline(laws: Laws, inputs: Mapping[str, Value], grain_size: Value) -> Val
 def _by_scale(inputs: Mapping[str, Value], scale: NDArray[np.int8], key: str) -> Value:
     by_code = {k: inputs.get(f"{s}.{key}", _MISSING) for k, s in enumerate(SECTIONS)}
     return select(scale, by_code)
+
+
+def _tested(
+    laws: Laws, inputs: Mapping[str, Value], start: Start
+) -> tuple[Value | None, Value, Value]:
+    """Give pressure, strain of the test and flow stress as tested, by the route."""
+    if laws.route == "flow":
+        return None, 0.0, start.mean
+    present = [k for k in range(len(SCALES)) if bool((start.scale == k).any())]
+    pressure = select(start.scale, {k: _pressure(laws, k, start) for k in present})
+    tested = apply(
+        TABOR_FLOW_STRESS,
+        pressure=pressure,
+        intercept=_by_scale(inputs, start.scale, "intercept_mpa"),
+        constraint_factor=_by_scale(inputs, start.scale, "constraint_factor"),
+    )
+    return pressure, select(start.scale, {k: _strain(inputs, k, start) for k in present}), tested
 
 
 def _pressure(laws: Laws, code: int, start: Start) -> Value:

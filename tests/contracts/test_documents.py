@@ -289,7 +289,7 @@ BAD: list[tuple[dict[str, Any], str]] = [
         "strength.friction_mpa",
     ),
     (
-        {"strength": {"route": "indent", "baseline_mpa": 50.0, "superposition_exponent": 2.0}},
+        {"strength": {"route": "indent", "baseline_mpa": 50.0, "superposition_exponent": 2.5}},
         "strength.superposition_exponent",
     ),
     ({"indentation": {"initial_hardening_mpa": 1700.0}}, "indentation"),

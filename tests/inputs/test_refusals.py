@@ -244,7 +244,9 @@ def test_a_new_metal_needs_its_constants(refusals: Refusals, sheet: str) -> None
 
 def test_says_everything_at_once_and_once_each(refusals: Refusals, sheet: str) -> None:
     text = sheet.replace("edge = 0.5", "edge = 0.4").replace('"copper"', '"coper"')
-    text = text.replace("[strength]", "[strength]\nobstacle_mpa = 3").replace("CS-2026-31", "a/b")
+    text = text.replace("[strength]", "[strength]\nsuperposition_exponent = 3").replace(
+        "CS-2026-31", "a/b"
+    )
     causes = refusals(text)
     assert [cause.split(",")[1] for cause in causes] == [
         " line 2",

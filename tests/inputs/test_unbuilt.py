@@ -46,8 +46,6 @@ def test_a_section_asks_for_what_is_not_there_yet(
     ("old", "new", "words"),
     [
         ('route = "indent"', 'route = "both"', "Comparing the indent and the flow route"),
-        ("baseline_mpa", "obstacle_mpa = 40.0\nbaseline_mpa", "Joining an obstacle stress"),
-        ("baseline_mpa", "superposition_exponent = 1.5\nbaseline_mpa", "Superposition by"),
         ("{ value = 50.0, u = 15.0 }", '{ from_coupon = "A0" }', "taken from a coupon"),
         ("{ value = 50.0, u = 15.0 }", '{ calibration = "C1" }', "taken from a calibration"),
         ("shear_modulus_gpa", "melting_point_k = 1358\nshear_modulus_gpa", "for temperature"),

@@ -102,6 +102,9 @@ friction_mpa = { value = 25.5, u = 0.4 }
 hall_petch_mpa_m05 = { value = 0.11, u = 0.002 }
 terms_mpa = { solutes = { value = 12.0, u = 0.2 } }
 """
+OBSTACLE: Final = (
+    "obstacle_mpa = { value = 60.0, u = 1.0 }\nsuperposition_exponent = { value = 1.6, u = 0.03 }\n"
+)
 ROUTE_INDENT: Final = GIVEN.format(route='"indent"')
 ROUTE_FLOW: Final = GIVEN.format(route='"flow"')
 
@@ -122,6 +125,7 @@ CASES: Final[Mapping[str, str]] = {
     + "[hardening]\nslope_n_per_m = { value = 10.3, u = 0.15 }\n"
     + SPACING,
     "parts": HEAD + INDENT + PARTS + UNWOUND + OTHERS + CONSTANT + GRAIN,
+    "obstacle": HEAD + INDENT + ROUTE_INDENT + OBSTACLE + UNWOUND + OTHERS + CONSTANT + SPACING,
 }
 
 

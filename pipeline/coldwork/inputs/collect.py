@@ -127,6 +127,8 @@ def _used_keys(laws: Laws, given: Mapping[KeyName, Given], *, curves: bool) -> l
         unused |= {("hardening", "taylor_factor"), ("hardening", "coefficient")}
     if ("indentation", "HBW", "representative_strain") in given:
         unused.add(("indentation", "HBW", "strain_ratio"))
+    if not laws.superposed:
+        unused.add(("strength", "superposition_exponent"))
     unused |= _unused_of_crystal(laws)
     unread = set() if laws.route == "indent" else {"indentation"}
     if not curves:

@@ -43,6 +43,8 @@ WINDOWS: Final[Mapping[str, tuple[float, float]]] = {
     "friction_mpa": (0.0, 1e5),
     "hall_petch_mpa_m05": (0.0, 100.0),
     "terms_mpa": (-1e5, 1e5),
+    "obstacle_mpa": (0.0, 1e5),
+    "superposition_exponent": (1.0, 2.0),
     "constraint_factor": (0.1, 100.0),
     "intercept_mpa": (-1e5, 1e5),
     "representative_strain": (1e-6, 2.0),

@@ -66,6 +66,7 @@ def laws_of(tables: Mapping[str, Any], crystal: Crystal | None = None) -> Laws:
         fractions=fractions,
         uniform_mix=character.get("mix") == "uniform",
         flow_from=_flow_from(route, tables["files"]),
+        superposed="obstacle_mpa" in strength,
     )
 
 

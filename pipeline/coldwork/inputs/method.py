@@ -48,6 +48,8 @@ class Laws:
         Whose lines are meant, where elasticity is anisotropic.
     hexagonal : bool
         Whether the crystal is hexagonal and not cubic.
+    superposed : bool
+        Whether an obstacle stress joins the dislocation stress.
     """
 
     route: str
@@ -63,6 +65,7 @@ class Laws:
     flow_from: str = ""
     slip: SlipSystem | None = None
     hexagonal: bool = False
+    superposed: bool = False
 
 
 @dataclass(frozen=True)

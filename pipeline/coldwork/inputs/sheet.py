@@ -19,6 +19,7 @@ from coldwork.inputs.laws import choice, laws_of, refuse_bad_mix
 from coldwork.inputs.limits import limits_of, refuse_bad_limits, refuse_bad_testers, testers_of
 from coldwork.inputs.method import Laws, Method
 from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
+from coldwork.inputs.ranges import refuse_bad_ranges
 from coldwork.inputs.source import Sheet, read_sheet
 from coldwork.inputs.structure import refuse_misfits
 from coldwork.inputs.tables import Tables, tables_of
@@ -86,6 +87,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_misfits(causes)
     refuse_missing_constants(causes, material)
     refuse_bad_mix(causes)
+    refuse_bad_ranges(causes, given)
     crystal = crystal_of(causes, given, material)
     refuse_bad_testers(causes)
     refuse_bad_limits(causes)

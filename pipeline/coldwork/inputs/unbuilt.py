@@ -29,7 +29,6 @@ _SIZE_EFFECTS: Final[Mapping[str, str]] = {
     "strength": "The indentation size effect from a size strength is not built yet.",
 }
 _KEYS: Final[Mapping[KeyPath, str]] = {
-    ("strength", "obstacle_mpa"): "Joining an obstacle stress by an exponent is not built yet.",
     ("uncertainty", "draws"): "Draws belong to Monte Carlo, which is not built yet.",
     ("uncertainty", "seed"): "A seed belongs to Monte Carlo, which is not built yet.",
     ("strength", "baseline_from_coupon"): "A baseline from a coupon is not built yet.",
@@ -64,7 +63,6 @@ def refuse_unbuilt(causes: Causes) -> None:
         why = f"It belongs to {job}, which is not built yet."
         _refuse_key(causes, ("material", key), why)
     _refuse_size_effects(causes)
-    _refuse_exponent(causes)
     _refuse_values_from_elsewhere(causes)
     _refuse_temperature_correction(causes)
 
@@ -98,19 +96,6 @@ def _refuse_size_effects(causes: Causes) -> None:
             del _table(causes, section)["size_effect"]  # said where it need not be
         for key, choice in _DEPTH_KEYS.items():
             _refuse_key(causes, (*section, key), _SIZE_EFFECTS[choice])
-
-
-def _refuse_exponent(causes: Causes) -> None:
-    table = _table(causes, ("strength",))
-    exponent = as_number(table.get("superposition_exponent"))
-    if exponent is not None and exponent != 1.0:
-        causes.add(
-            ("strength", "superposition_exponent"),
-            f"{exponent:g} cannot be used",
-            "Superposition by an exponent other than 1 is not built yet.",
-            "Leave the key out, or write 1.",
-        )
-        del table["superposition_exponent"]
 
 
 def _refuse_values_from_elsewhere(causes: Causes) -> None:

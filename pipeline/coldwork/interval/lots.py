@@ -12,8 +12,9 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from coldwork.chain import Start
+from coldwork.chain import Start, with_obstacle
 from coldwork.inputs.method import Laws
+from coldwork.interval.before import before_superposition
 from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_ends
 from coldwork.interval.reach import LATE, Reach
 from coldwork.measured import Measured, Value, value_of
@@ -211,7 +212,12 @@ class LotSums:
         if "grain_size_um" in spreads:
             size = Measured.of_input("grain_size_um", grain)
         start = Start(blank, np.full(n, -1, dtype=np.int8), blank, blank, size, blank, 0.0)
-        return Reach(laws, inputs, spreads, start, stress)
+        if laws.unwinding:  # the obstacle's steep end is unwound to nothing
+            return Reach(laws, inputs, spreads, start, stress)
+        plain = {name: value_of(x) for name, x in inputs.items()}
+        excess = value_of(with_obstacle(laws, plain, stress.value))
+        before = before_superposition(laws, inputs, excess, np.zeros(n))
+        return Reach(laws, inputs, spreads, start, stress, before=before)
 
     def _blanked(self, name: str, mean: LotMean) -> LotMean:
         if name not in LATE:

@@ -9,7 +9,8 @@ them on a logarithmic scale:
     upper = y exp(+sqrt(A^2 + (k m)^2 + 2 r A k m)),  A = ln(y_U / y)
 
 with m the joint relative uncertainty of the late inputs and r the correlation
-of s with their joint effect on ln y.
+of s with their joint effect on ln y. Beside obstacles s -+ k u(s) gives way to the
+ends of `before`.
 """
 
 from collections.abc import Callable, Mapping
@@ -21,6 +22,7 @@ from numpy.typing import NDArray
 
 from coldwork.chain import Start, energy, energy_per_volume
 from coldwork.inputs.method import Laws
+from coldwork.interval.before import Before
 from coldwork.interval.combine import Ends, Spread, combine
 from coldwork.measured import Measured, Value, value_of
 from coldwork.statistics.student import student_probability, student_quantile
@@ -62,6 +64,8 @@ class Reach:
         Dislocation stress, of the unwound state where it is unwound. [Pa]
     own_only : bool, optional
         Take shared inputs as exact (`basis = "own"`).
+    before : Before or None, optional
+        The stress before superposition, where ends are taken in that.
     """
 
     def __init__(
@@ -73,8 +77,10 @@ class Reach:
         stress: Measured,
         *,
         own_only: bool = False,
+        before: Before | None = None,
     ) -> None:
         self._laws = laws
+        self._before = before
         self._inputs = inputs
         self._plain = {name: value_of(x) for name, x in inputs.items()}
         self._spreads = spreads
@@ -96,8 +102,41 @@ class Reach:
     def with_shared_exact(self) -> "Reach":
         """Give the same with shared inputs taken as exact (`basis = "own"`)."""
         return Reach(
-            self._laws, self._inputs, self._spreads, self._start, self.stress, own_only=True
+            self._laws,
+            self._inputs,
+            self._spreads,
+            self._start,
+            self.stress,
+            own_only=True,
+            before=self._before,
         )
+
+    @property
+    def mapped(self) -> bool:
+        """Whether ends of the stress are taken before superposition."""
+        return self._before is not None
+
+    def stress_at(self, k: NDArray[np.float64]) -> NDArray[np.float64]:
+        """Give the dislocation stress at k standard uncertainties from its value, in Pa."""
+        with np.errstate(invalid="ignore", over="ignore"):
+            steps = k * self.u_stress.u
+        return self.stress.value + steps if self._before is None else self._before.moved(steps)
+
+    def stress_interval(self, probability: float) -> Ends:
+        """Give the dislocation stress's interval whose ends each have P(t <= k), in Pa."""
+        k = student_quantile(probability, self.u_stress.degrees_of_freedom)
+        return Ends(self.stress_at(-k), self.stress_at(k))
+
+    def stress_above(self, limit: float) -> NDArray[np.float64]:
+        """Give the probability that the dislocation stress is above a limit. [Pa]."""
+        below = limit < self.stress.value
+
+        def met(k: NDArray[np.float64]) -> NDArray[np.bool_]:
+            return np.where(below, self.stress_at(-k) <= limit, self.stress_at(k) >= limit)
+
+        k = _first_true(met, self.stress.value.shape)
+        p = student_probability(k, self.u_stress.degrees_of_freedom)
+        return np.where(np.isfinite(self.u_stress.u), np.where(below, p, 1.0 - p), np.nan)
 
     def degrees_of_freedom(self, name: str) -> NDArray[np.float64]:
         """Give effective degrees of freedom of a quantity; where s <= 0, those of s."""
@@ -170,12 +209,12 @@ class Reach:
     def _ends_above(self, name: str, k: NDArray[np.float64]) -> Ends:
         """Give the ends where s > 0."""
         y = value_of(self._late[name])
-        s, u = self.stress.value, self.u_stress.u
+        s_down, s_up = self.stress_at(-k), self.stress_at(k)
         with np.errstate(invalid="ignore", divide="ignore", over="ignore"):
-            y_down = self._at(np.where(s - k * u > 0.0, s - k * u, np.nan), name)
-            y_up = self._at(np.where(self.present, s + k * u, np.nan), name)
+            y_down = self._at(np.where(s_down > 0.0, s_down, np.nan), name)
+            y_up = self._at(np.where(self.present, s_up, np.nan), name)
             at_zero = 0.0 if name in BELOW_ZERO else np.inf
-            y_down = np.where(self.present & (s - k * u <= 0.0), at_zero, y_down)
+            y_down = np.where(self.present & (s_down <= 0.0), at_zero, y_down)
             y_low, y_high = np.minimum(y_down, y_up), np.maximum(y_down, y_up)
             m, r = self._late_part(name)
             down, up = np.log(y / y_low), np.log(y_high / y)
@@ -192,7 +231,7 @@ class Reach:
         here = ~self.present & np.isfinite(self.u_stress.u)
         lower = np.where(here, 0.0, np.nan)
         upper = np.full(here.shape, np.nan)
-        top = self.stress.value + k * self.u_stress.u
+        top = self.stress_at(k)
         rows = np.flatnonzero(here & (top > 0.0))
         if rows.size:
             inputs = {n: _take_value(x, rows) for n, x in self._inputs.items()}

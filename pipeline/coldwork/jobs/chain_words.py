@@ -1,4 +1,4 @@
-"""What is said of each step of the chain, for records and `trace`: tables, no code."""
+"""What is said of each step of the chain, for records and `trace`: tables, hardly any code."""
 
 from typing import Final, NamedTuple
 
@@ -9,6 +9,7 @@ __all__ = [
     "FLOW",
     "FLOW_OF_CURVE",
     "INDENT",
+    "OVER_BASELINE",
     "REPORTED",
     "UNWOUND",
     "Line",
@@ -52,13 +53,6 @@ FLOW: Final = (
         ("<mean>",),
     ),
     _BASELINE,
-    Line(
-        "dislocation stress",
-        "relation 4",
-        "dislocation_stress_mpa",
-        "flow stress less the baseline",
-        ("flow_stress_mpa", "baseline_stress_mpa"),
-    ),
 )
 FLOW_OF_CURVE: Final = (
     Line(
@@ -96,41 +90,68 @@ INDENT: Final = (
     ),
     _BASELINE,
 )
-AS_INDENTED: Final = (
-    Line(
-        "dislocation stress",
-        "relation 4",
-        "dislocation_stress_mpa",
-        "flow stress under the indent less the baseline",
-        ("indented_stress_mpa", "baseline_stress_mpa"),
-    ),
-)
-UNWOUND: Final = (
-    Line(
-        "excess over the baseline",
-        "relation 4",
-        "excess_mpa",
-        "flow stress under the indent less the baseline",
-        ("indented_stress_mpa", "baseline_stress_mpa"),
-    ),
-    Line(
+
+
+def _over(what: str, stress: str) -> tuple[Line, Line]:
+    """Tell of the excess over the baseline, and of it as the dislocation stress."""
+    inputs = (stress, "baseline_stress_mpa")
+    told = f"{what} less the baseline"
+    return (
+        Line("excess over the baseline", "relation 4", "excess_mpa", told, inputs),
+        Line("dislocation stress", "relation 4", "dislocation_stress_mpa", told, inputs),
+    )
+
+
+def _beside(step: str, quantity: str) -> Line:
+    return Line(
+        step,
+        "relation 4; Kocks, Argon and Ashby 1975; Ardell 1985 (from memory)",
+        quantity,
+        "what the obstacle stress leaves of the excess: (excess^q - obstacle^q)^(1/q); at or below "
+        "the obstacle stress nothing is left, and the difference stands here",
+        ("excess_mpa", "<obstacle>"),
+    )
+
+
+def _unwound(stress: str) -> Line:
+    return Line(
         "dislocation stress",
         "relation 6, Voce 1948; Kocks and Mecking 2003",
         "dislocation_stress_mpa",
         "without the hardening that the indent's own strain added; at or above saturation nothing "
         "is taken out",
-        ("excess_mpa", "<unwinding>"),
-    ),
+        (stress, "<unwinding>"),
+    )
+
+
+_OF_FLOW = _over("flow stress", "flow_stress_mpa")
+_OF_INDENT = _over("flow stress under the indent", "indented_stress_mpa")
+_ALONE: Final = _beside("dislocation stress", "dislocation_stress_mpa")
+_TESTED: Final = _beside("dislocation stress under the indent", "tested_stress_mpa")
+
+# Each by whether an obstacle stress joins.
+OVER_BASELINE: Final = {False: _OF_FLOW[1:], True: (_OF_FLOW[0], _ALONE)}
+AS_INDENTED: Final = {False: _OF_INDENT[1:], True: (_OF_INDENT[0], _ALONE)}
+UNWOUND: Final = {
+    False: (_OF_INDENT[0], _unwound("excess_mpa")),
+    True: (_OF_INDENT[0], _TESTED, _unwound("tested_stress_mpa")),
+}
+_SUM: Final = Line(
+    "flow stress of the state reported",
+    "relation 4",
+    "flow_stress_mpa",
+    "dislocation stress plus baseline",
+    ("dislocation_stress_mpa", "baseline_stress_mpa"),
 )
-REPORTED: Final = (
-    Line(
-        "flow stress of the state reported",
-        "relation 4",
-        "flow_stress_mpa",
-        "dislocation stress plus baseline",
-        ("dislocation_stress_mpa", "baseline_stress_mpa"),
+REPORTED: Final = {
+    False: (_SUM,),
+    True: (
+        _SUM._replace(
+            explanation="dislocation and obstacle stress joined as they were parted, plus baseline",
+            inputs=(*_SUM.inputs, "<obstacle>"),
+        ),
     ),
-)
+}
 _PARTS: Final = (
     "dislocation_stress_mpa",
     "hardening.taylor_factor",

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from coldwork.chain import Start, Strength, strength
 from coldwork.inputs.method import Method
 from coldwork.intake.coupons import Coupons
+from coldwork.interval.before import before_superposition
 from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_ends
 from coldwork.interval.reach import LATE, Reach
 from coldwork.measured import Measured, Value, broadcast, value_of
@@ -169,7 +170,8 @@ def evaluate(
     half = strength(method.laws, inputs, start)
     n = start.scale.shape[0]
     stress = _measured(half.dislocation_stress, n)
-    reach = Reach(method.laws, inputs, spreads, start, stress)
+    before = before_superposition(method.laws, inputs, value_of(half.excess), value_of(half.strain))
+    reach = Reach(method.laws, inputs, spreads, start, stress, before=before)
     results = _strengths(method, start, half, n) | reach.results
     probability = (1.0 + method.coverage) / 2.0
     blank = np.full(n, np.nan)
@@ -182,6 +184,8 @@ def evaluate(
             ends[name] = Ends(blank, blank)
         elif late:
             ends[name] = reach.interval(name, probability)
+        elif name == "dislocation_stress_mpa" and reach.mapped:
+            ends[name] = reach.stress_interval(probability)
         else:
             ends[name] = strength_ends(result.value, combined[name], probability)
     return Evaluated(start, half, reach, results, combined, ends, spreads)

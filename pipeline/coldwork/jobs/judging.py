@@ -2,7 +2,7 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import Any, TypeAlias
+from typing import Any, Final, TypeAlias
 
 import numpy as np
 import pyarrow as pa
@@ -31,6 +31,7 @@ __all__ = ["Held", "decide_slice", "decisions_table", "find_in_slice"]
 
 _Floats = NDArray[np.float64]
 _Column: TypeAlias = "pa.Array[Any]"
+_STRESS: Final = "dislocation_stress_mpa"
 
 
 def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
@@ -67,7 +68,7 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
             upper_stress_end=evaluated.ends["dislocation_stress_mpa"].upper,
             unwinding=method.laws.unwinding,
             unwound=half.unwound,
-            indented_stress=value_of(half.excess),
+            indented_stress=value_of(half.tested_stress),
             saturation_stress=np.nan if saturation is None else saturation.value,
             density=results["dislocation_density_per_m2"].value,
             radius_ratio=evaluated.reach.radius_ratio,
@@ -214,6 +215,8 @@ def _one_sided(
 ) -> Ends:
     if quantity in LATE:
         return reach.interval(quantity, coverage)
+    if quantity == _STRESS and reach.mapped:
+        return reach.stress_interval(coverage)
     return strength_ends(found.result.value, combined, coverage)
 
 
@@ -231,4 +234,6 @@ def _above(
     si = float(units.to_si(limit, unit))
     if quantity in LATE:
         return reach.probability_above(quantity, si)
+    if quantity == _STRESS and reach.mapped:
+        return reach.stress_above(si)
     return strength_probability_above(value, combined, si)

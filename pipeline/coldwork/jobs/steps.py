@@ -20,6 +20,7 @@ from coldwork.jobs.chain_words import (
     FLOW,
     FLOW_OF_CURVE,
     INDENT,
+    OVER_BASELINE,
     REPORTED,
     UNWOUND,
     Line,
@@ -49,11 +50,17 @@ _BASELINE_INPUTS: Final = (
     "strength.friction_mpa",
     "strength.hall_petch_mpa_m05",
 )
+_OBSTACLE_INPUTS: Final = ("strength.obstacle_mpa", "strength.superposition_exponent")
 _ELASTICITY: Final = (
     "material.poisson_ratio",
     *(f"material.{name}_gpa" for name in HEXAGONAL_CONSTANTS),
 )
-_WITHOUT_COLUMN: Final = ("pressure_mpa", "indented_stress_mpa", "excess_mpa")
+_WITHOUT_COLUMN: Final = (
+    "pressure_mpa",
+    "indented_stress_mpa",
+    "excess_mpa",
+    "tested_stress_mpa",
+)
 _FOR_ALL_SCALES: Final = ("initial_hardening_mpa", "saturation_stress_mpa")
 
 
@@ -153,10 +160,11 @@ def _lines(laws: Laws) -> tuple[Line, ...]:
     """Pick the steps that these laws take, in order."""
     energy = (DENSITY[laws.taylor], *ENERGY)
     if laws.flow_from == "curves":
-        return (*FLOW_OF_CURVE, *energy)
+        return (*FLOW_OF_CURVE, *OVER_BASELINE[laws.superposed], *energy)
     if laws.route == "flow":
-        return (*FLOW, *energy)
-    return (*INDENT, *(UNWOUND if laws.unwinding else AS_INDENTED), *REPORTED, *energy)
+        return (*FLOW, *OVER_BASELINE[laws.superposed], *energy)
+    state = UNWOUND if laws.unwinding else AS_INDENTED
+    return (*INDENT, *state[laws.superposed], *REPORTED[laws.superposed], *energy)
 
 
 def _values(evaluated: Evaluated) -> Mapping[str, Value]:
@@ -166,6 +174,7 @@ def _values(evaluated: Evaluated) -> Mapping[str, Value]:
         "pressure_mpa": np.nan if half.pressure is None else half.pressure,
         "indented_stress_mpa": half.indented_stress,
         "excess_mpa": half.excess,
+        "tested_stress_mpa": half.tested_stress,
         **evaluated.results,
     }
 
@@ -188,6 +197,7 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
         "<mean>": (REPEATABILITY, *(tester.bias.name for tester in method.testers)),
         "<curve>": (REPEATABILITY, *(n for n in method.inputs if n.startswith("tensile."))),
         "<baseline>": tuple(baseline),
+        "<obstacle>": tuple(name for name in method.inputs if name in _OBSTACLE_INPUTS),
         "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
         "<unwinding>": _of_indentation(method, *unwinding),
         "<fixed radius>": fixed,
