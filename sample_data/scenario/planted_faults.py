@@ -14,6 +14,7 @@ from scenario import (
     faults_of_flow,
     faults_of_grains,
     faults_of_indents,
+    faults_of_instruments,
     faults_of_rows,
 )
 from scenario.tables import Table
@@ -49,7 +50,7 @@ repeatability = "pooled"
 """
 
 
-def files() -> dict[str, str]:
+def files() -> dict[str, str | bytes]:
     """Make the batches: path and content of every file."""
     batches = (
         faults_of_rows.batch(),
@@ -60,8 +61,9 @@ def files() -> dict[str, str]:
         faults_of_branch.batch(),
         faults_of_curves.pulled_batch(),
         faults_of_curves.pressed_batch(),
+        faults_of_instruments.batch(),
     )
-    found = {"planted-faults/house.toml": _HOUSE}
+    found: dict[str, str | bytes] = {"planted-faults/house.toml": _HOUSE}
     table = Table(("batch", "coupon_id", "reading_no", "rule_or_reason", "file", "line", "planted"))
     for batch in batches:
         found |= batch.files()

@@ -99,7 +99,7 @@ class Batch:
     sheet : str
         Its batch sheet.
     readings : sequence of str
-        Files of readings, indents or points; the first one is written to first.
+        Tidy files of readings, indents or points; the first one is written to first.
     flow : bool
         Whether the readings are points of flow curves.
     """
@@ -113,17 +113,19 @@ class Batch:
         self._coupons = Table(_COUPON_COLUMNS)
         columns = _POINT_COLUMNS if flow else _INDENT_COLUMNS
         self._readings = {name: Table(columns) for name in readings}
-        self._file = readings[0]
+        self._file = readings[0] if readings else ""
         self._extra: dict[str, Table] = {}
+        self._whole: dict[str, str | bytes] = {}
         self._clock = datetime(2026, 7, 30, 8, 0, tzinfo=YARD_TIME)
         self._count: dict[str, int] = {}
         self._places: dict[tuple[str, str], tuple[str, int]] = {}
 
-    def files(self) -> dict[str, str]:
+    def files(self) -> dict[str, str | bytes]:
         """Give path and content of every file of the batch."""
         tables = {"coupons.csv": self._coupons, **self._readings, **self._extra}
-        texts = {"batch.toml": self._sheet} | {name: t.text() for name, t in tables.items()}
-        return {f"planted-faults/{self.folder}/{name}": text for name, text in texts.items()}
+        texts = {name: table.text() for name, table in tables.items()}
+        files = {"batch.toml": self._sheet, **texts, **self._whole}
+        return {f"planted-faults/{self.folder}/{name}": content for name, content in files.items()}
 
     def turn_to(self, file: str) -> None:
         """Write what follows to another file of readings."""
@@ -132,6 +134,10 @@ class Batch:
     def table(self, file: str, columns: Sequence[str]) -> Table:
         """Start a further table."""
         return self._extra.setdefault(file, Table(columns))
+
+    def whole(self, file: str, content: str | bytes) -> None:
+        """Add a file as an instrument left it, or its layout."""
+        self._whole[file] = content
 
     def coupon(self, name: str, condition: str, cells: Mapping[str, str] | None = None) -> None:
         """Add a coupon."""

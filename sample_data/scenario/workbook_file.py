@@ -7,12 +7,12 @@ may stand there as 0.13710000000000000.
 
 import io
 import zipfile
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from datetime import datetime
 from typing import Final, TypeAlias
 from xml.sax.saxutils import escape, quoteattr
 
-__all__ = ["Cell", "Formula", "workbook"]
+__all__ = ["Cell", "Formula", "Percentage", "Trouble", "workbook"]
 
 _HEAD: Final = '<?xml version="1.0" encoding="UTF-8" standalone="yes"?>\n'
 _SHEETS: Final = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
@@ -21,36 +21,60 @@ _PACKAGE: Final = "http://schemas.openxmlformats.org/package/2006"
 _MEDIA: Final = "application/vnd.openxmlformats-officedocument.spreadsheetml"
 _DAY_ZERO: Final = datetime(1899, 12, 30)  # noqa: DTZ001 - workbooks know no zones
 _TIME_STYLE: Final = 1
+_PERCENTAGE_STYLE: Final = 2
 _STYLES: Final = (
     f'{_HEAD}<styleSheet xmlns="{_SHEETS}"><numFmts count="1"><numFmt numFmtId="164" '
     'formatCode="yyyy\\-mm\\-dd\\ hh:mm:ss"/></numFmts><fonts count="1"><font><sz val="11"/>'
     '<name val="Calibri"/></font></fonts><fills count="2"><fill><patternFill patternType="none"/>'
     '</fill><fill><patternFill patternType="gray125"/></fill></fills><borders count="1"><border>'
     '<left/><right/><top/><bottom/><diagonal/></border></borders><cellStyleXfs count="1">'
-    '<xf numFmtId="0" fontId="0" fillId="0" borderId="0"/></cellStyleXfs><cellXfs count="2">'
+    '<xf numFmtId="0" fontId="0" fillId="0" borderId="0"/></cellStyleXfs><cellXfs count="3">'
     '<xf numFmtId="0" fontId="0" fillId="0" borderId="0" xfId="0"/><xf numFmtId="164" fontId="0" '
+    'fillId="0" borderId="0" xfId="0" applyNumberFormat="1"/><xf numFmtId="10" fontId="0" '
     'fillId="0" borderId="0" xfId="0" applyNumberFormat="1"/></cellXfs></styleSheet>'
 )
 
 
 class Formula:
-    """A formula and the value that was worked out when the workbook was saved."""
+    """A formula and the value that was worked out when the workbook was saved, if it was."""
 
-    def __init__(self, text: str, value: float) -> None:
+    def __init__(self, text: str, value: float | None = None) -> None:
         self.text = text
         self.value = value
 
 
-Cell: TypeAlias = str | float | datetime | Formula | None
+class Percentage:
+    """A number that is shown as a percentage."""
+
+    def __init__(self, value: float) -> None:
+        self.value = value
 
 
-def workbook(sheets: Mapping[str, Sequence[Sequence[Cell]]]) -> bytes:
+class Trouble:
+    """An error of the spreadsheet, such as ``#N/A``."""
+
+    def __init__(self, code: str) -> None:
+        self.code = code
+
+
+Cell: TypeAlias = str | float | datetime | Formula | Percentage | Trouble | None
+
+
+def workbook(
+    sheets: Mapping[str, Sequence[Sequence[Cell]]],
+    hidden: Collection[int] = (),
+    merged: Sequence[str] = (),
+) -> bytes:
     """Write a workbook.
 
     Parameters
     ----------
     sheets : mapping of str to rows of cells
         By name; None is an empty cell. A time is meant as the clock on the wall showed it.
+    hidden : collection of int
+        Rows that every sheet hides, from 1.
+    merged : sequence of str
+        Ranges that every sheet merges, such as ``D7:D8``.
 
     Returns
     -------
@@ -59,7 +83,7 @@ def workbook(sheets: Mapping[str, Sequence[Sequence[Cell]]]) -> bytes:
     """
     strings: dict[str, int] = {}
     parts = {
-        f"xl/worksheets/sheet{number}.xml": _sheet(rows, strings)
+        f"xl/worksheets/sheet{number}.xml": _sheet(rows, strings, hidden, merged)
         for number, rows in enumerate(sheets.values(), 1)
     }
     parts = {
@@ -90,13 +114,21 @@ def _zipped(parts: Mapping[str, str]) -> bytes:
     return target.getvalue()
 
 
-def _sheet(rows: Sequence[Sequence[Cell]], strings: dict[str, int]) -> str:
+def _sheet(
+    rows: Sequence[Sequence[Cell]],
+    strings: dict[str, int],
+    hidden: Collection[int],
+    merged: Sequence[str],
+) -> str:
+    state = {True: ' hidden="1"', False: ""}
     body = "".join(
-        f'<row r="{number}">{_row(number, row, strings)}</row>'
+        f'<row r="{number}"{state[number in hidden]}>{_row(number, row, strings)}</row>'
         for number, row in enumerate(rows, 1)
         if any(cell is not None for cell in row)
     )
-    return f'{_HEAD}<worksheet xmlns="{_SHEETS}"><sheetData>{body}</sheetData></worksheet>'
+    ranges = "".join(f'<mergeCell ref="{each}"/>' for each in merged)
+    after = f'<mergeCells count="{len(merged)}">{ranges}</mergeCells>' if merged else ""
+    return f'{_HEAD}<worksheet xmlns="{_SHEETS}"><sheetData>{body}</sheetData>{after}</worksheet>'
 
 
 def _row(number: int, row: Sequence[Cell], strings: dict[str, int]) -> str:
@@ -115,7 +147,12 @@ def _cell(name: str, cell: Cell, strings: dict[str, int]) -> str:
         days = since.days + since.seconds / 86400
         return f'<c r="{name}" s="{_TIME_STYLE}"><v>{days:.17g}</v></c>'
     if isinstance(cell, Formula):
-        return f'<c r="{name}"><f>{escape(cell.text)}</f><v>{cell.value:.17g}</v></c>'
+        value = "" if cell.value is None else f"<v>{cell.value:.17g}</v>"
+        return f'<c r="{name}"><f>{escape(cell.text)}</f>{value}</c>'
+    if isinstance(cell, Trouble):
+        return f'<c r="{name}" t="e"><v>{cell.code}</v></c>'
+    if isinstance(cell, Percentage):
+        return f'<c r="{name}" s="{_PERCENTAGE_STYLE}"><v>{cell.value:.17g}</v></c>'
     return f'<c r="{name}"><v>{cell:.17g}</v></c>'
 
 

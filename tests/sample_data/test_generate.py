@@ -6,6 +6,7 @@ import sys
 from pathlib import Path
 
 import pytest
+from python_calamine import CalamineWorkbook
 
 SAMPLE_DATA = Path(__file__).resolve().parents[2] / "sample_data"
 SHELF = SAMPLE_DATA / "planted-faults"
@@ -45,12 +46,23 @@ def test_the_script_reads_nothing_of_the_package() -> None:
     assert not any("coldwork" in text for text in texts)
 
 
+def row_at(fault: dict[str, str]) -> list[str]:
+    """The cells where a fault is said to stand; of a workbook as another reader gives them."""
+    name, _, sheet = fault["file"].partition("!")
+    path, place = SHELF / fault["batch"] / name, int(fault["line"]) - 1
+    if sheet:
+        rows = CalamineWorkbook.from_path(path).get_sheet_by_name(sheet).to_python()
+        return [str(cell).removesuffix(".0") for cell in rows[place]]
+    line = path.read_text(encoding="utf-8").splitlines()[place]
+    mark = "\t" if "\t" in line else ","
+    return next(csv.reader([line], delimiter=mark))
+
+
 @pytest.mark.parametrize("fault", listed(), ids=numbered)
 def test_a_listed_fault_points_at_the_row_it_names(fault: dict[str, str]) -> None:
-    path = SHELF / fault["batch"] / fault["file"]
-    line = path.read_text(encoding="utf-8").splitlines()[int(fault["line"]) - 1]
-    cells = next(csv.reader([line]))
+    cells = row_at(fault)
     name = fault["coupon_id"].removeprefix("'")
-    assert not name or cells[0] == name
+    below_the_rows = fault["rule_or_reason"] == "printed-mean-differs"
+    assert not name or cells[0] == ("average;413" if below_the_rows else name)
     assert not fault["reading_no"] or cells[1] == fault["reading_no"]
     assert fault["planted"]
