@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from tests.reduce.made_curves import (
     COPPER,
     GEOMETRY,
+    METALS,
     NOISY,
     POWER,
     ROLLED_COPPER,
@@ -39,6 +40,27 @@ class Made:
 
 def clean(metal: Metal, rng: np.random.Generator) -> Made:
     return Made(recorded(metal, NOISY, rng), BY_EXTENSION, None)
+
+
+def clean_to_the_break(rng: np.random.Generator) -> Made:
+    """Any of the metals, sampled and noisy as may be, with a neck short or long, steep or not."""
+    metal = list(METALS.values())[int(rng.integers(len(METALS)))]
+    density = 10.0 ** rng.uniform(-1.0, 0.2)
+    past, fall = 10.0 ** rng.uniform(-2.0, -0.3), rng.uniform(0.03, 0.9)
+    plan = Plan(
+        elastic=max(12, int(400 * density)),
+        knee=int(1600 * density),
+        rest=int(3000 * density),
+        end=1.1 + past,
+        neck=past * metal.uniform / fall**0.25,
+        noise_stress=10.0 ** rng.uniform(4.3, 5.5),
+        noise_strain=10.0 ** rng.uniform(-6.0, -5.2),
+        toe=rng.uniform(0.0, 3e-4),
+        toe_stress=0.5e6,
+        fracture=int(rng.integers(30)),
+        still=int(rng.integers(40)),
+    )
+    return Made(recorded(metal, plan, rng), BY_EXTENSION, None)
 
 
 def clean_by_crosshead(rng: np.random.Generator) -> Made:
@@ -270,6 +292,7 @@ CLEAN: Final[Mapping[str, Callable[[np.random.Generator], Made]]] = {
     "steel": lambda rng: clean(STEEL, rng),
     "power law": lambda rng: clean(POWER, rng),
     "steel, crosshead": clean_by_crosshead,
+    "any, to its break": clean_to_the_break,
 }
 
 

@@ -4,10 +4,11 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from tests.reduce.made_curves import GEOMETRY, NOISY, STEEL, recorded
+from tests.reduce.made_curves import COPPER, GEOMETRY, NOISY, STEEL, recorded
 from tests.reduce.made_faults import (
     CLEAN,
     PLANTED,
+    clean_to_the_break,
     extensometer_off,
     grip_slip,
     lueders,
@@ -46,6 +47,12 @@ def test_nothing_is_found_on_a_clean_curve(name: str) -> None:
     for seed in range(SEEDS):
         made = CLEAN[name](np.random.default_rng([2, seed]))
         assert reduce_curve(made.curve, GEOMETRY, made.settings).faults == ()
+
+
+@pytest.mark.parametrize("seed", [0, 1, 7, 10])
+def test_the_tail_of_a_neck_is_no_break_and_a_toe_is_no_slip(seed: int) -> None:
+    made = clean_to_the_break(np.random.default_rng([3, seed]))
+    assert reduce_curve(made.curve, GEOMETRY, made.settings).faults == ()
 
 
 def test_a_finding_says_where_by_points_of_the_file() -> None:
@@ -90,6 +97,16 @@ def test_slip_is_told_from_unloading_by_its_suddenness() -> None:
     (fault,) = reduce_curve(slip.curve, GEOMETRY, slip.settings).faults
     assert fault.value > fault.limit
     assert fault.limit == pytest.approx(SLIP_DROP * STEEL.strength, rel=0.01)
+
+
+def test_a_knife_edge_that_jumps_past_yield_makes_no_plateau() -> None:
+    curve = recorded(COPPER, NOISY, np.random.default_rng(5))
+    assert curve.length is not None
+    past = np.arange(curve.length.size) > 775
+    jumped = replace(curve, length=curve.length + 0.0028 * GEOMETRY.gauge_length * past)
+    (fault,) = reduce_curve(jumped, GEOMETRY, CurveSettings()).faults
+    assert fault.kind == FaultKind.EXTENSOMETER_SLIP
+    assert fault.value == pytest.approx(0.0028, rel=0.02)
 
 
 def test_past_an_extensometer_that_was_taken_off_no_strain_is_used() -> None:

@@ -16,6 +16,7 @@ import pytest
 
 import coldwork
 from coldwork import rules
+from coldwork.jobs.run import run
 from coldwork.rules.curve import CURVE_RULES
 
 SHELF = Path(__file__).resolve().parents[2] / "sample_data" / "planted-faults"
@@ -134,11 +135,11 @@ def test_odd_names_stay_as_they_were_written() -> None:
 
 
 def test_the_shelf_is_processed_and_asks_for_a_person(tmp_path: Path) -> None:
-    run = [sys.executable, "-c", "import sys; from coldwork.cli import main; sys.exit(main())"]
+    command = [sys.executable, "-c", "import sys; from coldwork.cli import main; sys.exit(main())"]
     folders = [str(SHELF / batch) for batch in BATCHES]
     environment = os.environ | {"PYTHONPATH": os.pathsep.join(sys.path)}
     done = subprocess.run(
-        [*run, "process", *folders, "--into", str(tmp_path / "results")],
+        [*command, "process", *folders, "--no-plots", "--into", str(tmp_path / "results")],
         capture_output=True,
         text=True,
         check=False,
@@ -146,3 +147,11 @@ def test_the_shelf_is_processed_and_asks_for_a_person(tmp_path: Path) -> None:
     )
     assert done.returncode == 3, done.stderr
     assert len(list((tmp_path / "results").glob("*/manifest.json"))) == len(BATCHES)
+
+
+@pytest.mark.parametrize("batch", ["curves", "set-aside"])
+def test_pictures_bear_odd_curves_and_odd_names(batch: str, tmp_path: Path) -> None:
+    outcome = run(SHELF / batch, tmp_path)
+    drawn = list((outcome.path / "plots").glob("*.svg"))
+    assert outcome.plots == f"{len(drawn)} drawn"
+    assert len(drawn) >= 7

@@ -160,6 +160,8 @@ def _page(
             figure.text(*spot, text, fontsize=Sizes.small, color=GREY, va="baseline")
             if not caption.numbered:
                 axes.tick_params(axis="y", left=False, labelleft=False)
+            for axis in (axes.xaxis, axes.yaxis):  # no name, so no room to be searched for it
+                axis.set_label_coords(0.0, 0.0)
         if lowest:
             middle = left + (shape.lefts[0] + shape.lefts[-1] + shape.wide) / 2.0
             text = fitted(below, Sizes.small, shape.cell_wide - 0.1)

@@ -18,6 +18,9 @@ _NOISE_DROP: Final = 8.0  # and from this many times the noise
 _SAME: Final = 4.0  # times the noise: two stresses this near are one
 _ELASTIC: Final = 0.5  # the strain goes back by at least this part of the elastic strain
 _BROKEN: Final = 0.5  # of the greatest stress; below it the coupon has broken
+_STEEP: Final = 20.0  # times the usual step past the greatest stress: a break falls by more
+_SUDDEN: Final = 6.0  # times the usual one of the steps before: a neck falls ever faster
+_BEFORE: Final = 15  # steps; a break takes less than half as many
 _SMOOTH: Final = 5  # points of the mean that looks for landmarks
 
 
@@ -142,12 +145,14 @@ def _last_before_break(stress: FloatArray, mean: FloatArray) -> int:
     if low.size == 0:
         return stress.size - 1
     last = peak + int(low[0])
-    falls = -np.diff(stress[peak : last + 1])
-    if falls.size == 0:
-        return last
-    typical = max(float(np.median(np.abs(falls))), 1e-300)
-    steep = falls > 20.0 * typical
-    while last > peak and steep[last - peak - 1]:
+    falls = -np.diff(stress[: last + 1])
+    sizes = np.abs(falls)
+    typical = max(float(np.median(sizes[peak:])), 1e-300) if last > peak else 0.0
+    while last > peak:
+        before = sizes[max(last - 1 - _BEFORE, 0) : last - 1]
+        usual = float(np.median(before)) if before.size else 0.0
+        if falls[last - 1] <= max(_STEEP * typical, _SUDDEN * usual):
+            break
         last -= 1
     return last
 

@@ -84,13 +84,14 @@ def faults_of_test(
     proof = float(branch.stress[branch.peak if elastic.proof_at is None else elastic.proof_at])
     places = int(branch.place[elastic.start]), int(branch.place[elastic.stop - 1]) + 1
     drops = find_drops(points, quiet_noise(points.stress[: last + 1]), last)
+    jumps = strain_jump(points, noise, slope, (places[0], int(branch.place[-1])))
     faults = [
+        *jumps,
         *zero_offset(points, noise[0], proof, last),
         *grip_slip(points, drops, slope),
         *serrations(points, drops),
         *unloading_loops(points, branch),
-        *strain_jump(points, noise, slope, int(branch.place[-1])),
-        *plateau(points, branch, elastic.proof_at, slope, by_crosshead),
+        *plateau(points, branch, elastic.proof_at, slope, jumps, by_crosshead=by_crosshead),
     ]
     if not by_crosshead and settings.slope is None:
         faults += slope_impossible(points, slope, places)

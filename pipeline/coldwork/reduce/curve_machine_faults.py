@@ -47,6 +47,7 @@ GREATEST_SLOPE: Final = 8e11  # above iridium and osmium [Pa]
 PRELOAD_SHARE: Final = 0.05  # of the proof stress may be on at the start (ISO 6892-1)
 REST_SHARE: Final = 0.02  # of R_m may be left after the break, or below zero at the start
 NOTHING_LEFT: Final = -0.95  # engineering strain at which hardly any length is left [1]
+_BROKEN: Final = 0.5  # of the force before; what is above has not come off
 _NOISE: Final = 6.0
 _COARSE: Final = 3.0  # a standing run is longer than the clock's usual one by this factor
 _STEEPER: Final = 8.0  # how far a signal would have gone on, in its steps or its noise
@@ -226,7 +227,9 @@ def zero_offset(points: Points, noise: float, proof: float, last: int) -> Faults
     after = points.stress[last + 3 :]
     if after.size >= 3:
         left = float(np.median(after))
-        if abs(left) > rest:
+        moves = float(np.median(np.abs(after - left)))  # the tail of a neck does, rest does not
+        broken = left < _BROKEN * float(points.stress[last])
+        if abs(left) > rest > 2.0 * moves and broken:
             span = last + 3, len(points)
             limit = float(np.copysign(rest, left))
             return [points.fault(FaultKind.ZERO_OFFSET, span, left, limit, "Pa")]

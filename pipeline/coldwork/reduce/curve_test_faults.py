@@ -174,8 +174,13 @@ def unloading_loops(points: Points, branch: Branch) -> Faults:
     return found
 
 
-def strain_jump(points: Points, noise: tuple[float, float], slope: float, last: int) -> Faults:
+def strain_jump(
+    points: Points, noise: tuple[float, float], slope: float, ends: tuple[int, int]
+) -> Faults:
     """Find strain that jumps while the stress goes on as before.
+
+    What jumps before the elastic part is the seating of the coupon: the toe's correction
+    takes it off.
 
     Parameters
     ----------
@@ -185,8 +190,8 @@ def strain_jump(points: Points, noise: tuple[float, float], slope: float, last: 
         Of one stress and one strain. [Pa], [1]
     slope : float
         Elastic slope. [Pa]
-    last : int
-        Place up to which to look.
+    ends : tuple of int
+        First and last place to look at.
 
     Returns
     -------
@@ -195,7 +200,8 @@ def strain_jump(points: Points, noise: tuple[float, float], slope: float, last: 
         usual there, more than twice the usual gain, and more than noise gives, and the
         stress does not answer it.
     """
-    strain, stress = points.strain[: last + 1], points.stress[: last + 1]
+    here = slice(ends[0], ends[1] + 1)
+    strain, stress = points.strain[here], points.stress[here]
     if strain.size < 4 * _LAG:
         return []
     step = strain[_LAG:] - strain[:-_LAG]
@@ -210,13 +216,20 @@ def strain_jump(points: Points, noise: tuple[float, float], slope: float, last: 
     if candidates.size == 0 or over.max() <= 1.0:
         return []
     worst = int(np.argmax(over))
-    span = int(candidates[worst]), int(candidates[worst]) + _LAG + 1
+    start = ends[0] + int(candidates[worst])
+    span = start, start + _LAG + 1
     value, held = float(excess[worst]), float(limit[worst])
     return [points.fault(FaultKind.EXTENSOMETER_SLIP, span, value, held)]
 
 
 def plateau(
-    points: Points, branch: Branch, proof_at: int | None, slope: float, by_crosshead: bool
+    points: Points,
+    branch: Branch,
+    proof_at: int | None,
+    slope: float,
+    jumps: Faults,
+    *,
+    by_crosshead: bool,
 ) -> Faults:
     """Find strain at one stress over `PLATEAU_STRAIN` or more, and hardening only past it.
 
@@ -234,6 +247,8 @@ def plateau(
         Place in it where the curve passes the 0.2 % parallel.
     slope : float
         Elastic slope. [Pa]
+    jumps : list of CurveFault
+        What `strain_jump` gave: strain that the coupon did not see is none of a plateau's.
     by_crosshead : bool
         Whether the strain is the crosshead's: then the grips slipped, else the extensometer.
 
@@ -259,8 +274,9 @@ def plateau(
     if past.max() > _RELOAD * slope:
         kind = FaultKind.GRIP_SLIP if by_crosshead else FaultKind.EXTENSOMETER_SLIP
     place = branch.place[[proof_at, end]]
-    span = int(place[0]), int(place[1]) + 1
-    return [points.fault(kind, span, length, PLATEAU_STRAIN)]
+    found = points.fault(kind, (int(place[0]), int(place[1]) + 1), length, PLATEAU_STRAIN)
+    jumped = sum(jump.value for jump in jumps if found.start <= jump.start < found.stop)
+    return [found] if length - jumped >= PLATEAU_STRAIN else []
 
 
 def _flat_stretch(branch: Branch, proof_at: int | None) -> tuple[int, float] | None:
