@@ -4,8 +4,9 @@ The scenario is invented; no works, no laboratory and no person of it exists, an
 persons are roles. A small strip mill rolls copper for heat exchangers. Its coils
 are annealed between passes, and the furnace wants to know beforehand how much the
 cold work has stored. The laboratory next to the mill cuts coupons after each pass
-and indents them: that is *copper-strip*; and since its benches do not write tidy tables,
-the same indents stand once more in *copper-benches*, as each bench would have left them.
+and indents them: that is *copper-strip*, with the furnace's file and a schedule beside
+it; and since its benches do not write tidy tables, the same indents stand once more in
+*copper-benches*, as each bench would have left them.
 The same copper is pulled too, and the puller's own files are *copper-tension*.
 A wire shop in the same yard draws
 low-carbon rod and pulls pieces of each size: that is *steel-wire*. And the
@@ -25,6 +26,7 @@ from pathlib import Path
 
 from scenario import (
     copper_benches,
+    copper_furnace,
     copper_strip,
     copper_tension,
     copper_workbook,
@@ -39,6 +41,7 @@ def batches() -> dict[str, str | bytes]:
     """Make every file of the sample data: path below the folder, and content."""
     return {
         **copper_strip.files(),
+        **copper_furnace.files(),
         **copper_benches.files(),
         **copper_workbook.files(),
         **copper_tension.files(),

@@ -175,6 +175,7 @@ def test_the_sheet_and_the_layout_of_the_readme_are_those_of_the_samples() -> No
         "copper-strip/batch.toml",
         "copper-benches/layouts/bench-1.toml",
         "copper-tension/batch.toml",
+        "copper-strip/furnace.toml",
     )
     for some, sample in zip(shown, samples, strict=True):
         whole = tomllib.loads((ROOT / "sample_data" / sample).read_text(encoding="utf-8"))

@@ -17,6 +17,7 @@ FACTORS = {
     "mm": constants.milli,
     "um": constants.micro,
     "nm": constants.nano,
+    "nm3": 1e-27,  # a cube of `nano` is rounded three times
     "s": 1.0,
     "/s": 1.0,
     "K": 1.0,
@@ -34,6 +35,7 @@ FACTORS = {
     "J/m2": 1.0,
     "J/m3": 1.0,
     "J/mol": 1.0,
+    "kJ/mol": constants.kilo,
     "J/g": 1.0 / constants.gram,
     "kg/m3": 1.0,
     "g/mol": constants.gram,

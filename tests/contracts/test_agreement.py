@@ -195,7 +195,9 @@ def test_wrong_columns_fail_both(name: str, fault: str) -> None:
         table = table.append_column("coupon", table.column(first))
     elif fault == "type":
         numbers = pa.array(np.arange(ROWS) + 0.5)
-        table = table.set_column(table.column_names.index(first), first, numbers)
+        words = pa.array([f"word {i}" for i in range(ROWS)])
+        wrong = words if contract.field(first).type == "number" else numbers
+        table = table.set_column(table.column_names.index(first), first, wrong)
     else:
         table = table.append_column(first, table.column(first))
     assert all(verdicts(contract, table))

@@ -67,6 +67,7 @@ COLUMNS = {
     "temperature_c measured_at operator tester",
     "in/curves": "coupon_id point_no time_s force_n extension_mm crosshead_mm stress_mpa strain",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
+    "in/schedule": "time_s temperature_c",
     "out/coupons": "batch_id coupon_id lot_id condition material route test_strain readings_used "
     "readings_set_aside hardness hardness_scale flow_stress_mpa baseline_stress_mpa "
     "dislocation_stress_mpa dislocation_density_per_m2 mean_spacing_nm line_energy_j_per_m "
@@ -114,6 +115,8 @@ COLUMNS = {
     ),
     "out/curve_points": "coupon_id point_no time_s engineering_stress_mpa engineering_strain "
     "true_stress_mpa true_plastic_strain file line",
+    "out/anneal": "coupon_id state quantity fraction at_temperature_c at_time_s value unit u_own "
+    "u_shared u lower upper coverage degrees_of_freedom verdict reason",
 }
 REQUIRED = {
     "in/coupons": "coupon_id",
@@ -121,6 +124,7 @@ REQUIRED = {
     "in/flow_stress": "coupon_id reading_no plastic_strain flow_stress_mpa",
     "in/curves": "coupon_id",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
+    "in/schedule": "time_s temperature_c",
 }
 UNITS = {  # what the suffix of a column's name promises
     "_mpa": "MPa",

@@ -2,7 +2,7 @@
 
 import typer
 
-from coldwork.cli import check, contract, estimate, inspect, materials, new, process, trace
+from coldwork.cli import anneal, check, contract, estimate, inspect, materials, new, process, trace
 
 __all__ = ["app", "main"]
 
@@ -16,7 +16,7 @@ app = typer.Typer(
     add_completion=False,
     pretty_exceptions_enable=False,
 )
-for command in (new, inspect, check, process, trace, estimate, materials, contract):
+for command in (new, inspect, check, process, trace, anneal, estimate, materials, contract):
     name = command.__name__.rpartition(".")[2]
     app.command(name)(getattr(command, name))
 

@@ -20,7 +20,7 @@ from coldwork.errors import ColdworkError, UsageError
 __all__ = ["contract_of", "document", "documents", "load", "names"]
 
 _ORDER: Final = {
-    "in": ("coupons", "indents", "flow_stress", "curves", "exclusions"),
+    "in": ("coupons", "indents", "flow_stress", "curves", "exclusions", "schedule"),
     "out": (
         "coupons",
         "quantities",
@@ -33,8 +33,9 @@ _ORDER: Final = {
         "tensile",
         "evolution",
         "curve_points",
+        "anneal",
     ),
-    "documents": ("batch_sheet", "layout", "method", "manifest", "record"),
+    "documents": ("batch_sheet", "layout", "furnace", "method", "manifest", "record", "account"),
 }
 _TABLE_KEYS: Final = {
     "name",

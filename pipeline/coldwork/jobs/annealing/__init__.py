@@ -1,0 +1,1 @@
+"""What the stored energy of a batch's coupons does in the furnace, step by step."""
