@@ -189,7 +189,7 @@ def test_the_sheet_and_the_layout_of_the_readme_are_those_of_the_samples() -> No
 def test_what_is_said_not_to_be_built_is_refused_by_name() -> None:
     (told,) = re.findall(r"^- Choices that are not built yet.*?(?=^- |^$)", README, re.M | re.S)
     choices = re.findall(r"`([a-z_.]+ = [^`]+)`", told)
-    assert len(choices) > 2
+    assert choices
     baseline = "strength.baseline_mpa = 50.0"
     for choice in choices:
         with pytest.raises(UsageError, match="not built yet"):

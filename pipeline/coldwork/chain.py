@@ -47,6 +47,7 @@ from coldwork.formulas.tabor import TABOR_FLOW_STRESS
 from coldwork.formulas.taylor import MEAN_SPACING, TAYLOR_DENSITY, TAYLOR_DENSITY_FROM_SLOPE
 from coldwork.formulas.taylor_logarithmic import TAYLOR_DENSITY_LOGARITHMIC
 from coldwork.formulas.taylor_logarithmic_inner import TAYLOR_DENSITY_LOGARITHMIC_INNER
+from coldwork.formulas.temperature import SHEAR_MODULUS_AT, THERMAL_STRESS
 from coldwork.formulas.unwinding import UNWOUND_STRESS
 from coldwork.inputs.method import Laws
 from coldwork.measured import Value, apply, broadcast, kept_where, select, value_of
@@ -94,6 +95,10 @@ class Start:
         where it is not known. [J/m^3]
     plastic_strain : float
         The strain whose stress the flow route reports. [1]
+    temperature : float or ndarray, shape (n,)
+        Of the tests; NaN where nothing is brought to another one. [K]
+    reference_temperature : float
+        That all but the reading holds at. [K]
     """
 
     mean: Value
@@ -103,11 +108,13 @@ class Start:
     grain_size: Value
     plastic_work: Value
     plastic_strain: float
+    temperature: float | NDArray[np.float64] = np.nan
+    reference_temperature: float = np.nan
 
 
 @dataclass(frozen=True)
 class Strength:
-    """The first half's outcome, all in the state at `test_strain` but for the first four.
+    """The first half's outcome, all in the state at `test_strain` but for the first five.
 
     Attributes
     ----------
@@ -115,6 +122,8 @@ class Strength:
         Mean indentation pressure; None by the flow route. [Pa]
     indented_stress : Value
         Flow stress as tested, the indent's own strain included. [Pa]
+    reference_stress : Value
+        That, at the reference temperature. [Pa]
     excess : Value
         That less the baseline. [Pa]
     tested_stress : Value
@@ -131,6 +140,7 @@ class Strength:
 
     pressure: Value | None
     indented_stress: Value
+    reference_stress: Value
     excess: Value
     tested_stress: Value
     flow_stress: Value
@@ -142,7 +152,7 @@ class Strength:
 
 
 def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
-    """Go from the mean of the readings to the dislocation stress (relations 1, 2, 4, 6).
+    """Go from the mean of the readings to the dislocation stress (relations 1, 2, 10, 4, 6).
 
     Parameters
     ----------
@@ -161,9 +171,10 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
     n = start.scale.shape[0]
     pressure, strain, tested = _tested(laws, inputs, start)
     baseline = _baseline(laws, inputs, start.grain_size)
-    excess = tested - baseline
+    at_reference = _at_reference(laws, inputs, tested, start)
+    excess = at_reference - baseline
     as_tested, stress = dislocation_stress(laws, inputs, excess, strain)
-    flow, unwound = tested, np.zeros(n, dtype=bool)
+    flow, unwound = at_reference, np.zeros(n, dtype=bool)
     if laws.unwinding:
         flow = with_obstacle(laws, inputs, stress) + baseline
         saturation = inputs["indentation.saturation_stress_mpa"]
@@ -171,7 +182,17 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
     added = np.full(n, start.plastic_strain) if laws.route == "flow" else value_of(strain)
     held = np.where(unwound, 0.0, added)
     return Strength(
-        pressure, tested, excess, as_tested, flow, baseline, stress, strain, held, unwound
+        pressure,
+        tested,
+        at_reference,
+        excess,
+        as_tested,
+        flow,
+        baseline,
+        stress,
+        strain,
+        held,
+        unwound,
     )
 
 
@@ -382,6 +403,37 @@ def _baseline(laws: Laws, inputs: Mapping[str, Value], grain_size: Value) -> Val
 def _by_scale(inputs: Mapping[str, Value], scale: NDArray[np.int8], key: str) -> Value:
     by_code = {k: inputs.get(f"{s}.{key}", _MISSING) for k, s in enumerate(SECTIONS)}
     return select(scale, by_code)
+
+
+def _at_reference(laws: Laws, inputs: Mapping[str, Value], stress: Value, start: Start) -> Value:
+    """Bring a flow stress from the temperature of its test to the reference (relation 10).
+
+    The thermal part comes off, the rest goes with the shear modulus, the thermal part at
+    the reference comes on. Baseline and modulus at the temperature of the test would give
+    the same density, since the baseline less its thermal part goes with the modulus too.
+    """
+    if laws.temperature == "none":
+        return stress
+    back = apply(
+        SHEAR_MODULUS_AT,
+        modulus=1.0,
+        temperature=start.reference_temperature,
+        reference_temperature=start.temperature,
+        slope=inputs["material.shear_modulus_slope"],
+        melting_point=inputs["material.melting_point_k"],
+    )
+    if laws.temperature == "modulus":
+        return stress * back
+    here, there = (
+        apply(
+            THERMAL_STRESS,
+            stress_at_zero=inputs["temperature.thermal_mpa"],
+            temperature=kelvin,
+            athermal_temperature=inputs["temperature.athermal_k"],
+        )
+        for kelvin in (start.temperature, start.reference_temperature)
+    )
+    return (stress - here) * back + there
 
 
 def _tested(

@@ -16,6 +16,7 @@ from scenario import (
     faults_of_indents,
     faults_of_instruments,
     faults_of_rows,
+    faults_of_temperature,
 )
 from scenario.tables import Table
 
@@ -59,6 +60,7 @@ def files() -> dict[str, str | bytes]:
         faults_of_grains.radius_batch(),
         faults_of_flow.batch(),
         faults_of_branch.batch(),
+        faults_of_temperature.batch(),
         faults_of_curves.pulled_batch(),
         faults_of_curves.pressed_batch(),
         faults_of_instruments.batch(),

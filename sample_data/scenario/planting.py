@@ -185,9 +185,19 @@ class Batch:
         self._places.setdefault((name, str(no)), (self._file, line))
         return line
 
-    def points(self, name: str, stress: float, strains: Sequence[float] = _NEAR) -> None:
+    def points(
+        self,
+        name: str,
+        stress: float,
+        strains: Sequence[float] = _NEAR,
+        *,
+        temperature: str = "23.0",
+        last_temperature: str | None = None,
+    ) -> None:
         """Add points of a flow curve, scattered by the pattern about one stress [MPa]."""
         table = self._readings[self._file]
+        temperatures = [temperature] * len(strains)
+        temperatures[-1] = last_temperature or temperature
         for no, (strain, spread) in enumerate(zip(strains, _POINTS, strict=False), start=1):
             line = table.add(
                 {
@@ -195,7 +205,7 @@ class Batch:
                     "reading_no": str(no),
                     "plastic_strain": f"{strain:.4f}",
                     "flow_stress_mpa": f"{stress * (1.0 + spread):.2f}",
-                    "temperature_c": "23.0",
+                    "temperature_c": temperatures[no - 1],
                     "measured_at": self._tick(),
                     "operator": "operator-3",
                 }

@@ -18,6 +18,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from coldwork.chain import Start, energy, strength, with_obstacle
+from coldwork.formulas.temperature import shear_modulus_at, thermal_stress
 from coldwork.inputs.method import Laws
 from coldwork.interval.before import before_superposition
 from coldwork.interval.combine import Spread
@@ -25,6 +26,7 @@ from coldwork.interval.reach import Reach
 from coldwork.measured import Measured, Value, value_of
 
 SEED: Final = 20261
+REFERENCE: Final = 296.15  # temperature that constants hold at [K]
 FREEDOM: Final = 30  # of the pooled scatter: five coupons of seven readings
 WEAK: Final = 0.5  # from this u(s)/s on a batch may well come out below the baseline
 QUANTITIES: Final = (
@@ -49,6 +51,10 @@ NORMAL: Final = {  # true value, standard uncertainty; SI. Copper, as in the sam
     "strength.baseline_mpa": (50e6, 5e6),
     "strength.obstacle_mpa": (60e6, 4e6),
     "strength.superposition_exponent": (1.7, 0.05),
+    "temperature.thermal_mpa": (120e6, 10e6),
+    "temperature.athermal_k": (500.0, 25.0),
+    "material.melting_point_k": (1358.0, 2.0),
+    "material.shear_modulus_slope": (-0.54, 0.06),
     "indentation.constraint_factor": (3.0, 0.06),
     "indentation.intercept_mpa": (0.0, 0.0),
     "indentation.representative_strain": (0.08, 0.003),
@@ -81,6 +87,7 @@ class Case:
     relative_s: float = 0.01
     scale: float = 1.0  # on the uncertainty of everything before the stress
     calibrated: bool = False
+    kelvin: float = REFERENCE  # temperature of the tests
 
 
 def main() -> None:
@@ -89,6 +96,7 @@ def main() -> None:
     rng = np.random.default_rng(SEED)
     plain = replace(LAWS, unwinding=False)
     beside = replace(plain, superposed=True)
+    cold = replace(plain, temperature="modulus-and-thermal")
     by_slope = replace(plain, taylor="slope", route="flow")
     cases = [
         Case("far, unwound", 284e6, LAWS),
@@ -107,6 +115,10 @@ def main() -> None:
         Case("at u(s)/s about 1, obstacles", 20e6, beside),
         Case("just above the obstacles", 5e6, beside),
         Case("on the obstacle stress", 0.0, beside),
+        Case("far, at 77 K", 300e6, cold, kelvin=77.0),
+        Case("near, at 77 K", 30e6, cold, kelvin=77.0),
+        Case("on the baseline, at 77 K", 0.0, cold, kelvin=77.0),
+        Case("near, at 473 K", 30e6, cold, kelvin=473.15),
         Case("far, obstacles, unwound", 284e6, replace(LAWS, superposed=True)),
         Case("near, obstacles, unwound", 40e6, replace(LAWS, superposed=True)),
     ]
@@ -137,7 +149,7 @@ def simulate(
     spreads: dict[str, Spread] = {}
     inputs: dict[str, Value] = {}
     for name, (value, u) in NORMAL.items():
-        early = name.startswith(("strength", "indentation"))
+        early = name.startswith(("strength", "indentation", "temperature"))
         size = u * (case.scale if early else 1.0)
         spread(name, value + size * rng.standard_normal(batches), size, inputs, spreads)
     for name, (value, factor) in LOGNORMAL.items():
@@ -150,7 +162,8 @@ def simulate(
     mean = true_mean + u_true * rng.standard_normal(batches)
     u_seen = u_true * np.sqrt(rng.chisquare(FREEDOM, batches) / FREEDOM)
     spreads["repeatability"] = Spread(u_seen, shared=False, degrees_of_freedom=float(FREEDOM))
-    start = begin(Measured(mean, {"repeatability": np.asarray(1.0)}), batches)
+    seen_mean = Measured(mean, {"repeatability": np.asarray(1.0)})
+    start = begin(seen_mean, batches, case.kelvin)
     half = strength(case.laws, inputs, start)
     assert isinstance(half.dislocation_stress, Measured)
     excess, strain = value_of(half.excess), value_of(half.strain)
@@ -215,14 +228,26 @@ def forward(case: Case, truth: dict[str, float]) -> float:
     exact = {name: np.asarray(x) for name, x in truth.items()}
     flow = float(value_of(with_obstacle(case.laws, exact, np.array([stress])))[0])
     flow += truth["strength.baseline_mpa"]
+    if case.laws.temperature != "none":
+        back = shear_modulus_at(
+            1.0,
+            REFERENCE,
+            case.kelvin,
+            truth["material.shear_modulus_slope"],
+            truth["material.melting_point_k"],
+        )
+        at_zero, limit = truth["temperature.thermal_mpa"], truth["temperature.athermal_k"]
+        flow -= float(thermal_stress(at_zero, REFERENCE, limit))
+        flow = flow / float(back) + float(thermal_stress(at_zero, case.kelvin, limit))
     factor = truth["indentation.constraint_factor"] if case.laws.route == "indent" else 1.0
     return float(flow * factor)
 
 
-def begin(mean: Value, n: int) -> Start:
+def begin(mean: Value, n: int, kelvin: float = REFERENCE) -> Start:
     """A slice of coupons of which only the mean matters."""
     blank = np.full(n, np.nan)
-    return Start(mean, np.zeros(n, dtype=np.int8), blank, blank, blank, blank, 0.0)
+    scale = np.zeros(n, dtype=np.int8)
+    return Start(mean, scale, blank, blank, blank, blank, 0.0, kelvin, REFERENCE)
 
 
 if __name__ == "__main__":

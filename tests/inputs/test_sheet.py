@@ -314,7 +314,8 @@ def test_the_document_says_numbers_as_they_were_written(write: Write) -> None:
     assert burgers["origin"] == "library"
     assert content["inputs"]["tester:T1"]["u"] == 0.008
     assert content["files"]["indents"] == ["indents.csv", "indents-2.csv"]
-    assert content["temperature"] == {"test_c": 25, "reference_c": 25.0}
+    same = {"test_c": 25, "reference_c": 25.0, "correction": "none"}
+    assert content["temperature"] == same
     assert content["limits"][0]["rule"] == "guarded"
     assert content["versions"]["coldwork"]
 

@@ -22,9 +22,6 @@ NOT_YET = "not built yet"
         ("indentation", "characteristic_depth_um = 1", "from a characteristic depth"),
         ("indentation", "size_strength_gpa2_um = 1", "from a size strength"),
         ("indentation.HBW", 'size_effect = "fitted"', "Fitting the indentation size effect"),
-        ("temperature", "test_c = 20.0", "Correcting the modulus for temperature"),
-        ("temperature", "reference_c = 20.0", "Correcting the modulus for temperature"),
-        ("temperature", "test_c = 100\nreference_c = 23", "Correcting the modulus"),
         ("uncertainty", 'method = "monte-carlo"', "Monte Carlo"),
         ("uncertainty", "draws = 100000", "Draws belong to Monte Carlo"),
         ("uncertainty", 'draws = "adaptive"', "Draws belong to Monte Carlo"),
@@ -48,8 +45,6 @@ def test_a_section_asks_for_what_is_not_there_yet(
         ('route = "indent"', 'route = "both"', "Comparing the indent and the flow route"),
         ("{ value = 50.0, u = 15.0 }", '{ from_coupon = "A0" }', "taken from a coupon"),
         ("{ value = 50.0, u = 15.0 }", '{ calibration = "C1" }', "taken from a calibration"),
-        ("shear_modulus_gpa", "melting_point_k = 1358\nshear_modulus_gpa", "for temperature"),
-        ("shear_modulus_gpa", "shear_modulus_slope = -0.5\nshear_modulus_gpa", "for temperature"),
         (
             "shear_modulus_gpa",
             "boundary_energy_j_per_m2 = 0.6\nshear_modulus_gpa",

@@ -27,6 +27,7 @@ from coldwork.rules.forces import SCALES
 Make = Callable[..., Path]
 Floats = NDArray[np.float64]
 DRAWS: Final = 200_000
+POINTS: Final = {"flow", "slope", "temperature"}  # cases by the flow route
 
 HEAD: Final = """
 [batch]
@@ -102,9 +103,20 @@ friction_mpa = { value = 25.5, u = 0.4 }
 hall_petch_mpa_m05 = { value = 0.11, u = 0.002 }
 terms_mpa = { solutes = { value = 12.0, u = 0.2 } }
 """
+MELTING: Final = (
+    "melting_point_k = { value = 1358.0, u = 10.0 }\n"
+    "shear_modulus_slope = { value = -0.54, u = 0.01 }\n"
+)
 OBSTACLE: Final = (
     "obstacle_mpa = { value = 60.0, u = 1.0 }\nsuperposition_exponent = { value = 1.6, u = 0.03 }\n"
 )
+WARM: Final = """
+[temperature]
+test_c = 200.0
+correction = "modulus"
+thermal_mpa = { value = 90.0, u = 1.5 }
+athermal_k = { value = 900.0, u = 12.0 }
+"""
 ROUTE_INDENT: Final = GIVEN.format(route='"indent"')
 ROUTE_FLOW: Final = GIVEN.format(route='"flow"')
 
@@ -125,6 +137,12 @@ CASES: Final[Mapping[str, str]] = {
     + "[hardening]\nslope_n_per_m = { value = 10.3, u = 0.15 }\n"
     + SPACING,
     "parts": HEAD + INDENT + PARTS + UNWOUND + OTHERS + CONSTANT + GRAIN,
+    "temperature": HEAD.replace("[material]", "[material]\n" + MELTING)
+    + FLOW
+    + ROUTE_FLOW
+    + WARM
+    + CONSTANT
+    + SPACING,
     "obstacle": HEAD + INDENT + ROUTE_INDENT + OBSTACLE + UNWOUND + OTHERS + CONSTANT + SPACING,
 }
 
@@ -147,13 +165,13 @@ def rows(case: str) -> dict[str, list[dict[str, object]]]:
     for name, times in names.items():
         for i, (tester, error) in enumerate(zip(testers, noise, strict=True), 1):
             where = {"coupon_id": name, "tester": tester if name == "a" else "T2"}
-            if case in {"flow", "slope"}:
+            if case in POINTS:
                 strength_ = {"plastic_strain": 0.002, "flow_stress_mpa": 280.0 * times * error}
                 readings.append({**where, "reading_no": i, **strength_})
             else:
                 hardness = {"force_n": 98.07, "hardness": 90.0 * times * error}
                 readings.append({**where, "indent_no": i, **hardness})
-    if case in {"flow", "slope"}:
+    if case in POINTS:
         return {"coupons": coupons, "flow_stress": readings}
     for name, scale, force, number, ball in (
         ("ball", "HBW", 1226.0, 85.0, 5.0),
@@ -227,6 +245,8 @@ class Drawn:
             grain_size=grain,
             plastic_work=np.full(DRAWS, 5.2e7),
             plastic_strain=0.002,
+            temperature=self.method.test_temperature,
+            reference_temperature=self.method.reference_temperature,
         )
         inputs: dict[str, Value] = {
             name: x for name, x in self.shared.items() if not name.startswith("tester:")

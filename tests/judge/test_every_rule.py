@@ -21,6 +21,7 @@ from coldwork.intake.printed import Printed
 from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.coupon_rules import State, judge_coupon_cells, judge_coupons, judge_scales
 from coldwork.judge.printed import judge_printed
+from coldwork.judge.temperatures import judge_temperatures
 from coldwork.reduce.flow import reduce_flow
 from coldwork.reduce.indents import reduce_indents
 from coldwork.reduce.marks import Marks
@@ -284,6 +285,15 @@ def scattering(noisy_sd: float) -> Fires:
     return run
 
 
+def warm(kelvin: float) -> Fires:
+    def run() -> Findings:
+        findings = Findings(1)
+        judge_temperatures(findings, WARM, np.array([0]), np.array([kelvin]))
+        return findings
+
+    return run
+
+
 DUE: Final = date(1970, 1, 11)  # the last day covered is day 10 of the epoch
 T1: Final = Machine("T1", an_input("tester:T1", 0.0), DUE)
 C: Final = coupon_rules
@@ -291,6 +301,9 @@ R: Final = reading_rules
 B: Final = batch_rules
 PARTS: Final = method((HALL_PETCH,), baseline="parts")
 RADIUS: Final = method(outer_radius="grain")
+MELTING: Final = an_input("material.melting_point_k", 1358.0)
+SLOPE: Final = an_input("material.shear_modulus_slope", -0.54)
+WARM: Final = method((MELTING, SLOPE), temperature="modulus")
 WITH_C: Final = method((an_input("indentation.HK.constraint_factor", 3.0),))
 
 # Rule, a case that fires, a case just on the other side that does not. Limits: the issue of the
@@ -300,6 +313,13 @@ CASES: Final[list[tuple[Rule, Fires, Fires]]] = [
     (C.MIXED_SCALES, two_scales, indents()),
     (C.MIXED_FORCES, indents(force_n=[98.07, 98.07, 49.03]), indents(force_n=[98.07, 98.0, 98.1])),
     (C.SCALE_WITHOUT_CONSTANTS, scales(method(), HK), scales(WITH_C, HK)),
+    (
+        C.MIXED_TEMPERATURES,
+        indents(WARM, temperature_c=[20.0, 23.0, 25.1]),
+        indents(WARM, temperature_c=[20.0, 23.0, 25.0]),
+    ),
+    (C.NO_SHEAR_MODULUS, warm(1358.1), warm(1357.9)),
+    (C.TEMPERATURE_FAR, warm(76.9), warm(77.1)),
     (C.NO_FLOW_STRESS_AT_STRAIN, flow(0.003, 0.004), flow(0.001, 0.004)),
     (
         C.BAD_COUPON_CELL_NEEDED,
@@ -457,6 +477,22 @@ def test_findings_of_a_slice_reach_the_right_coupons() -> None:
     findings = Findings(5)
     judge_coupons(findings, replace(one, coupon=np.array([3])))
     assert findings.has(coupon_rules.DENSITY_IMPOSSIBLE).tolist() == [False] * 3 + [True, False]
+
+
+def test_far_temperatures_are_told_with_the_end_that_was_passed() -> None:
+    told = {}
+    for kelvin in (4.0, 1000.0, 1400.0, 296.0):
+        table = warm(kelvin)().table(pa.array(["A"]), pa.array([""]))
+        told[kelvin] = [(row["rule"], row["limit"]) for row in table.to_pylist()]
+    assert told[4.0] == [("temperature-far", -196.15)]
+    assert told[1000.0] == [("temperature-far", pytest.approx(1358.0 * 2 / 3 - 273.15))]
+    assert told[1400.0] == [("no-shear-modulus", pytest.approx(1358.0 - 273.15))]
+    assert told[296.0] == []
+
+
+def test_brought_to_the_reference_a_warm_test_is_nothing_unusual() -> None:
+    assert indents(WARM, temperature_c=200.0)().counts == {}
+    assert set(indents(temperature_c=200.0)().counts) == {"test-temperature"}
 
 
 def test_a_bad_cell_is_told_with_its_place() -> None:

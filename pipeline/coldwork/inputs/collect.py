@@ -13,7 +13,13 @@ from coldwork.materials import Material
 from coldwork.materials import load as load_material
 from coldwork.materials import names as material_names
 
-__all__ = ["given_numbers", "material_of", "refuse_missing_constants", "used_numbers"]
+__all__ = [
+    "constant",
+    "given_numbers",
+    "material_of",
+    "refuse_missing_constants",
+    "used_numbers",
+]
 
 _OPTIONAL_CONSTANTS: Final = ("molar_mass_g_per_mol", "heat_capacity_j_per_kg_k")
 _NEEDED_CONSTANTS: Final = (
@@ -75,6 +81,30 @@ def material_of(causes: Causes) -> Material | None:
     return load_material(str(name)) if known else None
 
 
+def constant(key: str, given: Mapping[KeyName, Given], material: Material | None) -> float | None:
+    """Give a constant of the metal as the sheet or the library has it, None if neither does.
+
+    Parameters
+    ----------
+    key : str
+        Its key in ``[material]``.
+    given : mapping of tuple to Given
+        What the sheet gives.
+    material : Material or None
+        What the library gives.
+
+    Returns
+    -------
+    float or None
+        In the key's unit.
+    """
+    own = given.get(("material", key))
+    if own is not None:
+        return own.value
+    entry = None if material is None else material.values.get(key)
+    return None if entry is None else entry.value
+
+
 def refuse_missing_constants(causes: Causes, material: Material | None) -> None:
     """Refuse a metal that neither the library nor the sheet knows enough of."""
     section = causes.sheet.tables.get("material")
@@ -129,6 +159,8 @@ def _used_keys(laws: Laws, given: Mapping[KeyName, Given], *, curves: bool) -> l
         unused.add(("indentation", "HBW", "strain_ratio"))
     if not laws.superposed:
         unused.add(("strength", "superposition_exponent"))
+    if laws.temperature == "none":
+        unused |= {("material", "melting_point_k"), ("material", "shear_modulus_slope")}
     unused |= _unused_of_crystal(laws)
     unread = set() if laws.route == "indent" else {"indentation"}
     if not curves:

@@ -8,6 +8,7 @@ from coldwork.formulas.crystal_factor import CUBIC_CONSTANTS, HEXAGONAL_CONSTANT
 from coldwork.formulas.crystals import cubic_stiffness, hexagonal_stiffness
 from coldwork.formulas.slip_systems import SlipSystem, slip_system
 from coldwork.inputs.causes import Causes
+from coldwork.inputs.collect import constant
 from coldwork.inputs.keys import KeyName
 from coldwork.inputs.numbers import Given
 from coldwork.inputs.words import listed
@@ -85,7 +86,7 @@ def _constants(
     hexagonal: bool,
 ) -> list[float] | None:
     names = HEXAGONAL_CONSTANTS if hexagonal else CUBIC_CONSTANTS
-    found = {name: _constant(f"{name}_gpa", given, material) for name in names}
+    found = {name: constant(f"{name}_gpa", given, material) for name in names}
     missing = [f"{name}_gpa" for name, value in found.items() if value is None]
     if missing:
         kind = "hexagonal" if hexagonal else "cubic"
@@ -105,14 +106,6 @@ def _constants(
                 "Take it out, or mend lattice.",
             )
     return [value for value in found.values() if value is not None]
-
-
-def _constant(key: str, given: Mapping[KeyName, Given], material: Material | None) -> float | None:
-    own = given.get(("material", key))
-    if own is not None:
-        return own.value
-    entry = None if material is None else material.values.get(key)
-    return None if entry is None else entry.value
 
 
 def _refuse_unstable(causes: Causes, constants: list[float], *, hexagonal: bool) -> None:
@@ -138,7 +131,7 @@ def _slip(
     if not isinstance(written, str) or causes.within(("line_energy", "slip_system")):
         return None
     try:
-        ratio = _constant("c_over_a", given, material)
+        ratio = constant("c_over_a", given, material)
         return slip_system(written, hexagonal=hexagonal, c_over_a=ratio)
     except InvalidArgument as problem:
         why = "Lines lie in a slip plane with their Burgers vector."

@@ -22,7 +22,7 @@ __all__ = ["method_document"]
 _COMPUTING: Final = ("numpy", "scipy", "pyarrow")
 _SECTIONS: Final = {
     "uncertainty": ("method", "coverage", "repeatability"),
-    "temperature": ("test_c", "reference_c"),
+    "temperature": ("test_c", "reference_c", "correction"),
     "flow": ("plastic_strain", "repeatability_rel"),
     "indentation": ("size_effect", "resolution_um"),
     "output": ("tables", "detail", "curve_points"),

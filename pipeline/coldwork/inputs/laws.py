@@ -67,7 +67,14 @@ def laws_of(tables: Mapping[str, Any], crystal: Crystal | None = None) -> Laws:
         uniform_mix=character.get("mix") == "uniform",
         flow_from=_flow_from(route, tables["files"]),
         superposed="obstacle_mpa" in strength,
+        temperature=_temperature(tables),
     )
+
+
+def _temperature(tables: Mapping[str, Any]) -> str:
+    correction = str(choice(tables, "temperature", "correction"))
+    thermal = "thermal_mpa" in tables.get("temperature", {})
+    return f"{correction}-and-thermal" if thermal else correction
 
 
 def _flow_from(route: str, files: Mapping[str, Any]) -> str:

@@ -50,6 +50,9 @@ class Laws:
         Whether the crystal is hexagonal and not cubic.
     superposed : bool
         Whether an obstacle stress joins the dislocation stress.
+    temperature : str
+        How a strength is brought to the reference temperature: ``none``, ``modulus`` or
+        ``modulus-and-thermal``.
     """
 
     route: str
@@ -66,6 +69,7 @@ class Laws:
     slip: SlipSystem | None = None
     hexagonal: bool = False
     superposed: bool = False
+    temperature: str = "none"
 
 
 @dataclass(frozen=True)

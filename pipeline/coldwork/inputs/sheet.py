@@ -23,6 +23,7 @@ from coldwork.inputs.ranges import refuse_bad_ranges
 from coldwork.inputs.source import Sheet, read_sheet
 from coldwork.inputs.structure import refuse_misfits
 from coldwork.inputs.tables import Tables, tables_of
+from coldwork.inputs.temperature import refuse_bad_temperature
 from coldwork.inputs.tensile import machine_numbers, refuse_bad_tensile, tensile_of
 from coldwork.inputs.unbuilt import refuse_unbuilt
 from coldwork.materials import Material
@@ -88,6 +89,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_missing_constants(causes, material)
     refuse_bad_mix(causes)
     refuse_bad_ranges(causes, given)
+    refuse_bad_temperature(causes, given, material)
     crystal = crystal_of(causes, given, material)
     refuse_bad_testers(causes)
     refuse_bad_limits(causes)

@@ -9,7 +9,6 @@ from collections.abc import Mapping
 from typing import Any, Final
 
 from coldwork.inputs.causes import Causes
-from coldwork.inputs.numbers import as_number
 from coldwork.inputs.positions import KeyPath
 from coldwork.inputs.words import shown
 
@@ -36,8 +35,6 @@ _KEYS: Final[Mapping[KeyPath, str]] = {
     ("calibrations",): "Constants from a calibration are not built yet; give them as numbers.",
 }
 _CONSTANTS: Final[Mapping[str, str]] = {
-    "shear_modulus_slope": "correcting the modulus for temperature",
-    "melting_point_k": "correcting the modulus for temperature",
     "boundary_energy_j_per_m2": "recrystallisation",
     "stacking_fault_energy_j_per_m2": "recovery and recrystallisation",
 }
@@ -64,7 +61,6 @@ def refuse_unbuilt(causes: Causes) -> None:
         _refuse_key(causes, ("material", key), why)
     _refuse_size_effects(causes)
     _refuse_values_from_elsewhere(causes)
-    _refuse_temperature_correction(causes)
 
 
 def _table(causes: Causes, path: KeyPath) -> dict[Any, Any]:
@@ -105,16 +101,3 @@ def _refuse_values_from_elsewhere(causes: Causes) -> None:
                 causes.add(
                     (section, key), f"{part} cannot be used", _ORIGINS[part], "Give the number."
                 )
-
-
-def _refuse_temperature_correction(causes: Causes) -> None:
-    table = _table(causes, ("temperature",))
-    test, reference = (as_number(table.get(key, 23.0)) for key in ("test_c", "reference_c"))
-    if test is None or reference is None or test == reference:
-        return
-    causes.add(
-        ("temperature", "test_c" if "test_c" in table else "reference_c"),
-        f"the tests ran at {test:g} C and the shear modulus holds at {reference:g} C",
-        "Correcting the modulus for temperature is not built yet.",
-        "Give the modulus at the temperature of the test, and both keys the same number.",
-    )

@@ -4,6 +4,7 @@ from typing import Final, NamedTuple
 
 __all__ = [
     "AS_INDENTED",
+    "AT_REFERENCE",
     "DENSITY",
     "ENERGY",
     "FLOW",
@@ -11,6 +12,7 @@ __all__ = [
     "INDENT",
     "OVER_BASELINE",
     "REPORTED",
+    "TEMPERATURE",
     "UNWOUND",
     "Line",
 ]
@@ -142,6 +144,20 @@ _SUM: Final = Line(
     "flow_stress_mpa",
     "dislocation stress plus baseline",
     ("dislocation_stress_mpa", "baseline_stress_mpa"),
+)
+TEMPERATURE: Final = Line(
+    "temperature of the test",
+    "mean of the readings",
+    "test_temperature_c",
+    "test_c of the sheet where a reading does not say",
+    (),
+)
+AT_REFERENCE: Final = Line(
+    "flow stress at the reference temperature",
+    "relation 10; Frost and Ashby 1982; Kocks, Argon and Ashby 1975 (from memory)",
+    "reference_stress_mpa",
+    "brought from the temperature of the test to {reference} C, {thermal}",
+    ("indented_stress_mpa", "test_temperature_c", "<temperature>"),
 )
 REPORTED: Final = {
     False: (_SUM,),

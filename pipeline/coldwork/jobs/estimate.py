@@ -263,6 +263,8 @@ def _from_strength(
         _NOTHING,
         _NOTHING,
         method.plastic_strain,
+        method.test_temperature,
+        method.reference_temperature,
     )
     own = Spread(u, shared=False, degrees_of_freedom=np.inf)
     found = evaluate(method, inputs, {**spreads, REPEATABILITY: own}, start)

@@ -136,8 +136,15 @@ def start_of(
         grain,
         work,
         method.plastic_strain,
+        _temperature(method, reduced.temperature[rows]),
+        method.reference_temperature,
     )
     return start, own
+
+
+def _temperature(method: Method, tested: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Give the temperature of the tests; that of the sheet for a curve, which tells none. [K]."""
+    return np.where(np.isnan(tested), method.test_temperature, tested)
 
 
 def evaluate(

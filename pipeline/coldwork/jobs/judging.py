@@ -24,6 +24,7 @@ from coldwork.jobs.gather import Gathered
 from coldwork.jobs.tables import unit_of
 from coldwork.judge.coupon_rules import State, judge_coupons
 from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
+from coldwork.judge.temperatures import judge_temperatures
 from coldwork.measured import value_of
 from coldwork.rules.bits import emptied
 
@@ -50,6 +51,9 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
     known = np.isfinite(reduced.mean[rows])
     saturation = method.inputs.get("indentation.saturation_stress_mpa")
     results, half = evaluated.results, evaluated.strength
+    judge_temperatures(
+        batch.findings, method, np.arange(rows.start, rows.stop), reduced.temperature[rows]
+    )
     judge_coupons(
         batch.findings,
         State(

@@ -161,7 +161,8 @@ class Sliced:
     @cached_property
     def _baselines(self) -> list[Baseline]:
         name = "baseline_stress_mpa"
-        if self.batch.method.laws.superposed:  # a curve's line is then none of dislocations alone
+        laws = self.batch.method.laws  # a curve's line must be that of dislocations alone
+        if laws.superposed or laws.temperature != "none":
             return [Baseline(np.nan, np.nan, np.nan)] * self.n
         return baselines(self.evaluated.results[name], self.evaluated.combined[name])
 

@@ -15,6 +15,7 @@ from coldwork.formulas.crystal_factor import HEXAGONAL_CONSTANTS
 from coldwork.inputs.method import Laws, Method
 from coldwork.jobs.chain_words import (
     AS_INDENTED,
+    AT_REFERENCE,
     DENSITY,
     ENERGY,
     FLOW,
@@ -22,6 +23,7 @@ from coldwork.jobs.chain_words import (
     INDENT,
     OVER_BASELINE,
     REPORTED,
+    TEMPERATURE,
     UNWOUND,
     Line,
 )
@@ -55,11 +57,24 @@ _ELASTICITY: Final = (
     "material.poisson_ratio",
     *(f"material.{name}_gpa" for name in HEXAGONAL_CONSTANTS),
 )
-_WITHOUT_COLUMN: Final = (
-    "pressure_mpa",
-    "indented_stress_mpa",
-    "excess_mpa",
-    "tested_stress_mpa",
+_WITHOUT_COLUMN: Final = {
+    "pressure_mpa": "MPa",
+    "indented_stress_mpa": "MPa",
+    "reference_stress_mpa": "MPa",
+    "excess_mpa": "MPa",
+    "tested_stress_mpa": "MPa",
+    "test_temperature_c": "Cel",
+}
+_THERMAL: Final = {
+    "modulus": "in proportion to the shear modulus",
+    "modulus-and-thermal": "the thermal part taken off, the rest in proportion to the shear "
+    "modulus, the thermal part that is left at the reference put back",
+}
+_TEMPERATURE_INPUTS: Final = (
+    "material.melting_point_k",
+    "material.shear_modulus_slope",
+    "temperature.thermal_mpa",
+    "temperature.athermal_k",
 )
 _FOR_ALL_SCALES: Final = ("initial_hardening_mpa", "saturation_stress_mpa")
 
@@ -85,6 +100,8 @@ def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
         "baseline": _BASELINES[laws.baseline],
         "radius": _RADII[laws.outer_radius],
         "elasticity": _elasticity(laws),
+        "reference": f"{units.from_si(method.reference_temperature, 'Cel'):.6g}",
+        "thermal": _THERMAL.get(laws.temperature, ""),
     }
     groups = _groups(method)
     values = _values(evaluated)
@@ -158,6 +175,26 @@ def _elasticity(laws: Laws) -> str:
 
 def _lines(laws: Laws) -> tuple[Line, ...]:
     """Pick the steps that these laws take, in order."""
+    lines = _at_one_temperature(laws)
+    return lines if laws.temperature == "none" else _brought_to_reference(laws, lines)
+
+
+def _brought_to_reference(laws: Laws, lines: tuple[Line, ...]) -> tuple[Line, ...]:
+    """Put relation 10 before the baseline, which then is taken off what it gives."""
+    place = [line.quantity for line in lines].index("baseline_stress_mpa")
+    before, after = lines[:place], lines[place:]
+    brought = AT_REFERENCE
+    if laws.route == "flow":
+        before = (before[0]._replace(quantity="indented_stress_mpa"),)
+        brought = brought._replace(quantity="flow_stress_mpa")
+    names = {"indented_stress_mpa": "reference_stress_mpa"}
+    after = tuple(
+        line._replace(inputs=tuple(names.get(name, name) for name in line.inputs)) for line in after
+    )
+    return (*before, TEMPERATURE, brought, *after)
+
+
+def _at_one_temperature(laws: Laws) -> tuple[Line, ...]:
     energy = (DENSITY[laws.taylor], *ENERGY)
     if laws.flow_from == "curves":
         return (*FLOW_OF_CURVE, *OVER_BASELINE[laws.superposed], *energy)
@@ -172,7 +209,9 @@ def _values(evaluated: Evaluated) -> Mapping[str, Value]:
     half = evaluated.strength
     return {
         "pressure_mpa": np.nan if half.pressure is None else half.pressure,
+        "test_temperature_c": evaluated.start.temperature,
         "indented_stress_mpa": half.indented_stress,
+        "reference_stress_mpa": half.reference_stress,
         "excess_mpa": half.excess,
         "tested_stress_mpa": half.tested_stress,
         **evaluated.results,
@@ -181,7 +220,7 @@ def _values(evaluated: Evaluated) -> Mapping[str, Value]:
 
 def _unit(quantity: str) -> str:
     """Give the unit of a quantity: that of its column, or of its name where it has none."""
-    return "MPa" if quantity in _WITHOUT_COLUMN else unit_of(quantity)
+    return _WITHOUT_COLUMN.get(quantity) or unit_of(quantity)
 
 
 def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
@@ -197,6 +236,7 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
         "<mean>": (REPEATABILITY, *(tester.bias.name for tester in method.testers)),
         "<curve>": (REPEATABILITY, *(n for n in method.inputs if n.startswith("tensile."))),
         "<baseline>": tuple(baseline),
+        "<temperature>": tuple(name for name in method.inputs if name in _TEMPERATURE_INPUTS),
         "<obstacle>": tuple(name for name in method.inputs if name in _OBSTACLE_INPUTS),
         "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
         "<unwinding>": _of_indentation(method, *unwinding),

@@ -10,6 +10,7 @@ from coldwork.inputs.method import Method
 from coldwork.reduce.marks import Marks
 from coldwork.reduce.readings import Readings
 from coldwork.reduce.reduced import ReadingResults, Reduced
+from coldwork.reduce.temperatures import reduce_temperatures
 from coldwork.reduce.testers import corrected, note_testers
 from coldwork.rules import reading as rules
 from coldwork.rules.coupon import NO_FLOW_STRESS_AT_STRAIN
@@ -50,9 +51,6 @@ def reduce_flow(
     read = units.to_si(readings.column("flow_stress_mpa"), "MPa")
     stress, tester = corrected(readings, method, read)
     note_testers(readings, method, tester, marks)
-    if "temperature_c" in readings.floats:
-        kelvin = units.to_si(readings.column("temperature_c"), "Cel")
-        marks.note(rules.TEST_TEMPERATURE, *rules.temperature_outside(kelvin))
     starts = readings.starts
     count = np.diff(np.append(starts, len(readings)))
     rows = readings.coupon[starts]
@@ -79,6 +77,7 @@ def reduce_flow(
     for i, share in enumerate(reduced.shares.values()):
         part = np.where(tester == i, weight * stress, 0.0)
         share[rows] = np.add.reduceat(part, starts) / mean
+    reduce_temperatures(readings, method, reduced, marks)
     missing = rows[np.isnan(mean)]
     if missing.size:
         marks.note_coupons(NO_FLOW_STRESS_AT_STRAIN, missing, limit=method.plastic_strain)

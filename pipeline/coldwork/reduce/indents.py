@@ -22,6 +22,7 @@ from coldwork.inputs.method import Method
 from coldwork.reduce.marks import Marks
 from coldwork.reduce.readings import Readings
 from coldwork.reduce.reduced import ReadingResults, Reduced
+from coldwork.reduce.temperatures import reduce_temperatures
 from coldwork.reduce.testers import corrected, note_testers
 from coldwork.rules import coupon as coupon_rules
 from coldwork.rules import reading as rules
@@ -114,6 +115,7 @@ def reduce_indents(
         part = np.where(tester == i, value, 0.0)
         share[rows] = np.add.reduceat(part, starts) / (mean * count)
     _refuse_mixtures(indents, nominal, reduced, marks)
+    reduce_temperatures(readings, method, reduced, marks)
     return ReadingResults(
         scale=scale,
         force=force,
@@ -191,9 +193,6 @@ def _note_readings(indents: _Indents, diagonal: _Floats, method: Method, marks: 
         marks.note(rules.CENTRE_DISTANCE, *fired, ratio)
     if "dwell_s" in readings.floats:
         marks.note(rules.DWELL_TIME, *rules.dwell_outside(readings.column("dwell_s")))
-    if "temperature_c" in readings.floats:
-        kelvin = units.to_si(readings.column("temperature_c"), "Cel")
-        marks.note(rules.TEST_TEMPERATURE, *rules.temperature_outside(kelvin))
 
 
 def _refuse_mixtures(indents: _Indents, nominal: _Floats, reduced: Reduced, marks: Marks) -> None:

@@ -32,6 +32,8 @@ class Reduced:
         Nominal force, ball diameter, mean diagonal or diameter. [N], [m], [m]
     applied_force : ndarray, shape (n,)
         Mean of the forces as applied. [N]
+    temperature : ndarray, shape (n,)
+        Mean temperature of the tests. [K]
     shares : dict of str to ndarray, shape (n,)
         Share of the mean that was read on each tester with a calibration. [1]
     own_u : ndarray, shape (n,), or None
@@ -51,6 +53,7 @@ class Reduced:
     ball: NDArray[np.float64]
     mean_diagonal: NDArray[np.float64]
     applied_force: NDArray[np.float64]
+    temperature: NDArray[np.float64]
     shares: dict[str, NDArray[np.float64]]
     own_u: NDArray[np.float64] | None = None
     machine: dict[str, NDArray[np.float64]] = field(default_factory=dict)
@@ -73,6 +76,7 @@ class Reduced:
             ball=blank(),
             mean_diagonal=blank(),
             applied_force=blank(),
+            temperature=blank(),
             shares={name: np.zeros(coupons) for name in testers},
         )
 

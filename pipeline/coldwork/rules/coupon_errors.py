@@ -22,9 +22,11 @@ __all__ = [
     "GRAIN_SIZE_MISSING_RADIUS",
     "MIXED_FORCES",
     "MIXED_SCALES",
+    "MIXED_TEMPERATURES",
     "NO_FLOW_STRESS_AT_STRAIN",
     "NO_LINE_ENERGY",
     "NO_READINGS",
+    "NO_SHEAR_MODULUS",
     "SCALE_WITHOUT_CONSTANTS",
     "STORED_FRACTION_IMPOSSIBLE",
     "STRESS_PAST_BRANCH",
@@ -61,6 +63,27 @@ MIXED_FORCES: Final = Rule(
     "W. D. Nix, H. Gao, J. Mech. Phys. Solids 46 (1998) 411",
     "Small indents read harder, so the mean over several forces belongs to none of them.",
     ("hardness", "hardness_scale", *STRENGTH_ON),
+)
+MIXED_TEMPERATURES: Final = Rule(
+    "mixed-temperatures",
+    Level.ERROR,
+    "the coupon was read at temperatures more than five kelvin apart",
+    5.0,
+    "K",
+    "common practice: copper and iron lose some 0.2 % of their modulus in five kelvin",
+    "Their mean belongs to no temperature that it could be brought from.",
+    ("hardness", *STRENGTH_ON),
+)
+NO_SHEAR_MODULUS: Final = Rule(
+    "no-shear-modulus",
+    Level.ERROR,
+    "the metal has no shear modulus at the temperature of the test; limit as the melting point",
+    None,
+    "Cel",
+    "H. J. Frost, M. F. Ashby, Deformation-Mechanism Maps (1982), law of the modulus (from memory)",
+    "Above the melting point, or where the line of the modulus comes down to nothing, a strength"
+    " cannot be brought to the reference temperature.",
+    STRENGTH_ON,
 )
 SCALE_WITHOUT_CONSTANTS: Final = Rule(
     "scale-without-constants",
@@ -183,6 +206,8 @@ COUPON_ERRORS: Final = (
     NO_READINGS,
     MIXED_SCALES,
     MIXED_FORCES,
+    MIXED_TEMPERATURES,
+    NO_SHEAR_MODULUS,
     SCALE_WITHOUT_CONSTANTS,
     NO_FLOW_STRESS_AT_STRAIN,
     BAD_COUPON_CELL_NEEDED,
