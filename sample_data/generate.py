@@ -8,6 +8,7 @@ and indents them: that is *copper-strip*, with the furnace's file and a schedule
 it; and since its benches do not write tidy tables, the same indents stand once more in
 *copper-benches*, as each bench would have left them.
 The same copper is pulled too, and the puller's own files are *copper-tension*.
+Twelve of its strips were looked at in foils: *copper-calibration*.
 A wire shop in the same yard draws
 low-carbon rod and pulls pieces of each size: that is *steel-wire*. And the
 laboratory keeps a shelf of records with everything in them that has ever gone
@@ -26,6 +27,7 @@ from pathlib import Path
 
 from scenario import (
     copper_benches,
+    copper_calibration,
     copper_furnace,
     copper_strip,
     copper_tension,
@@ -45,6 +47,7 @@ def batches() -> dict[str, str | bytes]:
         **copper_benches.files(),
         **copper_workbook.files(),
         **copper_tension.files(),
+        **copper_calibration.files(),
         **steel_wire.files(),
         **planted_faults.files(),
     }

@@ -68,6 +68,10 @@ COLUMNS = {
     "in/curves": "coupon_id point_no time_s force_n extension_mm crosshead_mm stress_mpa strain",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
     "in/schedule": "time_s temperature_c",
+    "in/pairs": "coupon_id flow_stress_mpa u_flow_stress_mpa dislocation_density_per_m2 "
+    "u_dislocation_density_per_m2 hardness u_hardness force_n ball_mm grain_size_um "
+    "u_grain_size_um stored_energy_j_per_g u_stored_energy_j_per_g heat_j_per_g u_heat_j_per_g "
+    "correlation",
     "out/coupons": "batch_id coupon_id lot_id condition material route test_strain readings_used "
     "readings_set_aside hardness hardness_scale flow_stress_mpa baseline_stress_mpa "
     "dislocation_stress_mpa dislocation_density_per_m2 mean_spacing_nm line_energy_j_per_m "
@@ -125,6 +129,7 @@ REQUIRED = {
     "in/curves": "coupon_id",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
     "in/schedule": "time_s temperature_c",
+    "in/pairs": "coupon_id",
 }
 UNITS = {  # what the suffix of a column's name promises
     "_mpa": "MPa",

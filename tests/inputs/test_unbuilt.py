@@ -26,7 +26,6 @@ NOT_YET = "not built yet"
         ("uncertainty", "draws = 100000", "Draws belong to Monte Carlo"),
         ("uncertainty", 'draws = "adaptive"', "Draws belong to Monte Carlo"),
         ("uncertainty", "seed = 1", "A seed belongs to Monte Carlo"),
-        ("calibration", "a = 1", "Constants from a calibration"),
     ],
 )
 def test_a_section_asks_for_what_is_not_there_yet(
@@ -44,7 +43,6 @@ def test_a_section_asks_for_what_is_not_there_yet(
     [
         ('route = "indent"', 'route = "both"', "Comparing the indent and the flow route"),
         ("{ value = 50.0, u = 15.0 }", '{ from_coupon = "A0" }', "taken from a coupon"),
-        ("{ value = 50.0, u = 15.0 }", '{ calibration = "C1" }', "taken from a calibration"),
         (
             "shear_modulus_gpa",
             "boundary_energy_j_per_m2 = 0.6\nshear_modulus_gpa",

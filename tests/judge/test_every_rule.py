@@ -10,6 +10,7 @@ import numpy as np
 import pyarrow as pa
 import pytest
 
+from coldwork.inputs.calibration import Calibration, Parameter
 from coldwork.inputs.method import Laws, Method
 from coldwork.inputs.method import Tester as Machine  # a name that pytest does not collect
 from coldwork.inputs.quantity import Input
@@ -19,6 +20,7 @@ from coldwork.intake.files import SourceFile
 from coldwork.intake.lookup import Lookup
 from coldwork.intake.printed import Printed
 from coldwork.judge.batch_rules import judge_inputs
+from coldwork.judge.calibrations import judge_ranges
 from coldwork.judge.coupon_rules import State, judge_coupon_cells, judge_coupons, judge_scales
 from coldwork.judge.printed import judge_printed
 from coldwork.judge.temperatures import judge_temperatures
@@ -171,6 +173,22 @@ def scales(batch: Method, scale: int) -> Fires:
     def run() -> Findings:
         findings = Findings(1)
         judge_scales(findings, batch, np.array([scale], dtype=np.int8))
+        return findings
+
+    return run
+
+
+def calibrated(key: str, quantity: str, value: float, scale: int = HV) -> Fires:
+    """One coupon of that value, and a calibration from 100 to 200 of it."""
+    constants = (Parameter(key, 1.0, 0.1, "1"),)
+    one = np.array([[0.01]])
+    names = ("c", "hardness", "c.toml", "0", "pairs.csv", "0")
+    found = Calibration(*names, constants, one, np.inf, quantity, 100.0, 200.0)
+
+    def run() -> Findings:
+        findings = Findings(1)
+        values = {quantity: np.array([value])}
+        judge_ranges(findings, [found], np.array([0]), values, np.array([scale], dtype=np.int8))
         return findings
 
     return run
@@ -374,6 +392,11 @@ CASES: Final[list[tuple[Rule, Fires, Fires]]] = [
     ),
     (C.FEW_CORE_RADII, judged(radius_ratio=4.9), judged(radius_ratio=5.0)),
     (
+        C.OUTSIDE_CALIBRATION,
+        calibrated("strength.baseline_mpa", "flow_stress_mpa", 200.1),
+        calibrated("strength.baseline_mpa", "flow_stress_mpa", 200.0),
+    ),
+    (
         C.BAD_COUPON_CELL,
         cells(method(), coupons(25.0, ("thickness_mm", "2 mm"))),
         cells(method(), coupons(25.0)),
@@ -542,3 +565,9 @@ def test_only_positive_inputs_after_the_stress_are_skewed(given: Input, fires: b
         assert given.name in row["detail"]
         assert row["coupon_id"] is None
         assert row["value"] == pytest.approx(0.2)
+
+
+def test_a_calibration_of_one_scale_looks_at_its_scale_alone() -> None:
+    key = "indentation.HK.constraint_factor"
+    assert C.OUTSIDE_CALIBRATION.id in calibrated(key, "hardness", 99.0, HK)().counts
+    assert C.OUTSIDE_CALIBRATION.id not in calibrated(key, "hardness", 99.0, HV)().counts

@@ -2,7 +2,18 @@
 
 import typer
 
-from coldwork.cli import anneal, check, contract, estimate, inspect, materials, new, process, trace
+from coldwork.cli import (
+    anneal,
+    calibrate,
+    check,
+    contract,
+    estimate,
+    inspect,
+    materials,
+    new,
+    process,
+    trace,
+)
 
 __all__ = ["app", "main"]
 
@@ -16,7 +27,18 @@ app = typer.Typer(
     add_completion=False,
     pretty_exceptions_enable=False,
 )
-for command in (new, inspect, check, process, trace, anneal, estimate, materials, contract):
+for command in (
+    new,
+    inspect,
+    check,
+    process,
+    trace,
+    anneal,
+    estimate,
+    calibrate,
+    materials,
+    contract,
+):
     name = command.__name__.rpartition(".")[2]
     app.command(name)(getattr(command, name))
 

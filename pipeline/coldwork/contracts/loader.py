@@ -20,7 +20,7 @@ from coldwork.errors import ColdworkError, UsageError
 __all__ = ["contract_of", "document", "documents", "load", "names"]
 
 _ORDER: Final = {
-    "in": ("coupons", "indents", "flow_stress", "curves", "exclusions", "schedule"),
+    "in": ("coupons", "indents", "flow_stress", "curves", "exclusions", "pairs", "schedule"),
     "out": (
         "coupons",
         "quantities",
@@ -35,7 +35,16 @@ _ORDER: Final = {
         "curve_points",
         "anneal",
     ),
-    "documents": ("batch_sheet", "layout", "furnace", "method", "manifest", "record", "account"),
+    "documents": (
+        "batch_sheet",
+        "layout",
+        "calibration",
+        "furnace",
+        "method",
+        "manifest",
+        "record",
+        "account",
+    ),
 }
 _TABLE_KEYS: Final = {
     "name",

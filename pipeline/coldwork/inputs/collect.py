@@ -4,6 +4,7 @@ from collections.abc import Iterator, Mapping
 from typing import Final
 
 from coldwork.formulas.crystal_factor import HEXAGONAL_CONSTANTS
+from coldwork.inputs.calibrated import Calibrations, is_taken
 from coldwork.inputs.causes import Causes
 from coldwork.inputs.keys import TERMS, KeyName, default_of, number_specs, schema_of, spec_of
 from coldwork.inputs.method import Laws
@@ -30,14 +31,17 @@ _NEEDED_CONSTANTS: Final = (
 )
 
 
-def given_numbers(causes: Causes) -> dict[KeyName, Given]:
-    """Read every number with uncertainty that the sheet, or what it builds on, gives."""
+def given_numbers(causes: Causes, calibrations: Calibrations) -> dict[KeyName, Given]:
+    """Read every number with uncertainty that the sheet, or what it builds on, gives or takes."""
     found = {}
     for key, raw in _written(causes):
         spec = spec_of(key)
         if spec is None:
             continue
-        given = to_given(causes, key, raw, spec, causes.sheet.origin(key))
+        if is_taken(raw):
+            given = calibrations.give(causes, key, raw, spec)
+        else:
+            given = to_given(causes, key, raw, spec, causes.sheet.origin(key))
         if given is not None:
             found[key] = given
     return found

@@ -10,6 +10,7 @@ from typing import Any, Final
 import coldwork
 from coldwork.contracts import document
 from coldwork.formulas.unwinding import hardening_constants
+from coldwork.inputs.calibration import Calibration
 from coldwork.inputs.keys import number_specs, schema_of
 from coldwork.inputs.laws import choice
 from coldwork.inputs.layout import Layout
@@ -76,6 +77,7 @@ def method_document(
         **sections,
         "files": _files(method),
         "layouts": [_layout(method, layout) for layout in method.used_layouts],
+        "calibrations": [_calibration(found) for found in method.calibrations],
         "defaults": list(dict.fromkeys(_defaults(method, tables, numbers))),
         "derived": _derived(method),
         "versions": {"coldwork": coldwork.__version__}
@@ -119,6 +121,19 @@ def _tester(tester: Tester) -> dict[str, object]:
         "bias_rel": tester.bias.value,
         "u_rel": tester.bias.u,
         "valid_until": tester.valid_until.isoformat() if tester.valid_until else None,
+    }
+
+
+def _calibration(found: Calibration) -> dict[str, object]:
+    return {
+        "id": found.id,
+        "kind": found.kind,
+        "path": found.path,
+        "sha256": found.digest,
+        "data_sha256": found.data_digest,
+        "gives": [parameter.key for parameter in found.parameters],
+        "range": {"quantity": found.quantity, "low": found.low, "high": found.high},
+        "verdict": found.verdict,
     }
 
 

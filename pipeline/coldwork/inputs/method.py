@@ -9,6 +9,7 @@ from datetime import date
 from pathlib import Path
 
 from coldwork.formulas.slip_systems import SlipSystem
+from coldwork.inputs.calibration import Calibration
 from coldwork.inputs.layout import Layout
 from coldwork.inputs.quantity import Input
 
@@ -191,7 +192,8 @@ class Method:
     laws : Laws
         The choices by name.
     inputs : mapping of str to Input
-        Every number that the laws use, exact ones too, and ``tester:ID``.
+        Every number that the laws use, exact ones too, ``tester:ID`` and the components
+        ``calibration:ID:1`` of constants that were calibrated together.
     testers : tuple of Tester
         In the sheet's order.
     limits : tuple of Limit
@@ -213,8 +215,8 @@ class Method:
     detail : str
         ``full`` or ``summary``.
     sheets : tuple of (str, str)
-        Path as the sheet names it, and SHA-256, of ``batch.toml`` and of what
-        it builds on.
+        Path as the sheet names it, and SHA-256, of ``batch.toml``, of what it builds on
+        and of the calibrations that it takes numbers from.
     document : mapping of str to object
         Content of ``method.json``, ready to dump.
     curves : tuple of Path
@@ -223,6 +225,10 @@ class Method:
         How those are reduced.
     layouts : mapping of str to tuple of (Layout or None)
         By table: how each of its files is written, None for the tidy form.
+    calibrations : tuple of Calibration
+        Those that numbers are taken from.
+    mixes : mapping of str to mapping of str to float
+        By input: its sensitivities to components, where it was calibrated with others. [SI]
     """
 
     folder: Path
@@ -256,6 +262,8 @@ class Method:
     curves: tuple[Path, ...] = ()
     tensile: Tensile | None = None
     layouts: Mapping[str, tuple[Layout | None, ...]] = field(default_factory=dict)
+    calibrations: tuple[Calibration, ...] = ()
+    mixes: Mapping[str, Mapping[str, float]] = field(default_factory=dict)
 
     @property
     def used_layouts(self) -> tuple[Layout, ...]:

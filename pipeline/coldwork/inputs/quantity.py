@@ -7,7 +7,7 @@ from typing import Final
 __all__ = ["ORIGINS", "SHAPES", "Input", "lognormal_u"]
 
 SHAPES: Final = ("normal", "uniform", "triangular", "lognormal")
-ORIGINS: Final = ("sheet", "builds_on", "library", "default")
+ORIGINS: Final = ("sheet", "builds_on", "library", "default", "calibration")
 
 
 @dataclass(frozen=True)
@@ -18,7 +18,7 @@ class Input:
     ----------
     name : str
         Dotted path in the sheet, such as ``hardening.taylor_factor``; a
-        tester's bias is ``tester:ID``.
+        tester's bias is ``tester:ID``, a component of a calibration ``calibration:ID:1``.
     value : float
         The value. [SI]
     u : float
@@ -36,7 +36,7 @@ class Input:
     source : str
         Where the value was found; empty if nobody said.
     origin : str
-        Who gave it: ``sheet``, ``builds_on``, ``library`` or ``default``.
+        Who gave it: ``sheet``, ``builds_on``, ``library``, ``default`` or ``calibration``.
     """
 
     name: str

@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from coldwork.errors import BatchRefused
+from coldwork.inputs.calibrated import Calibrations
 from coldwork.inputs.causes import Causes
 from coldwork.inputs.collect import (
     given_numbers,
@@ -82,7 +83,9 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     causes = Causes(sheet)
     refuse_unreal_numbers(causes)
     refuse_unbuilt(causes)
-    given = given_numbers(causes)
+    home = folder.resolve()
+    calibrations = Calibrations(home)
+    given = given_numbers(causes, calibrations)
     material = material_of(causes)
     refuse_bad_identity(causes)
     refuse_misfits(causes)
@@ -94,13 +97,22 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_bad_testers(causes)
     refuse_bad_limits(causes)
     refuse_bad_tensile(causes)
-    home = folder.resolve()
+    calibrations.refuse_conflicts(causes)
     files = tables_of(causes, home) if with_files else Tables()
-    if causes.found or files.causes:
-        raise BatchRefused(str(folder), [*causes.all(), *files.causes])
+    inside = [*calibrations.causes, *files.causes]
+    if causes.found or inside:
+        raise BatchRefused(str(folder), [*causes.all(), *inside])
     laws = laws_of(sheet.tables, crystal)
     numbers = used_numbers(causes, laws, given, material) | machine_numbers(causes)
+    numbers |= calibrations.components()
     method = _method(causes, home, material, files, numbers, laws)
+    taken = calibrations.files()
+    method = replace(
+        method,
+        sheets=(*method.sheets, *((found.path, found.digest) for found in taken)),
+        calibrations=taken,
+        mixes=calibrations.mixes(),
+    )
     return replace(method, document=method_document(method, sheet.tables, numbers))
 
 

@@ -31,8 +31,6 @@ _KEYS: Final[Mapping[KeyPath, str]] = {
     ("uncertainty", "draws"): "Draws belong to Monte Carlo, which is not built yet.",
     ("uncertainty", "seed"): "A seed belongs to Monte Carlo, which is not built yet.",
     ("strength", "baseline_from_coupon"): "A baseline from a coupon is not built yet.",
-    ("calibration",): "Constants from a calibration are not built yet; give them as numbers.",
-    ("calibrations",): "Constants from a calibration are not built yet; give them as numbers.",
 }
 _CONSTANTS: Final[Mapping[str, str]] = {
     "boundary_energy_j_per_m2": "recrystallisation",
@@ -44,9 +42,6 @@ _DEPTH_KEYS: Final[Mapping[str, str]] = {
 }
 _ORIGINS: Final[Mapping[str, str]] = {
     "from_coupon": "A value that is taken from a coupon is not built yet.",
-    "calibration": "A value that is taken from a calibration is not built yet.",
-    "from_calibration": "A value that is taken from a calibration is not built yet.",
-    "from": "A value that is taken from elsewhere is not built yet.",
 }
 
 

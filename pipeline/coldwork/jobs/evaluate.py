@@ -86,7 +86,8 @@ def inputs_of(method: Method) -> tuple[dict[str, Value], dict[str, Spread]]:
     Returns
     -------
     dict of str to Value
-        By name; testers are left out, they act on the mean. [SI]
+        By name; testers are left out, they act on the mean, and so are the components of
+        calibrations, which act on what was calibrated. [SI]
     dict of str to Spread
         The uncertainty of each, testers too.
     """
@@ -94,7 +95,10 @@ def inputs_of(method: Method) -> tuple[dict[str, Value], dict[str, Spread]]:
     spreads: dict[str, Spread] = {}
     for name, x in method.inputs.items():
         spreads[name] = Spread(x.u, x.shared, x.degrees_of_freedom)
-        if not name.startswith("tester:"):
+        if name in method.mixes:
+            mix = {source: np.asarray(c) for source, c in method.mixes[name].items()}
+            values[name] = Measured(np.asarray(x.value), mix)
+        elif not name.startswith(("tester:", "calibration:")):
             exact = np.float64(x.value)
             values[name] = Measured.of_input(name, x.value) if x.u > 0.0 else exact
     return values, spreads

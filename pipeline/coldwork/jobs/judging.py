@@ -22,6 +22,7 @@ from coldwork.jobs.evaluate import Evaluated
 from coldwork.jobs.figures import Figures
 from coldwork.jobs.gather import Gathered
 from coldwork.jobs.tables import unit_of
+from coldwork.judge.calibrations import judge_ranges
 from coldwork.judge.coupon_rules import State, judge_coupons
 from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
 from coldwork.judge.temperatures import judge_temperatures
@@ -79,6 +80,11 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
             stored_fraction=results["stored_fraction_of_work"].value,
         ),
     )
+    if method.calibrations:
+        values = {name: units.from_si(x.value, unit_of(name)) for name, x in results.items()}
+        values["grain_size_um"] = units.from_si(batch.coupons.grain_size[rows], "um")
+        place = np.arange(rows.start, rows.stop)
+        judge_ranges(batch.findings, method.calibrations, place, values, reduced.scale[rows])
 
 
 @dataclass(frozen=True)

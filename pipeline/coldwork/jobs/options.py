@@ -10,7 +10,7 @@ from coldwork.inputs.method import Method
 from coldwork.inputs.sheet import method_of
 from coldwork.inputs.source import Sheet, SheetFile, read_sheet
 
-__all__ = ["method_of_options"]
+__all__ = ["method_of_options", "pair_of"]
 
 
 def method_of_options(
@@ -67,6 +67,32 @@ def method_of_options(
     except BatchRefused as refused:
         message = "\n".join(["these options make no method:", *map(_hinted, refused.causes)])
         raise UsageError(message) from refused
+
+
+def pair_of(text: str) -> tuple[str, float]:
+    """Read an option written as a name and a number.
+
+    Parameters
+    ----------
+    text : str
+        Such as ``hardness=0.01``.
+
+    Returns
+    -------
+    tuple of str and float
+        The two.
+
+    Raises
+    ------
+    UsageError
+        If it is written otherwise.
+    """
+    name, _, number = text.partition("=")
+    try:
+        return name.strip(), float(number)
+    except ValueError as error:
+        message = f"{text!r} is not a name and a number: write it like hardness=0.01"
+        raise UsageError(message) from error
 
 
 def _hinted(cause: Cause) -> str:

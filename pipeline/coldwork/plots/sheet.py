@@ -34,8 +34,8 @@ class Sheet:
     ----------
     title : str
         What is shown.
-    context : Context
-        The batch.
+    context : Context or None
+        The batch, where there is one.
     facts : sequence of str
         What else stands in the line under the title.
     key : sequence of (Artist, str)
@@ -45,7 +45,7 @@ class Sheet:
     """
 
     title: str
-    context: Context
+    context: Context | None
     facts: Sequence[str]
     key: Sequence[tuple[Artist, str]]
     notes: Sequence[str]
@@ -75,7 +75,8 @@ def open_sheet(sheet: Sheet, inner: float) -> tuple[Figure, float]:
     bottom = 0.12 + _NOTE_HIGH * len(notes)
     height = top + inner + bottom
     figure = Figure(figsize=(WIDTH, height))
-    figure.set_label(f"{sheet.title}, batch {shown(sheet.context.batch_id)}")
+    batch = f", batch {shown(sheet.context.batch_id)}" if sheet.context else ""
+    figure.set_label(f"{sheet.title}{batch}")
 
     def write(text: str, down: float, size: float, colour: str, weight: str = "normal") -> None:
         at = (EDGE / WIDTH, 1.0 - down / height)
@@ -100,7 +101,9 @@ def add_panel(figure: Figure, left: float, bottom: float, wide: float, high: flo
     return axes
 
 
-def _batch(context: Context) -> list[str]:
+def _batch(context: Context | None) -> list[str]:
+    if context is None:
+        return []
     name = fitted(shown(context.batch_id), Sizes.words, 3.5)
     metal = fitted(shown(context.material), Sizes.words, 2.0)
     return [f"Batch {name}", metal, f"{context.route} route"]

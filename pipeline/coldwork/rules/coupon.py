@@ -51,6 +51,7 @@ __all__ = [
     "NO_READINGS",
     "NO_REPEATABILITY",
     "NO_SHEAR_MODULUS",
+    "OUTSIDE_CALIBRATION",
     "SCALE_WITHOUT_CONSTANTS",
     "SCATTER",
     "STORED_FRACTION_IMPOSSIBLE",
@@ -158,6 +159,17 @@ FEW_CORE_RADII: Final = Rule(
     "common practice",
     "The energy then hangs on the core radius, which elasticity does not give.",
 )
+OUTSIDE_CALIBRATION: Final = Rule(
+    "outside-calibration",
+    Level.WARNING,
+    "the coupon lies outside the range of a calibration that it is worked with; value as place in"
+    " that range, 0 at its lower and 1 at its upper end",
+    0.0,
+    "1",
+    "ISO/IEC 17025:2017, 7.2.2.3 (range of a validated method; from memory)",
+    "Outside its points a line is a guess, and its uncertainty does not say how bad a one.",
+    upper=1.0,
+)
 BAD_COUPON_CELL: Final = Rule(
     "bad-coupon-cell",
     Level.WARNING,
@@ -219,6 +231,7 @@ COUPON_RULES: Final = (
     ABOVE_SATURATION,
     TEMPERATURE_FAR,
     FEW_CORE_RADII,
+    OUTSIDE_CALIBRATION,
     BAD_COUPON_CELL,
     UNDER_FIVE_READINGS,
     INDENT_ADDS_STRAIN,
