@@ -21,7 +21,7 @@ __all__ = ["Caption", "Cell", "Remark", "grid_pages"]
 
 _TITLE, _CAPTION, _BELOW = 0.21, 0.17, 0.24  # above and below the panels of a cell [inch]
 _LABEL = 0.3  # for the name of the axis below the lowest row [inch]
-_TICKS, _GAP = 0.44, 0.1  # left of a panel with numbers of its own, and of another one [inch]
+_TICKS, _GAP = 0.44, 0.24  # left of a panel with numbers of its own, and of another one [inch]
 _BOLD = 1.2  # width of a bold word over that of a plain one, at most [1]
 _RIGHT = 0.12  # right of the last panel, for half a number [inch]
 _HIGHEST = 10.2  # of all rows of a page together [inch]
