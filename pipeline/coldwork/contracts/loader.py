@@ -34,6 +34,8 @@ _ORDER: Final = {
         "evolution",
         "curve_points",
         "anneal",
+        "compare",
+        "compare_choices",
     ),
     "documents": (
         "batch_sheet",

@@ -34,7 +34,7 @@ from coldwork.jobs.annealing.states import (
 from coldwork.jobs.annealing.table import anneal_table
 from coldwork.jobs.annealing.words import sentences, text_of
 from coldwork.measured import Measured, Value, value_of
-from coldwork.results.apart import write_apart
+from coldwork.results.apart import open_apart
 from coldwork.results.disk import shown
 from coldwork.results.read import sha256_of
 from coldwork.statistics.student import student_quantile
@@ -120,12 +120,14 @@ class Anneal:
         ResultsNotWritten
             If it is there already or cannot be written.
         """
-        files: list[tuple[str, bytes]] = []
-        if plots:
-            from coldwork.jobs.annealing.drawing import drawn  # here: it takes half a second
+        with open_apart(folder) as apart:
+            apart.add("anneal", self.table)
+            if plots:
+                from coldwork.jobs.annealing.drawing import drawn  # here: it takes half a second
 
-            files = list(drawn(self.worked, self.states, self.spreads, self.table))
-        return write_apart(folder, {"anneal": self.table}, files, self.account())
+                for name, data in drawn(self.worked, self.states, self.spreads, self.table):
+                    apart.write(name, data)
+            return apart.commit(self.account())
 
 
 def anneal(folder: Path, furnace: Path | None = None, schedule: Path | None = None) -> Anneal:

@@ -1,8 +1,9 @@
 """A new folder for tables that are made of results or beside them, whole or not at all."""
 
 import os
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping
 from concurrent.futures import ThreadPoolExecutor
+from contextlib import contextmanager
 from pathlib import Path
 from typing import Final
 
@@ -14,34 +15,25 @@ from coldwork.results.documents import dump
 from coldwork.results.staging import staging
 from coldwork.results.tables import TableWriter
 
-__all__ = ["write_apart"]
+__all__ = ["Apart", "open_apart"]
 
 _ACCOUNT: Final = "account"
+_FORMATTERS: Final = 2  # threads that format; the caller computes meanwhile
 
 
-def write_apart(
-    folder: Path,
-    tables: Mapping[str, pa.Table],
-    files: Sequence[tuple[str, bytes]],
-    account: Mapping[str, object],
-) -> Path:
-    """Write tables, files and an account into a folder that does not exist yet.
+@contextmanager
+def open_apart(folder: Path) -> Iterator["Apart"]:
+    """Open a folder that does not exist yet; nothing is seen there until `Apart.commit`.
 
     Parameters
     ----------
     folder : Path
         The folder; what is there already is never touched.
-    tables : mapping of str to pyarrow.Table
-        By name; each is held against its contract ``out/<name>``.
-    files : sequence of (str, bytes)
-        Relative path with ``/`` between its parts, and content.
-    account : mapping
-        Content of ``account.json`` but for ``outputs``.
 
-    Returns
-    -------
-    Path
-        The folder.
+    Yields
+    ------
+    Apart
+        What tables and files are written through.
 
     Raises
     ------
@@ -55,44 +47,80 @@ def write_apart(
             "Choose another folder with --into."
         )
         raise ResultsNotWritten(message)
-    with staging(folder.parent) as holder:
-        place = holder / "results"
+    with (
+        staging(folder.parent) as holder,
+        ThreadPoolExecutor(_FORMATTERS, thread_name_prefix="format") as pool,
+    ):
+        apart = Apart(folder, holder / "results", pool)
+        try:
+            yield apart
+        finally:
+            apart.abandon()
+
+
+class Apart:
+    """A folder that is being written; made by `open_apart`.
+
+    Attributes
+    ----------
+    folder : Path
+        Where it will stand after `commit`.
+    """
+
+    def __init__(self, folder: Path, place: Path, pool: ThreadPoolExecutor) -> None:
+        self.folder = folder
+        self._place = place
+        self._pool = pool
+        self._files: list[Output] = []
+        self._tables: dict[str, TableWriter] = {}
         with writing(folder):
             place.mkdir()
-        outputs = [*_tables(place, tables), *(_file(place, *each) for each in files)]
+
+    def add(self, name: str, table: pa.Table) -> None:
+        """Append rows to a table; each slice is held against its contract ``out/<name>``."""
+        if name not in self._tables:
+            self._tables[name] = TableWriter(self._place, name, ("csv",), self._pool)
+        self._tables[name].write(table)
+
+    def write(self, name: str, data: bytes) -> None:
+        """Write one whole file, under a path with ``/`` between its parts."""
+        path = self._place / name
+        with writing(path):
+            path.parent.mkdir(parents=True, exist_ok=True)
+        file = HashedFile(path)
+        try:
+            file.write(data)
+            file.close()
+        finally:
+            file.abandon()
+        self._files.append(Output(name, file.sha256, file.size, None))
+
+    def commit(self, account: Mapping[str, object]) -> Path:
+        """Write the account, with ``outputs`` added, and move everything to its place.
+
+        Returns
+        -------
+        Path
+            The folder.
+
+        Raises
+        ------
+        ResultsNotWritten
+            If the file system does not take it.
+        """
+        for writer in self._tables.values():
+            writer.close()
+        outputs = [*self._files, *(x for w in self._tables.values() for x in w.outputs)]
         entries = [each.entry() for each in sorted(outputs, key=lambda each: each.path)]
-        _file(place, f"{_ACCOUNT}.json", dump(_ACCOUNT, {**account, "outputs": entries}))
-        with writing(folder):
-            for each, _, _ in os.walk(place):
+        self.write(f"{_ACCOUNT}.json", dump(_ACCOUNT, {**account, "outputs": entries}))
+        with writing(self.folder):
+            for each, _, _ in os.walk(self._place):
                 sync_folder(Path(each))
-            place.rename(folder)
-            sync_folder(folder.parent)
-    return folder
+            self._place.rename(self.folder)
+            sync_folder(self.folder.parent)
+        return self.folder
 
-
-def _tables(place: Path, tables: Mapping[str, pa.Table]) -> list[Output]:
-    outputs: list[Output] = []
-    with ThreadPoolExecutor(1, thread_name_prefix="format") as pool:
-        for name, table in tables.items():
-            writer = TableWriter(place, name, ("csv",), pool)
-            try:
-                writer.write(table)
-                writer.close()
-            except BaseException:
-                writer.abandon()
-                raise
-            outputs += writer.outputs
-    return outputs
-
-
-def _file(place: Path, name: str, data: bytes) -> Output:
-    path = place / name
-    with writing(path):
-        path.parent.mkdir(parents=True, exist_ok=True)
-    file = HashedFile(path)
-    try:
-        file.write(data)
-        file.close()
-    finally:
-        file.abandon()
-    return Output(name, file.sha256, file.size, None)
+    def abandon(self) -> None:
+        """Stop every writer; what they hold is lost unless it was committed."""
+        for writer in self._tables.values():
+            writer.abandon()

@@ -74,6 +74,14 @@ class Findings:
         self._bits = blank(self._n_coupons)
         self._counts = np.zeros(len(RULES), dtype=np.int64)
 
+    def copied(self) -> "Findings":
+        """Give a collection of the same findings; what is added to one is not in the other."""
+        copy = Findings(self._n_coupons)
+        copy._chunks = list(self._chunks)
+        copy._bits = self._bits.copy()
+        copy._counts = self._counts.copy()
+        return copy
+
     def add(
         self,
         rule: Rule,
