@@ -10,7 +10,9 @@ __all__ = ["materials"]
 
 
 def materials(
-    name: Annotated[str | None, typer.Argument(help="One metal; all of them without it.")] = None,
+    name: Annotated[
+        str | None, typer.Argument(help="One metal, or its own .toml file; all of them without.")
+    ] = None,
     *,
     json: Annotated[bool, typer.Option("--json", help="For a program to read.")] = False,
 ) -> None:

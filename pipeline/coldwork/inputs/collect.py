@@ -11,13 +11,11 @@ from coldwork.inputs.method import Laws
 from coldwork.inputs.numbers import Given, to_given
 from coldwork.inputs.words import listed, nearest
 from coldwork.materials import Material
-from coldwork.materials import load as load_material
 from coldwork.materials import names as material_names
 
 __all__ = [
     "constant",
     "given_numbers",
-    "material_of",
     "refuse_missing_constants",
     "used_numbers",
 ]
@@ -78,13 +76,6 @@ def _at(tables: Mapping[str, object], key: KeyName) -> object:
     return at
 
 
-def material_of(causes: Causes) -> Material | None:
-    """Give the library's entry for the sheet's metal, None if it has none."""
-    name = _at(causes.sheet.tables, ("material", "name"))
-    known = isinstance(name, str) and name in material_names()
-    return load_material(str(name)) if known else None
-
-
 def constant(key: str, given: Mapping[KeyName, Given], material: Material | None) -> float | None:
     """Give a constant of the metal as the sheet or the library has it, None if neither does.
 
@@ -110,7 +101,7 @@ def constant(key: str, given: Mapping[KeyName, Given], material: Material | None
 
 
 def refuse_missing_constants(causes: Causes, material: Material | None) -> None:
-    """Refuse a metal that neither the library nor the sheet knows enough of."""
+    """Refuse a metal that neither the library, a file nor the sheet knows enough of."""
     section = causes.sheet.tables.get("material")
     name = section.get("name") if isinstance(section, dict) else None
     if material is not None or not isinstance(section, dict) or not isinstance(name, str):
@@ -120,7 +111,7 @@ def refuse_missing_constants(causes: Causes, material: Material | None) -> None:
         causes.add(
             ("material", "name"),
             f"the library has no '{name}' and the sheet does not give {listed(missing)}",
-            "A metal comes from the library, or with every constant that the method needs.",
+            "A metal comes from the library, from a file of one's own, or with all constants.",
             nearest(name, material_names()),
         )
 
@@ -191,7 +182,8 @@ def _from_library(causes: Causes, key: KeyName, material: Material | None) -> Gi
         return None
     entry = material.values[key[1]]
     raw = {"value": entry.value, "u": entry.u, "source": entry.source}
-    return to_given(causes, key, raw, spec, "library")
+    own = "file" in causes.sheet.tables["material"]
+    return to_given(causes, key, raw, spec, "metal_file" if own else "library")
 
 
 def _default(causes: Causes, key: KeyName) -> Given | None:

@@ -7,7 +7,7 @@ from typing import Final
 __all__ = ["ORIGINS", "SHAPES", "Input", "lognormal_u"]
 
 SHAPES: Final = ("normal", "uniform", "triangular", "lognormal")
-ORIGINS: Final = ("sheet", "builds_on", "library", "default", "calibration")
+ORIGINS: Final = ("sheet", "builds_on", "metal_file", "library", "default", "calibration")
 
 
 @dataclass(frozen=True)
@@ -36,7 +36,7 @@ class Input:
     source : str
         Where the value was found; empty if nobody said.
     origin : str
-        Who gave it: ``sheet``, ``builds_on``, ``library``, ``default`` or ``calibration``.
+        Who gave it: ``sheet``, ``builds_on``, ``metal_file``, ``library``, ``default`` or ``calibration``.
     """
 
     name: str

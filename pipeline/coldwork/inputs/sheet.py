@@ -9,7 +9,6 @@ from coldwork.inputs.calibrated import Calibrations
 from coldwork.inputs.causes import Causes
 from coldwork.inputs.collect import (
     given_numbers,
-    material_of,
     refuse_missing_constants,
     used_numbers,
 )
@@ -18,6 +17,7 @@ from coldwork.inputs.document import method_document
 from coldwork.inputs.identity import refuse_bad_identity
 from coldwork.inputs.laws import choice, laws_of, refuse_bad_mix
 from coldwork.inputs.limits import limits_of, refuse_bad_limits, refuse_bad_testers, testers_of
+from coldwork.inputs.metal import Metal, metal_of
 from coldwork.inputs.method import Laws, Method
 from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
 from coldwork.inputs.ranges import refuse_bad_ranges
@@ -86,10 +86,12 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     home = folder.resolve()
     calibrations = Calibrations(home)
     given = given_numbers(causes, calibrations)
-    material = material_of(causes)
+    metal = metal_of(causes, home)
+    material = metal.material
     refuse_bad_identity(causes)
     refuse_misfits(causes)
-    refuse_missing_constants(causes, material)
+    if not metal.causes:
+        refuse_missing_constants(causes, material)
     refuse_bad_mix(causes)
     refuse_bad_ranges(causes, given)
     refuse_bad_temperature(causes, given, material)
@@ -99,13 +101,13 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_bad_tensile(causes)
     calibrations.refuse_conflicts(causes)
     files = tables_of(causes, home) if with_files else Tables()
-    inside = [*calibrations.causes, *files.causes]
+    inside = [*metal.causes, *calibrations.causes, *files.causes]
     if causes.found or inside:
         raise BatchRefused(str(folder), [*causes.all(), *inside])
     laws = laws_of(sheet.tables, crystal)
     numbers = used_numbers(causes, laws, given, material) | machine_numbers(causes)
     numbers |= calibrations.components()
-    method = _method(causes, home, material, files, numbers, laws)
+    method = _method(causes, home, metal, files, numbers, laws)
     taken = calibrations.files()
     method = replace(
         method,
@@ -119,12 +121,12 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
 def _method(
     causes: Causes,
     folder: Path,
-    material: Material | None,
+    metal: Metal,
     found: Tables,
     numbers: dict[str, Given],
     laws: Laws,
 ) -> Method:
-    sheet, files = causes.sheet, found.paths
+    sheet, files, material = causes.sheet, found.paths, metal.material
     tables: dict[str, Any] = sheet.tables
     batch = tables["batch"]
     testers = testers_of(tables, sheet.origin(("testers",)))
@@ -158,7 +160,7 @@ def _method(
         reference_temperature=float(to_si(choice(tables, "temperature", "reference_c"), "Cel")),
         tables=tuple(choice(tables, "output", "tables")),
         detail=choice(tables, "output", "detail"),
-        sheets=sheet.digests,
+        sheets=(*sheet.digests, *metal.digests),
         document={},
         curves=files.get("curves", ()),
         tensile=tensile_of(tables),

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator
 from dataclasses import asdict
+from pathlib import Path
 from textwrap import wrap
 from typing import Any, Final
 
@@ -47,7 +48,7 @@ def detail(name: str) -> str:
     Parameters
     ----------
     name : str
-        Name in the library.
+        Name in the library, or the path of a metal's own ``.toml`` file.
 
     Returns
     -------
@@ -57,9 +58,10 @@ def detail(name: str) -> str:
     Raises
     ------
     UsageError
-        If the library has no such metal; the message names the nearest.
+        If the library has no such metal; the message names the nearest. If the file is
+        no metal's; the message lists every fault.
     """
-    return "\n".join(_lines(materials.load(name)))
+    return "\n".join(_lines(_metal(name)))
 
 
 def as_json(name: str | None = None) -> dict[str, Any]:
@@ -68,7 +70,8 @@ def as_json(name: str | None = None) -> dict[str, Any]:
     Parameters
     ----------
     name : str, optional
-        Name in the library; all of it without one.
+        Name in the library, or the path of a metal's own ``.toml`` file; the whole library
+        without one.
 
     Returns
     -------
@@ -79,10 +82,15 @@ def as_json(name: str | None = None) -> dict[str, Any]:
     Raises
     ------
     UsageError
-        If the library has no such metal; the message names the nearest.
+        As `detail`.
     """
-    wanted = materials.names() if name is None else (name,)
-    return {"materials": {each: asdict(materials.load(each)) for each in wanted}}
+    metals = [_metal(each) for each in (materials.names() if name is None else (name,))]
+    return {"materials": {metal.name: asdict(metal) for metal in metals}}
+
+
+def _metal(name: str) -> Material:
+    of_its_own = name.endswith(".toml")
+    return materials.load_file(Path(name)) if of_its_own else materials.load(name)
 
 
 def _short(metal: Material, key: str) -> str:
