@@ -36,7 +36,8 @@ class Input:
     source : str
         Where the value was found; empty if nobody said.
     origin : str
-        Who gave it: ``sheet``, ``builds_on``, ``metal_file``, ``library``, ``default`` or ``calibration``.
+        Who gave it: ``sheet``, ``builds_on``, ``metal_file``, ``library``, ``default`` or
+        ``calibration``.
     """
 
     name: str
