@@ -2,7 +2,7 @@
 
 from hashlib import sha256
 from pathlib import Path
-from typing import Final
+from typing import Any, Final
 
 import pytest
 
@@ -54,7 +54,8 @@ def refusal(folder: Path) -> str:
 def test_its_values_take_the_librarys_place_and_its_digest_is_kept(tmp_path: Path) -> None:
     method = read_method(batch(tmp_path))
     assert method.inputs["material.shear_modulus_gpa"].value == 47.0e9
-    assert method.document["inputs"]["material.shear_modulus_gpa"]["origin"] == "metal_file"
+    inputs: Any = method.document["inputs"]
+    assert inputs["material.shear_modulus_gpa"]["origin"] == "metal_file"
     assert (method.material, method.lattice) == ("cu-0.1-ag", "fcc")
     digest = sha256(OWN.encode()).hexdigest()
     assert ("own.toml", digest) in method.sheets
