@@ -28,6 +28,7 @@ from coldwork.formulas.line_energy import (
     LINE_ENERGY,
     OUTER_RADIUS,
     UNIFORM_MEAN_COS2,
+    core_radius_alone,
     mean_cos2,
 )
 from coldwork.formulas.pressure import (
@@ -57,6 +58,7 @@ from coldwork.units import to_si
 __all__ = [
     "Start",
     "Strength",
+    "core_alone",
     "dislocation_stress",
     "energy",
     "energy_per_volume",
@@ -386,6 +388,30 @@ def _per_volume(
         "stored_energy_j_per_m3": apply(STORED_ENERGY, density=density, line_energy=per_line),
         "radius_ratio": value_of(outer) / value_of(core),
     }
+
+
+def core_alone(laws: Laws, inputs: Mapping[str, Value]) -> float:
+    """Give the core radius that says the same without a core energy.
+
+    Parameters
+    ----------
+    laws, inputs
+        As for `energy`.
+
+    Returns
+    -------
+    float
+        In Burgers vectors. [1]
+    """
+    plain = {name: value_of(x) for name, x in inputs.items()}
+    return float(
+        core_radius_alone(
+            plain["line_energy.core_radius_b"],
+            plain["line_energy.core_energy"],
+            plain["material.shear_modulus_gpa"],
+            value_of(_energy_factor(laws, plain)),
+        )
+    )
 
 
 def _baseline(laws: Laws, inputs: Mapping[str, Value], grain_size: Value) -> Value:

@@ -24,6 +24,7 @@ __all__ = [
     "OUTER_RADIUS",
     "UNIFORM_MEAN_COS2",
     "core_radius",
+    "core_radius_alone",
     "core_radius_sensitivities",
     "energy_factor",
     "energy_factor_sensitivities",
@@ -349,6 +350,42 @@ core_energy : array_like
         "shear_modulus": np.asarray(np.asarray(core_energy) * b**2),
         "core_energy": np.asarray(np.asarray(shear_modulus) * b**2),
     }
+
+
+def core_radius_alone(
+    multiple: ArrayLike, core_energy: ArrayLike, shear_modulus: ArrayLike, energy_factor: ArrayLike
+) -> NDArray[np.float64]:
+    r"""Compute the core radius that gives the same line energy without a core energy.
+
+    .. math:: r_0' = r_0 \exp\left(-4 \pi c\, G / K\right)
+
+    Parameters
+    ----------
+    multiple : array_like, shape (...)
+        Core radius :math:`r_0`. [Burgers vectors]
+    core_energy : array_like, broadcast against `multiple`
+        Energy of the core in units of :math:`G b^2`, :math:`c`. [1]
+    shear_modulus, energy_factor : array_like, broadcast against `multiple`
+        :math:`G`, and :math:`K` of the mix of characters. [Pa]
+
+    Returns
+    -------
+    ndarray of float64, the broadcast shape
+        :math:`r_0'`, NaN where an input is NaN. [Burgers vectors]
+
+    Raises
+    ------
+    InvalidArgument
+        If any argument but the core energy is zero, negative or infinite, or that one
+        infinite.
+
+    References
+    ----------
+    `line_energy`, with and without its last term set equal.
+    """
+    shift = finite("core_energy", core_energy) * positive("shear_modulus", shear_modulus)
+    ratio = 4.0 * pi * shift / positive("energy_factor", energy_factor)
+    return np.asarray(positive("multiple", multiple) * np.exp(-ratio))
 
 
 def line_energy_rule_of_thumb(

@@ -14,12 +14,14 @@ from coldwork.materials import Material
 from coldwork.materials import names as material_names
 
 __all__ = [
+    "CORE_ENERGY",
     "constant",
     "given_numbers",
     "refuse_missing_constants",
     "used_numbers",
 ]
 
+CORE_ENERGY: Final = "core_energy"  # its key in the library
 _OPTIONAL_CONSTANTS: Final = ("molar_mass_g_per_mol", "heat_capacity_j_per_kg_k")
 _NEEDED_CONSTANTS: Final = (
     "shear_modulus_gpa",
@@ -140,7 +142,12 @@ def used_numbers(
     used = {}
     curves = "curves" in causes.sheet.tables["files"]
     for key in _used_keys(laws, given, curves=curves):
-        number = given.get(key) or _from_library(causes, key, material) or _default(causes, key)
+        number = (
+            given.get(key)
+            or _of_core(causes, key, laws, material)
+            or _from_library(causes, key, material)
+            or _default(causes, key)
+        )
         if number is not None:
             used[number.input.name] = number
     return used
@@ -174,6 +181,21 @@ def _unused_of_crystal(laws: Laws) -> set[KeyName]:
         if not laws.hexagonal:
             unused |= {"c13_gpa", "c33_gpa"}
     return {("material", name) for name in unused}
+
+
+def _of_core(causes: Causes, key: KeyName, laws: Laws, material: Material | None) -> Given | None:
+    """Give the library's core energy, and the radius that it is the energy inside of."""
+    spec = spec_of(key)
+    if laws.core != "library" or material is None or spec is None:
+        return None
+    if key == ("line_energy", "core_radius_b"):
+        raw = {"value": 1.0, "source": "where the library's core energy ends, by definition"}
+        return to_given(causes, key, raw, spec, "library")
+    if key == ("line_energy", CORE_ENERGY):
+        entry = material.values[CORE_ENERGY]
+        raw = {"value": entry.value, "u": entry.u, "source": entry.source}
+        return to_given(causes, key, raw, spec, "library")
+    return None
 
 
 def _from_library(causes: Causes, key: KeyName, material: Material | None) -> Given | None:

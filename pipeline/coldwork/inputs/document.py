@@ -3,7 +3,7 @@
 from collections.abc import Iterator, Mapping
 from dataclasses import asdict
 from importlib.metadata import version
-from math import isfinite
+from math import isfinite, nan
 from pathlib import Path
 from typing import Any, Final
 
@@ -11,6 +11,7 @@ import coldwork
 from coldwork.contracts import document
 from coldwork.formulas.unwinding import hardening_constants
 from coldwork.inputs.calibration import Calibration
+from coldwork.inputs.core import core_words
 from coldwork.inputs.keys import number_specs, schema_of
 from coldwork.inputs.laws import choice
 from coldwork.inputs.layout import Layout
@@ -206,8 +207,9 @@ def _is_said(tables: Mapping[str, Any], key: tuple[str, ...]) -> bool:
 
 def _derived(method: Method) -> dict[str, object]:
     values = {name: found.value for name, found in method.inputs.items()}
+    core: dict[str, object] = {"core": core_words(method.inputs, nan)}
     if not method.laws.unwinding or method.laws.taylor.startswith("logarithmic"):
-        return {"k1_per_m": None, "k2": None}  # they belong to a constant coefficient
+        return core | {"k1_per_m": None, "k2": None}  # they belong to a constant coefficient
     slope = values.get("hardening.slope_n_per_m") or (
         values["hardening.taylor_factor"]
         * values["hardening.coefficient"]
@@ -219,4 +221,4 @@ def _derived(method: Method) -> dict[str, object]:
         values["indentation.saturation_stress_mpa"],
         slope,
     )
-    return {"k1_per_m": k1, "k2": k2}
+    return core | {"k1_per_m": k1, "k2": k2}

@@ -51,6 +51,8 @@ class Laws:
         Whether the crystal is hexagonal and not cubic.
     superposed : bool
         Whether an obstacle stress joins the dislocation stress.
+    core : str
+        Where the core's energy comes from: the ``sheet`` or the ``library``.
     temperature : str
         How a strength is brought to the reference temperature: ``none``, ``modulus`` or
         ``modulus-and-thermal``.
@@ -70,6 +72,7 @@ class Laws:
     slip: SlipSystem | None = None
     hexagonal: bool = False
     superposed: bool = False
+    core: str = "sheet"
     temperature: str = "none"
 
 

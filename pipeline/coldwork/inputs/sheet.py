@@ -12,6 +12,7 @@ from coldwork.inputs.collect import (
     refuse_missing_constants,
     used_numbers,
 )
+from coldwork.inputs.core import refuse_bad_core
 from coldwork.inputs.crystal import crystal_of
 from coldwork.inputs.document import method_document
 from coldwork.inputs.identity import refuse_bad_identity
@@ -95,6 +96,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_bad_mix(causes)
     refuse_bad_ranges(causes, given)
     refuse_bad_temperature(causes, given, material)
+    refuse_bad_core(causes, material)
     crystal = crystal_of(causes, given, material)
     refuse_bad_testers(causes)
     refuse_bad_limits(causes)

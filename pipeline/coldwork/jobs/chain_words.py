@@ -219,7 +219,7 @@ ENERGY: Final = (
         "line energy",
         "relation 7, Hirth and Lothe 1982",
         "line_energy_j_per_m",
-        "{elasticity}; averaged over the character mix; the field reaches to {radius}",
+        "{elasticity}; averaged over the character mix; the field reaches to {radius}; {core}",
         (
             "mean_spacing_nm",
             "line_energy.outer_radius_factor",

@@ -9,9 +9,10 @@ from typing import Any, Final
 import numpy as np
 
 from coldwork import units
-from coldwork.chain import Start, line
+from coldwork.chain import Start, core_alone, line
 from coldwork.errors import UsageError
 from coldwork.formulas.line_energy import line_energy_rule_of_thumb
+from coldwork.inputs.core import core_words
 from coldwork.inputs.method import Method
 from coldwork.interval.combine import Spread, combine
 from coldwork.interval.reach import LATE
@@ -67,6 +68,8 @@ class Estimate:
         How far off that is: its ratio to the full line energy. [1]
     total_line_length_m, total_stored_energy_j : Known
         In the volume that was given; NaN without one.
+    core : str
+        What the core radius means, with or without an energy of the core.
     remark : str
         What a person must know about it, empty where there is nothing.
     """
@@ -86,6 +89,7 @@ class Estimate:
     rule_of_thumb_over_line_energy: float
     total_line_length_m: Known
     total_stored_energy_j: Known
+    core: str
     remark: str
 
     def as_json(self) -> dict[str, Any]:
@@ -105,6 +109,7 @@ class Estimate:
             "",
             f"  {'rule of thumb G b^2 / 2':32s} {with_uncertainty(thumb, None, 'J/m')}{far}",
         ]
+        lines += ["", f"Of the line energy: {self.core}."]
         return "\n".join([*lines, "", *([self.remark, ""] if self.remark else []), _CAUTION])
 
 
@@ -322,6 +327,7 @@ def _finished(
         rule_of_thumb_over_line_energy=thumb / figures["line_energy_j_per_m"].value,
         total_line_length_m=_times(figures["dislocation_density_per_m2"], volume),
         total_stored_energy_j=_times(figures["stored_energy_j_per_m3"], volume),
+        core=core_words(method.inputs, core_alone(method.laws, inputs)),
         remark=_remark(method, figures, kind),
     )
 

@@ -11,7 +11,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from coldwork import units
+from coldwork.chain import core_alone
 from coldwork.formulas.crystal_factor import HEXAGONAL_CONSTANTS
+from coldwork.inputs.core import core_words
 from coldwork.inputs.method import Laws, Method
 from coldwork.jobs.chain_words import (
     AS_INDENTED,
@@ -100,6 +102,7 @@ def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
         "baseline": _BASELINES[laws.baseline],
         "radius": _RADII[laws.outer_radius],
         "elasticity": _elasticity(laws),
+        "core": core_words(method.inputs, core_alone(laws, _plain(method))),
         "reference": f"{units.from_si(method.reference_temperature, 'Cel'):.6g}",
         "thermal": _THERMAL.get(laws.temperature, ""),
     }
@@ -165,6 +168,10 @@ def repeatability_of(scatter: Repeatability, rows: slice, unit: str) -> list[dic
             strict=True,
         )
     ]
+
+
+def _plain(method: Method) -> Mapping[str, Value]:
+    return {name: np.float64(x.value) for name, x in method.inputs.items()}
 
 
 def _elasticity(laws: Laws) -> str:

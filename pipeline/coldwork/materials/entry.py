@@ -40,6 +40,7 @@ KEYS: Final[Mapping[str, Key]] = {
     "c13_gpa": Key("GPa", -5000.0, 5000.0),
     "c33_gpa": Key("GPa", 0.1, 5000.0),
     "c44_gpa": Key("GPa", 0.1, 5000.0),
+    "core_energy": Key("1", 0.0, 10.0),
     "boundary_energy_j_per_m2": Key("J/m2", 0.001, 10.0),
     "stacking_fault_energy_j_per_m2": Key("J/m2", 0.0001, 10.0),
     "edge_distance_d": Key("1", 0.1, 100.0),
