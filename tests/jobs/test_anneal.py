@@ -242,6 +242,38 @@ def test_ends_are_those_of_random_draws(heated: Heated) -> None:
         assert 0.935 < inside.mean() < 0.97, row
 
 
+def test_ends_after_recovery_are_those_of_random_draws(heated: Heated) -> None:
+    # 5e4 draws of what stress and energy came from, through the law itself; its constants exact.
+    exact = RECOVERY.replace("{ value = 240.0, u = 2.0 }", "240.0")
+    exact += "taylor_factor = 3.06\ncoefficient = 0.3\n"
+    found = heated(DRAGS + exact, HELD)
+    rng = np.random.default_rng(5)
+    drawn: dict[str, NDArray[np.float64]] = {}
+    n = 50_000
+
+    def of(x: Measured, place: int) -> tuple[float, NDArray[np.float64]]:
+        shift = np.zeros(n)
+        for name, c in x.sensitivities.items():
+            z = drawn.setdefault(name, rng.standard_normal(n))
+            shift = shift + float(np.broadcast_to(c, x.value.shape)[place]) * z
+        return float(x.value[place]), shift
+
+    for name in ("worked", "hard"):
+        place = list(STRESSES).index(name)
+        drawn.clear()
+        s, ds = of(found.worked.stress.value, place)
+        c, dc = of(found.states.energy_at_unit_stress, place)
+        after = value_of(found.states.stress_after(s + ds))
+        left = c * np.exp(dc / c) * after**2
+        for row, values in (
+            (Row("recovered", "dislocation_stress_mpa"), after),
+            (Row("recovered", "driving_pressure_mpa"), left),
+        ):
+            ends = found.outcomes[row].ends
+            inside = (values > ends.lower[place]) & (values < ends.upper[place])
+            assert 0.93 < inside.mean() < 0.975, (name, row)
+
+
 def test_a_correlation_of_the_kinetic_constants_shortens_intervals(heated: Heated) -> None:
     loose = KINETICS.replace("= 120.0", "= { value = 120.0, u = 5.0 }")
     told = {}

@@ -102,6 +102,11 @@ def test_half_the_outer_radius_takes_ln_2_off(batch: Path, tmp_path: Path) -> No
             'outer_radius = "spacing"',
             'elasticity = "anisotropic"\nslip_system = "{111}<110>"',
         ),
+        (
+            'temperature={reference_c=100.0,correction="modulus"}',
+            "[line_energy]",
+            "[temperature]\nreference_c = 100.0\ncorrection = 'modulus'\n[line_energy]",
+        ),
         ("indentation.area=projected", "[indentation]", '[indentation]\narea = "projected"'),
     ],
 )

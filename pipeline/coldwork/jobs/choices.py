@@ -31,6 +31,7 @@ _REDUCES: Final[Mapping[str, frozenset[str]]] = {  # keys that act on readings, 
     "hardening": frozenset(),
     "line_energy": frozenset(),
     "character": frozenset(),
+    "temperature": frozenset(),
 }
 _OPEN: Final = {"[": 1, "{": 1, "]": -1, "}": -1}
 
