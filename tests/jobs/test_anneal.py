@@ -318,6 +318,11 @@ def test_a_coupon_on_the_baseline_has_one_end_and_a_reason(heated: Heated) -> No
     assert "no size grows" in str(size["reason"])
     (held,) = rows_of(found, "near", state="annealed", quantity="recrystallised_fraction")
     assert "held" in str(held["reason"])
+    tight = heated(DRAGS.replace("5.0, u = 0.5", "1.2, u = 0.3") + KINETICS, HELD)
+    (net,) = rows_of(tight, "worked", quantity="net_pressure_mpa")
+    (open_,) = rows_of(tight, "worked", quantity="recrystallised_fraction")
+    assert net["value"] < 0.0 < net["upper"]
+    assert "is undecided" in open_["reason"]
 
 
 def test_without_constants_there_are_pressures_and_sizes_only(heated: Heated) -> None:

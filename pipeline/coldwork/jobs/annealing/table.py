@@ -42,6 +42,9 @@ _WHY_NOT: Final = {
     "holding": "no temperature is high enough in that time",
 }
 _NO_HEAT_CAPACITY: Final = "no heat capacity of the metal is known"
+_NOT_ABOVE: Final = (
+    "its net pressure is not above zero, and whether the boundary starts is undecided"
+)
 _LEANS: Final = "holds if the boundary can start: its net pressure is undecided"
 
 
@@ -146,6 +149,8 @@ def _words(
             reasons.append(_WHY_NOT["recovered"])
         elif row.quantity == "adiabatic_rise_k" and not np.isnan(_released(row, outcomes)[i]):
             reasons.append(_NO_HEAT_CAPACITY)
+        elif row.state == "annealed" and last[i] == "undecided":
+            reasons.append(_NOT_ABOVE)
         else:
             sizes = row.quantity.startswith("critical")
             reasons.append(_WHY_NOT["cold-worked" if sizes else row.state])
