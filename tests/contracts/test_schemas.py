@@ -117,6 +117,9 @@ COLUMNS = {
         f"u_own_{name} u_shared_{name} u_{name} lower_{name} upper_{name}"
         for name in ALONG_THE_STRAIN
     ),
+    "out/expected_heat": "coupon_id stored_energy_j_per_g expected_heat_j_per_g "
+    "u_own_expected_heat_j_per_g u_shared_expected_heat_j_per_g u_expected_heat_j_per_g "
+    "lower_expected_heat_j_per_g upper_expected_heat_j_per_g",
     "out/curve_points": "coupon_id point_no time_s engineering_stress_mpa engineering_strain "
     "true_stress_mpa true_plastic_strain file line",
     "out/anneal": "coupon_id state quantity fraction at_temperature_c at_time_s value unit u_own "

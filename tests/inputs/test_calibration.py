@@ -192,6 +192,14 @@ def test_conditions_must_hold(refusals: Refusals, taking: str) -> None:
     assert any("holds for material.name = 'nickel', not 'copper'" in cause for cause in causes)
 
 
+def test_ranges_that_do_not_overlap(refusals: Refusals, taking: str) -> None:
+    text = taking.replace("../cal.toml", "../other.toml", 1)
+    other = BODY.replace("cu-1", "cu-2").replace("low = 120.0", "low = 430.0")
+    other = other.replace("high = 420.0", "high = 500.0")
+    causes = refusals(text, **{"cal.toml": sealed(), "other.toml": sealed(other)})
+    assert any("The ranges do not overlap" in cause for cause in causes), causes
+
+
 def test_two_files_of_one_name(refusals: Refusals, taking: str) -> None:
     text = taking.replace("../cal.toml", "../other.toml", 1)
     causes = refusals(text, **{"cal.toml": sealed(), "other.toml": sealed()})

@@ -18,7 +18,8 @@ def calibrate(
         typer.Option(
             metavar="KIND",
             help="taylor: flow stress over density; hardness: pressure over flow stress; "
-            "hall-petch: flow stress over grain size; core-radius: density and heat of the "
+            "hall-petch: flow stress over grain size; heat: measured heat over stored energy; "
+            "core-radius: density and heat of the "
             "recrystallisation peak.",
         ),
     ],

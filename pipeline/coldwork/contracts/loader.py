@@ -33,6 +33,7 @@ _ORDER: Final = {
         "tensile",
         "evolution",
         "curve_points",
+        "expected_heat",
         "anneal",
         "compare",
         "compare_choices",

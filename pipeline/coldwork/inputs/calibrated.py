@@ -126,13 +126,14 @@ class Calibrations:
         return tuple({found.path: found for found in self.taken.values()}.values())
 
     def refuse_conflicts(self, causes: Causes) -> None:
-        """Refuse two calibrations of one name, and conditions that the sheet does not meet."""
+        """Refuse two of one name, ranges that do not overlap, and conditions that are not met."""
         names: dict[str, str] = {}
         for key, found in self.taken.items():
             path = tuple(key.split("."))
             if names.setdefault(found.id, found.path) != found.path:
                 what = f"{names[found.id]} and {found.path} are both calibration {found.id}"
                 causes.add(path, what, "Each calibration has a name of its own.", "Rename one.")
+            self._refuse_apart(causes, path, found)
             for condition, wanted in found.conditions.items():
                 here = _said(causes, condition)
                 if here is not None and here != wanted:
@@ -141,6 +142,18 @@ class Calibrations:
                     )
                     why = "A constant belongs to the conditions that it was measured under."
                     causes.add(path, what, why, "Calibrate for this sheet, or mend the sheet.")
+
+    def _refuse_apart(self, causes: Causes, path: tuple[str, ...], found: Calibration) -> None:
+        """Refuse two calibrations whose ranges of one quantity have nothing in common."""
+        for other in self.files():
+            apart = max(other.low, found.low) > min(other.high, found.high)
+            if other.quantity == found.quantity and apart:
+                what = (
+                    f"{found.path} holds for {found.quantity} from {found.low:g} to {found.high:g},"
+                    f" and {other.path} from {other.low:g} to {other.high:g}"
+                )
+                why = "The ranges do not overlap, so no coupon lies in both."
+                causes.add(path, what, why, "Take both from one calibration.")
 
     def _file(self, path: str) -> Calibration | None:
         if path not in self._read:

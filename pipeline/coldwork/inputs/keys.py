@@ -65,6 +65,8 @@ WINDOWS: Final[Mapping[str, tuple[float, float]]] = {
     "core_energy": (0.0, 100.0),
     "bias_rel": (-0.5, 0.5),
     "slope_gpa": (1e-3, 2000.0),
+    "ratio": (1e-3, 1e3),
+    "intercept_j_per_g": (-100.0, 100.0),
 }
 """Window of each numeric input by its key, both ends allowed. [unit of the key]"""
 

@@ -28,7 +28,7 @@ __all__ = ["ALL_KINDS", "calibrate"]
 
 FloatArray = NDArray[np.float64]
 
-ALL_KINDS: Final = ("taylor", "hardness", "hall-petch", "core-radius")
+ALL_KINDS: Final = ("taylor", "hardness", "hall-petch", "heat", "core-radius")
 _CORE: Final = ("dislocation_density_per_m2", "heat_j_per_g")
 _NAME: Final = re.compile(r"[A-Za-z0-9][A-Za-z0-9._-]{0,59}")
 

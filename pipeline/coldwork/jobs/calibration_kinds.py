@@ -123,9 +123,18 @@ KINDS: Final[Mapping[str, Kind]] = {
             ("MPa", "MPa.m^0.5"),
             "grain_size_um",
         ),
+        Kind(
+            "heat",
+            Side("stored_energy_j_per_g", "computed stored energy [J/g]", "J/g", _as_it_is),
+            Side("heat_j_per_g", "measured heat [J/g]", "J/g", _as_it_is),
+            "heat.intercept_j_per_g",
+            "heat.ratio",
+            ("J/g", "1"),
+            "stored_energy_j_per_g",
+        ),
     )
 }
-"""The kinds that need nothing but the table; `hardness_kind` makes the third."""
+"""The kinds that need nothing but the table; `hardness_kind` makes another."""
 
 
 def hardness_kind(scale: str, area: str) -> Kind:

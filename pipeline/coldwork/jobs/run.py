@@ -14,6 +14,7 @@ from coldwork.inputs.method import Method
 from coldwork.inputs.sheet import read_method
 from coldwork.jobs.curve_points import CurvePoints
 from coldwork.jobs.drawing import Drawing
+from coldwork.jobs.expected_heat import HEAT_TABLE, has_heat
 from coldwork.jobs.gather import Gathered, gather
 from coldwork.jobs.kept import KeptReadings
 from coldwork.jobs.lots import Lots
@@ -126,7 +127,8 @@ def run(
         batch, kept = gather(method, keep=keep, pictures=plots, points=points)
         drawing = Drawing(batch, wanted=plots)
         lots = Lots(batch)
-        names = (*_ALWAYS, *_of_curves(batch), *(_FULL if full else ()))
+        heat = (HEAT_TABLE,) if has_heat(method) else ()
+        names = (*_ALWAYS, *heat, *_of_curves(batch), *(_FULL if full else ()))
         tables = _Tables({name: target.table(name, method.tables) for name in names}, drawing)
         target.write("method.json", dump("method", method.document))
         records = target.lines("records.jsonl") if full else None

@@ -21,6 +21,12 @@ from coldwork.jobs.evaluate import (
     start_of,
 )
 from coldwork.jobs.evolution import evolution_table
+from coldwork.jobs.expected_heat import (
+    HEAT_TABLE,
+    expected_heat,
+    expected_heat_table,
+    has_heat,
+)
 from coldwork.jobs.figures import Figures, figures_of
 from coldwork.jobs.gather import Gathered
 from coldwork.jobs.judging import Held, decide_slice, decisions_table, find_in_slice
@@ -108,7 +114,7 @@ class Sliced:
             "coupons": coupons.set_column(place, "record_sha256", shas),
             "decisions": self._decisions,
         }
-        return found | self._of_curves | self._details
+        return found | self._of_heat | self._of_curves | self._details
 
     @cached_property
     def _coupons(self) -> pa.Table:
@@ -147,6 +153,15 @@ class Sliced:
             "quantities": quantities_table(batch, self.rows, self.figures),
             "budget": budget_table(batch, self.rows, self.figures, self.spreads, own),
         }
+
+    @cached_property
+    def _of_heat(self) -> dict[str, pa.Table]:
+        method = self.batch.method
+        if not has_heat(method):
+            return {}
+        stored = self.figures["stored_energy_j_per_g"]
+        heat = expected_heat(method, inputs_of(method)[0], self.spreads, stored)
+        return {HEAT_TABLE: expected_heat_table(self.ids, stored, heat)}
 
     @cached_property
     def _of_curves(self) -> dict[str, pa.Table]:
