@@ -29,6 +29,7 @@ ROOMS: Final = (  # from the ground up: a room imports those before it, never th
     "scatter",
     "chain",
     "interval",
+    "sampling",
     "judge",
     "results",
     "plots",

@@ -79,6 +79,9 @@ _MISSING: Final = np.float64(np.nan)
 class Start:
     """What a slice of n coupons brings to the chain.
 
+    With draws, `mean` has the shape (n, draws) and the other arrays (n, 1); inputs that all
+    coupons share have (draws,). A law is written so that these broadcast.
+
     Attributes
     ----------
     mean : Value, shape (n,)
@@ -170,7 +173,7 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
     Strength
         Arrays of shape (n,).
     """
-    n = start.scale.shape[0]
+    n = np.shape(value_of(start.mean))
     pressure, strain, tested = _tested(laws, inputs, start)
     baseline = _baseline(laws, inputs, start.grain_size)
     at_reference = _at_reference(laws, inputs, tested, start)

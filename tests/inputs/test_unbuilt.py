@@ -22,10 +22,6 @@ NOT_YET = "not built yet"
         ("indentation", "characteristic_depth_um = 1", "from a characteristic depth"),
         ("indentation", "size_strength_gpa2_um = 1", "from a size strength"),
         ("indentation.HBW", 'size_effect = "fitted"', "Fitting the indentation size effect"),
-        ("uncertainty", 'method = "monte-carlo"', "Monte Carlo"),
-        ("uncertainty", "draws = 100000", "Draws belong to Monte Carlo"),
-        ("uncertainty", 'draws = "adaptive"', "Draws belong to Monte Carlo"),
-        ("uncertainty", "seed = 1", "A seed belongs to Monte Carlo"),
     ],
 )
 def test_a_section_asks_for_what_is_not_there_yet(

@@ -15,7 +15,7 @@ from coldwork.inputs.core import core_words
 from coldwork.inputs.keys import number_specs, schema_of
 from coldwork.inputs.laws import choice
 from coldwork.inputs.layout import Layout
-from coldwork.inputs.method import Method, Tester
+from coldwork.inputs.method import Draws, Method, Tester
 from coldwork.inputs.numbers import Given
 from coldwork.inputs.tensile import tensile_document
 
@@ -58,6 +58,8 @@ def method_document(
     inputs |= {tester.bias.name: _bias(tester) for tester in method.testers}
     if method.tensile is not None:
         sections["tensile"] = tensile_document(method.tensile)
+    if method.draws is not None:
+        sections["uncertainty"] |= _draws(method.draws)
     return {
         "schema_version": document("method")["version"],
         "batch_id": method.batch_id,
@@ -114,6 +116,17 @@ def _number(given: Given) -> dict[str, object]:
 
 def _bias(tester: Tester) -> dict[str, object]:
     return _number(Given(tester.bias, tester.bias.value, tester.bias.u))
+
+
+def _draws(draws: Draws) -> dict[str, object]:
+    return {
+        "draws": "adaptive" if draws.adaptive else draws.number,
+        "most_draws": draws.number,
+        "digits": draws.digits,
+        "seed": draws.seed,
+        "from_draws": "lower_, upper_, sd_, bounds and probabilities of coupons",
+        "first_order": "u_, u_own_, u_shared_, budget.csv, lots.csv",
+    }
 
 
 def _tester(tester: Tester) -> dict[str, object]:

@@ -13,7 +13,7 @@ from coldwork.inputs.calibration import Calibration
 from coldwork.inputs.layout import Layout
 from coldwork.inputs.quantity import Input
 
-__all__ = ["Laws", "Limit", "Method", "Tensile", "Tester"]
+__all__ = ["Draws", "Laws", "Limit", "Method", "Tensile", "Tester"]
 
 
 @dataclass(frozen=True)
@@ -74,6 +74,33 @@ class Laws:
     superposed: bool = False
     core: str = "sheet"
     temperature: str = "none"
+
+
+@dataclass(frozen=True)
+class Draws:
+    """How Monte Carlo draws.
+
+    Attributes
+    ----------
+    seed : int
+        Decides every draw, together with the names of inputs and coupons.
+    number : int
+        How many draws; where they are adaptive, the most of one coupon.
+    adaptive : bool
+        Whether each coupon stops when more draws would not change the digits that count.
+    digits : int
+        Digits of a standard uncertainty that count.
+    """
+
+    seed: int
+    number: int
+    adaptive: bool
+    digits: int
+
+    @staticmethod
+    def least(coverage: float) -> float:
+        """Give how many draws an interval needs, 100 / (1 - coverage) (JCGM 101, 7.9.4)."""
+        return 100.0 / (1.0 - coverage)
 
 
 @dataclass(frozen=True)
@@ -226,6 +253,8 @@ class Method:
         Files of tensile or compression curves; by the indent route they stand beside it.
     tensile : Tensile or None
         How those are reduced.
+    draws : Draws or None
+        How Monte Carlo draws; None by first order.
     layouts : mapping of str to tuple of (Layout or None)
         By table: how each of its files is written, None for the tidy form.
     calibrations : tuple of Calibration
@@ -264,6 +293,7 @@ class Method:
     document: Mapping[str, object]
     curves: tuple[Path, ...] = ()
     tensile: Tensile | None = None
+    draws: Draws | None = None
     layouts: Mapping[str, tuple[Layout | None, ...]] = field(default_factory=dict)
     calibrations: tuple[Calibration, ...] = ()
     mixes: Mapping[str, Mapping[str, float]] = field(default_factory=dict)

@@ -15,6 +15,7 @@ from coldwork.inputs.collect import (
 from coldwork.inputs.core import refuse_bad_core
 from coldwork.inputs.crystal import crystal_of
 from coldwork.inputs.document import method_document
+from coldwork.inputs.draws import draws_of, refuse_bad_draws, refuse_draws_beyond_memory
 from coldwork.inputs.identity import refuse_bad_identity
 from coldwork.inputs.laws import choice, laws_of, refuse_bad_mix
 from coldwork.inputs.limits import limits_of, refuse_bad_limits, refuse_bad_testers, testers_of
@@ -102,6 +103,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_bad_limits(causes)
     refuse_bad_tensile(causes)
     calibrations.refuse_conflicts(causes)
+    refuse_bad_draws(causes)
     files = tables_of(causes, home) if with_files else Tables()
     inside = [*metal.causes, *calibrations.causes, *files.causes]
     if causes.found or inside:
@@ -117,6 +119,9 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
         calibrations=taken,
         mixes=calibrations.mixes(),
     )
+    refuse_draws_beyond_memory(causes, method)
+    if causes.found:
+        raise BatchRefused(str(folder), causes.all())
     return replace(method, document=method_document(method, sheet.tables, numbers))
 
 
@@ -166,6 +171,7 @@ def _method(
         document={},
         curves=files.get("curves", ()),
         tensile=tensile_of(tables),
+        draws=draws_of(tables),
         layouts=found.layouts,
     )
 

@@ -18,9 +18,6 @@ _CHOICES: Final[Mapping[KeyPath, Mapping[str, str]]] = {
     ("strength", "route"): {
         "both": "Comparing the indent and the flow route of one coupon is not built yet.",
     },
-    ("uncertainty", "method"): {
-        "monte-carlo": "Uncertainty by Monte Carlo is not built yet.",
-    },
 }
 _SIZE_EFFECTS: Final[Mapping[str, str]] = {
     "fitted": "Fitting the indentation size effect over several forces is not built yet.",
@@ -28,8 +25,6 @@ _SIZE_EFFECTS: Final[Mapping[str, str]] = {
     "strength": "The indentation size effect from a size strength is not built yet.",
 }
 _KEYS: Final[Mapping[KeyPath, str]] = {
-    ("uncertainty", "draws"): "Draws belong to Monte Carlo, which is not built yet.",
-    ("uncertainty", "seed"): "A seed belongs to Monte Carlo, which is not built yet.",
     ("strength", "baseline_from_coupon"): "A baseline from a coupon is not built yet.",
 }
 _CONSTANTS: Final[Mapping[str, str]] = {

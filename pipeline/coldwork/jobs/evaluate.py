@@ -15,6 +15,7 @@ from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_
 from coldwork.interval.reach import LATE, Reach
 from coldwork.measured import Measured, Value, broadcast, value_of
 from coldwork.reduce.reduced import Reduced
+from coldwork.sampling.sampler import Sampled
 from coldwork.scatter import Repeatability
 
 __all__ = [
@@ -59,6 +60,10 @@ class Evaluated:
         Their intervals at the method's coverage.
     spreads : mapping of str to Spread
         Every input's uncertainty, the coupons' own ones included.
+    first_order : mapping of str to Ends or None
+        The intervals by first order, where `ends` are those of draws.
+    sampled, own : Sampled or None
+        What draws say, of all inputs and with shared ones taken as exact.
     """
 
     start: Start
@@ -68,6 +73,9 @@ class Evaluated:
     combined: Mapping[str, Combined]
     ends: Mapping[str, Ends]
     spreads: Mapping[str, Spread]
+    first_order: Mapping[str, Ends] | None = None
+    sampled: Sampled | None = None
+    own: Sampled | None = None
 
     @property
     def stress(self) -> Measured:

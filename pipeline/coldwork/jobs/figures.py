@@ -1,6 +1,6 @@
 """Quantities of a slice as they may be published: emptied where an error says so."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -27,11 +27,14 @@ class Figures:
         Own, shared and total standard uncertainty, effective degrees of freedom.
     ends : Ends
         Interval at the method's coverage.
+    sd : ndarray or None
+        Standard deviation of the draws, None by first order.
     """
 
     result: Measured
     combined: Combined
     ends: Ends
+    sd: _Floats | None = None
 
 
 def figures_of(evaluated: Evaluated, bits: NDArray[np.uint64]) -> dict[str, Figures]:
@@ -49,10 +52,16 @@ def figures_of(evaluated: Evaluated, bits: NDArray[np.uint64]) -> dict[str, Figu
     dict of str to Figures
         By column name.
     """
-    return {
+    found = {
         name: _figures(name, result, evaluated.combined[name], evaluated.ends[name], bits)
         for name, result in evaluated.results.items()
     }
+    if evaluated.sampled is None:
+        return found
+    for name, sd in evaluated.sampled.sd.items():
+        kept = np.where(np.isnan(found[name].result.value), np.nan, sd)
+        found[name] = replace(found[name], sd=kept)
+    return found
 
 
 def _figures(

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
+from functools import cached_property
 from pathlib import Path
 from typing import Final
 
@@ -20,6 +21,7 @@ from coldwork.intake.readings import read_readings
 from coldwork.intake.set_aside import SetAside
 from coldwork.intake.sources import check_headers
 from coldwork.jobs.curves import CurveReading, check_curves, read_curves
+from coldwork.jobs.drawn import Pools
 from coldwork.jobs.kept import KeptReadings
 from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.coupon_rules import judge_coupon_cells, judge_scales
@@ -89,6 +91,11 @@ class Gathered:
         """Those that were not."""
         beside = 0 if self._beside is None else self._beside.set_aside.count
         return self.set_aside.count + beside
+
+    @cached_property
+    def pools(self) -> Pools | None:
+        """The draws of the inputs that its coupons share, None by first order."""
+        return None if self.method.draws is None else Pools(self.method)
 
     @property
     def errors(self) -> int:

@@ -18,6 +18,7 @@ from coldwork.interval.combine import (
     strength_probability_above,
 )
 from coldwork.interval.reach import LATE, Reach
+from coldwork.jobs.drawn import by_draws
 from coldwork.jobs.evaluate import Evaluated
 from coldwork.jobs.figures import Figures
 from coldwork.jobs.gather import Gathered
@@ -28,6 +29,7 @@ from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
 from coldwork.judge.temperatures import judge_temperatures
 from coldwork.measured import value_of
 from coldwork.rules.bits import emptied
+from coldwork.sampling.sampler import Sampled
 
 __all__ = ["Held", "decide_slice", "decisions_table", "find_in_slice"]
 
@@ -203,7 +205,12 @@ def _evidence(
         combined = reach.combined[limit.quantity]
     elif own:
         combined = combine(found.result, evaluated.spreads, own_only=True)
-    bounds = _one_sided(limit.quantity, found, combined, reach, method.coverage)
+    sampled = by_draws(evaluated, limit.basis)
+    bounds = (
+        _one_sided(limit.quantity, found, combined, reach, method.coverage)
+        if sampled is None
+        else sampled.bounds[limit.quantity]
+    )
     added = method.laws.route == "indent" and not method.laws.unwinding
     value = units.from_si(found.result.value, unit)
     return Evidence(
@@ -211,13 +218,25 @@ def _evidence(
         u=np.where(np.isnan(value), np.nan, units.from_si(combined.u, unit)),
         lower_bound=units.from_si(bounds.lower, unit),
         upper_bound=units.from_si(bounds.upper, unit),
-        above_lower=_above(limit.lower, limit.quantity, unit, found, combined, reach),
-        above_upper=_above(limit.upper, limit.quantity, unit, found, combined, reach),
+        above_lower=_above(limit.lower, limit.quantity, unit, found, combined, reach)
+        if sampled is None
+        else _drawn_above(limit.lower, limit.quantity, unit, sampled).lower,
+        above_upper=_above(limit.upper, limit.quantity, unit, found, combined, reach)
+        if sampled is None
+        else _drawn_above(limit.upper, limit.quantity, unit, sampled).upper,
         blocked=emptied(limit.quantity, bits, ends=True),
         with_indent=np.full(len(bits), added),
         coverage=method.coverage,
         unit=unit,
     )
+
+
+def _drawn_above(limit: float | None, quantity: str, unit: str, sampled: Sampled) -> Ends:
+    """Give the least and the largest share of draws above a limit."""
+    if limit is None:
+        blank = np.full(sampled.draws.shape, np.nan)
+        return Ends(blank, blank)
+    return sampled.above[quantity, float(units.to_si(limit, unit))]
 
 
 def _one_sided(

@@ -259,6 +259,7 @@ def _record_slice(batch: Gathered, part: Sliced, aside: pa.Table) -> Slice:
         repeatability=part.repeatability(),
         steps=part.steps(),
         curves=part.curves(),
+        sampling=part.sampling(),
     )
 
 

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from coldwork import contracts
 from coldwork.interval.combine import Spread
+from coldwork.jobs.drawn import verdicts, with_draws
 from coldwork.jobs.evaluate import (
     GRAIN,
     QUANTITIES,
@@ -44,6 +45,7 @@ from coldwork.jobs.tensile import baselines, curve_records, tensile_table
 from coldwork.judge.decisions import Worst, decision_texts, worst
 from coldwork.measured import value_of
 from coldwork.results.records import Step
+from coldwork.rules.bits import emptied
 
 __all__ = ["Sliced", "work_slice"]
 
@@ -121,7 +123,11 @@ class Sliced:
         batch, worst_one = self.batch, self.worst
         names = pa.array([held.limit.id for held in self.decided], pa.string())
         deciding = pa.array(worst_one.limit, pa.int64(), mask=worst_one.limit < 0)
+        sampled = self.evaluated.sampled
+        below = np.full(self.n, np.nan) if sampled is None else sampled.below_baseline
+        gone = emptied("dislocation_stress_mpa", batch.findings.bits[self.rows])
         rest: dict[str, _Column] = {
+            "p_below_baseline": pa.array(np.where(gone, np.nan, below)),
             "readings_set_aside": pa.array(batch.set_aside.per_coupon[self.rows]),
             "decision": decision_texts(worst_one.code),
             "deciding_limit": names.take(deciding),
@@ -187,6 +193,11 @@ class Sliced:
             return None
         return curve_records(self.batch, self.rows, self._baselines)
 
+    def sampling(self) -> list[dict[str, object] | None] | None:
+        """Tell what each coupon's draws came to; None by first order."""
+        how = self.batch.method.draws
+        return None if how is None else verdicts(how, self.evaluated)
+
     @property
     def raw_readings(self) -> pa.Table:
         """The readings' cells as written, row for row with the table of readings."""
@@ -233,6 +244,9 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
     start, own = start_of(method, batch.coupons, batch.reduced, batch.scatter, rows)
     with_ends = WITH_UNCERTAINTY if kept is None else QUANTITIES
     evaluated = evaluate(method, inputs, {**spreads, **own}, start, with_ends)
+    if batch.pools is not None:
+        names = batch.coupons.ids[rows].to_pylist()
+        evaluated = with_draws(method, batch.pools, names, evaluated, with_ends)
     find_in_slice(batch, rows, evaluated)
     bits = batch.findings.bits[rows]
     figures = figures_of(evaluated, bits)

@@ -102,6 +102,8 @@ def coupons_table(
         columns[name] = _published(name, figures[name].result.value if name in figures else None, n)
     for name in WITH_UNCERTAINTY:
         columns |= _published_spread(name, figures.get(name), n)
+        sd = figures[name].sd if name in figures else None
+        columns[f"sd_{name}"] = _published(name, sd, n)
     return pa.table({name: columns[name] for name in contracts.load("out/coupons").columns})
 
 

@@ -104,6 +104,9 @@ class Slice:
     curves : sequence of mapping or None, optional
         For each coupon what is kept of its curve, None where it has none; None where the
         batch brings no curves.
+    sampling : sequence of mapping or None, optional
+        For each coupon what its draws came to, None where it was not drawn; None by first
+        order.
     """
 
     coupons: pa.Table
@@ -119,6 +122,7 @@ class Slice:
     repeatability: Sequence[Mapping[str, object]]
     steps: Sequence[Step]
     curves: Sequence[Mapping[str, object] | None] | None = None
+    sampling: Sequence[Mapping[str, object] | None] | None = None
 
 
 @dataclass(frozen=True)
@@ -172,6 +176,7 @@ def build(common: Common, part: Slice) -> list[dict[str, Any]]:
             "readings": readings[i],
             "set_aside": set_aside[i],
             **({} if part.curves is None else {"curve": part.curves[i]}),
+            **({} if part.sampling is None else {"sampling": part.sampling[i]}),
             "repeatability": {name: _known(x) for name, x in part.repeatability[i].items()},
             "steps": steps[i],
             "quantities": {row.pop("quantity"): row for row in quantities[i]},

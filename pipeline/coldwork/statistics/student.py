@@ -18,11 +18,18 @@ from scipy.special import ndtr, stdtr, stdtrit
 from coldwork.errors import InvalidArgument
 from coldwork.guards import finite
 
-__all__ = ["student_probability", "student_quantile", "welch_satterthwaite"]
+__all__ = [
+    "student_of_normal",
+    "student_probability",
+    "student_quantile",
+    "welch_satterthwaite",
+]
 
 _NODES: Final = 56  # of the fit; enough for a tail of 1e-9
 _DROPPED: Final = 1e-12  # coefficients below this do not show in ten digits [1]
 _BLOCK: Final = 1 << 15  # values that stay in the cache together
+_FARTHEST: Final = 8.5  # of a normal draw; beyond it the series is held [1]
+_SEEN: Final = 1e-7  # relative size of what does not show in a draw [1]
 _ROUNDING: Final = 1e-9  # effective degrees of freedom may fall this short of 1 [1]
 
 
@@ -108,6 +115,51 @@ def student_probability(k: ArrayLike, degrees_of_freedom: ArrayLike) -> NDArray[
     return np.asarray(np.where(normal, ndtr(x), p) if normal.any() else p)
 
 
+def student_of_normal(z: NDArray[np.float64], degrees_of_freedom: float) -> NDArray[np.float64]:
+    r"""Turn draws of a standard normal quantity into draws of Student's t.
+
+    .. math:: t = F_\nu^{-1}(\Phi(z))
+
+    Parameters
+    ----------
+    z : ndarray, shape (...)
+        Draws. [1]
+    degrees_of_freedom : float
+        :math:`\nu`, from 1 to infinity. [1]
+
+    Returns
+    -------
+    ndarray of float64, shape of `z`
+        :math:`t`, to six digits or more; `z` itself at infinity. [1]
+
+    Raises
+    ------
+    InvalidArgument
+        If the degrees of freedom are below 1 or no number.
+
+    Notes
+    -----
+    ln(t / z) is smooth and even in z, so a Chebyshev series in z^2 gives it in a few
+    products, where dividing by the root of a chi-square draw needs a second draw.
+
+    References
+    ----------
+    JCGM 101:2008, 6.4.9.2 (draws of a scaled and shifted t).
+    """
+    nu = float(_from_one("degrees_of_freedom", degrees_of_freedom))
+    if np.isnan(nu):
+        message = "degrees_of_freedom must be a number (it is nan)"
+        raise InvalidArgument(message)
+    if np.isinf(nu):
+        return z
+    x = np.square(z)
+    np.minimum(x, _FARTHEST**2, out=x)
+    x *= 2.0 / _FARTHEST**2
+    x -= 1.0
+    ratio = np.asarray(chebyshev.chebval(x, _log_ratio_series(max(nu, 1.0))))
+    return np.asarray(z * np.exp(ratio, out=ratio))
+
+
 def welch_satterthwaite(
     contributions: Sequence[ArrayLike], degrees_of_freedom: Sequence[ArrayLike]
 ) -> NDArray[np.float64]:
@@ -165,6 +217,19 @@ def _log_quantile_series(tail: float) -> NDArray[np.float64]:
     series[0] /= 2.0
     kept = int(np.flatnonzero(np.abs(series) > _DROPPED)[-1]) + 1
     return np.asarray(series[:kept])
+
+
+@lru_cache(maxsize=4096)
+def _log_ratio_series(nu: float) -> NDArray[np.float64]:
+    """Fit ln(t / z) at equal tails in z^2, at the zeros of a Chebyshev polynomial."""
+    nodes = np.cos(np.pi * (np.arange(_NODES) + 0.5) / _NODES)
+    z = _FARTHEST * np.sqrt((nodes + 1.0) / 2.0)
+    log_ratio = np.log(-np.asarray(stdtrit(nu, ndtr(-z))) / z)
+    orders = np.arange(_NODES)[:, np.newaxis]
+    series = 2.0 / _NODES * (np.cos(orders * np.arccos(nodes)) @ log_ratio)
+    series[0] /= 2.0
+    kept = np.flatnonzero(np.abs(series) > _SEEN)
+    return np.asarray(series[: int(kept[-1]) + 1 if kept.size else 1])
 
 
 def _from_one(name: str, value: ArrayLike) -> NDArray[np.float64]:

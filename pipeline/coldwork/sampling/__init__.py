@@ -1,0 +1,1 @@
+"""The chain by Monte Carlo: draws of inputs, the same chain, what its draws say."""
