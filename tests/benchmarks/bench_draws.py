@@ -14,7 +14,7 @@ import sys
 import tempfile
 import time
 from pathlib import Path
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 
@@ -133,12 +133,9 @@ def ours(given: Path, out: Path, draws: int) -> None:
     how = Draws(SEED, draws, adaptive=False, digits=1)
     found = sample(LAWS, how, Pool(SEED, inputs, values, spreads), coupons, question)
     spent = time.process_time() - begun
-    np.savez(
-        out,
-        **{
-            q: np.stack([found.sd[q], found.ends[q].lower, found.ends[q].upper]) for q in QUANTITIES
-        },
-    )
+    table = {q: (found.sd[q], found.ends[q].lower, found.ends[q].upper) for q in QUANTITIES}
+    written: dict[str, Any] = {q: np.stack(columns) for q, columns in table.items()}
+    np.savez(out, **written)
     print(spent)
 
 

@@ -8,8 +8,12 @@ standard deviation and 95 % interval: copper by Vickers indents, unwound, given 
 
 import sys
 import time
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
 
 INPUTS = {  # normal: value, standard uncertainty; SI
     "baseline": (50e6, 5e6),
@@ -27,7 +31,9 @@ INPUTS = {  # normal: value, standard uncertainty; SI
 FACTORS = {"alpha": (0.30, 1.2), "outer": (1.0, 1.5), "core": (1.0, 1.6)}  # lognormal
 
 
-def quantities(mean, u, freedom, draws, rng):  # noqa: ANN001, ANN201
+def quantities(
+    mean: Floats, u: Floats, freedom: float, draws: int, rng: np.random.Generator
+) -> dict[str, Floats]:
     """Draw everything at once; each quantity of shape (coupons, draws)."""
     x = {name: v + s * rng.standard_normal(draws) for name, (v, s) in INPUTS.items()}
     x |= {
@@ -64,7 +70,7 @@ def main() -> None:
     draws = int(sys.argv[3]) if len(sys.argv) > 3 else 10_000
     rng = np.random.default_rng(1)
     begun = time.process_time()
-    found = {}
+    found: dict[str, Any] = {}
     every = quantities(given["mean"], given["u"], float(given["freedom"]), draws, rng)
     with np.errstate(invalid="ignore"):
         for name, y in every.items():

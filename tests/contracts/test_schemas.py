@@ -77,9 +77,9 @@ COLUMNS = {
     "dislocation_stress_mpa dislocation_density_per_m2 mean_spacing_nm line_energy_j_per_m "
     "stored_energy_j_per_m3 stored_energy_j_per_mol stored_energy_j_per_g temperature_rise_k "
     "stored_fraction_of_work decision deciding_limit conformance_probability flags record_sha256 "
-    + " ".join(
-        f"u_own_{name} u_shared_{name} u_{name} lower_{name} upper_{name}" for name in NAMED
-    ),
+    + " ".join(f"u_own_{name} u_shared_{name} u_{name} lower_{name} upper_{name}" for name in NAMED)
+    + " p_below_baseline "
+    + " ".join(f"sd_{name}" for name in NAMED),
     "out/quantities": "coupon_id quantity value unit u_own u_shared u lower upper coverage "
     "degrees_of_freedom",
     "out/budget": "coupon_id quantity input value unit u sensitivity contribution "

@@ -5,7 +5,7 @@ from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
 from math import exp, log, sqrt
 from pathlib import Path
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 import pandas as pd
@@ -61,9 +61,21 @@ def flow(stresses: dict[str, float]) -> dict[str, list[dict[str, object]]]:
     }
 
 
-def quantities(folder: Path) -> pd.DataFrame:
-    frame = coldwork.process(folder).frames["quantities"]
-    return frame.set_index(["coupon_id", "quantity"])
+Row = dict[str, Any]
+
+
+def records(table: pd.DataFrame) -> list[Row]:
+    return [{str(name): x for name, x in row.items()} for row in table.to_dict("records")]
+
+
+def quantities(folder: Path) -> dict[tuple[str, str], Row]:
+    table = coldwork.process(folder).frames["quantities"]
+    return {(row["coupon_id"], row["quantity"]): row for row in records(table)}
+
+
+def coupons_of(folder: Path) -> dict[str, Row]:
+    table = coldwork.process(folder).frames["coupons"]
+    return {row["coupon_id"]: row for row in records(table)}
 
 
 def standard_error(density: float, share: float = 0.025) -> float:
@@ -73,7 +85,7 @@ def standard_error(density: float, share: float = 0.025) -> float:
 
 def test_a_density_of_lognormal_factors_is_lognormal(make: Make) -> None:
     folder = make(SHEET.format(strength=EXACT, more=""), **flow({"a": 250.0}))
-    row = quantities(folder).loc[("a", "dislocation_density_per_m2")]
+    row = quantities(folder)["a", "dislocation_density_per_m2"]
     # rho = (s / (M alpha G b))^2: ln rho is normal, its variance 4 times that of ln(M alpha G b)
     sigma = 2.0 * sqrt(sum(log(f) ** 2 for f in (1.05, 1.2, 1.03, 1.01)))
     median = (200e6 / (3.06 * 0.30 * 44e9 * 0.2556e-9)) ** 2
@@ -83,7 +95,7 @@ def test_a_density_of_lognormal_factors_is_lognormal(make: Make) -> None:
         expected = median * exp(sign * 1.959964 * sigma)
         error = standard_error(normal_density / (expected * sigma))
         assert abs(row[end] - expected) < 3.0 * error, end
-    coupon = coldwork.process(folder).frames["coupons"].iloc[0]
+    coupon = coupons_of(folder)["a"]
     sd = median * exp(sigma**2 / 2.0) * sqrt(exp(sigma**2) - 1.0)
     assert coupon["sd_dislocation_density_per_m2"] == pytest.approx(sd, rel=0.05)
     assert coupon["p_below_baseline"] == 0.0
@@ -109,7 +121,7 @@ def test_a_sum_of_rectangles(
         f'friction_mpa = {{ value = 20.0, u = 1.0, shape = "uniform" }}\nterms_mpa = {{ {terms} }}'
     )
     folder = make(SHEET.format(strength=strength, more=""), **flow({"a": 250.0}))
-    found = quantities(folder).loc[("a", "baseline_stress_mpa")]
+    found = quantities(folder)["a", "baseline_stress_mpa"]
     if half is None or density is None:
         assert found["upper"] - found["lower"] == pytest.approx(2 * 17.0, abs=0.15)  # 9.2.4
         return
@@ -123,19 +135,18 @@ NEAR: Final = "baseline_mpa = { value = 50.0, u = 15.0 }"
 def test_draws_below_the_baseline_stay_and_are_counted(make: Make) -> None:
     stresses = {"far": 250.0, "near": 65.0, "on": 50.0, "under": 35.0, "contradicted": 15.0}
     folder = make(SHEET.format(strength=NEAR, more=""), **flow(stresses))
-    results = coldwork.process(folder)
-    coupons = results.frames["coupons"].set_index("coupon_id")
+    coupons = coupons_of(folder)
     # the stress is normal with u = 15 MPa: shares from tables of the normal distribution
     expected = {"far": 0.0, "near": 0.1587, "on": 0.5, "under": 0.8413, "contradicted": 0.9902}
     for name, share in expected.items():
         error = sqrt(share * (1 - share) / DRAWS)
-        assert abs(coupons.loc[name, "p_below_baseline"] - share) <= 3.0 * error + 1e-4, name
+        assert abs(coupons[name]["p_below_baseline"] - share) <= 3.0 * error + 1e-4, name
     lower, upper = (f"{end}_stored_energy_j_per_g" for end in ("lower", "upper"))
-    assert (coupons.loc[["near", "on", "under"], lower] == 0.0).all()
-    assert (coupons.loc[["near", "on", "under"], upper] > 0.0).all()
-    assert np.isnan(coupons.loc["contradicted", upper])  # from a share of 0.975 on
-    assert "baseline-contradicted" in str(coupons.loc["contradicted", "flags"])
-    assert np.isnan(coupons.loc["near", "upper_line_energy_j_per_m"])  # grows without bound there
+    for name in ("near", "on", "under"):
+        assert coupons[name][lower] == 0.0 < coupons[name][upper]
+    assert np.isnan(coupons["contradicted"][upper])  # from a share of 0.975 on
+    assert "baseline-contradicted" in str(coupons["contradicted"]["flags"])
+    assert np.isnan(coupons["near"]["upper_line_energy_j_per_m"])  # grows without bound there
 
 
 def rows(names: list[str], n: int = 5) -> dict[str, list[dict[str, object]]]:
@@ -285,16 +296,17 @@ def test_probabilities_are_shares_of_draws(make: Make) -> None:
     limit = '[[limits]]\nid = "a"\nquantity = "dislocation_stress_mpa"\nlower = 0.001\n'
     limit += 'rule = "probability"\nat_least = 0.84\n'
     folder = make(SHEET.format(strength=NEAR, more=limit), **flow({"near": 65.0, "on": 50.0}))
-    coupons = coldwork.process(folder).frames["coupons"].set_index("coupon_id")
-    shares = 1.0 - coupons["p_below_baseline"]
-    assert coupons["conformance_probability"].to_numpy() == pytest.approx(shares, abs=2e-4)
-    assert coupons["decision"].to_list() == ["conforming", "undecided"]
+    coupons = coupons_of(folder)
+    for row in coupons.values():
+        share = 1.0 - row["p_below_baseline"]
+        assert row["conformance_probability"] == pytest.approx(share, abs=2e-4)
+    assert [row["decision"] for row in coupons.values()] == ["conforming", "undecided"]
 
 
 def test_the_mean_of_two_readings_has_quantiles_and_no_variance(make: Make) -> None:
-    one = coldwork.process(make(INDENTS, name="two", **rows(["c0"], n=2))).frames["coupons"].iloc[0]
-    four = coldwork.process(make(INDENTS, name="4", **rows(["c0"], n=4))).frames["coupons"].iloc[0]
-    six = coldwork.process(make(INDENTS, name="6", **rows(["c0"], n=6))).frames["coupons"].iloc[0]
+    one = coupons_of(make(INDENTS, name="two", **rows(["c0"], n=2)))["c0"]
+    four = coupons_of(make(INDENTS, name="4", **rows(["c0"], n=4)))["c0"]
+    six = coupons_of(make(INDENTS, name="6", **rows(["c0"], n=6)))["c0"]
     assert np.isnan(one["sd_hardness"])  # JCGM 101, 6.4.9.4: t with 1 degree of freedom
     assert one["upper_hardness"] - one["lower_hardness"] > 0.0
     assert four["sd_hardness"] > 0.0
@@ -305,18 +317,14 @@ def test_the_mean_of_two_readings_has_quantiles_and_no_variance(make: Make) -> N
 def test_the_t_distribution_is_that_of_the_mean(make: Make) -> None:
     # Two readings, nothing else: mean +- 12.706 u (table of Student's t, 97.5 %, 1 degree)
     sheet = INDENTS.replace("u_rel = 0.008", "u_rel = 0.0")
-    row = quantities(make(sheet, **rows(["c0"], n=2))).loc[("c0", "hardness")]
+    row = quantities(make(sheet, **rows(["c0"], n=2)))["c0", "hardness"]
     half = (row["upper"] - row["lower"]) / 2.0
     assert half == pytest.approx(12.706 * row["u"], rel=0.15)
 
 
 def test_an_input_that_reaches_zero_refuses_the_batch(make: Make) -> None:
-    folder = make(
-        INDENTS.replace(
-            "[indentation]", "[indentation]\nconstraint_factor = { value = 3.0, u = 1.2 }"
-        ),
-        **rows(MANY[:1]),
-    )
+    wide = "[indentation]\nconstraint_factor = { value = 3.0, u = 1.2 }"
+    folder = make(INDENTS.replace("[indentation]", wide), **rows(MANY[:1]))
     with pytest.raises(BatchRefused, match=r"indentation\.constraint_factor.*lognormal") as refused:
         coldwork.process(folder)
     assert "drawn again" in str(refused.value)

@@ -73,7 +73,7 @@ def with_draws(
     wanted = tuple(name for name in evaluated.results if name in with_ends)
     stress, u = evaluated.stress.value, evaluated.reach.u_stress.u
     rows = np.flatnonzero(np.isfinite(stress) & np.isfinite(u))
-    coupons = Coupons([names[i] for i in rows], rows, evaluated.start, evaluated.spreads)
+    coupons = Coupons([names[i] for i in rows.tolist()], rows, evaluated.start, evaluated.spreads)
     question = Question(
         quantities=wanted,
         coverage=method.coverage,

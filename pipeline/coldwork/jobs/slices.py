@@ -245,7 +245,7 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
     with_ends = WITH_UNCERTAINTY if kept is None else QUANTITIES
     evaluated = evaluate(method, inputs, {**spreads, **own}, start, with_ends)
     if batch.pools is not None:
-        names = batch.coupons.ids[rows].to_pylist()
+        names = [str(name) for name in batch.coupons.ids[rows].to_pylist()]
         evaluated = with_draws(method, batch.pools, names, evaluated, with_ends)
     find_in_slice(batch, rows, evaluated)
     bits = batch.findings.bits[rows]

@@ -3,6 +3,7 @@
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields
 from math import isfinite
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -105,7 +106,7 @@ class Pool:
 
     def start(self, coupons: Coupons, block: int) -> Start:
         """Draw what the coupons bring to the chain: (c, draws), and (c, 1) what is exact. [SI]."""
-        found = {}
+        found: dict[str, Any] = {}
         for field in fields(Start):
             x = getattr(coupons.start, field.name)
             if isinstance(x, Measured):

@@ -3,7 +3,7 @@
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from math import ceil, inf
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -339,7 +339,7 @@ def _cut(x: Value, here: slice) -> Value:
 
 
 def _cut_start(start: Start, here: slice) -> Start:
-    wide = {
+    wide: dict[str, Any] = {
         name: x[:, here]
         for name, x in vars(start).items()
         if isinstance(x, np.ndarray) and x.ndim == 2 and x.shape[1] > 1
