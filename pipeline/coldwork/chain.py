@@ -17,6 +17,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from coldwork.formulas.baseline import HALL_PETCH_STRESS
+from coldwork.formulas.composite import (
+    EFFECTIVE_OUTER_RADIUS,
+    INTERIOR_STRESS,
+    MEAN_LINE_ENERGY,
+    MEAN_OVER_REGIONS,
+    STRESS_RATIO,
+    WALL_STRESS,
+)
 from coldwork.formulas.crystal_factor import (
     CUBIC_CONSTANTS,
     HEXAGONAL_CONSTANTS,
@@ -293,10 +301,11 @@ def energy(
     -------
     dict of str to Value
         By column name: density, spacing, line energy, stored energies,
-        temperature rise, stored fraction, and `radius_ratio` (R / r0). What a
+        temperature rise, stored fraction, and `radius_ratio` (R / r0, the smaller one of
+        cells); of cells also `wall_density_per_m2` and `interior_density_per_m2`. What a
         missing constant forbids is NaN. [SI]
     """
-    return line(laws, inputs, _density(laws, inputs, stress), start)
+    return _with_energies(inputs, energy_per_volume(laws, inputs, stress, start), start)
 
 
 def line(laws: Laws, inputs: Mapping[str, Value], density: Value, start: Start) -> dict[str, Value]:
@@ -316,7 +325,14 @@ def line(laws: Laws, inputs: Mapping[str, Value], density: Value, start: Start) 
     dict of str to Value
         As `energy` gives. [SI]
     """
-    found = _per_volume(laws, inputs, density, start)
+    regions = (density,) if laws.structure == "uniform" else _parted(inputs, density)
+    return _with_energies(inputs, _per_volume(laws, inputs, regions, start), start)
+
+
+def _with_energies(
+    inputs: Mapping[str, Value], found: dict[str, Value], start: Start
+) -> dict[str, Value]:
+    """Add what the stored energy per volume makes in other units (relations 8, 9)."""
     stored = found["stored_energy_j_per_m3"]
     mass = inputs["material.mass_density_kg_per_m3"]
     return found | {
@@ -358,20 +374,74 @@ def energy_per_volume(
     dict of str to Value
         Density, spacing, line energy, stored energy per volume, `radius_ratio`. [SI]
     """
-    return _per_volume(laws, inputs, _density(laws, inputs, stress), start)
+    if laws.structure == "uniform":
+        return _per_volume(laws, inputs, (_density(laws, inputs, stress),), start)
+    stress = kept_where(stress, value_of(stress) > 0.0)
+    ratio = inputs.get("structure.stress_ratio")
+    if ratio is None:
+        ratio = apply(STRESS_RATIO, density_ratio=inputs["structure.density_ratio"])
+    parts = _shared_out(inputs, stress, ratio)
+    regions = tuple(_density(laws, inputs, part) for part in parts)
+    return _per_volume(laws, inputs, regions, start)
+
+
+def _parted(inputs: Mapping[str, Value], density: Value) -> tuple[Value, ...]:
+    """Part a mean density between walls and interiors, with one coefficient for both."""
+    ratio = inputs.get("structure.density_ratio")
+    if ratio is None:
+        by_stress = inputs["structure.stress_ratio"]
+        ratio = by_stress * by_stress
+    return _shared_out(inputs, density, ratio)
+
+
+def _shared_out(inputs: Mapping[str, Value], mean: Value, ratio: Value) -> tuple[Value, Value]:
+    """Share a mean over the volume out to walls and interiors that differ by a ratio.
+
+    It is written for stresses, and holds for whatever adds by volume.
+    """
+    fraction = inputs["structure.wall_fraction"]
+    wall, inside = (
+        apply(formula, stress=mean, wall_fraction=fraction, stress_ratio=ratio)
+        for formula in (WALL_STRESS, INTERIOR_STRESS)
+    )
+    return wall, inside
 
 
 def _per_volume(
+    laws: Laws, inputs: Mapping[str, Value], regions: tuple[Value, ...], start: Start
+) -> dict[str, Value]:
+    """Go from densities to stored energy: of one region, or of walls and interiors."""
+    held = [_of_region(laws, inputs, density, start) for density in regions]
+    if len(held) == 1:
+        return held[0]
+    stored, density = (
+        apply(
+            MEAN_OVER_REGIONS,
+            wall=held[0][name],
+            interior=held[1][name],
+            wall_fraction=inputs["structure.wall_fraction"],
+        )
+        for name in ("stored_energy_j_per_m3", "dislocation_density_per_m2")
+    )
+    ratios = [value_of(region["radius_ratio"]) for region in held]
+    return {
+        "dislocation_density_per_m2": density,
+        "mean_spacing_nm": apply(MEAN_SPACING, density=density),
+        "line_energy_j_per_m": apply(MEAN_LINE_ENERGY, stored_energy=stored, density=density),
+        "stored_energy_j_per_m3": stored,
+        "radius_ratio": np.minimum(*ratios),
+        "wall_density_per_m2": regions[0],
+        "interior_density_per_m2": regions[1],
+    }
+
+
+def _of_region(
     laws: Laws, inputs: Mapping[str, Value], density: Value, start: Start
 ) -> dict[str, Value]:
     spacing = apply(MEAN_SPACING, density=density)
     burgers = inputs["material.burgers_vector_nm"]
     shear = inputs["material.shear_modulus_gpa"]
-    outer = apply(
-        OUTER_RADIUS,
-        length=_outer_length(laws, inputs, spacing, start),
-        factor=inputs["line_energy.outer_radius_factor"],
-    )
+    outer = _outer_radius(laws, inputs, density, spacing, start)
     core = apply(CORE_RADIUS, multiple=inputs["line_energy.core_radius_b"], burgers_vector=burgers)
     per_line = apply(
         LINE_ENERGY,
@@ -521,6 +591,19 @@ def _density(laws: Laws, inputs: Mapping[str, Value], stress: Value) -> Value:
         coefficient=inputs["hardening.coefficient"],
         shear_modulus=inputs["material.shear_modulus_gpa"],
         burgers_vector=inputs["material.burgers_vector_nm"],
+    )
+
+
+def _outer_radius(
+    laws: Laws, inputs: Mapping[str, Value], density: Value, spacing: Value, start: Start
+) -> Value:
+    if laws.outer_radius == "arrangement":
+        arrangement = inputs["line_energy.arrangement"]
+        return apply(EFFECTIVE_OUTER_RADIUS, arrangement=arrangement, density=density)
+    return apply(
+        OUTER_RADIUS,
+        length=_outer_length(laws, inputs, spacing, start),
+        factor=inputs["line_energy.outer_radius_factor"],
     )
 
 

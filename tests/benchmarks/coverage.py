@@ -73,6 +73,9 @@ LOGNORMAL: Final = {  # true value, one standard deviation as a factor
     "hardening.coefficient": (0.30, 1.2),
     "line_energy.outer_radius_factor": (1.0, 1.5),
     "line_energy.core_radius_b": (1.0, 1.6),
+    "line_energy.arrangement": (0.8, 1.3),
+    "structure.wall_fraction": (0.2, 1.2),
+    "structure.density_ratio": (10.0, 1.5),
 }
 CALIBRATION: Final = np.array([[4e6, 0.0], [-0.7, 0.55]])  # Cholesky factor: baseline, slope
 
@@ -97,6 +100,7 @@ def main() -> None:
     plain = replace(LAWS, unwinding=False)
     beside = replace(plain, superposed=True)
     cold = replace(plain, temperature="modulus-and-thermal")
+    cells = replace(plain, structure="cells")
     by_slope = replace(plain, taylor="slope", route="flow")
     cases = [
         Case("far, unwound", 284e6, LAWS),
@@ -119,6 +123,12 @@ def main() -> None:
         Case("near, at 77 K", 30e6, cold, kelvin=77.0),
         Case("on the baseline, at 77 K", 0.0, cold, kelvin=77.0),
         Case("near, at 473 K", 30e6, cold, kelvin=473.15),
+        Case("far, cells", 300e6, cells),
+        Case("near, cells", 25e6, cells),
+        Case("on the baseline, cells", 0.0, cells),
+        Case("far, cells, unwound", 284e6, replace(LAWS, structure="cells")),
+        Case("far, arranged", 300e6, replace(plain, outer_radius="arrangement")),
+        Case("near, arranged", 25e6, replace(plain, outer_radius="arrangement")),
         Case("far, obstacles, unwound", 284e6, replace(LAWS, superposed=True)),
         Case("near, obstacles, unwound", 40e6, replace(LAWS, superposed=True)),
     ]

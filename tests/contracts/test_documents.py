@@ -117,6 +117,7 @@ DEFAULTS = {
     "hardening.law": "constant",
     "hardening.taylor_factor": {"value": 3.06, "u": 0.15},
     "hardening.coefficient": {"value": 0.30, "factor": 1.2},
+    "structure.kind": "uniform",
     "line_energy.elasticity": "isotropic",
     "line_energy.outer_radius": "spacing",
     "line_energy.outer_radius_factor": {"value": 1.0, "factor": 1.5},

@@ -6,6 +6,7 @@ from tests.formulas.twins import (
     DENSITY,
     KELVIN,
     LENGTH,
+    LINE,
     ONE,
     PER_LENGTH,
     RATE,
@@ -319,6 +320,12 @@ CELLS: dict[str, Case] = {
         DENSITY,
         ((5e15, 6e14, 0.2), (2e13, 1e13, 0.45)),
         zero_is_fine=frozenset({"wall", "interior", "wall_fraction"}),
+    ),
+    "mean_line_energy": Case(
+        lambda stored_energy, density: stored_energy / density,
+        {"stored_energy": STRESS, "density": DENSITY},
+        LINE,
+        ((1.2e6, 6e14), (4e4, 3e13)),
     ),
     "effective_outer_radius": Case(
         lambda arrangement, density: arrangement * density ** (-mpf(1) / 2),

@@ -27,7 +27,8 @@ from coldwork.rules.forces import SCALES
 Make = Callable[..., Path]
 Floats = NDArray[np.float64]
 DRAWS: Final = 200_000
-POINTS: Final = {"flow", "slope", "temperature"}  # cases by the flow route
+# Cases by the flow route.
+POINTS: Final = {"flow", "slope", "temperature", "cells", "cells, logarithmic"}
 
 HEAD: Final = """
 [batch]
@@ -107,6 +108,21 @@ MELTING: Final = (
     "melting_point_k = { value = 1358.0, u = 10.0 }\n"
     "shear_modulus_slope = { value = -0.54, u = 0.01 }\n"
 )
+CELLS: Final = """
+[structure]
+kind = "cells"
+wall_fraction = { value = 0.2, u = 0.003 }
+density_ratio = { value = 10.0, factor = 1.018 }
+"""
+ARRANGED: Final = """
+[line_energy]
+outer_radius = "arrangement"
+arrangement = { value = 0.6, factor = 1.019 }
+core_radius_b = { value = 1.0, u = 0.015 }
+"""
+LOGARITHMIC: Final = (
+    '[hardening]\nlaw = "logarithmic"\nreference_density_per_m2 = { value = 1e14, u = 1e12 }'
+)
 OBSTACLE: Final = (
     "obstacle_mpa = { value = 60.0, u = 1.0 }\nsuperposition_exponent = { value = 1.6, u = 0.03 }\n"
 )
@@ -143,6 +159,13 @@ CASES: Final[Mapping[str, str]] = {
     + WARM
     + CONSTANT
     + SPACING,
+    "cells": HEAD + FLOW + ROUTE_FLOW + CONSTANT + ARRANGED + CELLS,
+    "cells, logarithmic": HEAD
+    + FLOW
+    + ROUTE_FLOW
+    + CONSTANT.replace("[hardening]", LOGARITHMIC)
+    + SPACING
+    + CELLS.replace("density_ratio = { value = 10.0", "stress_ratio = { value = 3.0"),
     "obstacle": HEAD + INDENT + ROUTE_INDENT + OBSTACLE + UNWOUND + OTHERS + CONSTANT + SPACING,
 }
 

@@ -28,6 +28,7 @@ __all__ = [
     "EFFECTIVE_OUTER_RADIUS",
     "INTERIOR_DENSITY",
     "INTERIOR_STRESS",
+    "MEAN_LINE_ENERGY",
     "MEAN_OVER_REGIONS",
     "STRESS_RATIO",
     "WALL_DENSITY",
@@ -38,6 +39,8 @@ __all__ = [
     "interior_density_sensitivities",
     "interior_stress",
     "interior_stress_sensitivities",
+    "mean_line_energy",
+    "mean_line_energy_sensitivities",
     "mean_over_regions",
     "mean_over_regions_sensitivities",
     "stress_ratio",
@@ -421,6 +424,62 @@ def mean_over_regions_sensitivities(
     }
 
 
+def mean_line_energy(stored_energy: ArrayLike, density: ArrayLike) -> FloatArray:
+    r"""Compute the mean energy per length of lines that lie in several regions.
+
+    .. math:: \bar E = u / \bar\rho
+
+    Parameters
+    ----------
+    stored_energy : array_like, shape (...)
+        Mean stored energy per volume :math:`u`. [J/m^3]
+    density : array_like, broadcast against `stored_energy`
+        Mean density :math:`\bar\rho`. [m^-2]
+
+    Returns
+    -------
+    ndarray of float64, the broadcast shape
+        Mean over the length of line, NaN where an input is NaN. [J/m]
+
+    Raises
+    ------
+    InvalidArgument
+        If any argument is zero, negative or infinite.
+
+    References
+    ----------
+    Definition of a mean over the length.
+    """
+    return np.asarray(positive("stored_energy", stored_energy) / positive("density", density))
+
+
+def mean_line_energy_sensitivities(
+    stored_energy: ArrayLike, density: ArrayLike
+) -> dict[str, FloatArray]:
+    """Differentiate `mean_line_energy` by each argument.
+
+    Parameters
+    ----------
+    stored_energy, density : array_like
+        As for `mean_line_energy`. [J/m^3], [m^-2]
+
+    Returns
+    -------
+    dict of str to ndarray
+        By argument's name. [J/m per unit of the argument]
+
+    Raises
+    ------
+    InvalidArgument
+        As `mean_line_energy` does.
+    """
+    energy = mean_line_energy(stored_energy, density)
+    return {
+        "stored_energy": np.asarray(1.0 / np.asarray(density, dtype=np.float64)),
+        "density": np.asarray(-energy / np.asarray(density)),
+    }
+
+
 def effective_outer_radius(arrangement: ArrayLike, density: ArrayLike) -> FloatArray:
     r"""Compute the effective outer radius of lines in a given arrangement.
 
@@ -504,6 +563,7 @@ STRESS_RATIO: Final = Formula(stress_ratio, stress_ratio_sensitivities)
 INTERIOR_DENSITY: Final = Formula(interior_density, interior_density_sensitivities)
 WALL_DENSITY: Final = Formula(wall_density, wall_density_sensitivities)
 MEAN_OVER_REGIONS: Final = Formula(mean_over_regions, mean_over_regions_sensitivities)
+MEAN_LINE_ENERGY: Final = Formula(mean_line_energy, mean_line_energy_sensitivities)
 EFFECTIVE_OUTER_RADIUS: Final = Formula(
     effective_outer_radius, effective_outer_radius_sensitivities
 )

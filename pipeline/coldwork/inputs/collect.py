@@ -161,6 +161,8 @@ def _used_keys(laws: Laws, given: Mapping[KeyName, Given], *, curves: bool) -> l
         unused.add(("indentation", "HBW", "strain_ratio"))
     if not laws.superposed:
         unused.add(("strength", "superposition_exponent"))
+    if laws.outer_radius == "arrangement":  # which says how far the field reaches by itself
+        unused.add(("line_energy", "outer_radius_factor"))
     if laws.temperature == "none":
         unused |= {("material", "melting_point_k"), ("material", "shear_modulus_slope")}
     unused |= _unused_of_crystal(laws)

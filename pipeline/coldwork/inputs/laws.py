@@ -67,6 +67,7 @@ def laws_of(tables: Mapping[str, Any], crystal: Crystal | None = None) -> Laws:
         uniform_mix=character.get("mix") == "uniform",
         flow_from=_flow_from(route, tables["files"]),
         superposed="obstacle_mpa" in strength,
+        structure=choice(tables, "structure", "kind"),
         core=choice(tables, "line_energy", "core_energy_from"),
         temperature=_temperature(tables),
     )

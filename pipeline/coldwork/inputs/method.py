@@ -38,7 +38,7 @@ class Laws:
     elasticity : str
         ``isotropic`` or ``anisotropic``.
     outer_radius : str
-        ``spacing``, ``half-spacing``, ``grain`` or ``fixed``.
+        ``spacing``, ``half-spacing``, ``grain``, ``fixed`` or ``arrangement``.
     angles_deg, fractions : tuple of float
         The character mix; empty if `uniform_mix`. [deg], [1]
     uniform_mix : bool
@@ -51,6 +51,8 @@ class Laws:
         Whether the crystal is hexagonal and not cubic.
     superposed : bool
         Whether an obstacle stress joins the dislocation stress.
+    structure : str
+        ``uniform``, or ``cells`` with walls and interiors of their own density.
     core : str
         Where the core's energy comes from: the ``sheet`` or the ``library``.
     temperature : str
@@ -72,6 +74,7 @@ class Laws:
     slip: SlipSystem | None = None
     hexagonal: bool = False
     superposed: bool = False
+    structure: str = "uniform"
     core: str = "sheet"
     temperature: str = "none"
 

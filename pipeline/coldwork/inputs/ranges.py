@@ -11,7 +11,7 @@ from coldwork.inputs.quantity import Input
 
 __all__ = ["refuse_bad_ranges"]
 
-_BOUNDED: Final = (("strength", "superposition_exponent"),)
+_BOUNDED: Final = (("strength", "superposition_exponent"), ("structure", "wall_fraction"))
 _REACH: Final = {"normal": 3.0, "uniform": sqrt(3.0), "triangular": sqrt(6.0)}  # in u
 
 
@@ -28,6 +28,7 @@ def refuse_bad_ranges(causes: Causes, given: Mapping[KeyName, Given]) -> None:
     for key in _BOUNDED:
         if key in given:
             _refuse_wide(causes, key, given[key].input)
+    _refuse_ratio_of_densities(causes, given)
     exponent = given.get(("strength", "superposition_exponent"))
     alone = ("strength", "obstacle_mpa") not in given
     if alone and exponent is not None and (exponent.value != 1.0 or exponent.u > 0.0):
@@ -36,6 +37,18 @@ def refuse_bad_ranges(causes: Causes, given: Mapping[KeyName, Given]) -> None:
             "there is no obstacle stress that it could join",
             "The exponent says how obstacle_mpa and the dislocation stress add up.",
             "Give obstacle_mpa, or leave the exponent out.",
+        )
+
+
+def _refuse_ratio_of_densities(causes: Causes, given: Mapping[KeyName, Given]) -> None:
+    hardening = causes.sheet.tables.get("hardening", {})
+    law = hardening.get("law", "constant") if isinstance(hardening, dict) else "constant"
+    if ("structure", "density_ratio") in given and str(law).startswith("logarithmic"):
+        causes.add(
+            ("structure", "density_ratio"),
+            "a ratio of densities is given with a logarithmic law",
+            "Walls and interiors then have a coefficient each, and stresses another ratio.",
+            "Give stress_ratio in its place.",
         )
 
 

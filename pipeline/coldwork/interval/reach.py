@@ -27,7 +27,7 @@ from coldwork.interval.combine import Ends, Spread, combine
 from coldwork.measured import Measured, Value, value_of
 from coldwork.statistics.student import student_probability, student_quantile
 
-__all__ = ["BELOW_ZERO", "LATE", "Reach"]
+__all__ = ["BELOW_ZERO", "LATE", "REGIONS", "Reach"]
 
 PIVOT: Final = "dislocation stress"  # the name under which s enters the second half as an input
 BELOW_ZERO: Final = (  # goes to 0 with s: has a lower end of 0 where s - k u(s) <= 0
@@ -38,6 +38,7 @@ BELOW_ZERO: Final = (  # goes to 0 with s: has a lower end of 0 where s - k u(s)
     "temperature_rise_k",
     "stored_fraction_of_work",
 )
+REGIONS: Final = ("wall_density_per_m2", "interior_density_per_m2")
 LATE: Final = (*BELOW_ZERO[:1], "mean_spacing_nm", "line_energy_j_per_m", *BELOW_ZERO[1:])
 
 _FARTHEST_K: Final = 1e4  # beyond it a Student probability is 0 or 1 for all that is printed
@@ -98,6 +99,9 @@ class Reach:
             for name, result in self.results.items()
         }
         self.radius_ratio = value_of(self._late["radius_ratio"])
+        self.regions: dict[str, Value] = {
+            n: value_of(self._late[n]) for n in REGIONS if n in self._late
+        }
 
     def with_shared_exact(self) -> "Reach":
         """Give the same with shared inputs taken as exact (`basis = "own"`)."""
@@ -110,6 +114,12 @@ class Reach:
             own_only=True,
             before=self._before,
         )
+
+    @property
+    def densest(self) -> NDArray[np.float64]:
+        """Density of the densest region: of walls, or of all of it. [1/m^2]."""
+        whole = self._late["dislocation_density_per_m2"]
+        return value_of(self.regions.get("wall_density_per_m2", whole))
 
     @property
     def mapped(self) -> bool:

@@ -10,7 +10,9 @@ __all__ = [
     "FLOW",
     "FLOW_OF_CURVE",
     "INDENT",
+    "MEAN_DENSITY",
     "OVER_BASELINE",
+    "REGIONS",
     "REPORTED",
     "TEMPERATURE",
     "UNWOUND",
@@ -207,6 +209,25 @@ DENSITY: Final = {  # by the hardening law that the sheet names
         ("dislocation_stress_mpa", "hardening.slope_n_per_m"),
     ),
 }
+_MUGHRABI: Final = "relation 5; Mughrabi 1983 (from memory)"
+REGIONS: Final = tuple(
+    Line(
+        f"density in the {where}",
+        _MUGHRABI,
+        f"{quantity}_density_per_m2",
+        f"walls and interiors strain alike and their stresses add by volume; in the {where}",
+        (),
+    )
+    for where, quantity in (("walls", "wall"), ("interiors", "interior"))
+)
+MEAN_DENSITY: Final = Line(
+    "dislocation density",
+    "definition",
+    "dislocation_density_per_m2",
+    "mean over the volume; below, the line energy is of each region with its own outer radius, and "
+    "told as the mean over the length of line",
+    ("wall_density_per_m2", "interior_density_per_m2", "structure.wall_fraction"),
+)
 ENERGY: Final = (
     Line(
         "mean spacing",
@@ -222,8 +243,7 @@ ENERGY: Final = (
         "{elasticity}; averaged over the character mix; the field reaches to {radius}; {core}",
         (
             "mean_spacing_nm",
-            "line_energy.outer_radius_factor",
-            "<fixed radius>",
+            "<radius>",
             "line_energy.core_radius_b",
             "line_energy.core_energy",
             "material.shear_modulus_gpa",

@@ -288,6 +288,12 @@ def _from_density(
     method: Method, inputs: Mapping[str, Value], spreads: Mapping[str, Spread], given: _Given
 ) -> dict[str, Known]:
     """From a density there is no stress to take ends in: y exp(-+ k u / y) is the interval."""
+    if method.laws.structure == "cells" and method.laws.taylor.startswith("logarithmic"):
+        message = (
+            "a density cannot be parted between walls and interiors by a ratio of stresses with a "
+            "logarithmic law: give a stress, or law = 'constant'"
+        )
+        raise UsageError(message)
     nowhere = np.array([-1], dtype=np.int8)
     start = Start(_NOTHING, nowhere, _NOTHING, _NOTHING, _NOTHING, _NOTHING, method.plastic_strain)
     known = {**spreads, _DENSITY: Spread(given.u, shared=False, degrees_of_freedom=np.inf)}

@@ -183,6 +183,7 @@ def _judge(findings: Findings, route: str, evaluated: Evaluated) -> None:
             density=results["dislocation_density_per_m2"].value,
             radius_ratio=evaluated.reach.radius_ratio,
             stored_fraction=results["stored_fraction_of_work"].value,
+            densest=evaluated.reach.densest,
         ),
     )
 

@@ -80,6 +80,7 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
             density=results["dislocation_density_per_m2"].value,
             radius_ratio=evaluated.reach.radius_ratio,
             stored_fraction=results["stored_fraction_of_work"].value,
+            densest=evaluated.reach.densest,
         ),
     )
     if method.calibrations:

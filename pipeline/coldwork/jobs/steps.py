@@ -23,7 +23,9 @@ from coldwork.jobs.chain_words import (
     FLOW,
     FLOW_OF_CURVE,
     INDENT,
+    MEAN_DENSITY,
     OVER_BASELINE,
+    REGIONS,
     REPORTED,
     TEMPERATURE,
     UNWOUND,
@@ -48,6 +50,7 @@ _RADII: Final = {
     "half-spacing": "half the mean spacing of the dislocations",
     "grain": "the grain size of the coupon",
     "fixed": "the length that the sheet states",
+    "arrangement": "the effective outer radius, M* over the root of the density (Wilkens 1970)",
 }
 _BASELINE_INPUTS: Final = (
     "strength.baseline_mpa",
@@ -66,6 +69,8 @@ _WITHOUT_COLUMN: Final = {
     "excess_mpa": "MPa",
     "tested_stress_mpa": "MPa",
     "test_temperature_c": "Cel",
+    "wall_density_per_m2": "m-2",
+    "interior_density_per_m2": "m-2",
 }
 _THERMAL: Final = {
     "modulus": "in proportion to the shear modulus",
@@ -202,13 +207,28 @@ def _brought_to_reference(laws: Laws, lines: tuple[Line, ...]) -> tuple[Line, ..
 
 
 def _at_one_temperature(laws: Laws) -> tuple[Line, ...]:
-    energy = (DENSITY[laws.taylor], *ENERGY)
+    energy = (*_densities(laws), *ENERGY)
     if laws.flow_from == "curves":
         return (*FLOW_OF_CURVE, *OVER_BASELINE[laws.superposed], *energy)
     if laws.route == "flow":
         return (*FLOW, *OVER_BASELINE[laws.superposed], *energy)
     state = UNWOUND if laws.unwinding else AS_INDENTED
     return (*INDENT, *state[laws.superposed], *REPORTED[laws.superposed], *energy)
+
+
+def _densities(laws: Laws) -> tuple[Line, ...]:
+    """Tell of one density, or of walls, interiors and their mean."""
+    one = DENSITY[laws.taylor]
+    if laws.structure == "uniform":
+        return (one,)
+    regions = tuple(
+        region._replace(
+            explanation=f"{region.explanation}; {one.explanation}",
+            inputs=(*one.inputs, "<structure>"),
+        )
+        for region in REGIONS
+    )
+    return (*regions, MEAN_DENSITY)
 
 
 def _values(evaluated: Evaluated) -> Mapping[str, Value]:
@@ -221,6 +241,7 @@ def _values(evaluated: Evaluated) -> Mapping[str, Value]:
         "reference_stress_mpa": half.reference_stress,
         "excess_mpa": half.excess,
         "tested_stress_mpa": half.tested_stress,
+        **evaluated.reach.regions,
         **evaluated.results,
     }
 
@@ -237,7 +258,11 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
         for name in method.inputs
         if name in _BASELINE_INPUTS or name.startswith("strength.terms_mpa.")
     )
-    fixed = ("line_energy.outer_radius_nm",) if method.laws.outer_radius == "fixed" else ()
+    radius = {
+        "fixed": ("line_energy.outer_radius_nm", "line_energy.outer_radius_factor"),
+        "arrangement": ("line_energy.arrangement",),
+    }.get(method.laws.outer_radius, ("line_energy.outer_radius_factor",))
+    structure = (n for n in method.inputs if n.startswith("structure."))
     unwinding = (*_FOR_ALL_SCALES, "representative_strain", "strain_ratio")
     return {
         "<mean>": (REPEATABILITY, *(tester.bias.name for tester in method.testers)),
@@ -247,7 +272,8 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
         "<obstacle>": tuple(name for name in method.inputs if name in _OBSTACLE_INPUTS),
         "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
         "<unwinding>": _of_indentation(method, *unwinding),
-        "<fixed radius>": fixed,
+        "<radius>": radius,
+        "<structure>": tuple(structure),
         "<elasticity>": tuple(name for name in method.inputs if name in _ELASTICITY),
     }
 

@@ -9,7 +9,7 @@ from coldwork.rules.findings import Findings
 
 __all__ = ["judge_inputs", "skewed"]
 
-_LATE: Final = ("hardening.", "material.", "line_energy.")
+_LATE: Final = ("hardening.", "material.", "line_energy.", "structure.")
 _ANY_SIGN: Final = ("line_energy.core_energy",)  # a core may hold more or less than the field
 
 

@@ -59,6 +59,8 @@ class State:
         That of the method, NaN where it does not unwind. [Pa]
     density : ndarray of float64
         Dislocation density. [1/m^2]
+    densest : ndarray of float64, optional
+        That of the densest region, where there are several. [1/m^2]
     radius_ratio : ndarray of float64
         Outer over core radius. [1]
     stored_fraction : ndarray of float64
@@ -83,6 +85,7 @@ class State:
     density: FloatArray
     radius_ratio: FloatArray
     stored_fraction: FloatArray
+    densest: FloatArray | None = None
 
 
 def judge_coupons(findings: Findings, state: State) -> None:
@@ -252,11 +255,12 @@ def _indent_strain(findings: Findings, state: State) -> None:
 
 def _density(findings: Findings, state: State) -> None:
     density = state.density
-    high = rules.DENSITY_IMPOSSIBLE.above(density)
+    densest = density if state.densest is None else state.densest
+    high = rules.DENSITY_IMPOSSIBLE.above(densest)
     past = (state.stress > 0.0) & np.isnan(density)
     _note(findings, state, rules.STRESS_PAST_BRANCH, past, units.from_si(state.stress, "MPa"))
     low = rules.DENSITY_TOO_LOW.below(density)
-    _note(findings, state, rules.DENSITY_IMPOSSIBLE, high, density)
+    _note(findings, state, rules.DENSITY_IMPOSSIBLE, high, densest)
     _note(findings, state, rules.DENSITY_TOO_LOW, low, density)
     unusual = rules.DENSITY_UNUSUAL.outside(density) & ~high & ~low
     _note(findings, state, rules.DENSITY_UNUSUAL, unusual, density)
