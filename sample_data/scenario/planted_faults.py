@@ -11,6 +11,7 @@ from typing import Final
 from scenario import (
     faults_of_branch,
     faults_of_calibration,
+    faults_of_checks,
     faults_of_curves,
     faults_of_flow,
     faults_of_grains,
@@ -63,6 +64,7 @@ def files() -> dict[str, str | bytes]:
         faults_of_branch.batch(),
         faults_of_temperature.batch(),
         faults_of_calibration.batch(),
+        faults_of_checks.batch(),
         faults_of_curves.pulled_batch(),
         faults_of_curves.pressed_batch(),
         faults_of_instruments.batch(),

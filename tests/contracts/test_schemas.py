@@ -68,6 +68,8 @@ COLUMNS = {
     "in/curves": "coupon_id point_no time_s force_n extension_mm crosshead_mm stress_mpa strain",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
     "in/schedule": "time_s temperature_c",
+    "in/verification": "tester block_id certified_hardness u_certified_hardness hardness "
+    "measured_at operator",
     "in/pairs": "coupon_id flow_stress_mpa u_flow_stress_mpa dislocation_density_per_m2 "
     "u_dislocation_density_per_m2 hardness u_hardness force_n ball_mm grain_size_um "
     "u_grain_size_um stored_energy_j_per_g u_stored_energy_j_per_g heat_j_per_g u_heat_j_per_g "
@@ -137,6 +139,8 @@ REQUIRED = {
     "in/curves": "coupon_id",
     "in/exclusions": "coupon_id reading_no excluded_by excluded_at reason",
     "in/schedule": "time_s temperature_c",
+    "in/verification": "tester block_id certified_hardness u_certified_hardness hardness "
+    "measured_at",
     "in/pairs": "coupon_id",
 }
 UNITS = {  # what the suffix of a column's name promises

@@ -11,7 +11,7 @@ import pyarrow as pa
 import pytest
 
 from coldwork.inputs.calibration import Calibration, Parameter
-from coldwork.inputs.method import Laws, Method
+from coldwork.inputs.method import DayCheck, Laws, Method
 from coldwork.inputs.method import Tester as Machine  # a name that pytest does not collect
 from coldwork.inputs.quantity import Input
 from coldwork.intake.closing import ClosingLine, Tally
@@ -314,6 +314,13 @@ def warm(kelvin: float) -> Fires:
 
 DUE: Final = date(1970, 1, 11)  # the last day covered is day 10 of the epoch
 T1: Final = Machine("T1", an_input("tester:T1", 0.0), DUE)
+CHECKED: Final = Machine(  # checked on days 4 and 8 of the epoch, the second time out of limits
+    "T2",
+    an_input("tester:T2", 0.0),
+    None,
+    checked=True,
+    checks=(DayCheck(date(1970, 1, 5), within=True), DayCheck(date(1970, 1, 9), within=False)),
+)
 C: Final = coupon_rules
 R: Final = reading_rules
 B: Final = batch_rules
@@ -405,6 +412,21 @@ CASES: Final[list[tuple[Rule, Fires, Fires]]] = [
         B.TESTER_OUT_OF_DATE,
         indents(method(testers=(T1,)), "T1", day=11.0),
         indents(method(testers=(T1,)), "T1", day=10.9),
+    ),
+    (
+        B.TESTER_CHECK_MISSING,
+        indents(method(testers=(CHECKED,)), "T2", day=5.5),
+        indents(method(testers=(CHECKED,)), "T2", day=4.5),
+    ),
+    (
+        B.TESTER_CHECK_TOO_OLD,
+        indents(method(testers=(CHECKED,)), "T2", day=16.5),
+        indents(method(testers=(CHECKED,)), "T2", day=15.5),
+    ),
+    (
+        B.TESTER_CHECK_OUT_OF_LIMITS,
+        indents(method(testers=(CHECKED,)), "T2", day=8.5),
+        indents(method(testers=(CHECKED,)), "T2", day=4.5),
     ),
     (
         B.TESTER_UNKNOWN,

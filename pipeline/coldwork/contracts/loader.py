@@ -20,7 +20,16 @@ from coldwork.errors import ColdworkError, UsageError
 __all__ = ["contract_of", "document", "documents", "load", "names"]
 
 _ORDER: Final = {
-    "in": ("coupons", "indents", "flow_stress", "curves", "exclusions", "pairs", "schedule"),
+    "in": (
+        "coupons",
+        "indents",
+        "flow_stress",
+        "curves",
+        "exclusions",
+        "verification",
+        "pairs",
+        "schedule",
+    ),
     "out": (
         "coupons",
         "quantities",

@@ -1,11 +1,11 @@
 """The content of ``method.json``: everything besides the readings that results depend on."""
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import asdict
 from importlib.metadata import version
 from math import isfinite, nan
 from pathlib import Path
-from typing import Any, Final
+from typing import Any, Final, cast
 
 import coldwork
 from coldwork.contracts import document
@@ -19,7 +19,7 @@ from coldwork.inputs.method import Draws, Method, Tester
 from coldwork.inputs.numbers import Given
 from coldwork.inputs.tensile import tensile_document
 
-__all__ = ["method_document"]
+__all__ = ["method_document", "with_testers"]
 
 _COMPUTING: Final = ("numpy", "scipy", "pyarrow")
 _SECTIONS: Final = {
@@ -85,6 +85,17 @@ def method_document(
         "derived": _derived(method),
         "versions": {"coldwork": coldwork.__version__}
         | {name: version(name) for name in _COMPUTING},
+    }
+
+
+def with_testers(document: Mapping[str, object], testers: Sequence[Tester]) -> dict[str, object]:
+    """Give the content of ``method.json`` with other testers, once their checks were read."""
+    inputs = cast("Mapping[str, object]", document["inputs"])
+    biases = {tester.bias.name: _bias(tester) for tester in testers}
+    return {
+        **document,
+        "inputs": {**inputs, **biases},
+        "testers": [_tester(tester) for tester in testers],
     }
 
 
@@ -162,6 +173,7 @@ def _files(method: Method) -> dict[str, object]:
         "flow_stress": names(method.flow_stress),
         "curves": names(method.curves),
         "exclusions": names(taken_out),
+        "verification": names(method.verification),
     }
 
 

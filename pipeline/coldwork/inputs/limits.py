@@ -35,6 +35,28 @@ def refuse_bad_testers(causes: Causes) -> None:
                 "Write it like 2027-03-31.",
             )
     _refuse_doubles(causes, "testers")
+    _refuse_checks_alone(causes)
+
+
+def _refuse_checks_alone(causes: Causes) -> None:
+    """Refuse checks that no tester takes its bias from, and a tester without checks."""
+    files = causes.sheet.tables.get("files")
+    named = isinstance(files, dict) and "verification" in files
+    takers = [place for place, tester in _entries(causes, "testers") if "bias_from" in tester]
+    if named and not takers:
+        causes.add(
+            ("files", "verification"),
+            "no tester takes its bias from there",
+            "A table that is named is read, or the batch is refused.",
+            'Say bias_from = "verification" of a tester, or take the key out.',
+        )
+    for place in takers if not named else ():
+        causes.add(
+            ("testers", place, "bias_from"),
+            "there are no checks to take it from",
+            "Daily checks stand in a table of their own.",
+            'Name it: [files] verification = "verification.csv".',
+        )
 
 
 def refuse_bad_limits(causes: Causes) -> None:
@@ -95,14 +117,26 @@ def testers_of(tables: Mapping[str, Any], origin: str) -> tuple[Tester, ...]:
 def _tester(entry: Mapping[str, Any], origin: str) -> Tester:
     bias = Input(
         name=f"tester:{entry['id']}",
-        value=float(entry["bias_rel"]),
-        u=float(entry["u_rel"]),
+        value=float(entry.get("bias_rel", 0.0)),
+        u=float(entry.get("u_rel", 0.0)),
         unit="1",
         source="the tester's calibration",
         origin=origin,
     )
     last = entry.get("valid_until")
-    return Tester(entry["id"], bias, _day(last) if isinstance(last, str) else last)
+    return Tester(
+        entry["id"],
+        bias,
+        _day(last) if isinstance(last, str) else last,
+        checked="bias_from" in entry,
+        max_bias=float(_said(entry, "max_bias_rel")),
+        max_repeatability=float(_said(entry, "max_repeatability_rel")),
+        max_age_days=int(_said(entry, "max_age_days")),
+    )
+
+
+def _said(entry: Mapping[str, Any], key: str) -> Any:  # noqa: ANN401  # whatever TOML can hold
+    return entry.get(key, default_of(("testers", 0, key)))
 
 
 def limits_of(tables: Mapping[str, Any]) -> tuple[Limit, ...]:

@@ -13,7 +13,7 @@ from coldwork.inputs.calibration import Calibration
 from coldwork.inputs.layout import Layout
 from coldwork.inputs.quantity import Input
 
-__all__ = ["Draws", "Laws", "Limit", "Method", "Tensile", "Tester"]
+__all__ = ["DayCheck", "Draws", "Laws", "Limit", "Method", "Tensile", "Tester"]
 
 
 @dataclass(frozen=True)
@@ -107,6 +107,22 @@ class Draws:
 
 
 @dataclass(frozen=True)
+class DayCheck:
+    """One check of a tester on a reference block.
+
+    Attributes
+    ----------
+    day : date
+        In the batch's zone.
+    within : bool
+        Whether bias and repeatability are inside the tester's limits.
+    """
+
+    day: date
+    within: bool
+
+
+@dataclass(frozen=True)
 class Tester:
     """A hardness tester or testing machine with what its calibration found.
 
@@ -118,11 +134,24 @@ class Tester:
         How much too high it reads, relative. [1]
     valid_until : date or None
         Last day of its calibration, if one was said.
+    checked : bool
+        Whether its bias is that of its daily checks; until those are read it is 0.
+    max_bias, max_repeatability : float
+        Limits of one check, relative. [1]
+    max_age_days : int
+        For how many days a check speaks for it.
+    checks : tuple of DayCheck
+        By day; two blocks on one day are two checks.
     """
 
     id: str
     bias: Input
     valid_until: date | None
+    checked: bool = False
+    max_bias: float = 0.03
+    max_repeatability: float = 0.05
+    max_age_days: int = 7
+    checks: tuple[DayCheck, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -222,6 +251,8 @@ class Method:
         The tables' files in order, all inside the batch folder.
     exclusions : tuple of Path
         The files of the readings that a person takes out.
+    verification : tuple of Path
+        The file of the testers' daily checks.
     laws : Laws
         The choices by name.
     inputs : mapping of str to Input
@@ -299,6 +330,7 @@ class Method:
     draws: Draws | None = None
     layouts: Mapping[str, tuple[Layout | None, ...]] = field(default_factory=dict)
     calibrations: tuple[Calibration, ...] = ()
+    verification: tuple[Path, ...] = ()
     mixes: Mapping[str, Mapping[str, float]] = field(default_factory=dict)
 
     @property

@@ -117,6 +117,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
         method,
         sheets=(*method.sheets, *((found.path, found.digest) for found in taken)),
         calibrations=taken,
+        verification=files.paths.get("verification", ()),
         mixes=calibrations.mixes(),
     )
     refuse_draws_beyond_memory(causes, method)

@@ -13,7 +13,14 @@ from coldwork.inputs.words import listed, shown
 
 __all__ = ["Tables", "tables_of"]
 
-_TABLES: Final = ("coupons", "indents", "flow_stress", "curves", "exclusions")
+_TABLES: Final = (
+    "coupons",
+    "indents",
+    "flow_stress",
+    "curves",
+    "exclusions",
+    "verification",
+)
 _READ_BY: Final = {"indents": "indent", "flow_stress": "flow"}
 _PATTERN_MARKS: Final = frozenset("*?[")
 

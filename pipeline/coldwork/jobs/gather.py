@@ -23,6 +23,7 @@ from coldwork.intake.sources import check_headers
 from coldwork.jobs.curves import CurveReading, check_curves, read_curves
 from coldwork.jobs.drawn import Pools
 from coldwork.jobs.kept import KeptReadings
+from coldwork.jobs.verification import verified
 from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.coupon_rules import judge_coupon_cells, judge_scales
 from coldwork.judge.printed import judge_printed
@@ -171,6 +172,7 @@ def gather(
     BatchRefused
         With everything that is wrong with its files as wholes.
     """
+    method, checked = verified(method)
     files = _reading_files(method)
     excluding = _files(method, "exclusions", method.exclusions)
     curves = _how_curves(method, block_bytes, pictures=pictures, keep=points)
@@ -206,7 +208,7 @@ def gather(
         beside.findings,
         beside.set_aside,
         files.names,
-        (*coupons.sources, *exclusions.sources, *found.sources),
+        (*coupons.sources, *exclusions.sources, *checked, *found.sources),
         found.curves,
     )
     return gathered, kept

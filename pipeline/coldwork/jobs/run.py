@@ -130,7 +130,7 @@ def run(
         heat = (HEAT_TABLE,) if has_heat(method) else ()
         names = (*_ALWAYS, *heat, *_of_curves(batch), *(_FULL if full else ()))
         tables = _Tables({name: target.table(name, method.tables) for name in names}, drawing)
-        target.write("method.json", dump("method", method.document))
+        target.write("method.json", dump("method", batch.method.document))
         records = target.lines("records.jsonl") if full else None
         _work(batch, kept, lots, tables, records, tell)
         decisions = lots.write(tables.writers["lots"])

@@ -1,6 +1,6 @@
 """Testers: each reading without its tester's bias, and what is known of the tester."""
 
-from datetime import datetime, timedelta
+from datetime import date, datetime, timedelta
 from typing import Final
 from zoneinfo import ZoneInfo
 
@@ -9,10 +9,16 @@ import pyarrow as pa
 import pyarrow.compute as pc
 from numpy.typing import NDArray
 
-from coldwork.inputs.method import Method
+from coldwork.inputs.method import Method, Tester
 from coldwork.reduce.marks import Marks
 from coldwork.reduce.readings import Readings
-from coldwork.rules.batch import TESTER_OUT_OF_DATE, TESTER_UNKNOWN
+from coldwork.rules.batch import (
+    TESTER_CHECK_MISSING,
+    TESTER_CHECK_OUT_OF_LIMITS,
+    TESTER_CHECK_TOO_OLD,
+    TESTER_OUT_OF_DATE,
+    TESTER_UNKNOWN,
+)
 
 __all__ = ["corrected", "note_testers"]
 
@@ -54,7 +60,7 @@ def corrected(
 def note_testers(
     readings: Readings, method: Method, tester: NDArray[np.int64], marks: Marks
 ) -> None:
-    """Note readings of a tester that is not listed, or whose calibration had run out.
+    """Note readings of a tester that is not listed, has run out, or was not well checked.
 
     Parameters
     ----------
@@ -72,11 +78,37 @@ def note_testers(
     marks.note(TESTER_UNKNOWN, tester < 0)
     zone = ZoneInfo(method.timezone)
     for i, t in enumerate(method.testers):
+        if t.checked:
+            _note_checks(readings.times, t, tester == i, zone, marks)
         if t.valid_until is None:
             continue
-        after = t.valid_until + timedelta(days=1)
-        midnight = datetime(after.year, after.month, after.day, tzinfo=zone)
-        end = round(midnight.timestamp() * 1e6)
+        end = _midnight(t.valid_until + timedelta(days=1), zone)
         late = (tester == i) & (readings.times != _ABSENT) & (readings.times >= end)
         days = (readings.times - end) // _DAY + 1.0
         marks.note(TESTER_OUT_OF_DATE, late, np.asarray(days, dtype=np.float64))
+
+
+def _note_checks(
+    times: NDArray[np.int64], tester: Tester, here: NDArray[np.bool_], zone: ZoneInfo, marks: Marks
+) -> None:
+    """Note readings without a check on their day, with one too old, or with a bad one."""
+    days = sorted({check.day for check in tester.checks})
+    bad = np.array([any(c.day == day and not c.within for c in tester.checks) for day in days])
+    begins = np.array([_midnight(day, zone) for day in days])
+    ends = np.array([_midnight(day + timedelta(days=1), zone) for day in days])
+    timed = here & (times != _ABSENT)
+    last = np.searchsorted(begins, times, side="right") - 1
+    before = timed & (last >= 0)
+    at = np.maximum(last, 0)
+    age = np.where(before, np.ceil((times - ends[at] + 1) / _DAY), np.nan)
+    old = (timed & ~before) | (before & (age > tester.max_age_days))
+    limit = float(tester.max_age_days)
+    marks.note(TESTER_CHECK_TOO_OLD, old, age, limit=limit)
+    same_day = before & (times < ends[at])
+    marks.note(TESTER_CHECK_MISSING, here & ~old & ~same_day, age)
+    marks.note(TESTER_CHECK_OUT_OF_LIMITS, before & ~old & bad[at])
+
+
+def _midnight(day: date, zone: ZoneInfo) -> int:
+    """Give the begin of a day in a zone [us]."""
+    return round(datetime(day.year, day.month, day.day, tzinfo=zone).timestamp() * 1e6)

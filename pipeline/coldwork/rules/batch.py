@@ -8,6 +8,9 @@ __all__ = [
     "BATCH_RULES",
     "PRINTED_MEAN_DIFFERS",
     "SKEWED_INPUT",
+    "TESTER_CHECK_MISSING",
+    "TESTER_CHECK_OUT_OF_LIMITS",
+    "TESTER_CHECK_TOO_OLD",
     "TESTER_OUT_OF_DATE",
     "TESTER_UNKNOWN",
 ]
@@ -30,6 +33,35 @@ TESTER_UNKNOWN: Final = Rule(
     "ISO/IEC 17025:2017, 6.4",
     "The tester's bias is neither corrected nor counted in the uncertainty.",
 )
+TESTER_CHECK_MISSING: Final = Rule(
+    "tester-check-missing",
+    Level.WARNING,
+    "the tester was not checked on a reference block on the day of the reading; value in days"
+    " since the last check",
+    0.0,
+    "d",
+    "ISO 6507-1:2018, informative annex on verification by the user (from memory)",
+    "Whatever happened to the tester since its last check is not seen.",
+)
+TESTER_CHECK_TOO_OLD: Final = Rule(
+    "tester-check-too-old",
+    Level.WARNING,
+    "the tester's last check lies further back than the sheet allows, or there is none; value and"
+    " limit in days",
+    7.0,
+    "d",
+    "common practice",
+    "The bias that was taken out and its uncertainty may no longer hold.",
+)
+TESTER_CHECK_OUT_OF_LIMITS: Final = Rule(
+    "tester-check-out-of-limits",
+    Level.WARNING,
+    "the tester's last check found a bias or a spread outside the limits of the sheet",
+    None,
+    None,
+    "ISO 6507-1:2018, informative annex on verification by the user (from memory)",
+    "The tester was not fit for use when the reading was taken.",
+)
 SKEWED_INPUT: Final = Rule(
     "skewed-input",
     Level.WARNING,
@@ -51,4 +83,12 @@ PRINTED_MEAN_DIFFERS: Final = Rule(
     "A row may be lost, changed or read in another unit than the machine meant.",
 )
 
-BATCH_RULES: Final = (TESTER_OUT_OF_DATE, TESTER_UNKNOWN, SKEWED_INPUT, PRINTED_MEAN_DIFFERS)
+BATCH_RULES: Final = (
+    TESTER_OUT_OF_DATE,
+    TESTER_UNKNOWN,
+    TESTER_CHECK_MISSING,
+    TESTER_CHECK_TOO_OLD,
+    TESTER_CHECK_OUT_OF_LIMITS,
+    SKEWED_INPUT,
+    PRINTED_MEAN_DIFFERS,
+)
