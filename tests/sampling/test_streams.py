@@ -89,6 +89,11 @@ def test_too_many_of_them_refuse_the_batch_with_advice() -> None:
         ("material.poisson_ratio", -1.0, 0.5),
         ("strength.baseline_mpa", -inf, inf),  # a stress that is taken off may come out below 0
         ("strength.terms_mpa.solutes", -inf, inf),
+        ("strength.superposition_exponent", 1.0, 2.0),
+        ("strength.obstacle_mpa", -1e-300, inf),
+        ("structure.wall_fraction", 0.0, 1.0),
+        ("structure.density_ratio", 0.0, inf),
+        ("material.shear_modulus_slope", -inf, inf),
         ("tester:T1", -1.0, inf),
     ],
 )

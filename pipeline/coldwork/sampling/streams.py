@@ -24,7 +24,13 @@ THE_BATCH: Final = "the batch"  # what is refused, by the name that draws know i
 BLOCK: Final = 10_000  # draws of a stream that are made at once
 _MOST_REDRAWN: Final = 1e-3  # share of draws outside what the input can be [1]
 _SEPARATOR: Final = "\x1f"  # no name can hold it
-_BOUNDS: Final = {"poisson_ratio": (-1.0, 0.5), "hall_petch_mpa_m05": (-1e-300, inf)}
+_FROM_ZERO: Final = (-1e-300, inf)  # zero is allowed
+_BOUNDS: Final = {
+    "poisson_ratio": (-1.0, 0.5),
+    "superposition_exponent": (1.0, 2.0),
+    "wall_fraction": (0.0, 1.0),
+    **dict.fromkeys(("hall_petch_mpa_m05", "obstacle_mpa", "thermal_mpa"), _FROM_ZERO),
+}
 
 
 @dataclass(frozen=True)
@@ -63,9 +69,8 @@ class Distribution:
 def distribution_of(x: Input) -> Distribution:
     """Give the distribution that the sheet means for an input."""
     key = x.name.rpartition(".")[2]
-    low, high = _BOUNDS.get(key, (-inf, inf))
-    if WINDOWS.get(key, (0.0, 0.0))[0] > 0.0:
-        low = 0.0
+    positive = WINDOWS.get(key, (0.0, 0.0))[0] > 0.0
+    low, high = _BOUNDS.get(key, (0.0 if positive else -inf, inf))
     if x.name.startswith("tester:"):
         low = -1.0
     return Distribution(
