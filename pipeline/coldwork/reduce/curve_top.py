@@ -24,6 +24,7 @@ _STILL: Final = 0.02  # of the window: a top that moves less is not looked for a
 _COARSE: Final = 200  # stretches that the first look averages over
 _WITHIN: Final = 2.0  # the record goes on past the top by this many of its u
 _SAME: Final = 3.0  # standard deviations within which a mean is not told from the greatest
+_WIDER: Final = (0.0, 0.25, 0.5, 1.0)  # of those points, that join on either side
 _CLEAR: Final = 0.3  # relative uncertainty of the bend above which a wider window is tried
 
 
@@ -118,15 +119,23 @@ def _look(branch: Branch, start: int, base: int) -> tuple[Top, float] | None:
 
 
 def _of_region(branch: Branch, start: int) -> Top | None:
-    """Take the top of a parabola through all points that are not told from the greatest."""
+    """Take the top of a parabola through all points that are not told from the greatest.
+
+    Where noise leaves it without a top among them, points on either side join.
+    """
     low, high = _region(branch, start)
     if high - low < LEAST_POINTS:
         return None
-    window = Window(low, high + 1, float(branch.run[(low + high) // 2]), 2, branch.alike)
-    near = fit_window(branch.strain, branch.stress, window).top(window.centre)
-    if not branch.run[low] <= near <= branch.run[high]:
-        return None
-    return Top(window, near, float(branch.run[high] - branch.run[low]) / float(np.sqrt(12.0)))
+    middle = float(branch.run[(low + high) // 2])
+    u = float(branch.run[high] - branch.run[low]) / float(np.sqrt(12.0))
+    for more in _WIDER:
+        beside = int(more * (high - low))
+        ends = max(start, low - beside), min(len(branch), high + 1 + beside)
+        window = Window(*ends, middle, 2, branch.alike)
+        near = fit_window(branch.strain, branch.stress, window).top(middle)
+        if branch.run[low] <= near <= branch.run[high]:
+            return Top(window, near, u)
+    return None
 
 
 def _has_fallen(branch: Branch, start: int) -> bool:

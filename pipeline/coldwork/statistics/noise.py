@@ -94,7 +94,8 @@ def noise_of(series: ArrayLike) -> Noise:
     length = alike * int(np.clip(y.size // (16 * alike), 4, 8))
     if alike > 1 and sd > 0.0:
         means = y[: y.size // length * length].reshape(-1, length).mean(axis=1)
-        long_run = max(1.0, length * (_third(means, 1) / sd) ** 2)
+        ratio = length * (_third(means, 1) / sd) ** 2
+        long_run = float(np.clip(ratio, 1.0, length))  # no mean scatters more than a point
     steps = np.abs(np.diff(y))
     if not steps.any() or np.mean(steps == 0.0) <= _REPEATS:
         return Noise(sd, alike, long_run)
