@@ -10,6 +10,7 @@ from scipy.special import fdtri
 from coldwork.jobs.calibrated import Calibrated
 from coldwork.plots import save
 from coldwork.plots.calibration import Constants, Picture, draw
+from coldwork.plots.names import shown
 from coldwork.results.calibrations import write_new
 from coldwork.statistics.student import student_quantile
 
@@ -53,6 +54,10 @@ def picture_of(found: Calibrated) -> Picture:
         notes.append(
             f"The uncertainty of the fit is {fit.enlargement:.3g} times what the points state."
         )
+    if found.bad is not None:
+        notes.append(
+            f"The coupon that lies too far off is {shown(found.bad)}; it was not left out."
+        )
     return Picture(
         title=_TITLES[found.kind],
         facts=facts,
@@ -65,7 +70,6 @@ def picture_of(found: Calibrated) -> Picture:
         residual=points.residual,
         leverage=points.leverage,
         bad=bad,
-        bad_name=found.bad or "",
         line=points.line,
         line_covariance=points.line_covariance,
         k=float(student_quantile((1.0 + _COVERAGE) / 2.0, np.array([freedom]))[0]),

@@ -11,10 +11,9 @@ from matplotlib.figure import Figure
 from matplotlib.ticker import MaxNLocator
 
 from coldwork.plots.columns import FloatArray
-from coldwork.plots.names import fitted, shown
 from coldwork.plots.quantity import Scale, written
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
-from coldwork.plots.style import BLUE, FAINT, GREY, INK, PAPER, RED, Mark, Sizes, house
+from coldwork.plots.style import BLUE, FAINT, GREY, INK, PAPER, RED, Mark, house
 
 __all__ = ["Constants", "Picture", "draw"]
 
@@ -68,8 +67,6 @@ class Picture:
         The points. [units of the labels], [1]
     bad : int or None
         Place of the one point that is to blame.
-    bad_name : str
-        Its coupon.
     line : tuple of float
         Intercept and slope. [units of the labels]
     line_covariance : ndarray, shape (2, 2)
@@ -91,7 +88,6 @@ class Picture:
     residual: FloatArray
     leverage: FloatArray
     bad: int | None
-    bad_name: str
     line: tuple[float, float]
     line_covariance: FloatArray
     k: float
@@ -180,7 +176,7 @@ def _draw_points(axes: Axes, picture: Picture, span: tuple[float, float]) -> Non
         ]
     )
     axes.add_collection(LineCollection(list(ends), linewidths=0.7, colors=GREY, zorder=2.5))
-    _put(axes, picture, y, named=True)
+    _put(axes, picture, y)
     low, high = _span(y, u_y)
     _axis(axes, "", span)
     axes.set_xticklabels([])
@@ -199,16 +195,11 @@ def _draw_residuals(axes: Axes, picture: Picture, span: tuple[float, float]) -> 
     axes.set_ylabel("residual / u")
 
 
-def _put(axes: Axes, picture: Picture, y: FloatArray, *, named: bool = False) -> None:
+def _put(axes: Axes, picture: Picture, y: FloatArray) -> None:
     good = np.ones(len(y), dtype=np.bool_)
     if picture.bad is not None:
         good[picture.bad] = False
-        place = (float(picture.x[picture.bad]), float(y[picture.bad]))
-        _BAD.put(axes, np.array(place[:1]), np.array(place[1:]))
-        name = fitted(shown(picture.bad_name), Sizes.small, 1.5) if named else ""
-        axes.annotate(
-            name, place, (6, 4), textcoords="offset points", fontsize=Sizes.small, color=INK
-        )
+        _BAD.put(axes, picture.x[[picture.bad]], y[[picture.bad]])
     scale = 0.6 if len(y) > _MANY else 1.0
     _POINT.put(axes, picture.x[good], y[good], scale=scale)
 
