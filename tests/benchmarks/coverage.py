@@ -7,7 +7,10 @@ On the baseline an interval without an upper end (`baseline-contradicted`) is a 
 is told only of a batch that came out above the baseline: where many do not, those that do have
 been picked, and no verdict is passed on it.
 
-    python tests/benchmarks/coverage.py [batches]
+With a number of draws after the number of batches: first order beside Monte Carlo, wanted at 94 to
+96.5 %, far from, near and on the baseline. Batches are drawn in groups that share their draws.
+
+    python tests/benchmarks/coverage.py [batches [draws]]
 """
 
 import sys
@@ -19,11 +22,14 @@ from numpy.typing import NDArray
 
 from coldwork.chain import Start, energy, strength, with_obstacle
 from coldwork.formulas.temperature import shear_modulus_at, thermal_stress
-from coldwork.inputs.method import Laws
+from coldwork.inputs.method import Draws, Laws
+from coldwork.inputs.quantity import Input
 from coldwork.interval.before import before_superposition
-from coldwork.interval.combine import Spread
+from coldwork.interval.combine import Ends, Spread
 from coldwork.interval.reach import Reach
 from coldwork.measured import Measured, Value, value_of
+from coldwork.sampling.drawn import Coupons, Pool
+from coldwork.sampling.sampler import Question, sample
 
 SEED: Final = 20261
 REFERENCE: Final = 296.15  # temperature that constants hold at [K]
@@ -77,6 +83,7 @@ LOGNORMAL: Final = {  # true value, one standard deviation as a factor
     "structure.wall_fraction": (0.2, 1.2),
     "structure.density_ratio": (10.0, 1.5),
 }
+GROUP: Final = 250  # batches that share their draws
 CALIBRATION: Final = np.array([[4e6, 0.0], [-0.7, 0.55]])  # Cholesky factor: baseline, slope
 
 
@@ -96,6 +103,8 @@ class Case:
 def main() -> None:
     """Print coverage and tails of every case."""
     batches = int(sys.argv[1]) if len(sys.argv) > 1 else 20_000
+    if len(sys.argv) > 2:
+        both(batches, int(sys.argv[2]))
     rng = np.random.default_rng(SEED)
     plain = replace(LAWS, unwinding=False)
     beside = replace(plain, superposed=True)
@@ -150,8 +159,66 @@ def main() -> None:
     sys.exit(bad > 0)
 
 
+def both(batches: int, draws: int) -> None:
+    """Print coverage of both methods over the ratio of u(s) to s, and leave."""
+    rng = np.random.default_rng(SEED)
+    plain = replace(LAWS, unwinding=False)
+    print(f"{batches} batches a case, {draws} draws each; seed {SEED}")
+    bad = 0
+    for stress in (300e6, 55e6, 17.3e6, 5.12e6, 0.0):
+        case = Case(f"{stress / 1e6:g} MPa above the baseline", stress, plain)
+        first, drawn = simulate(case, batches, rng), simulate(case, batches, rng, draws)
+        for name, ratio, *found in first:
+            other = next((row[2:] for row in drawn if row[0] == name), None)
+            good = 0.935 <= found[0] <= 0.97 and other is not None and 0.94 <= other[0] <= 0.965
+            good |= name == "line_energy_j_per_m" and ratio > WEAK
+            bad += not good
+            shown = "".join(
+                f"  {covered:7.2%} ({low:.2%}, {high:.2%})"
+                for covered, low, high in (found, other or (np.nan,) * 3)
+            )
+            print(f"{case.name:30s} {name:28s} {ratio:7.3f}{shown}  {'' if good else 'OUTSIDE'}")
+    print(f"{bad} outside what is wanted")
+    sys.exit(bad > 0)
+
+
+def ends_of_draws(
+    case: Case,
+    inputs: dict[str, Value],
+    spreads: dict[str, Spread],
+    start: Start,
+    draws: int,
+    seed: int,
+) -> dict[str, Ends]:
+    """The intervals of n batches by Monte Carlo; groups of them share their draws."""
+    n = len(start.scale)
+    ends = {name: Ends(np.full(n, np.nan), np.full(n, np.nan)) for name in QUANTITIES}
+    factors = {
+        name: Input(name, 1.0, float(np.log(factor)), "1", shape="lognormal", factor=factor)
+        for name, (_, factor) in LOGNORMAL.items()
+    }
+    values = {
+        name: Measured(x.value, {name: x.value})
+        if name in factors and isinstance(x, Measured)
+        else x
+        for name, x in inputs.items()
+    }
+    nothing = {name: np.zeros(n, dtype=bool) for name in QUANTITIES}
+    question = Question(QUANTITIES, 0.95, (), nothing)
+    how = Draws(seed, draws, adaptive=False, digits=1)
+    for begun in range(0, n, GROUP):
+        rows = np.arange(begun, min(begun + GROUP, n))
+        pool = Pool(seed + begun, factors, values, spreads)
+        coupons = Coupons([f"B{i}" for i in rows.tolist()], rows, start, spreads)
+        found = sample(case.laws, how, pool, coupons, question)
+        for name in QUANTITIES:
+            ends[name].lower[rows] = found.ends[name].lower[rows]
+            ends[name].upper[rows] = found.ends[name].upper[rows]
+    return ends
+
+
 def simulate(
-    case: Case, batches: int, rng: np.random.Generator
+    case: Case, batches: int, rng: np.random.Generator, draws: int = 0
 ) -> list[tuple[str, float, float, float, float]]:
     """Coverage of each quantity in one case: name, u(s)/s, covered, truth below, truth above."""
     truth = {**{k: v for k, (v, _) in NORMAL.items()}, **{k: v for k, (v, _) in LOGNORMAL.items()}}
@@ -181,13 +248,14 @@ def simulate(
     reach = Reach(case.laws, inputs, spreads, start, half.dislocation_stress, before=before)
     exact = {k: np.asarray(v) for k, v in truth.items()}
     true = energy(case.laws, exact, np.array([case.stress or np.nan]), begin(mean[:1], 1))
+    drawn = ends_of_draws(case, inputs, spreads, start, draws, SEED) if draws else {}
     rows = []
     for name in QUANTITIES:
         if case.stress == 0.0 and name == "line_energy_j_per_m":
             continue
         told = reach.present | (name != "line_energy_j_per_m")
         y = 0.0 if case.stress == 0.0 else float(np.asarray(true[name])[0])
-        ends = reach.interval(name, 0.975)
+        ends = drawn[name] if draws else reach.interval(name, 0.975)
         empty = np.isnan(ends.upper) & ~reach.present
         above = (y > ends.upper) | empty
         below = y < ends.lower

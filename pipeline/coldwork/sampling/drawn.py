@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from coldwork.chain import Start
 from coldwork.inputs.quantity import Input
 from coldwork.interval.combine import Spread
-from coldwork.measured import Measured, Value
+from coldwork.measured import Measured, Value, value_of
 from coldwork.sampling.streams import BLOCK, Distribution, deviations, distribution_of, generator
 
 __all__ = ["Coupons", "Pool"]
@@ -100,7 +100,9 @@ class Pool:
             }
         common = self._common[block]
         return {
-            name: common[name] if name in common else self._drawn(x, coupons, block)
+            name: common[name]
+            if name in common
+            else self._drawn(_rows_of(x, coupons.rows), coupons, block)
             for name, x in self._values.items()
         }
 
@@ -120,7 +122,7 @@ class Pool:
 
     def _has_own_part(self, x: Value) -> bool:
         named = x.sensitivities if isinstance(x, Measured) else ()
-        return any(not self._shared.get(name, False) for name in named)
+        return np.ndim(value_of(x)) > 0 or any(not self._shared.get(name, False) for name in named)
 
     def _drawn(self, x: Value, coupons: Coupons, block: int) -> Value:
         """Move a value by the draws of the inputs that it is linear in."""
@@ -189,6 +191,9 @@ def _own(name: str, coupons: Coupons) -> list[Distribution]:
     return found
 
 
-def _rows_of(x: Measured, rows: NDArray[np.intp]) -> Measured:
+def _rows_of(x: Value, rows: NDArray[np.intp]) -> Value:
+    """Pick coupons out of what differs between them."""
+    if not isinstance(x, Measured):
+        return x[rows][:, np.newaxis] if isinstance(x, np.ndarray) and x.ndim else x
     picked = {name: c[rows] if np.ndim(c) else c for name, c in x.sensitivities.items()}
     return Measured(x.value[rows] if x.value.ndim else x.value, picked)

@@ -335,7 +335,7 @@ def _blank(n: int, question: Question) -> Sampled:
 
 def _cut(x: Value, here: slice) -> Value:
     plain = value_of(x)
-    return plain[..., here] if plain.ndim else plain
+    return plain[..., here] if plain.ndim and plain.shape[-1] > 1 else plain
 
 
 def _cut_start(start: Start, here: slice) -> Start:
