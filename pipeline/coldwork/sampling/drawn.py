@@ -80,6 +80,7 @@ class Pool:
         self._spreads = spreads
         self._kept: dict[tuple[str, int], _Floats] = {}
         self._common: dict[int, dict[str, Value]] = {}  # inputs without an own part, by block
+        self._rooms: dict[str, _Floats] = {}
         self._again: dict[str, dict[int, int]] = {}
 
     def redrawn(self, blocks: int) -> dict[str, int]:
@@ -94,7 +95,7 @@ class Pool:
         """Draw the chain's inputs: (draws,) where coupons share them, else (c, draws). [SI]."""
         if block not in self._common:
             self._common[block] = {
-                name: self._drawn(x, coupons, block)
+                name: self._drawn(x, coupons, block, name)
                 for name, x in self._values.items()
                 if not self._has_own_part(x)
             }
@@ -102,7 +103,7 @@ class Pool:
         return {
             name: common[name]
             if name in common
-            else self._drawn(_rows_of(x, coupons.rows), coupons, block)
+            else self._drawn(_rows_of(x, coupons.rows), coupons, block, name)
             for name, x in self._values.items()
         }
 
@@ -112,7 +113,7 @@ class Pool:
         for field in fields(Start):
             x = getattr(coupons.start, field.name)
             if isinstance(x, Measured):
-                wide = self._drawn(_rows_of(x, coupons.rows), coupons, block)
+                wide = self._drawn(_rows_of(x, coupons.rows), coupons, block, field.name)
                 found[field.name] = np.asarray(wide)
             elif isinstance(x, np.ndarray) and x.ndim:
                 found[field.name] = x[coupons.rows][:, np.newaxis]
@@ -124,21 +125,26 @@ class Pool:
         named = x.sensitivities if isinstance(x, Measured) else ()
         return np.ndim(value_of(x)) > 0 or any(not self._shared.get(name, False) for name in named)
 
-    def _drawn(self, x: Value, coupons: Coupons, block: int) -> Value:
+    def _drawn(self, x: Value, coupons: Coupons, block: int, label: str) -> Value:
         """Move a value by the draws of the inputs that it is linear in."""
         if not isinstance(x, Measured):
             return x
         value: _Floats = x.value[..., np.newaxis] if x.value.ndim else x.value
         for name, c in x.sensitivities.items():
             slope = c[..., np.newaxis] if c.ndim else c
-            deviation = self._deviation(name, coupons, block)
+            deviation = self._deviation(name, coupons, block, label)
             if deviation is None or not np.any(slope):
                 continue
-            step = deviation if np.all(slope == 1.0) else slope * deviation
-            value = value + step
+            if deviation.ndim == 1:
+                value = value + (deviation if np.all(slope == 1.0) else slope * deviation)
+                continue
+            if not np.all(slope == 1.0):  # own draws are made for this value alone
+                deviation *= slope
+            deviation += value
+            value = deviation
         return value
 
-    def _deviation(self, name: str, coupons: Coupons, block: int) -> _Floats | None:
+    def _deviation(self, name: str, coupons: Coupons, block: int, label: str) -> _Floats | None:
         shared = self._shared.get(name, False)
         if shared and self._exact_shared:
             return None
@@ -148,10 +154,17 @@ class Pool:
             each = [self._distributions[name]] * len(coupons.names)
         else:
             each = _own(name, coupons)
-        found = np.empty((len(each), BLOCK))
+        found = self._room(f"{label} {name}", len(each))
         for row, x, coupon in zip(found, each, coupons.names, strict=True):
             row[:] = deviations(x, generator(self._seed, name, coupon, block=block), BLOCK)[0]
         return found
+
+    def _room(self, label: str, coupons: int) -> _Floats:
+        """Give room for own draws of one value; it is used again for the next coupons."""
+        room = self._rooms.get(label)
+        if room is None or len(room) < coupons:
+            room = self._rooms[label] = np.empty((coupons, BLOCK))
+        return room[:coupons]
 
     def _shared_deviation(self, name: str, block: int) -> _Floats:
         if (name, block) not in self._kept:

@@ -29,7 +29,7 @@ __all__ = ["Question", "Sampled", "sample"]
 _Floats = NDArray[np.float64]
 _TOGETHER: Final = 16  # coupons that are drawn together: shared factors are computed once for them
 _HELD: Final = 1_600_000  # draws of a quantity that are held at a time, of all these together
-_WIDTH: Final = 1000  # draws that go through the chain at once, so that all stays in the cache
+_WIDTH: Final = 2000  # draws that go through the chain at once, so that all stays in the cache
 _NO_STRENGTH: Final = 1e-9  # of its value stands for a hardness drawn at or below zero [1]
 
 
@@ -125,6 +125,7 @@ def sample(
     """
     answer = _blank(len(coupons.start.scale), question)
     step = max(1, min(_TOGETHER, _HELD // how.number, len(coupons.names)))
+    np.empty(_HELD)  # freed at once: from then on the allocator keeps what tiles free
     held = {name: np.empty((step, how.number)) for name in _wanted(question)}
     for begin in range(0, len(coupons.names), step):
         places = range(begin, min(begin + step, len(coupons.names)))

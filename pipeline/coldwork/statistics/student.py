@@ -154,9 +154,20 @@ def student_of_normal(z: NDArray[np.float64], degrees_of_freedom: float) -> NDAr
         return z
     x = np.square(z)
     np.minimum(x, _FARTHEST**2, out=x)
-    x *= 2.0 / _FARTHEST**2
-    x -= 1.0
-    ratio = np.asarray(chebyshev.chebval(x, _log_ratio_series(max(nu, 1.0))))
+    x *= 4.0 / _FARTHEST**2
+    x -= 2.0  # twice the argument of the series
+    series = _log_ratio_series(max(nu, 1.0))
+    last, ratio = np.zeros_like(x), np.full_like(x, series[-1])
+    for c in series[-2:0:-1]:  # Clenshaw's recurrence, in place
+        last *= -1.0
+        last += c
+        step = x * ratio
+        last += step
+        last, ratio = ratio, last
+    ratio *= x
+    ratio *= 0.5
+    ratio -= last
+    ratio += series[0]
     return np.asarray(z * np.exp(ratio, out=ratio))
 
 
@@ -229,7 +240,7 @@ def _log_ratio_series(nu: float) -> NDArray[np.float64]:
     series = 2.0 / _NODES * (np.cos(orders * np.arccos(nodes)) @ log_ratio)
     series[0] /= 2.0
     kept = np.flatnonzero(np.abs(series) > _SEEN)
-    return np.asarray(series[: int(kept[-1]) + 1 if kept.size else 1])
+    return np.asarray(series[: max(2, int(kept[-1]) + 1) if kept.size else 2])
 
 
 def _from_one(name: str, value: ArrayLike) -> NDArray[np.float64]:
