@@ -9,7 +9,7 @@ from numpy.testing import assert_allclose, assert_array_equal
 
 from coldwork.plots.columns import aligned, booleans, numbers, runs, texts
 from coldwork.plots.quantity import heading, robust_limits, scale_of, written
-from coldwork.plots.spans import Spans, draw_spans, spans_of, why_missing
+from coldwork.plots.spans import Spans, draw_spans, spans_of, spans_with_part, why_missing
 
 
 def test_a_power_of_ten_moves_into_the_unit() -> None:
@@ -83,11 +83,11 @@ def test_the_own_part_stays_inside_the_interval() -> None:
     figure = Figure()
     axes = figure.add_axes((0.1, 0.1, 0.8, 0.8))
     axes.set_xlim(0.0, 10.0)
-    spans = Spans(*(np.array([x]) for x in (4.0, 2.0, 9.0, 0.5)))
+    spans = spans_with_part(*(np.array([x]) for x in (4.0, 1.0, 9.0, 0.5, 1.0)))
     draw_spans(axes, spans, np.zeros(1))
     total, own, _ = axes.collections
-    assert lines_of(total) == [[2.0, 9.0]]
-    assert lines_of(own) == [[3.0, 6.5]]
+    assert lines_of(total) == [[1.0, 9.0]]
+    assert_allclose(lines_of(own), [[2.0, 6.0]])  # half of the way in logarithms
 
 
 def test_an_open_end_reaches_the_edge_and_an_upper_end_stands_alone() -> None:
@@ -99,7 +99,8 @@ def test_an_open_end_reaches_the_edge_and_an_upper_end_stands_alone() -> None:
         np.array([4.0, nan, nan, 5.0]),
         np.array([2.0, 0.0, 0.0, nan]),
         np.array([nan, 3.0, nan, nan]),
-        np.array([0.5, nan, nan, nan]),
+        np.array([3.0, nan, nan, nan]),
+        np.array([nan, nan, nan, nan]),
     )
     draw_spans(axes, spans, np.arange(4.0))
     total, _, one_sided = axes.collections
@@ -125,7 +126,8 @@ def test_ends_come_from_quantities_where_coupons_lack_them() -> None:
     spans = spans_of(frames, ["b", "a"], "temperature_rise_k")
     assert_allclose(spans.lower, [0.05, 0.2])
     assert_array_equal(spans.upper, [np.nan, 0.6])
-    assert_allclose(spans.own, [0.25, 0.5])
+    assert_allclose(spans.own_lower, [0.1 * 0.5**0.25, (0.3 * 0.2) ** 0.5])
+    assert_allclose(spans.own_upper, [np.nan, (0.3 * 0.6) ** 0.5])
 
 
 def test_the_gravest_rule_that_empties_a_value_is_named() -> None:
@@ -145,7 +147,9 @@ def test_the_gravest_rule_that_empties_a_value_is_named() -> None:
         ),
     }
     nan, one = np.full(4, np.nan), np.array([np.nan, np.nan, np.nan, 1.0])
-    words = why_missing(frames, list("abcd"), "stored_energy_j_per_g", Spans(one, nan, nan, nan))
+    words = why_missing(
+        frames, list("abcd"), "stored_energy_j_per_g", Spans(one, nan, nan, nan, nan)
+    )
     assert words == ["below-baseline", "no-readings", "no value", "no interval"]
 
 

@@ -95,10 +95,9 @@ def test_the_picture_carries_its_title() -> None:
     assert title.encode() in png
 
 
-@pytest.mark.parametrize("case", ["5 odd", "flow"])
-def test_the_same_figure_gives_the_same_bytes(case: str) -> None:
+def test_the_same_figure_gives_the_same_bytes() -> None:
     def render() -> list[tuple[str, bytes, bytes]]:
-        made = CASES[case]()
+        made = CASES["flow"]()
         return [(stem, *save(figure, stem)) for stem, figure in draw_all(made.frames, made.context)]
 
     first = render()
@@ -199,7 +198,7 @@ def test_a_table_that_is_not_there_leaves_out_its_plot_alone(table: str, stems: 
 
 
 def test_many_readings_become_pixels() -> None:
-    made = batch(50, readings=60)
+    made = batch(50, readings=60).without("budget").without("scatter").without("decisions")
     svgs = {stem: save(figure, stem)[0] for stem, figure in draw_all(made.frames, made.context)}
     for stem in ("readings", "drift"):
         assert b"<image" in svgs[stem]

@@ -56,7 +56,8 @@ def draw(
         median, least, greatest = (
             numbers(part, f"{name}_ratio") for name in ("median", "least", "greatest")
         )
-        spans.append(Spans(median, least, greatest, np.full(len(part), np.nan)))
+        unknown = np.full(len(part), np.nan)
+        spans.append(Spans(median, least, greatest, unknown, unknown))
         shares.append(float(numbers(part, "relative_u")[0]))
     if not spans or not np.isfinite(spans[0].value[1:]).any():
         return []

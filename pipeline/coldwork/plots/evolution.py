@@ -1,7 +1,7 @@
 """Density, stored energy and its fraction of the work along the strain of each curve."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from typing import Final
 
 import numpy as np
@@ -16,7 +16,7 @@ from coldwork.plots.grid import Caption, Remark, grid_pages
 from coldwork.plots.names import counted, listed
 from coldwork.plots.quantity import Scale, heading, scale_of
 from coldwork.plots.sheet import Sheet
-from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key
+from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key, spans_with_part
 from coldwork.plots.style import FAINT, GREY, Mark, house
 
 __all__ = ["draw_density", "draw_energy"]
@@ -123,12 +123,8 @@ def _along(group: pd.DataFrame, columns: Sequence[str], *, total: bool) -> _Alon
         strain = strain + numbers(group, "prior_true_strain")
     spans = {}
     for column in columns:
-        value, lower, upper, own, u = (
-            numbers(group, f"{prefix}{column}")
-            for prefix in ("", "lower_", "upper_", "u_own_", "u_")
-        )
-        with np.errstate(divide="ignore", invalid="ignore"):
-            spans[column] = Spans(value, lower, upper, np.clip(own / u, 0.0, 1.0))
+        prefixes = ("", "lower_", "upper_", "u_own_", "u_")
+        spans[column] = spans_with_part(*(numbers(group, f"{each}{column}") for each in prefixes))
     return _Along(strain, spans)
 
 
@@ -194,12 +190,7 @@ def _draw_one(axes: Axes, one: _Along, column: str, scale: Scale) -> None:
 
 
 def _key(spans: Sequence[Spans], context: Context, *, several: bool) -> list[tuple[Artist, str]]:
-    joined = Spans(
-        *(
-            np.concatenate([getattr(s, name) for s in spans])
-            for name in ("value", "lower", "upper", "own")
-        )
-    )
+    joined = Spans(*(np.concatenate([getattr(s, f.name) for s in spans]) for f in fields(Spans)))
     found: list[tuple[Artist, str]] = [(MEAN.sample(0.9, colour=GREY), "value")]
     found += span_key(joined, context, upright=True)
     if several:

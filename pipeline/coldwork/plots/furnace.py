@@ -17,7 +17,7 @@ from coldwork.plots.names import counted
 from coldwork.plots.quantity import Scale, scale_of, written
 from coldwork.plots.rows import MOST_COUPONS, Panel, Rows, Strip, row_pages
 from coldwork.plots.sheet import EDGE, WIDTH, Sheet, add_panel, open_sheet
-from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key
+from coldwork.plots.spans import MEAN, Spans, draw_spans, span_key, spans_with_part
 from coldwork.plots.style import FAINT, GREY, INK, PAPER, Mark, house
 
 __all__ = ["draw_pressures", "draw_progress"]
@@ -144,9 +144,7 @@ def _spans(table: pd.DataFrame, ids: Sequence[str], state: str, quantity: str) -
     mine = table[(table["state"] == state) & (table["quantity"] == quantity)]
     places = aligned(texts(mine, "coupon_id"), ids)
     columns = [numbers(mine, name) for name in ("value", "lower", "upper", "u_own", "u")]
-    value, lower, upper, own, u = (_taken(column, places) for column in columns)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        return Spans(value, lower, upper, np.clip(own / u, 0.0, 1.0))
+    return spans_with_part(*(_taken(column, places) for column in columns))
 
 
 def _taken(column: FloatArray, places: NDArray[np.intp]) -> FloatArray:

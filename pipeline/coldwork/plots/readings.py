@@ -216,7 +216,7 @@ def _points(frames: Frames, rows: Rows, column: str) -> _Points:
 
 def _relative(spans: Spans) -> Spans:
     away = spans.times(100.0 / np.where(spans.value == 0.0, np.nan, spans.value))
-    return Spans(away.value - 100.0, away.lower - 100.0, away.upper - 100.0, spans.own)
+    return away.less(100.0)
 
 
 def _outside(values: FloatArray, scale: Scale) -> NDArray[np.bool_]:

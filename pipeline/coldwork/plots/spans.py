@@ -13,7 +13,7 @@ from coldwork.plots.columns import FloatArray, Frames, aligned, frame_of, number
 from coldwork.plots.context import Context
 from coldwork.plots.style import GREY, INK, PAPER, SMALL, Dashes, Mark
 
-__all__ = ["MEAN", "Spans", "draw_spans", "span_key", "spans_of", "why_missing"]
+__all__ = ["MEAN", "Spans", "draw_spans", "span_key", "spans_of", "spans_with_part", "why_missing"]
 
 MEAN = Mark("o", 4.2, INK, PAPER, 0.5)
 
@@ -63,19 +63,23 @@ class Spans:
         The value, NaN where there is none. [any unit]
     lower, upper : ndarray, shape (n,)
         Ends of the interval, NaN where open or unknown. [unit of `value`]
-    own : ndarray, shape (n,)
-        u_own / u, the part of the interval that is the coupon's own. [1]
+    own_lower, own_upper : ndarray, shape (n,)
+        Ends of the coupon's own part of it, NaN where that is unknown. [unit of `value`]
     """
 
     value: FloatArray
     lower: FloatArray
     upper: FloatArray
-    own: FloatArray
+    own_lower: FloatArray
+    own_upper: FloatArray
 
     def times(self, factor: FloatArray | float) -> "Spans":
         """Give them in another unit."""
-        scaled = (self.value * factor, self.lower * factor, self.upper * factor)
-        return Spans(*scaled, self.own)
+        return Spans(*(getattr(self, f.name) * factor for f in fields(self)))
+
+    def less(self, amount: float) -> "Spans":
+        """Give them from another zero."""
+        return Spans(*(getattr(self, f.name) - amount for f in fields(self)))
 
     def at(self, places: NDArray[np.intp]) -> "Spans":
         """Give those of some coupons."""
@@ -109,10 +113,23 @@ def spans_of(frames: Frames, ids: Sequence[str], column: str) -> Spans:
     ends = [numbers(coupons, f"{end}_{column}") for end in ("lower", "upper", "u_own", "u")]
     if f"lower_{column}" not in coupons:
         ends = _from_quantities(frames, ids, column)
-    lower, upper, u_own, u = ends
+    return spans_with_part(value, *ends)
+
+
+def spans_with_part(
+    value: FloatArray, lower: FloatArray, upper: FloatArray, u_own: FloatArray, u: FloatArray
+) -> Spans:
+    """Give intervals and in each of them the part that is the coupon's own; all of shape (n,)."""
     with np.errstate(divide="ignore", invalid="ignore"):
-        own = np.clip(u_own / u, 0.0, 1.0)
-    return Spans(value, lower, upper, own)
+        share = np.clip(u_own / u, 0.0, 1.0)
+    return Spans(value, lower, upper, _part(value, lower, share), _part(value, upper, share))
+
+
+def _part(value: FloatArray, end: FloatArray, share: FloatArray) -> FloatArray:
+    """Give the end of the own part: that share of the way, in logarithms where ends are skewed."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        ratio = np.exp(share * np.log(end / value))
+        return np.where((end > 0.0) & (value > 0.0), value * ratio, value + share * (end - value))
 
 
 def draw_spans(
@@ -160,9 +177,9 @@ def draw_spans(
         mark.put(axes, *pair, raster=crowd, scale=SMALL if crowd else 1.0)
 
     lines(bounded, left, right, look.total)
-    own = bounded & np.isfinite(spans.own)
-    thick_left = spans.value - spans.own * (spans.value - left)
-    thick_right = spans.value + spans.own * (right - spans.value)
+    own = bounded & (np.isfinite(spans.own_lower) | np.isfinite(spans.own_upper))
+    thick_left = np.clip(np.where(np.isfinite(spans.own_lower), spans.own_lower, low), low, high)
+    thick_right = np.clip(np.where(np.isfinite(spans.own_upper), spans.own_upper, high), low, high)
     lines(own, thick_left, thick_right, look.own)
     lines(spans.one_sided, left, right, look.one_sided)
     marks(_open_end(upright, up=False), spans.one_sided, right)
@@ -184,7 +201,7 @@ def span_key(
     if (known & np.isfinite(spans.upper)).any():
         cap = Mark("", 0.0) if crowd else _CAPS[False]
         found.append((look.total.sample(cap), f"{context.percent} interval, own and shared"))
-        found.append((look.own.sample(), "own part of it: interval × u_own / u"))
+        found.append((look.own.sample(), "own part of it, in the ratio u_own / u"))
     if (known & (np.isnan(spans.upper) ^ np.isnan(spans.lower))).any() and not crowd:
         found.append((look.total.sample(_open_end(upright, up=True)), "interval without that end"))
     if spans.one_sided.any():
