@@ -115,7 +115,15 @@ def main() -> None:
         print(f"{coupons} coupons, {coupons * INDENTS} indents, {size:.0f} MB in, out as {forms}")
         into = Path(scratch) / "results"
         ours = [sys.executable, "-m", "coldwork", "process", str(folder), "--into", str(into)]
-        ours += ["--no-plots", "--accept", "set-aside", "--accept", "errors"]
+        ours += [
+            "--no-plots",
+            "--accept",
+            "set-aside",
+            "--accept",
+            "errors",
+            "--accept",
+            "incomplete",
+        ]
         contestants = {
             "coldwork": ours,
             "bare (polars)": [sys.executable, "-c", BARE, str(folder), forms, str(COLUMNS)],

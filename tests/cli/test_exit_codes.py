@@ -1,5 +1,6 @@
 """How commands end: the code, the words, and what is left behind."""
 
+import json
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any
@@ -39,7 +40,7 @@ def test_something_asks_for_a_person(
     assert result.exit_code == 3
     assert word in result.stderr
     assert process(cw, folder, "--into", tmp_path / "b", "--accept", word).exit_code == 0
-    others = {"non-conforming", "undecided", "set-aside", "errors"} - {word}
+    others = {"non-conforming", "undecided", "set-aside", "errors", "incomplete"} - {word}
     flags = [x for other in sorted(others) for x in ("--accept", other)]
     assert process(cw, folder, "--into", tmp_path / "c", *flags).exit_code == 3
 
@@ -49,8 +50,55 @@ def test_an_error_asks_for_a_person(cw: Cw, batch: Batch, tmp_path: Path) -> Non
     (folder / "coupons.csv").write_text("coupon_id\nA1\nA2\nA3\n", encoding="utf-8")  # A3 unread
     result = process(cw, folder, "--into", tmp_path / "out")
     assert result.exit_code == 3
-    assert "1 errors" in result.stderr
+    assert "3 coupons; 10 readings read" in result.stderr
+    assert "asks for a person: 1 with errors\n" in result.stderr
+    assert "1 error (1 no-readings)" in result.stderr
     assert process(cw, folder, "--into", tmp_path / "b", "--accept", "errors").exit_code == 0
+
+
+def test_a_batch_without_any_density_asks_for_a_person(
+    cw: Cw, batch: Batch, tmp_path: Path
+) -> None:
+    folder = batch()
+    sheet = folder / "batch.toml"
+    text = sheet.read_text(encoding="utf-8").replace("value = 50.0", "value = 5000.0")
+    sheet.write_text(text, encoding="utf-8")
+    result = process(cw, folder, "--into", tmp_path / "out")
+    assert result.exit_code == 3
+    assert "4 warnings (2 below-baseline, 2 baseline-contradicted)" in result.stderr
+    assert "asks for a person: 2 incomplete" in result.stderr
+    fine = ["--accept", "incomplete", "--json"]
+    result = process(cw, folder, "--into", tmp_path / "b", *fine)
+    assert result.exit_code == 0
+    (told,) = json.loads(result.stdout)
+    assert told["flags"]["warning"] == {"below-baseline": 2, "baseline-contradicted": 2}
+    assert told["attention"] == {"incomplete": 2}
+
+
+def test_a_lone_reading_without_a_pool_asks_for_a_person(
+    cw: Cw, batch: Batch, tmp_path: Path
+) -> None:
+    folder = batch()
+    (folder / "coupons.csv").write_text("coupon_id\nA1\n", encoding="utf-8")
+    row = "coupon_id,indent_no,force_n,hardness\nA1,1,98.07,90\n"
+    (folder / "indents.csv").write_text(row, encoding="utf-8")
+    result = process(cw, folder, "--into", tmp_path / "out")  # a density without an interval
+    assert result.exit_code == 3
+    assert "1 coupon; 1 reading read, 1 used" in result.stderr
+    assert "asks for a person: 1 incomplete" in result.stderr
+
+
+def test_results_do_not_stand_among_inputs(cw: Cw, batch: Batch, tmp_path: Path) -> None:
+    folder = batch()
+    before = sorted(folder.iterdir())
+    (tmp_path / "link").symlink_to(folder, target_is_directory=True)
+    for into in (folder, folder / "results", tmp_path / "link" / "deep" / "er"):
+        result = process(cw, folder, "--into", into)
+        assert result.exit_code == 2
+        assert "among inputs" in result.stderr
+    result = cw("compare", folder, "--vary", "structure.kind=uniform", "--into", folder / "x")
+    assert result.exit_code == 2
+    assert sorted(folder.iterdir()) == before
 
 
 @pytest.mark.parametrize(
@@ -185,6 +233,7 @@ def test_an_internal_error_is_one_and_says_so(
     result = process(cw, batch(), "--into", tmp_path / "out")
     assert result.exit_code == 1
     assert "internal error" in result.stderr
+    assert "nothing half-written was left behind" in result.stderr
     assert not (tmp_path / "out").exists()
 
 
@@ -206,3 +255,4 @@ def test_an_internal_error_in_one_batch_does_not_hide_the_others(
     result = process(cw, first, second, "--into", tmp_path / "out")
     assert result.exit_code == 1
     assert str(tmp_path / "out" / "first") in result.stdout
+    assert "nothing was written" not in result.stderr

@@ -366,7 +366,8 @@ def check_results(files: Files, results: Path) -> None:
 
 
 ACCEPT_ALL: Final = [
-    f"--accept={word}" for word in ("set-aside", "undecided", "non-conforming", "errors")
+    f"--accept={word}"
+    for word in ("set-aside", "undecided", "non-conforming", "errors", "incomplete")
 ]
 
 

@@ -10,12 +10,16 @@ import typer
 
 from coldwork.cli.reporting import note, reporting, show, show_json
 from coldwork.errors import ColdworkError, Exit
+from coldwork.statistics.rounding import counted
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from coldwork.jobs.run import Outcome
 
 __all__ = ["process"]
 
+_RULES_NAMED: Final = 3  # of one level in the words for a person
 _QUIET: Final = 5.0  # between two lines of progress that are not written over [s]
 
 
@@ -26,6 +30,7 @@ class Accepted(StrEnum):
     UNDECIDED = "undecided"
     NON_CONFORMING = "non-conforming"
     ERRORS = "errors"
+    INCOMPLETE = "incomplete"
 
 
 def process(
@@ -40,7 +45,10 @@ def process(
     ] = None,
     accept: Annotated[
         list[Accepted] | None,
-        typer.Option(help="What is fine and need not end with 3; may be repeated."),
+        typer.Option(
+            help="What is fine and need not end with 3; may be repeated. An incomplete coupon "
+            "has no density, or no interval of it."
+        ),
     ] = None,
     plots: Annotated[bool, typer.Option("--plots/--no-plots", help="Draw the QC plots.")] = True,
     json: Annotated[bool, typer.Option("--json", help="Outcome for a program to read.")] = False,
@@ -90,17 +98,32 @@ def _graver(a: Exit, b: Exit) -> Exit:
 
 def _words(outcome: "Outcome", asks: set[str]) -> str:
     counts = [
-        f"{outcome.coupons} coupons",
-        f"{outcome.readings_read} readings read, {outcome.readings_used} used, "
+        counted(outcome.coupons, "coupon"),
+        f"{counted(outcome.readings_read, 'reading')} read, {outcome.readings_used} used, "
         f"{outcome.readings_set_aside} set aside",
     ]
     if any(outcome.decisions.values()):
         counts.append(", ".join(f"{n} {word}" for word, n in outcome.decisions.items()))
-    lines = [f"{outcome.batch_id}: " + "; ".join(counts) + f"; plots: {outcome.plots}"]
+    flags = ", ".join(_flags(level, rules) for level, rules in outcome.flags.items())
+    counts += [f"flags: {flags or 'none'}", f"plots: {outcome.plots}"]
+    lines = [f"{outcome.batch_id}: " + "; ".join(counts)]
     if asks:
-        told = ", ".join(f"{outcome.attention[word]} {word}" for word in sorted(asks))
+        told = ", ".join(_asking(word, outcome.attention[word]) for word in sorted(asks))
         lines.append(f"{outcome.batch_id}: asks for a person: {told}")
     return "\n".join(lines)
+
+
+def _asking(word: str, n: int) -> str:
+    return f"{n} {word}" if word != "errors" else f"{n} with errors"
+
+
+def _flags(level: str, rules: "Mapping[str, int]") -> str:
+    """Count the findings of a level, and name the rules that have most of them."""
+    n = sum(rules.values())
+    words = f"{n} of information" if level == "information" else counted(n, level)
+    named = [f"{count} {rule}" for rule, count in list(rules.items())[:_RULES_NAMED]]
+    more = ", ..." if len(rules) > len(named) else ""
+    return f"{words} ({', '.join(named)}{more})"
 
 
 def _document(outcome: "Outcome") -> dict[str, object]:
@@ -113,6 +136,7 @@ def _document(outcome: "Outcome") -> dict[str, object]:
             "used": outcome.readings_used,
             "set_aside": outcome.readings_set_aside,
         },
+        "flags": {level: dict(rules) for level, rules in outcome.flags.items()},
         "decisions": dict(outcome.decisions),
         "attention": outcome.attention,
         "plots": outcome.plots,

@@ -70,8 +70,8 @@ def _internal(error: Exception) -> str:
     place = f"{Path(ours[-1].filename).name}, line {ours[-1].lineno}" if ours else "?"
     return (
         f"internal error: {type(error).__name__}: {error}\n"
-        f"at {place}; nothing was written. This is a fault of coldwork, not of the batch: "
-        "please report it with the batch sheet."
+        f"at {place}; nothing half-written was left behind, and what was finished before stays. "
+        "This is a fault of coldwork, not of the batch: please report it with the batch sheet."
     )
 
 

@@ -1,5 +1,6 @@
 """From a batch folder to one row per coupon: everything before the chain."""
 
+from collections import Counter
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
@@ -30,6 +31,7 @@ from coldwork.judge.printed import judge_printed
 from coldwork.reduce.reduced import Reduced
 from coldwork.reduce.stream import Byproducts, reduce_batch
 from coldwork.reduce.tensile import CurveKeep, Curves, flow_of_curves
+from coldwork.rules import RULES, Level
 from coldwork.rules.bits import with_error
 from coldwork.rules.coupon import SCATTER
 from coldwork.rules.findings import Findings
@@ -105,6 +107,18 @@ class Gathered:
         if self._beside is not None:
             found = found | with_error(self._beside.findings.bits)
         return int(np.count_nonzero(found))
+
+    @property
+    def flag_counts(self) -> dict[str, dict[str, int]]:
+        """How many findings each rule has: by level, and of these the most findings first."""
+        counts = Counter(self.findings.counts)
+        if self._beside is not None:
+            counts.update(self._beside.findings.counts)
+        told: dict[Level, dict[str, int]] = {level: {} for level in Level}
+        levels = {rule.id: rule.level for rule in RULES}
+        for rule, n in counts.most_common():
+            told[levels[rule]][rule] = n
+        return {level.value: rules for level, rules in told.items() if rules}
 
     def set_aside_table(self) -> pa.Table:
         """Give all that was set aside, in the columns of out/set_aside."""

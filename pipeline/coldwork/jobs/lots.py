@@ -17,9 +17,11 @@ from coldwork.jobs.tables import WITH_UNCERTAINTY, lots_table
 from coldwork.judge.decisions import DECISIONS, NONE, decision_texts
 from coldwork.judge.lots import lot_decision
 from coldwork.results.tables import TableWriter
+from coldwork.rules.bits import emptied
 
 __all__ = ["Lots"]
 
+_DENSITY: Final = "dislocation_density_per_m2"
 _BETWEEN: Final = "\x1f"  # a control character, which no cell of coupons.csv may hold
 
 
@@ -30,6 +32,11 @@ class Lots:
     ----------
     batch : Gathered
         The batch.
+
+    Attributes
+    ----------
+    incomplete : int
+        Coupons so far that leave without a density or without its interval, errors aside.
     """
 
     def __init__(self, batch: Gathered) -> None:
@@ -38,6 +45,7 @@ class Lots:
         pooled = batch.method.repeatability == "pooled"
         self._sums = LotSums(self._lot, len(self._keys), pooled=pooled)
         self._code = np.full(len(batch.coupons), NONE, dtype=np.int8)
+        self.incomplete = 0
         self._names: tuple[str, ...] = ()
 
     def add(self, part: Sliced) -> None:
@@ -46,6 +54,7 @@ class Lots:
         wanted = {name: part.figures[name].result for name in self._names}
         self._sums.add(part.rows, wanted, part.spreads, part.evaluated.start.grain_size)
         self._code[part.rows] = part.worst.code
+        self.incomplete += int(np.count_nonzero(_incomplete(part)))
 
     def write(self, writer: TableWriter) -> dict[str, int]:
         """Write ``lots.csv`` and count the coupons by decision.
@@ -77,6 +86,14 @@ class Lots:
         return {
             word: int(np.count_nonzero(self._code == code)) for code, word in enumerate(DECISIONS)
         }
+
+
+def _incomplete(part: Sliced) -> NDArray[np.bool_]:
+    """Say which coupons lack a density or its interval, though no error took it away."""
+    density = part.figures[_DENSITY]
+    ends = density.ends
+    lacking = np.isnan(density.result.value) | np.isnan(ends.lower) | np.isnan(ends.upper)
+    return lacking & ~emptied(_DENSITY, part.batch.findings.bits[part.rows])
 
 
 def _grouped(

@@ -24,7 +24,7 @@ from coldwork.results.documents import dump
 from coldwork.results.lines import LineWriter
 from coldwork.results.records import Common, Slice, build, seal
 from coldwork.results.tables import TableWriter
-from coldwork.results.target import open_target
+from coldwork.results.target import open_target, refuse_among
 
 __all__ = ["Outcome", "record_again", "run"]
 
@@ -52,6 +52,10 @@ class Outcome:
         Coupons by decision.
     errors : int
         Coupons with a finding that empties something.
+    incomplete : int
+        Coupons that leave without a density or without its interval, errors aside.
+    flags : mapping of str to mapping of str to int
+        Findings by level and rule.
     plots : str
         What was drawn, or why nothing was.
     """
@@ -64,6 +68,8 @@ class Outcome:
     readings_set_aside: int
     decisions: Mapping[str, int]
     errors: int
+    incomplete: int
+    flags: Mapping[str, Mapping[str, int]]
     plots: str
 
     @property
@@ -74,6 +80,7 @@ class Outcome:
             "undecided": self.decisions["undecided"],
             "non-conforming": self.decisions["non-conforming"],
             "errors": self.errors,
+            "incomplete": self.incomplete,
         }
         return {word: count for word, count in asking.items() if count}
 
@@ -111,6 +118,8 @@ def run(
 
     Raises
     ------
+    UsageError
+        If results would come to stand among the batch's own files.
     BatchRefused
         If the batch cannot be trusted as a whole; nothing is written.
     ResultsNotWritten
@@ -119,6 +128,7 @@ def run(
     tell = progress or _silent
     started = datetime.now(UTC)
     method = read_method(folder)
+    refuse_among(folder, into / method.batch_id)
     with open_target(into, method.batch_id, replace=replace, reason=reason) as target:
         full = method.detail == "full"
         tell("reading")
@@ -151,6 +161,8 @@ def run(
         readings_set_aside=batch.readings_set_aside,
         decisions=decisions,
         errors=batch.errors,
+        incomplete=lots.incomplete,
+        flags=batch.flag_counts,
         plots=drawing.said,
     )
 

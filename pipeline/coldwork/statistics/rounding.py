@@ -11,13 +11,18 @@ from decimal import Decimal, localcontext
 from math import isfinite
 from typing import Final
 
-__all__ = ["rounded", "with_uncertainty"]
+__all__ = ["counted", "rounded", "with_uncertainty"]
 
 _DIGITS_OF_U: Final = 2
 _DIGITS_ALONE: Final = 4  # of a value whose uncertainty is not known
 _LARGE: Final = 5  # from 1e5 on with an exponent
 _SMALL: Final = -3  # and below 1e-3
 _ALL_DIGITS: Final = 700  # of the largest double down to the place of the smallest
+
+
+def counted(n: int, noun: str) -> str:
+    """Write a number with its noun, such as ``1 coupon`` or ``5 coupons``."""
+    return f"{n} {noun}" if n == 1 else f"{n} {noun}s"
 
 
 def rounded(value: float, u: float | None) -> tuple[str, str]:
