@@ -153,6 +153,15 @@ def write(tmp_path: Path, *, full: bool = True) -> tuple[Path, list[dict[str, An
             )
         )  # fmt: skip
         coupons.close()
+        decisions = target.table("decisions", ("csv",))
+        decisions.write(
+            table_of(
+                "decisions", 1, coupon_id=NAMES[:1], limit_id=["window"], rule=["guarded"],
+                quantity=["stored_energy_j_per_g"], lower_limit=[0.02], basis=["own"],
+                coverage=[0.95], decision=["undecided"], reason=["not clear of the limit"],
+            )
+        )  # fmt: skip
+        decisions.close()
         target.commit(manifest_of(batch))
     return tmp_path / "results" / "B-1", records
 
@@ -240,7 +249,9 @@ def test_a_folder_without_results_is_told(results: Path, tmp_path: Path) -> None
     ("name", "old", "new", "said"),
     [
         ("records.jsonl", b"475.2", b"475.3", "is not the one that coupons was written with"),
-        ("method.json", b"0.15", b"0.16", "method.json was changed"),
+        ("method.json", b"0.15", b"0.16", r"method\.json: was changed"),
+        ("coupons.csv", b"81.33", b"18.33", r"coupons\.csv: was changed .* Fetch the results"),
+        ("decisions.csv", b"undecided", b"conforming", r"decisions\.csv: was changed"),
     ],
 )
 def test_what_was_changed_afterwards_is_not_told_as_true(

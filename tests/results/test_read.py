@@ -1,5 +1,6 @@
 """Results read back: the same values, the same names, and digests that can be checked."""
 
+import hashlib
 import json
 from collections.abc import Callable
 from pathlib import Path
@@ -14,11 +15,24 @@ from hypothesis import strategies as st
 from coldwork import contracts
 from coldwork.contracts.frames import check
 from coldwork.errors import UsageError
-from coldwork.results.read import read_results, read_table, record_line, verify
+from coldwork.results.read import read_results, read_table, verify
 from coldwork.results.target import open_target
 
 TableOf = Callable[..., pa.Table]
 NAMES = ["=7/A ä<b>", "NA", "0012", "nan", "-1", "1e3", "null"]
+
+
+def record_of(name: str) -> bytes:
+    return json.dumps({"coupon_id": name}).encode()
+
+
+def signed(folder: Path, name: str) -> None:
+    """Make a file the one that the manifest knows."""
+    manifest = json.loads((folder / "manifest.json").read_bytes())
+    data = (folder / name).read_bytes()
+    (entry,) = (x for x in manifest["outputs"] if x["path"] == name)
+    entry["sha256"] = hashlib.sha256(data).hexdigest()
+    (folder / "manifest.json").write_text(json.dumps(manifest))
 
 
 def write(into: Path, manifest: dict[str, Any], forms: tuple[str, ...], **tables: pa.Table) -> Path:
@@ -28,7 +42,7 @@ def write(into: Path, manifest: dict[str, Any], forms: tuple[str, ...], **tables
             writer.write(table)
             writer.close()
         records = target.lines("records.jsonl")
-        records.write([json.dumps({"coupon_id": name}).encode() for name in NAMES])
+        records.write([record_of(name) for name in NAMES])
         records.close()
         target.write("method.json", b"{}")
         return target.commit(manifest)
@@ -38,7 +52,10 @@ def write(into: Path, manifest: dict[str, Any], forms: tuple[str, ...], **tables
 def coupons(table_of: TableOf) -> pa.Table:
     n = len(NAMES)
     hardness = np.array([81.3, np.nan, 1 / 3, 5e-324, 1.7e308, 1e22, 97.0])
-    return table_of("coupons", n, coupon_id=NAMES, lot_id=NAMES[::-1], hardness=hardness)
+    seals = [hashlib.sha256(record_of(name)).hexdigest() for name in NAMES]
+    return table_of(
+        "coupons", n, coupon_id=NAMES, lot_id=NAMES[::-1], hardness=hardness, record_sha256=seals
+    )
 
 
 @pytest.mark.parametrize("forms", [("csv",), ("parquet",), ("csv", "parquet")])
@@ -69,8 +86,29 @@ def test_records_are_found_by_name(
         assert results.record(name) == {"coupon_id": name}
     with pytest.raises(UsageError, match="no coupon is called '12'"):
         results.record("12")
+    path = results.folder / "records.jsonl"
+    path.write_bytes(path.read_bytes().replace(b"0012", b"0013"))
+    with pytest.raises(UsageError, match=r"records\.jsonl: the record of coupon '0012' is not"):
+        results.record("0012")
+    path.unlink()
     with pytest.raises(UsageError, match="holds no record"):
-        record_line(results.folder, len(NAMES))
+        results.record("0012")
+
+
+def test_a_table_that_was_edited_is_not_served(
+    tmp_path: Path, manifest: dict[str, Any], coupons: pa.Table
+) -> None:
+    folder = write(tmp_path, manifest, ("csv", "parquet"), coupons=coupons)
+    path = folder / "coupons.csv"
+    path.write_bytes(path.read_bytes().replace(b"81.3", b"81.4"))
+    with pytest.raises(UsageError, match=r"coupons\.csv: was changed .* Fetch the results"):
+        read_results(folder).frames["coupons"]
+    path.rename(folder / "lots.csv")
+    with pytest.raises(UsageError, match=r"lots\.csv: is not in the manifest"):
+        read_table(folder, "lots")
+    (folder / "method.json").write_text('{"laws": {}}')
+    with pytest.raises(UsageError, match=r"method\.json: was changed after it was written"):
+        read_results(folder)
 
 
 def test_untouched_results_verify(
@@ -102,12 +140,16 @@ def test_a_folder_without_results_is_told(tmp_path: Path) -> None:
         read_results(tmp_path)
 
 
-def test_a_table_that_lost_its_columns_is_told(tmp_path: Path) -> None:
-    (tmp_path / "coupons.csv").write_text("coupon_id,hardness\nA,many\n")
+def test_a_table_that_lost_its_columns_is_told(
+    tmp_path: Path, manifest: dict[str, Any], coupons: pa.Table
+) -> None:
+    folder = write(tmp_path, manifest, ("csv",), coupons=coupons)
+    (folder / "coupons.csv").write_text("coupon_id,hardness\nA,many\n")
+    signed(folder, "coupons.csv")
     with pytest.raises(UsageError, match=r"coupons\.csv: does not follow its contract"):
-        read_table(tmp_path, "coupons")
+        read_table(folder, "coupons")
     with pytest.raises(UsageError, match="have no table lots"):
-        read_table(tmp_path, "lots")
+        read_table(folder, "lots")
 
 
 def test_columns_that_a_later_version_adds_are_passed_over(
@@ -117,6 +159,7 @@ def test_columns_that_a_later_version_adds_are_passed_over(
     path = folder / "coupons.csv"
     lines = path.read_text().splitlines()
     path.write_text("\n".join(f"{line},{i if i else 'more'}" for i, line in enumerate(lines)))
+    signed(folder, "coupons.csv")
     table = read_table(folder, "coupons")
     assert tuple(table.column_names) == contracts.load("out/coupons").columns
     assert table["coupon_id"].to_pylist() == NAMES

@@ -4,8 +4,6 @@ Full results hold a record of each coupon, sealed by a digest in ``coupons``. Fo
 summary the coupon is computed again from the source files, which must be the same.
 """
 
-import hashlib
-import json
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
@@ -18,7 +16,7 @@ import pyarrow.compute as pc
 from coldwork.errors import UsageError
 from coldwork.results.account import HEADING, account
 from coldwork.results.disk import shown
-from coldwork.results.read import blocks, document, record_line, sha256_of
+from coldwork.results.read import blocks, document, genuine_table, sealed_record, sha256_of
 
 __all__ = ["Retrace", "Trace", "trace"]
 
@@ -94,12 +92,13 @@ def trace(
     Raises
     ------
     UsageError
-        If the folder holds no results or no such coupon, if the record or the method is
-        not the one that was written, or if a source file of a summary has changed.
+        If the folder holds no results or no such coupon, if coupons, decisions, the record or
+        the method is not the one that was written, or if a source file of a summary has changed.
     """
     results = Path(results)
     manifest = document(results, "manifest")
     method = document(results, "method")
+    genuine_table(results, "decisions")  # a record holds them: they must not say otherwise
     place, row = _find(results, coupon)
     if row["record_sha256"]:
         record = _sealed_record(results, place, row)
@@ -144,15 +143,7 @@ def _candidates(names: "Sequence[pa.Array[Any]]", coupon: str) -> list[str]:
 
 
 def _sealed_record(results: Path, place: int, row: Mapping[str, Any]) -> dict[str, Any]:
-    line = record_line(results, place)
-    if hashlib.sha256(line).hexdigest() != row["record_sha256"]:
-        message = (
-            f"{shown(results)}: the record of coupon {row['coupon_id']!r} is not the one that "
-            "coupons was written with: records.jsonl or coupons was changed. Process the batch "
-            "again, or fetch the results from where they are kept."
-        )
-        raise UsageError(message)
-    record: dict[str, Any] = json.loads(line)
+    record = sealed_record(results, place, row["coupon_id"], row["record_sha256"])
     if sha256_of(results / "method.json") != record["method_sha256"]:
         message = (
             f"{shown(results)}: method.json was changed after the record of coupon "

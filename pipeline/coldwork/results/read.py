@@ -1,11 +1,14 @@
-"""Results read back: tables by their contracts, text as it was, digests on request.
+"""Results read back: tables by their contracts, text as it was, and only what was written.
+
+Every table and document is held against its digest in the manifest before it is read, and
+every record against its digest in ``coupons``.
 
 Only `Results.frames` imports pandas; looking at one coupon or checking digests does not.
 """
 
 import hashlib
 import json
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import islice
@@ -29,15 +32,19 @@ __all__ = [
     "Results",
     "blocks",
     "document",
+    "genuine_table",
     "read_results",
     "read_table",
-    "record_line",
+    "sealed_record",
     "sha256_of",
     "verify",
 ]
 
 _BLOCK: Final = 8 << 20  # bytes of CSV at a time; no row is longer
 _RECORDS: Final = "records.jsonl"
+_MANIFEST: Final = "manifest.json"
+_UNKNOWN: Final = "is not in the manifest"
+_MEND: Final = "Fetch the results from where they are kept, or process the batch again."
 
 
 @dataclass(frozen=True)
@@ -62,9 +69,11 @@ class Results:
     manifest: dict[str, Any]
 
     @cached_property
-    def _places(self) -> dict[str, int]:
-        names = (block.column("coupon_id").to_pylist() for block in blocks(self.folder, "coupons"))
-        return {str(name): i for i, name in enumerate(name for some in names for name in some)}
+    def _seals(self) -> dict[str, tuple[int, str]]:
+        coupons = read_table(self.folder, "coupons")
+        names, seals = (coupons.column(x).to_pylist() for x in ("coupon_id", "record_sha256"))
+        pairs = zip(names, seals, strict=True)
+        return {str(name): (row, str(seal)) for row, (name, seal) in enumerate(pairs)}
 
     def record(self, coupon_id: str) -> dict[str, Any]:
         """Give a coupon's record.
@@ -72,13 +81,13 @@ class Results:
         Raises
         ------
         UsageError
-            If there is no such coupon, or the results have no records.
+            If there is no such coupon, the results have no records, or this one was changed.
         """
-        if coupon_id not in self._places:
+        if coupon_id not in self._seals:
             message = f"{shown(self.folder)}: no coupon is called {coupon_id!r}"
             raise UsageError(message)
-        record: dict[str, Any] = json.loads(record_line(self.folder, self._places[coupon_id]))
-        return record
+        row, seal = self._seals[coupon_id]
+        return sealed_record(self.folder, row, coupon_id, seal)
 
 
 def read_results(folder: Path) -> Results:
@@ -97,7 +106,8 @@ def read_results(folder: Path) -> Results:
     Raises
     ------
     UsageError
-        If the folder does not hold results.
+        If the folder does not hold results. Asking for a table or a record that was changed
+        after it was written is refused too.
     """
     folder = Path(folder)
     manifest = document(folder, "manifest")
@@ -110,7 +120,8 @@ def document(folder: Path, name: str) -> dict[str, Any]:
     Raises
     ------
     UsageError
-        If it is not there or is not JSON; the message names results nearby.
+        If it is not there or is not JSON, where the message names results nearby; or if
+        ``method.json`` was changed after it was written.
     """
     path = folder / f"{name}.json"
     try:
@@ -123,6 +134,8 @@ def document(folder: Path, name: str) -> dict[str, Any]:
     if not isinstance(content, dict):
         message = f"{shown(path)}: is no document of coldwork"
         raise UsageError(message)
+    if path.name != _MANIFEST:
+        _refuse_changed(folder, [path])
     return content
 
 
@@ -144,7 +157,7 @@ def read_table(folder: Path, name: str) -> pa.Table:
     Raises
     ------
     UsageError
-        If the results do not have it.
+        If the results do not have it, or it was changed after it was written.
     """
     return pa.Table.from_batches(list(blocks(folder, name)), _types(name))
 
@@ -155,9 +168,10 @@ def blocks(folder: Path, name: str) -> Iterator[pa.RecordBatch]:
     Raises
     ------
     UsageError
-        If the results do not have it, or it does not follow its contract.
+        If the results do not have it, it was changed after it was written, or it does not
+        follow its contract.
     """
-    path = _table_path(folder, name)
+    path = genuine_table(folder, name)
     types = _types(name)
     try:
         if path.suffix == ".parquet":
@@ -173,14 +187,61 @@ def blocks(folder: Path, name: str) -> Iterator[pa.RecordBatch]:
         raise UsageError(message) from problem
 
 
-def record_line(folder: Path, row: int) -> bytes:
-    """Give the stored line of the coupon in a row of ``coupons``, without its line end.
+def genuine_table(folder: Path, name: str) -> Path:
+    """Give the file to read a table from, all its forms being as they were written.
+
+    Parameters
+    ----------
+    folder : Path
+        The results.
+    name : str
+        Of the table, such as ``coupons``.
 
     Raises
     ------
     UsageError
-        If the results have no such line.
+        If the results do not have it, or one of its files is not the one in the manifest.
     """
+    paths = _paths(folder, name)
+    if not paths:
+        message = f"{shown(folder)}: these results have no table {name}"
+        raise UsageError(message)
+    if (folder / _MANIFEST).is_file():  # folders of compare and anneal have none
+        _refuse_changed(folder, paths)
+    return paths[0]
+
+
+def sealed_record(folder: Path, row: int, coupon_id: str, seal: str) -> dict[str, Any]:
+    """Give the record of the coupon in a row of ``coupons``.
+
+    Parameters
+    ----------
+    folder : Path
+        The results.
+    row : int
+        Place of the coupon.
+    coupon_id : str
+        Its name.
+    seal : str
+        SHA-256 of its record, as ``coupons`` has it.
+
+    Raises
+    ------
+    UsageError
+        If the results have no such record, or it is not the one that `seal` was taken of.
+    """
+    line = _record_line(folder, row)
+    if hashlib.sha256(line).hexdigest() != seal:
+        message = (
+            f"{shown(folder / _RECORDS)}: the record of coupon {coupon_id!r} is not the one that "
+            f"coupons was written with: it was changed after it was written. {_MEND}"
+        )
+        raise UsageError(message)
+    record: dict[str, Any] = json.loads(line)
+    return record
+
+
+def _record_line(folder: Path, row: int) -> bytes:
     path = folder / _RECORDS
     if path.is_file():
         with path.open("rb") as file:
@@ -218,14 +279,30 @@ def verify(folder: Path) -> list[str]:
     outputs = document(folder, "manifest")["outputs"]
     problems = []
     for entry in outputs:
-        path = folder / entry["path"]
-        if not path.is_file():
-            problems.append(f"{entry['path']}: is missing")
-        elif sha256_of(path) != entry["sha256"]:
-            problems.append(f"{entry['path']}: was changed after it was written")
+        fault = _fault(folder / entry["path"], entry["sha256"])
+        if fault:
+            problems.append(f"{entry['path']}: {fault}")
     known = {"manifest.json", *(entry["path"] for entry in outputs)}
     files = (p.relative_to(folder).as_posix() for p in sorted(folder.rglob("*")) if p.is_file())
-    return problems + [f"{name}: is not in the manifest" for name in files if name not in known]
+    return problems + [f"{name}: {_UNKNOWN}" for name in files if name not in known]
+
+
+def _fault(path: Path, sha256: str | None) -> str:
+    """Say what is wrong with a file that has a digest in the manifest; empty if nothing is."""
+    if not path.is_file():
+        return "is missing"
+    if sha256 is None:
+        return _UNKNOWN
+    return "" if sha256_of(path) == sha256 else "was changed after it was written"
+
+
+def _refuse_changed(folder: Path, paths: Sequence[Path]) -> None:
+    digests = {x["path"]: x["sha256"] for x in document(folder, "manifest").get("outputs", ())}
+    for path in paths:
+        fault = _fault(path, digests.get(path.name))
+        if fault:
+            message = f"{shown(path)}: {fault}, so nothing is told from it. {_MEND}"
+            raise UsageError(message)
 
 
 class _Frames(Mapping[str, "pd.DataFrame"]):
@@ -257,14 +334,6 @@ class _Frames(Mapping[str, "pd.DataFrame"]):
 def _paths(folder: Path, name: str) -> list[Path]:
     """Files that hold a table, the one to read first."""
     return [p for p in (folder / f"{name}.parquet", folder / f"{name}.csv") if p.is_file()]
-
-
-def _table_path(folder: Path, name: str) -> Path:
-    paths = _paths(folder, name)
-    if not paths:
-        message = f"{shown(folder)}: these results have no table {name}"
-        raise UsageError(message)
-    return paths[0]
 
 
 def _types(name: str) -> pa.Schema:
