@@ -195,7 +195,7 @@ def _fill(
                 _BEYOND[end].put(axes, np.full(int(out.sum()), scale.inside(end)), rows[out] + _UP)
     shown = spans.at(page.places).times(scale.factor)
     lines = np.arange(len(page.places), dtype=np.float64) + _DOWN
-    draw_spans(axes, shown, lines, crowd=page.crowd)
+    draw_spans(axes, shown, lines, crowd=page.crowd, own_width=4.6)
     known = np.isfinite(shown.value)
     page.put(MEAN, shown.value[known], lines[known], panel)
 

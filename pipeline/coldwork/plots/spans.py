@@ -1,7 +1,7 @@
 """A value with its interval, and the own part of that interval."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 from matplotlib.artist import Artist
@@ -133,7 +133,13 @@ def _part(value: FloatArray, end: FloatArray, share: FloatArray) -> FloatArray:
 
 
 def draw_spans(
-    axes: Axes, spans: Spans, places: FloatArray, *, upright: bool = False, crowd: bool = False
+    axes: Axes,
+    spans: Spans,
+    places: FloatArray,
+    *,
+    upright: bool = False,
+    crowd: bool = False,
+    own_width: float = 6.4,
 ) -> None:
     """Draw intervals: thin from end to end, thick for the own part of it.
 
@@ -149,13 +155,15 @@ def draw_spans(
         Whether the values run upwards instead of to the right.
     crowd : bool
         Whether there are so many that they are told apart by shade, and drawn as pixels.
+    own_width : float
+        How thick the own part is, so that a short one shows behind its mark. [pt]
     """
     low, high = axes.get_ylim() if upright else axes.get_xlim()
     known = np.isfinite(spans.value)
     bounded = known & (np.isfinite(spans.lower) | np.isfinite(spans.upper))
     left = np.clip(np.where(np.isfinite(spans.lower), spans.lower, low), low, high)
     right = np.clip(np.where(np.isfinite(spans.upper), spans.upper, high), low, high)
-    look = _CROWD if crowd else _LOOK
+    look = _CROWD if crowd else replace(_LOOK, own=replace(_LOOK.own, width=own_width))
 
     def lines(keep: NDArray[np.bool_], a: FloatArray, b: FloatArray, line: _Line) -> None:
         ends = np.stack([a, places, b, places], axis=-1)[keep].reshape(-1, 2, 2)

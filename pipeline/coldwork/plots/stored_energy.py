@@ -110,7 +110,7 @@ def _pages(frames: Frames, context: Context, rows: Rows, column: str) -> list[Fi
 def _fill(page: Page, spans: Spans, verdicts: _Verdicts, scale: Scale) -> None:
     axes = page.panels[0]
     lines = np.arange(len(page.places), dtype=np.float64)
-    draw_spans(axes, spans, lines, crowd=page.crowd)
+    draw_spans(axes, spans, lines, crowd=page.crowd, own_width=9.0)
     bound = verdicts.bound[page.places] * scale.factor
     known = np.isfinite(bound) & (not page.crowd)
     page.put(_BOUND, bound[known], lines[known])
