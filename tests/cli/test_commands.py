@@ -2,6 +2,7 @@
 
 import json
 import re
+from collections import Counter
 from collections.abc import Callable
 from pathlib import Path
 from typing import Final
@@ -129,6 +130,36 @@ def test_plots_are_drawn_unless_they_are_not_wanted(cw: Cw, batch: Batch, tmp_pa
     assert plots == {".svg", ".png"}
     cw("process", batch("bare"), "--into", tmp_path / "out", "--no-plots")
     assert not (tmp_path / "out" / "bare" / "plots").exists()
+
+
+def test_check_names_coupons_with_few_readings(cw: Cw, batch: Batch) -> None:
+    folder = batch()
+    (folder / "coupons.csv").write_text("coupon_id\nA1\nA2\nA3\nA4\n", encoding="utf-8")
+    rows = [*(f"A1,{i},98.07,90" for i in range(4)), "A2,1,98.07,96", "A4,1,49.03,96"]
+    text = "\n".join(["coupon_id,indent_no,force_n,hardness", *rows, ""])
+    (folder / "indents.csv").write_text(text, encoding="utf-8")
+    result = cw("check", folder)
+    assert result.exit_code == 3
+    told = " ".join(result.stdout.split())
+    assert "4 coupons, 1 of them without" in told
+    assert "error, 1 x no-readings: the coupon has no reading that could be used: A3" in told
+    assert "2 x few-readings: the coupon has fewer than three readings: A2, A4" in told
+    assert "1 x under-five-readings: the coupon has fewer than five readings: A1" in told
+    assert "1 x no-repeatability: there is nothing to judge the scatter of the readings by: A4" in (
+        told
+    )
+    assert check_and_process_agree(cw, folder)
+
+
+def check_and_process_agree(cw: Cw, folder: Path) -> bool:
+    """Say whether what `check` finds is what a run finds of the same rules."""
+    checked = parsed(cw("check", folder, "--json"))
+    ran = parsed(cw("process", folder, "--into", folder.parent / "o", "--no-plots", "--json"))
+    assert isinstance(checked, dict)
+    assert isinstance(ran, list)
+    counts = Counter((flag["level"], flag["rule"]) for flag in checked["flags"])
+    found = {(level, rule): n for level, x in ran[0]["flags"].items() for rule, n in x.items()}
+    return counts.items() <= found.items()
 
 
 def test_check_writes_nothing(cw: Cw, batch: Batch, tmp_path: Path) -> None:

@@ -185,10 +185,31 @@ def test_without_a_value_only_the_upper_bound_settles_it(
 @pytest.mark.parametrize("value", [0.2, NAN])
 def test_by_probability(above_lower: float, expected: int, value: float) -> None:
     held = limit(0.1, None, "probability", at_least=0.95)
-    found = decide(held, replace(only_bounds(value, NAN, NAN), above_lower=np.array([above_lower])))
+    found = decide(held, replace(only_bounds(value, NAN, 0.3), above_lower=np.array([above_lower])))
     assert DECISIONS[found.code[0]] == DECISIONS[expected]
     assert_allclose(found.probability, above_lower)
     assert np.isnan(found.bound).all()
+
+
+@pytest.mark.parametrize("rule", ["guarded", "probability"])
+def test_with_neither_value_nor_upper_bound_no_probability_is_told(rule: str) -> None:
+    held = limit(0.1, 0.3, rule, at_least=0.95)
+    low, high = np.array([0.99]), np.array([0.01])
+    found = decide(held, replace(only_bounds(NAN, 0.0, NAN), above_lower=low, above_upper=high))
+    assert DECISIONS[found.code[0]] == "undecided"
+    assert np.isnan(found.probability).all()
+
+
+def test_rounding_is_no_probability() -> None:
+    # one below the other by the last place of a double, as sums of P and 1 - P come out
+    held = limit(0.1, 0.3)
+    above = np.array([1.0, 0.5, 1e-20])
+    less = np.nextafter(above, 0.0)
+    base = only_bounds(0.2, 0.0, 1.0)
+    two = replace(base, above_lower=above, above_upper=less)
+    assert (conformance_probability(held, two) == 0.0).all()
+    alone = replace(base, above_lower=np.array([1e-20]))
+    assert conformance_probability(limit(0.1, None), alone) == 1e-20  # no sum, no rounding
 
 
 def test_probability_and_guard_agree_for_one_limit() -> None:

@@ -11,8 +11,10 @@ import pyarrow as pa
 
 from coldwork.inputs.sheet import read_method
 from coldwork.jobs.gather import Gathered, gather
-from coldwork.judge.coupon_rules import judge_thickness
+from coldwork.judge.coupon_rules import judge_readings, judge_thickness
+from coldwork.judge.temperatures import judge_temperatures
 from coldwork.rules.rule import Level
+from coldwork.statistics.rounding import counted
 
 __all__ = ["Checked", "check"]
 
@@ -60,8 +62,9 @@ class Checked:
         without = int(np.count_nonzero(self.batch.reduced.used == 0))
         lines = [
             f"{method.batch_id}: {method.material}, {method.laws.route} route",
-            f"{len(self.batch.coupons)} coupons, {without} of them without a usable reading",
-            f"{counts['read']} readings read: {counts['used']} can be used, "
+            f"{counted(len(self.batch.coupons), 'coupon')}, "
+            f"{without} of them without a usable reading",
+            f"{counted(counts['read'], 'reading')} read: {counts['used']} can be used, "
             f"{counts['set_aside']} would be set aside",
         ]
         return "\n".join([*lines, *self._set_aside_lines(), *self._flag_lines(), "", _CLOSING])
@@ -122,10 +125,18 @@ def check(batch: str | Path) -> Checked:
         With everything for which the batch would be refused.
     """
     gathered, _ = gather(read_method(Path(batch)))
-    n, reduced = len(gathered.coupons), gathered.reduced
+    reduced, coupons = gathered.reduced, np.arange(len(gathered.coupons))
+    judge_readings(
+        gathered.findings,
+        coupons,
+        reduced.used,
+        gathered.repeatability,
+        route=gathered.method.laws.route,
+    )
+    judge_temperatures(gathered.findings, gathered.method, coupons, reduced.temperature)
     judge_thickness(
         gathered.findings,
-        np.arange(n),
+        coupons,
         gathered.coupons.thickness,
         reduced.scale,
         reduced.mean_diagonal,

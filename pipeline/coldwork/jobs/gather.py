@@ -101,6 +101,11 @@ class Gathered:
         return None if self.method.draws is None else Pools(self.method)
 
     @property
+    def repeatability(self) -> NDArray[np.float64]:
+        """Standard uncertainty of each mean; NaN where none is known, 0 where there is no mean."""
+        return np.where(np.isfinite(self.reduced.mean), self.scatter.u, 0.0)
+
+    @property
     def errors(self) -> int:
         """Coupons on which, or on whose curve, an error was found."""
         found = with_error(self.findings.bits)

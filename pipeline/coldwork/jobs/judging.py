@@ -51,7 +51,6 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
         The slice.
     """
     method, reduced = batch.method, batch.reduced
-    known = np.isfinite(reduced.mean[rows])
     saturation = method.inputs.get("indentation.saturation_stress_mpa")
     results, half = evaluated.results, evaluated.strength
     judge_temperatures(
@@ -63,9 +62,7 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
             coupon=np.arange(rows.start, rows.stop),
             route=method.laws.route,
             readings_used=reduced.used[rows],
-            repeatability=np.where(
-                known, batch.scatter.u[rows], 0.0
-            ),  # none to lack without a mean
+            repeatability=batch.repeatability[rows],
             scale=reduced.scale[rows],
             thickness=batch.coupons.thickness[rows],
             mean_diagonal=reduced.mean_diagonal[rows],

@@ -20,7 +20,14 @@ from coldwork.rules.forces import SECTIONS
 from coldwork.rules.rule import Rule
 from coldwork.rules.spacing import least_thickness_ratio, too_thin
 
-__all__ = ["State", "judge_coupon_cells", "judge_coupons", "judge_scales", "judge_thickness"]
+__all__ = [
+    "State",
+    "judge_coupon_cells",
+    "judge_coupons",
+    "judge_readings",
+    "judge_scales",
+    "judge_thickness",
+]
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
@@ -98,7 +105,9 @@ def judge_coupons(findings: Findings, state: State) -> None:
     state : State
         The slice.
     """
-    _readings(findings, state)
+    judge_readings(
+        findings, state.coupon, state.readings_used, state.repeatability, route=state.route
+    )
     judge_thickness(
         findings, state.coupon, state.thickness, state.scale, state.mean_diagonal, state.ball
     )
@@ -188,17 +197,43 @@ def _note(
     findings.add(rule, state.coupon[rows], value=found, limit=held)
 
 
-def _readings(findings: Findings, state: State) -> None:
-    """Too few readings; points of a flow curve are not repeats, and are not counted."""
-    count = state.readings_used.astype(np.float64)
+def judge_readings(
+    findings: Findings,
+    coupon: NDArray[np.int64] | NDArray[np.int32],
+    used: NDArray[np.int64],
+    repeatability: FloatArray,
+    *,
+    route: str,
+) -> None:
+    """Find coupons with too few readings; nothing need be computed for it.
+
+    Points of a flow curve are not repeats, and are not counted.
+
+    Parameters
+    ----------
+    findings : Findings
+        Where it is told.
+    coupon : ndarray of int, shape (n,)
+        Index of each coupon in the batch.
+    used : ndarray of int64, shape (n,)
+        Readings used. [1]
+    repeatability : ndarray of float64, shape (n,)
+        Standard uncertainty of the mean reading, NaN where nothing tells it. [Pa]
+    route : str
+        ``indent`` or ``flow``.
+    """
+    count = used.astype(np.float64)
     none = count == 0.0
-    _note(findings, state, rules.NO_READINGS, none, count)
-    if state.route == "indent":
+    found = [(rules.NO_READINGS, none)]
+    if route == "indent":
         few = ~none & rules.FEW_READINGS.below(count)
-        _note(findings, state, rules.FEW_READINGS, few, count)
         under = ~none & ~few & rules.UNDER_FIVE_READINGS.below(count)
-        _note(findings, state, rules.UNDER_FIVE_READINGS, under, count)
-    _note(findings, state, rules.NO_REPEATABILITY, ~none & np.isnan(state.repeatability))
+        found += [(rules.FEW_READINGS, few), (rules.UNDER_FIVE_READINGS, under)]
+    for rule, fired in found:
+        rows = np.flatnonzero(fired)
+        findings.add(rule, coupon[rows], value=count[rows])
+    lone = np.flatnonzero(~none & np.isnan(repeatability))
+    findings.add(rules.NO_REPEATABILITY, coupon[lone])
 
 
 def judge_thickness(

@@ -11,6 +11,7 @@ References
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -44,6 +45,8 @@ __all__ = [
     "worst",
 ]
 
+_NOISE: Final = 1e-14  # of a difference of two probabilities in doubles [1]
+
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
 Codes = NDArray[np.int8]
@@ -76,7 +79,8 @@ def decide(limit: Limit, evidence: Evidence) -> Decided:
     conforming from `at_least` on, non-conforming up to 1 - `at_least`. ``simple``: by the
     value alone, where its relative uncertainty is at most `max_relative_u`. Else, and
     where an error or a missing uncertainty leaves nothing to go by, undecided. A coupon
-    that has no value is decided by its upper bound, or not at all.
+    that has no value is decided by its upper bound; without one it is undecided, and no
+    probability is told.
 
     Parameters
     ----------
@@ -98,7 +102,8 @@ def decide(limit: Limit, evidence: Evidence) -> Decided:
         code = np.where(valueless, by_bounds, _simple(limit, evidence))
     else:
         code = by_bounds
-    nothing = evidence.blocked | (~valueless & ~np.isfinite(evidence.u))
+    unknown = np.where(valueless, evidence.upper_bound, evidence.u)  # what there is to go by
+    nothing = evidence.blocked | ~np.isfinite(unknown)
     code = np.where(nothing, UNDECIDED, code).astype(np.int8)
     probability = np.where(nothing, np.nan, probability)
     bound = np.full(code.shape, np.nan)
@@ -123,7 +128,8 @@ def conformance_probability(limit: Limit, evidence: Evidence) -> FloatArray:
     Returns
     -------
     ndarray of float64, shape (n,)
-        The probability, NaN where it is not known. [1]
+        The probability, NaN where it is not known; exactly 0 where the sum tells nothing but
+        the rounding of its terms. [1]
 
     References
     ----------
@@ -132,7 +138,9 @@ def conformance_probability(limit: Limit, evidence: Evidence) -> FloatArray:
     n = evidence.value.shape
     above_lower = np.ones(n) if limit.lower is None else evidence.above_lower
     above_upper = np.zeros(n) if limit.upper is None else evidence.above_upper
-    return np.clip(above_lower - above_upper, 0.0, 1.0)
+    inside = np.clip(above_lower - above_upper, 0.0, 1.0)
+    noise = 0.0 if limit.upper is None else _NOISE
+    return np.where(inside < noise, 0.0, inside)
 
 
 def worst(decided: Sequence[Decided], n: int) -> Worst:
