@@ -8,7 +8,7 @@ called by the column that it will be published in.
 """
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 from functools import reduce
 from operator import add
 from typing import Final
@@ -30,6 +30,7 @@ from coldwork.formulas.crystal_factor import (
     HEXAGONAL_CONSTANTS,
     crystal_energy_factor,
 )
+from coldwork.formulas.hardness import VICKERS_DIAGONAL
 from coldwork.formulas.line_energy import (
     CORE_RADIUS,
     ENERGY_FACTOR,
@@ -42,7 +43,13 @@ from coldwork.formulas.line_energy import (
 from coldwork.formulas.pressure import (
     BRINELL_PROJECTED_PRESSURE,
     BRINELL_STRAIN,
+    PROJECTED_OVER_CONTACT,
     PROJECTED_PRESSURE,
+)
+from coldwork.formulas.size_effect import (
+    BULK_HARDNESS_FROM_LENGTH,
+    BULK_HARDNESS_FROM_STRENGTH,
+    INDENTATION_DEPTH,
 )
 from coldwork.formulas.stored_energy import (
     STORED_ENERGY,
@@ -112,6 +119,9 @@ class Start:
         Of the tests; NaN where nothing is brought to another one. [K]
     reference_temperature : float
         That all but the reading holds at. [K]
+    size_line : ndarray of int64, shape (n,)
+        Which fitted size effect is the coupon's, counted over the inputs ``size_effect:...``;
+        -1 where there is none.
     """
 
     mean: Value
@@ -123,14 +133,17 @@ class Start:
     plastic_strain: float
     temperature: float | NDArray[np.float64] = np.nan
     reference_temperature: float = np.nan
+    size_line: NDArray[np.int64] = field(default_factory=lambda: np.asarray(-1, dtype=np.int64))
 
 
 @dataclass(frozen=True)
 class Strength:
-    """The first half's outcome, all in the state at `test_strain` but for the first five.
+    """The first half's outcome, all in the state at `test_strain` but for the first six.
 
     Attributes
     ----------
+    bulk_hardness : Value or None
+        Mean hardness without the effect of size; None by the flow route. [Pa]
     pressure : Value or None
         Mean indentation pressure; None by the flow route. [Pa]
     indented_stress : Value
@@ -151,6 +164,7 @@ class Strength:
         Where the indent's own hardening was taken out.
     """
 
+    bulk_hardness: Value | None
     pressure: Value | None
     indented_stress: Value
     reference_stress: Value
@@ -165,7 +179,7 @@ class Strength:
 
 
 def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
-    """Go from the mean of the readings to the dislocation stress (relations 1, 2, 10, 4, 6).
+    """Go from the mean of the readings to the dislocation stress (relations 1, 3, 2, 10, 4, 6).
 
     Parameters
     ----------
@@ -182,7 +196,7 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
         Arrays of shape (n,).
     """
     n = np.shape(value_of(start.mean))
-    pressure, strain, tested = _tested(laws, inputs, start)
+    bulk, pressure, strain, tested = _tested(laws, inputs, start)
     baseline = _baseline(laws, inputs, start.grain_size)
     at_reference = _at_reference(laws, inputs, tested, start)
     excess = at_reference - baseline
@@ -195,6 +209,7 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
     added = np.full(n, start.plastic_strain) if laws.route == "flow" else value_of(strain)
     held = np.where(unwound, 0.0, added)
     return Strength(
+        bulk,
         pressure,
         tested,
         at_reference,
@@ -537,19 +552,51 @@ def _at_reference(laws: Laws, inputs: Mapping[str, Value], stress: Value, start:
 
 def _tested(
     laws: Laws, inputs: Mapping[str, Value], start: Start
-) -> tuple[Value | None, Value, Value]:
-    """Give pressure, strain of the test and flow stress as tested, by the route."""
+) -> tuple[Value | None, Value | None, Value, Value]:
+    """Give hardness without the effect of size, pressure, strain and flow stress as tested."""
     if laws.route == "flow":
-        return None, 0.0, start.mean
+        return None, None, 0.0, start.mean
     present = [k for k in range(len(SCALES)) if bool((start.scale == k).any())]
-    pressure = select(start.scale, {k: _pressure(laws, k, start) for k in present})
+    bulk = select(start.scale, {k: _bulk_hardness(laws, inputs, k, start) for k in present})
+    sized = replace(start, mean=bulk)
+    pressure = select(start.scale, {k: _pressure(laws, k, sized) for k in present})
     tested = apply(
         TABOR_FLOW_STRESS,
         pressure=pressure,
         intercept=_by_scale(inputs, start.scale, "intercept_mpa"),
         constraint_factor=_by_scale(inputs, start.scale, "constraint_factor"),
     )
-    return pressure, select(start.scale, {k: _strain(inputs, k, start) for k in present}), tested
+    strain = select(start.scale, {k: _strain(inputs, k, start) for k in present})
+    return bulk, pressure, strain, tested
+
+
+def _bulk_hardness(laws: Laws, inputs: Mapping[str, Value], code: int, start: Start) -> Value:
+    """Take the effect of size out of Vickers indents (relation 3); constants are of pressures."""
+    if laws.size_effect == "none" or code != HV:
+        return start.mean
+    here = start.scale == HV
+    mean = kept_where(start.mean, here)
+    diagonal = apply(VICKERS_DIAGONAL, force=start.force, hardness=mean)
+    depth = apply(INDENTATION_DEPTH, diagonal=diagonal)
+    if laws.size_effect == "length":
+        length = inputs["indentation.characteristic_depth_um"]
+        return apply(
+            BULK_HARDNESS_FROM_LENGTH, hardness=mean, depth=depth, characteristic_depth=length
+        )
+    pressure = apply(
+        BULK_HARDNESS_FROM_STRENGTH,
+        hardness=apply(PROJECTED_PRESSURE, hardness=mean),
+        depth=depth,
+        strength=_size_strength(laws, inputs, start),
+    )
+    return PROJECTED_OVER_CONTACT * pressure
+
+
+def _size_strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Value:
+    if laws.size_effect == "strength":
+        return inputs["indentation.size_strength_gpa2_um"]
+    lines = [x for name, x in inputs.items() if name.startswith("size_effect:")]
+    return select(start.size_line, dict(enumerate(lines)))
 
 
 def _pressure(laws: Laws, code: int, start: Start) -> Value:

@@ -134,12 +134,12 @@ def apply(formula: Formula, **arguments: Value) -> Value:
     return _combine(value, [(slopes[name], x) for name, x in carried.items()])
 
 
-def select(which: NDArray[np.int8], choices: Mapping[int, Value]) -> Value:
+def select(which: NDArray[np.int8] | NDArray[np.int64], choices: Mapping[int, Value]) -> Value:
     """Take, element by element, the choice that `which` names.
 
     Parameters
     ----------
-    which : ndarray of int8, shape (n,)
+    which : ndarray of int8 or int64, shape (n,)
         Key into `choices` for each element; a key that is not there gives NaN.
     choices : mapping of int to float, ndarray or Measured
         The values to choose between. [SI]

@@ -12,6 +12,7 @@ __all__ = [
     "hardening_work",
     "knoop_diagonal",
     "rolling_strain",
+    "sized_hardness",
     "vickers_diagonal",
 ]
 
@@ -80,6 +81,17 @@ def rolling_strain(reduction: float) -> float:
 def vickers_diagonal(force: float, number: float) -> float:
     """Give the mean diagonal [um] of an indent of that hardness number (ISO 6507-1)."""
     return 1e6 * sqrt(_VICKERS * force / (number * KGF_PER_MM2))
+
+
+def sized_hardness(force: float, bulk: float, depth: float) -> float:
+    """Give what an indent reads [HV] where a large one reads `bulk` and h* is `depth` [um].
+
+    H = H_0 sqrt(1 + h*/h), h = d / 7.0006 (Nix and Gao 1998): H and h follow one another.
+    """
+    number = bulk
+    for _ in range(60):
+        number = bulk * sqrt(1.0 + depth * 7.0006 / vickers_diagonal(force, number))
+    return number
 
 
 def knoop_diagonal(force: float, number: float) -> float:

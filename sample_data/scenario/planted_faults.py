@@ -18,6 +18,7 @@ from scenario import (
     faults_of_indents,
     faults_of_instruments,
     faults_of_rows,
+    faults_of_size,
     faults_of_temperature,
 )
 from scenario.tables import Table
@@ -63,6 +64,7 @@ def files() -> dict[str, str | bytes]:
         faults_of_flow.batch(),
         faults_of_branch.batch(),
         faults_of_temperature.batch(),
+        faults_of_size.batch(),
         faults_of_calibration.batch(),
         faults_of_checks.batch(),
         faults_of_curves.pulled_batch(),

@@ -296,7 +296,7 @@ BAD: list[tuple[dict[str, Any], str]] = [
         "strength.superposition_exponent",
     ),
     ({"indentation": {"initial_hardening_mpa": 1700.0}}, "indentation"),
-    ({"indentation": {"size_effect": "fitted"}}, "indentation.size_effect"),
+    ({"indentation": {"size_effect": "guessed"}}, "indentation.size_effect"),
     (
         {
             "indentation": {

@@ -249,7 +249,7 @@ SMALL_INDENTS: dict[str, Case] = {
         {"hardness": STRESS, "depth": LENGTH, "strength": SQUARE_STRESS_LENGTH},
         STRESS,
         ((0.9368e9, 1e-6, 5.4e11), (0.85e9, 2e-5, 3.2e11)),
-        zero_is_fine=frozenset({"strength"}),
+        sign_is_free=frozenset({"strength"}),
     ),
 }
 

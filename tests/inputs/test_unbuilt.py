@@ -14,27 +14,6 @@ NOT_YET = "not built yet"
 
 
 @pytest.mark.parametrize(
-    ("section", "line", "words"),
-    [
-        ("indentation", 'size_effect = "fitted"', "Fitting the indentation size effect"),
-        ("indentation", 'size_effect = "length"', "from a characteristic depth"),
-        ("indentation", 'size_effect = "strength"', "from a size strength"),
-        ("indentation", "characteristic_depth_um = 1", "from a characteristic depth"),
-        ("indentation", "size_strength_gpa2_um = 1", "from a size strength"),
-        ("indentation.HBW", 'size_effect = "fitted"', "Fitting the indentation size effect"),
-    ],
-)
-def test_a_section_asks_for_what_is_not_there_yet(
-    refusals: Refusals, sheet: str, section: str, line: str, words: str
-) -> None:
-    (cause,) = refusals(f"{sheet}\n[{section}]\n{line}\n")
-    assert words in cause
-    assert NOT_YET in cause
-    assert "nearest" not in cause
-    assert "batch.toml, line 2" in cause
-
-
-@pytest.mark.parametrize(
     ("old", "new", "words"),
     [
         ('route = "indent"', 'route = "both"', "Comparing the indent and the flow route"),

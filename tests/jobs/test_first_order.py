@@ -89,6 +89,12 @@ UNWOUND: Final = VICKERS + (
     "initial_hardening_mpa = { value = 1700.0, u = 15.0 }\n"
     "saturation_stress_mpa = { value = 320.0, u = 3.0 }\n"
 )
+LENGTH: Final = UNWOUND + (
+    'size_effect = "length"\ncharacteristic_depth_um = { value = 20.0, u = 0.3 }\n'
+)
+STRENGTH: Final = UNWOUND.replace("[indentation]", '[indentation]\narea = "projected"') + (
+    'size_effect = "strength"\nsize_strength_gpa2_um = { value = 20.0, u = 0.3 }\n'
+)
 OTHERS: Final = """
 [indentation.HBW]
 constraint_factor = { value = 2.8, u = 0.03, shape = "uniform" }
@@ -166,6 +172,8 @@ CASES: Final[Mapping[str, str]] = {
     + CONSTANT.replace("[hardening]", LOGARITHMIC)
     + SPACING
     + CELLS.replace("density_ratio = { value = 10.0", "stress_ratio = { value = 3.0"),
+    "length": HEAD + INDENT + ROUTE_INDENT + LENGTH + OTHERS + CONSTANT + SPACING,
+    "strength": HEAD + INDENT + ROUTE_INDENT + STRENGTH + OTHERS + CONSTANT + SPACING,
     "obstacle": HEAD + INDENT + ROUTE_INDENT + OBSTACLE + UNWOUND + OTHERS + CONSTANT + SPACING,
 }
 
@@ -259,7 +267,7 @@ class Drawn:
         grain = 20e-6 + 0.35e-6 * self.rng.standard_normal(DRAWS)
         scale = -1 if flow else SCALES.index(mine["scale"].iloc[0])
         ball = {"HBW": 5e-3}.get(mine["scale"].iloc[0], np.nan)
-        force = {"HBW": 125 * 9.80665}.get(mine["scale"].iloc[0], np.nan)
+        force = {"HBW": 125 * 9.80665, "HV": 98.07}.get(mine["scale"].iloc[0], np.nan)
         start = Start(
             mean=units.to_si(mean, unit),
             scale=np.full(DRAWS, scale, dtype=np.int8),

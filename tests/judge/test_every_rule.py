@@ -23,6 +23,7 @@ from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.calibrations import judge_ranges
 from coldwork.judge.coupon_rules import State, judge_coupon_cells, judge_coupons, judge_scales
 from coldwork.judge.printed import judge_printed
+from coldwork.judge.size_effects import judge_size_effects
 from coldwork.judge.temperatures import judge_temperatures
 from coldwork.reduce.flow import reduce_flow
 from coldwork.reduce.indents import reduce_indents
@@ -312,6 +313,19 @@ def warm(kelvin: float) -> Fires:
     return run
 
 
+def sized(effect: str, line: int, bulk: float) -> Fires:
+    def run() -> Findings:
+        findings = Findings(1)
+        laws = method(size_effect=effect).laws
+        numbers = np.array([1e9]), np.array([bulk])
+        judge_size_effects(
+            findings, laws, np.array([0]), np.array([HV], np.int8), np.array([line]), numbers
+        )
+        return findings
+
+    return run
+
+
 DUE: Final = date(1970, 1, 11)  # the last day covered is day 10 of the epoch
 T1: Final = Machine("T1", an_input("tester:T1", 0.0), DUE)
 CHECKED: Final = Machine(  # checked on days 4 and 8 of the epoch, the second time out of limits
@@ -337,6 +351,8 @@ CASES: Final[list[tuple[Rule, Fires, Fires]]] = [
     (C.NO_READINGS, judged(readings_used=0), judged(readings_used=1)),
     (C.MIXED_SCALES, two_scales, indents()),
     (C.MIXED_FORCES, indents(force_n=[98.07, 98.07, 49.03]), indents(force_n=[98.07, 98.0, 98.1])),
+    (C.SIZE_EFFECT_UNFITTED, sized("fitted", -1, NAN), sized("fitted", 0, 0.9e9)),
+    (C.SIZE_EFFECT_TOO_LARGE, sized("strength", -1, NAN), sized("strength", -1, 1e5)),
     (C.SCALE_WITHOUT_CONSTANTS, scales(method(), HK), scales(WITH_C, HK)),
     (
         C.MIXED_TEMPERATURES,

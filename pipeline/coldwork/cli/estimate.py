@@ -27,7 +27,9 @@ def estimate(
         typer.Option("--u", help="Standard uncertainty of what is given; exact without it."),
     ] = None,
     scale: Annotated[str, typer.Option(help="HV, HBW or HK.")] = "HV",
-    force: Annotated[float | None, typer.Option(metavar="N", help="For HBW.")] = None,
+    force: Annotated[
+        float | None, typer.Option(metavar="N", help="For HBW, and a size effect.")
+    ] = None,
     ball: Annotated[float | None, typer.Option(metavar="MM", help="For HBW.")] = None,
     baseline: Annotated[
         float | None, typer.Option(metavar="MPA", help="Baseline stress in MPa.")

@@ -18,6 +18,7 @@ from coldwork.guards import positive
 __all__ = [
     "BRINELL_PROJECTED_PRESSURE",
     "BRINELL_STRAIN",
+    "PROJECTED_OVER_CONTACT",
     "PROJECTED_PRESSURE",
     "brinell_projected_pressure",
     "brinell_projected_pressure_sensitivities",
@@ -27,7 +28,7 @@ __all__ = [
     "projected_pressure_sensitivities",
 ]
 
-_PROJECTED_OVER_CONTACT: Final = sin(FACE_ANGLE / 2.0)  # 0.92718 for the Vickers pyramid [1]
+PROJECTED_OVER_CONTACT: Final = sin(FACE_ANGLE / 2.0)  # 0.92718 for the Vickers pyramid [1]
 
 
 def projected_pressure(hardness: ArrayLike) -> NDArray[np.float64]:
@@ -60,7 +61,7 @@ def projected_pressure(hardness: ArrayLike) -> NDArray[np.float64]:
     >>> print(round(float(projected_pressure(200 * 9.80665e6)) / 1e6, 1))
     2115.4
     """
-    return np.asarray(positive("hardness", hardness) / _PROJECTED_OVER_CONTACT)
+    return np.asarray(positive("hardness", hardness) / PROJECTED_OVER_CONTACT)
 
 
 def projected_pressure_sensitivities(hardness: ArrayLike) -> dict[str, NDArray[np.float64]]:
@@ -82,7 +83,7 @@ def projected_pressure_sensitivities(hardness: ArrayLike) -> dict[str, NDArray[n
         As `projected_pressure` does.
     """
     positive("hardness", hardness)
-    return {"hardness": np.asarray(1.0 / _PROJECTED_OVER_CONTACT)}
+    return {"hardness": np.asarray(1.0 / PROJECTED_OVER_CONTACT)}
 
 
 def brinell_projected_pressure(

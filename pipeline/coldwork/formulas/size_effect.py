@@ -255,7 +255,8 @@ def bulk_hardness_from_strength(
         Depth of the indent :math:`h`. [m]
     strength : array_like, broadcast against `hardness`
         Slope of :math:`H^2` over :math:`1/h`, :math:`S`: in that theory the metal's own,
-        whatever its state of hardening. [Pa^2.m]
+        whatever its state of hardening; a slope that was fitted to scatter may come out
+        below zero. [Pa^2.m]
 
     Returns
     -------
@@ -266,8 +267,7 @@ def bulk_hardness_from_strength(
     Raises
     ------
     InvalidArgument
-        If any hardness or depth is zero, negative or infinite, or a strength negative or
-        infinite.
+        If any hardness or depth is zero, negative or infinite, or a strength infinite.
 
     Notes
     -----
@@ -279,7 +279,7 @@ def bulk_hardness_from_strength(
     H_0^2 h* has only modulus, Burgers vector, angle and alpha in it.
     """
     h2 = positive("hardness", hardness) ** 2
-    left = h2 - not_negative("strength", strength) / positive("depth", depth)
+    left = h2 - finite("strength", strength) / positive("depth", depth)
     return np.asarray(np.sqrt(np.where(left > 0.0, left, np.nan)))
 
 

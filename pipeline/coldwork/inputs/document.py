@@ -19,7 +19,7 @@ from coldwork.inputs.method import Draws, Method, Tester
 from coldwork.inputs.numbers import Given
 from coldwork.inputs.tensile import tensile_document
 
-__all__ = ["method_document", "with_testers"]
+__all__ = ["method_document", "number_document", "with_testers"]
 
 _COMPUTING: Final = ("numpy", "scipy", "pyarrow")
 _SECTIONS: Final = {
@@ -54,7 +54,7 @@ def method_document(
     sections = {
         name: {key: choice(tables, name, key) for key in keys} for name, keys in _SECTIONS.items()
     }
-    inputs = {name: _number(given) for name, given in numbers.items()}
+    inputs = {name: number_document(given) for name, given in numbers.items()}
     inputs |= {tester.bias.name: _bias(tester) for tester in method.testers}
     if method.tensile is not None:
         sections["tensile"] = tensile_document(method.tensile)
@@ -109,7 +109,8 @@ def _laws(method: Method) -> dict[str, object]:
     }
 
 
-def _number(given: Given) -> dict[str, object]:
+def number_document(given: Given) -> dict[str, object]:
+    """Give what ``method.json`` tells of a number, in the unit of its key."""
     found = given.input
     freedom = found.degrees_of_freedom
     return {
@@ -126,7 +127,7 @@ def _number(given: Given) -> dict[str, object]:
 
 
 def _bias(tester: Tester) -> dict[str, object]:
-    return _number(Given(tester.bias, tester.bias.value, tester.bias.u))
+    return number_document(Given(tester.bias, tester.bias.value, tester.bias.u))
 
 
 def _draws(draws: Draws) -> dict[str, object]:

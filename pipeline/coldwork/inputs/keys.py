@@ -53,6 +53,8 @@ WINDOWS: Final[Mapping[str, tuple[float, float]]] = {
     "intercept_mpa": (-1e5, 1e5),
     "representative_strain": (1e-6, 2.0),
     "strain_ratio": (1e-6, 2.0),
+    "characteristic_depth_um": (0.0, 1e3),
+    "size_strength_gpa2_um": (0.0, 1e4),
     "initial_hardening_mpa": (1e-3, 1e6),
     "saturation_stress_mpa": (1e-3, 1e6),
     "taylor_factor": (0.1, 100.0),

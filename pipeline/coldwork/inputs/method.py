@@ -58,6 +58,9 @@ class Laws:
     temperature : str
         How a strength is brought to the reference temperature: ``none``, ``modulus`` or
         ``modulus-and-thermal``.
+    size_effect : str
+        What is taken out of small Vickers indents: ``none``, the ``fitted`` effect of each
+        condition, or that of a characteristic ``length`` or of a ``strength``.
     """
 
     route: str
@@ -77,6 +80,7 @@ class Laws:
     structure: str = "uniform"
     core: str = "sheet"
     temperature: str = "none"
+    size_effect: str = "none"
 
 
 @dataclass(frozen=True)

@@ -7,7 +7,7 @@ from typing import Final
 __all__ = ["ORIGINS", "SHAPES", "Input", "lognormal_u"]
 
 SHAPES: Final = ("normal", "uniform", "triangular", "lognormal")
-ORIGINS: Final = ("sheet", "builds_on", "metal_file", "library", "default", "calibration")
+ORIGINS: Final = ("sheet", "builds_on", "metal_file", "library", "default", "calibration", "fitted")
 
 
 @dataclass(frozen=True)
@@ -18,7 +18,8 @@ class Input:
     ----------
     name : str
         Dotted path in the sheet, such as ``hardening.taylor_factor``; a
-        tester's bias is ``tester:ID``, a component of a calibration ``calibration:ID:1``.
+        tester's bias is ``tester:ID``, a component of a calibration ``calibration:ID:1``,
+        a fitted size effect ``size_effect:CONDITION``.
     value : float
         The value. [SI]
     u : float
@@ -36,8 +37,8 @@ class Input:
     source : str
         Where the value was found; empty if nobody said.
     origin : str
-        Who gave it: ``sheet``, ``builds_on``, ``metal_file``, ``library``, ``default`` or
-        ``calibration``.
+        Who gave it: ``sheet``, ``builds_on``, ``metal_file``, ``library``, ``default``,
+        ``calibration`` or ``fitted`` to the batch itself.
     """
 
     name: str

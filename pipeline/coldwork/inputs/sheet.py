@@ -23,6 +23,7 @@ from coldwork.inputs.metal import Metal, metal_of
 from coldwork.inputs.method import Laws, Method
 from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
 from coldwork.inputs.ranges import refuse_bad_ranges
+from coldwork.inputs.size_effect import refuse_bad_size_effect
 from coldwork.inputs.source import Sheet, read_sheet
 from coldwork.inputs.structure import refuse_misfits
 from coldwork.inputs.tables import Tables, tables_of
@@ -85,6 +86,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     causes = Causes(sheet)
     refuse_unreal_numbers(causes)
     refuse_unbuilt(causes)
+    refuse_bad_size_effect(causes)
     home = folder.resolve()
     calibrations = Calibrations(home)
     given = given_numbers(causes, calibrations)

@@ -19,21 +19,12 @@ _CHOICES: Final[Mapping[KeyPath, Mapping[str, str]]] = {
         "both": "Comparing the indent and the flow route of one coupon is not built yet.",
     },
 }
-_SIZE_EFFECTS: Final[Mapping[str, str]] = {
-    "fitted": "Fitting the indentation size effect over several forces is not built yet.",
-    "length": "The indentation size effect from a characteristic depth is not built yet.",
-    "strength": "The indentation size effect from a size strength is not built yet.",
-}
 _KEYS: Final[Mapping[KeyPath, str]] = {
     ("strength", "baseline_from_coupon"): "A baseline from a coupon is not built yet.",
 }
 _CONSTANTS: Final[Mapping[str, str]] = {
     "boundary_energy_j_per_m2": "recrystallisation",
     "stacking_fault_energy_j_per_m2": "recovery and recrystallisation",
-}
-_DEPTH_KEYS: Final[Mapping[str, str]] = {
-    "characteristic_depth_um": "length",
-    "size_strength_gpa2_um": "strength",
 }
 _ORIGINS: Final[Mapping[str, str]] = {
     "from_coupon": "A value that is taken from a coupon is not built yet.",
@@ -49,7 +40,6 @@ def refuse_unbuilt(causes: Causes) -> None:
     for key, job in _CONSTANTS.items():
         why = f"It belongs to {job}, which is not built yet."
         _refuse_key(causes, ("material", key), why)
-    _refuse_size_effects(causes)
     _refuse_values_from_elsewhere(causes)
 
 
@@ -73,15 +63,6 @@ def _refuse_key(causes: Causes, path: KeyPath, why: str) -> None:
     if path[-1] in table:
         causes.add(path, f"{path[-1]} cannot be used", why, "Take it out.")
         del table[path[-1]]
-
-
-def _refuse_size_effects(causes: Causes) -> None:
-    for section in (("indentation",), ("indentation", "HBW"), ("indentation", "HK")):
-        _refuse_choice(causes, (*section, "size_effect"), _SIZE_EFFECTS)
-        if _table(causes, section).get("size_effect") == "none":
-            del _table(causes, section)["size_effect"]  # said where it need not be
-        for key, choice in _DEPTH_KEYS.items():
-            _refuse_key(causes, (*section, key), _SIZE_EFFECTS[choice])
 
 
 def _refuse_values_from_elsewhere(causes: Causes) -> None:

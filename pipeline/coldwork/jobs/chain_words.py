@@ -5,6 +5,7 @@ from typing import Final, NamedTuple
 __all__ = [
     "AS_INDENTED",
     "AT_REFERENCE",
+    "BULK",
     "DENSITY",
     "ENERGY",
     "FLOW",
@@ -146,6 +147,13 @@ _SUM: Final = Line(
     "flow_stress_mpa",
     "dislocation stress plus baseline",
     ("dislocation_stress_mpa", "baseline_stress_mpa"),
+)
+BULK: Final = Line(
+    "hardness of a large indent",
+    "relation 3, Nix and Gao 1998",
+    "bulk_hardness",
+    "the mean hardness without the effect of size, {size}",
+    ("hardness", "<size>"),
 )
 TEMPERATURE: Final = Line(
     "temperature of the test",

@@ -17,7 +17,7 @@ from coldwork import contracts
 from coldwork.inputs.sheet import method_of
 from coldwork.inputs.source import read_sheet
 from coldwork.jobs.choices import Choice, choices_of
-from coldwork.jobs.evaluate import evaluate, inputs_of, start_of
+from coldwork.jobs.evaluate import evaluate, inputs_of, start_of, with_readings
 from coldwork.jobs.figures import Figures, figures_of
 from coldwork.jobs.gather import Gathered, gather
 from coldwork.jobs.judging import find_in_slice
@@ -193,8 +193,9 @@ class _Run:
     """A choice, ready to be evaluated."""
 
     def __init__(self, batch: Gathered, choice: Choice) -> None:
-        self._batch = replace(batch, method=choice.method, findings=batch.findings.copied())
-        self._inputs, self._spreads = inputs_of(choice.method)
+        method = with_readings(choice.method, batch.method)
+        self._batch = replace(batch, method=method, findings=batch.findings.copied())
+        self._inputs, self._spreads = inputs_of(method)
 
     def figures(self, rows: slice) -> Mapping[str, Figures]:
         batch = self._batch

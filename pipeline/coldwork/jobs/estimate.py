@@ -249,6 +249,18 @@ def _refuse_odd(given: _Given, volume_mm3: float | None) -> None:
         raise UsageError(message)
 
 
+def _refuse_size_effect(method: Method, given: _Given) -> None:
+    """Refuse a size effect of one number alone, and one without the force that gives a depth."""
+    if given.scale != "HV" or method.laws.size_effect == "none":
+        return
+    if method.laws.size_effect == "fitted":
+        message = "a size effect cannot be fitted to one number: say its length or strength"
+        raise UsageError(message)
+    if given.force_n is None:
+        message = "a size effect goes by the depth of the indent: give the force"
+        raise UsageError(message)
+
+
 def _from_strength(
     method: Method, inputs: Mapping[str, Value], spreads: Mapping[str, Spread], given: _Given
 ) -> dict[str, Known]:
@@ -259,6 +271,7 @@ def _from_strength(
         if factor not in method.inputs:
             message = f"nothing turns {given.scale} into a flow stress: say --set '{factor} = ...'"
             raise UsageError(message)
+        _refuse_size_effect(method, given)
     mean, u = float(units.to_si(given.value, unit)), float(units.to_si(given.u, unit))
     start = Start(
         Measured(np.array([mean]), {REPEATABILITY: np.asarray(1.0)}),

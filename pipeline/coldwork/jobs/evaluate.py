@@ -1,7 +1,7 @@
 """One slice of coupons through chain and interval: mean of the readings to quantities."""
 
 from collections.abc import Collection, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -27,6 +27,7 @@ __all__ = [
     "evaluate",
     "inputs_of",
     "start_of",
+    "with_readings",
 ]
 
 REPEATABILITY: Final = "repeatability"  # name of the input that the readings' scatter makes
@@ -112,6 +113,26 @@ def inputs_of(method: Method) -> tuple[dict[str, Value], dict[str, Spread]]:
     return values, spreads
 
 
+def with_readings(method: Method, gathered: Method) -> Method:
+    """Give a method what the batch's own readings told of testers and of size effects.
+
+    Parameters
+    ----------
+    method : Method
+        Another one for the same readings.
+    gathered : Method
+        That which they were read by.
+
+    Returns
+    -------
+    Method
+        With its inputs ``tester:ID`` and ``size_effect:CONDITION``.
+    """
+    told = ("tester:", "size_effect:")
+    own = {name: x for name, x in gathered.inputs.items() if name.startswith(told)}
+    return replace(method, testers=gathered.testers, inputs={**method.inputs, **own})
+
+
 def start_of(
     method: Method, coupons: Coupons, reduced: Reduced, scatter: Repeatability, rows: slice
 ) -> tuple[Start, dict[str, Spread]]:
@@ -150,6 +171,7 @@ def start_of(
         method.plastic_strain,
         _temperature(method, reduced.temperature[rows]),
         method.reference_temperature,
+        reduced.line[rows],
     )
     return start, own
 

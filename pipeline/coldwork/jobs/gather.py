@@ -29,6 +29,7 @@ from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.coupon_rules import judge_coupon_cells, judge_scales
 from coldwork.judge.printed import judge_printed
 from coldwork.reduce.reduced import Reduced
+from coldwork.reduce.size_lines import with_size_lines
 from coldwork.reduce.stream import Byproducts, reduce_batch
 from coldwork.reduce.tensile import CurveKeep, Curves, flow_of_curves
 from coldwork.rules import RULES, Level
@@ -213,6 +214,7 @@ def gather(
     causes = [*found.causes, *_nothing_left(found.reduced.used)]
     if causes:
         raise BatchRefused(str(method.folder), causes)
+    method = with_size_lines(method, found.reduced, coupons.conditions)
     scatter = repeatability(method, found.reduced, coupons.conditions)
     _note_scatter(beside.findings, scatter)
     judge_coupon_cells(beside.findings, method, coupons)

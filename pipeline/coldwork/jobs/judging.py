@@ -26,6 +26,7 @@ from coldwork.jobs.tables import unit_of
 from coldwork.judge.calibrations import judge_ranges
 from coldwork.judge.coupon_rules import State, judge_coupons
 from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
+from coldwork.judge.size_effects import judge_size_effects
 from coldwork.judge.temperatures import judge_temperatures
 from coldwork.measured import value_of
 from coldwork.rules.bits import emptied
@@ -56,6 +57,15 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
     judge_temperatures(
         batch.findings, method, np.arange(rows.start, rows.stop), reduced.temperature[rows]
     )
+    if half.bulk_hardness is not None:
+        judge_size_effects(
+            batch.findings,
+            method.laws,
+            np.arange(rows.start, rows.stop),
+            reduced.scale[rows],
+            reduced.line[rows],
+            (reduced.mean[rows], value_of(half.bulk_hardness)),
+        )
     judge_coupons(
         batch.findings,
         State(

@@ -11,13 +11,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from coldwork import units
-from coldwork.chain import core_alone
+from coldwork.chain import Start, core_alone
 from coldwork.formulas.crystal_factor import HEXAGONAL_CONSTANTS
 from coldwork.inputs.core import core_words
 from coldwork.inputs.method import Laws, Method
 from coldwork.jobs.chain_words import (
     AS_INDENTED,
     AT_REFERENCE,
+    BULK,
     DENSITY,
     ENERGY,
     FLOW,
@@ -66,6 +67,7 @@ _WITHOUT_COLUMN: Final = {
     "pressure_mpa": "MPa",
     "indented_stress_mpa": "MPa",
     "reference_stress_mpa": "MPa",
+    "bulk_hardness": "kgf/mm2",
     "excess_mpa": "MPa",
     "tested_stress_mpa": "MPa",
     "test_temperature_c": "Cel",
@@ -77,6 +79,16 @@ _THERMAL: Final = {
     "modulus-and-thermal": "the thermal part taken off, the rest in proportion to the shear "
     "modulus, the thermal part that is left at the reference put back",
 }
+_SIZES: Final = {
+    "none": "",
+    "fitted": "by the line of H^2 over 1/h that was fitted to the indents of its condition",
+    "length": "by the characteristic depth that the sheet states",
+    "strength": "by the size strength that the sheet states",
+}
+_SIZE_INPUTS: Final = (
+    "indentation.characteristic_depth_um",
+    "indentation.size_strength_gpa2_um",
+)
 _TEMPERATURE_INPUTS: Final = (
     "material.melting_point_k",
     "material.shear_modulus_slope",
@@ -109,6 +121,7 @@ def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
         "elasticity": _elasticity(laws),
         "core": core_words(method.inputs, core_alone(laws, _plain(method))),
         "reference": f"{units.from_si(method.reference_temperature, 'Cel'):.6g}",
+        "size": _SIZES[laws.size_effect],
         "thermal": _THERMAL.get(laws.temperature, ""),
     }
     groups = _groups(method)
@@ -127,7 +140,7 @@ def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
                 units.from_si(value, unit),
                 line.explanation.format_map(words),
                 inputs,
-                _scales_of(inputs, scale),
+                _coupons_of(inputs, evaluated.start),
             )
         )
     return steps
@@ -213,7 +226,17 @@ def _at_one_temperature(laws: Laws) -> tuple[Line, ...]:
     if laws.route == "flow":
         return (*FLOW, *OVER_BASELINE[laws.superposed], *energy)
     state = UNWOUND if laws.unwinding else AS_INDENTED
-    return (*INDENT, *state[laws.superposed], *REPORTED[laws.superposed], *energy)
+    return (*_indented(laws), *state[laws.superposed], *REPORTED[laws.superposed], *energy)
+
+
+def _indented(laws: Laws) -> tuple[Line, ...]:
+    """Put relation 3 after the mean hardness, where a size effect is taken out."""
+    if laws.size_effect == "none":
+        return INDENT
+    mean, pressure, *rest = INDENT
+    several = f"{mean.explanation}; of several forces the root of the mean square"
+    mean = mean._replace(explanation=several)
+    return (mean, BULK, pressure._replace(inputs=("bulk_hardness",)), *rest)
 
 
 def _densities(laws: Laws) -> tuple[Line, ...]:
@@ -235,6 +258,7 @@ def _values(evaluated: Evaluated) -> Mapping[str, Value]:
     """Give every quantity of the chain by name, in SI, those too that no table has."""
     half = evaluated.strength
     return {
+        "bulk_hardness": np.nan if half.bulk_hardness is None else half.bulk_hardness,
         "pressure_mpa": np.nan if half.pressure is None else half.pressure,
         "test_temperature_c": evaluated.start.temperature,
         "indented_stress_mpa": half.indented_stress,
@@ -273,6 +297,9 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
         "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
         "<unwinding>": _of_indentation(method, *unwinding),
         "<radius>": radius,
+        "<size>": tuple(
+            n for n in method.inputs if n in _SIZE_INPUTS or n.startswith("size_effect:")
+        ),
         "<structure>": tuple(structure),
         "<elasticity>": tuple(name for name in method.inputs if name in _ELASTICITY),
     }
@@ -286,11 +313,14 @@ def _of_indentation(method: Method, *keys: str) -> tuple[str, ...]:
     )
 
 
-def _scales_of(inputs: tuple[str, ...], scale: NDArray[np.int8]) -> dict[str, NDArray[np.bool_]]:
-    """Give for each input of one scale the coupons that were read on it."""
-    only = {}
+def _coupons_of(inputs: tuple[str, ...], start: Start) -> dict[str, NDArray[np.bool_]]:
+    """Give for each input of one scale, or of one condition, the coupons that it acts on."""
+    only, lines = {}, 0
     for name in inputs:
         section, _, key = name.rpartition(".")
-        if section in SECTIONS and key not in _FOR_ALL_SCALES:
-            only[name] = scale == SECTIONS.index(section)
+        if name.startswith("size_effect:"):
+            only[name] = start.size_line == lines
+            lines += 1
+        elif section in SECTIONS and key not in _FOR_ALL_SCALES:
+            only[name] = start.scale == SECTIONS.index(section)
     return only

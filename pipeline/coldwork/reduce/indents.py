@@ -19,6 +19,7 @@ from coldwork.formulas.hardness import (
     vickers_hardness,
 )
 from coldwork.inputs.method import Method
+from coldwork.reduce.force_cells import Indented, join_forces
 from coldwork.reduce.marks import Marks
 from coldwork.reduce.readings import Readings
 from coldwork.reduce.reduced import ReadingResults, Reduced
@@ -98,9 +99,6 @@ def reduce_indents(
     with np.errstate(invalid="ignore", divide="ignore"):
         sd = np.sqrt(np.add.reduceat(deviation**2, starts) / (count - 1))
         sd = np.where(count > 1, sd, np.nan)
-        critical = np.repeat(grubbs_critical(count), count)
-        distance = np.abs(deviation) / np.repeat(sd, count)
-    marks.note(rules.OUTLYING_READING, distance > critical, distance, critical)
     reduced.used[rows] = count
     reduced.repeats[rows] = count
     reduced.effective[rows] = count
@@ -114,7 +112,13 @@ def reduce_indents(
     for i, share in enumerate(reduced.shares.values()):
         part = np.where(tester == i, value, 0.0)
         share[rows] = np.add.reduceat(part, starts) / (mean * count)
-    _refuse_mixtures(indents, nominal, reduced, marks)
+    weight = np.repeat(1.0 / count, count)
+    cell = np.repeat(np.arange(len(starts)), count)
+    sized = method.laws.size_effect != "none"
+    if sized:
+        _join_forces(indents, nominal, value, tester, reduced, (cell, weight))
+    _note_outliers(value, cell, marks)
+    _refuse_mixtures(indents, nominal, reduced, marks, sized=sized)
     reduce_temperatures(readings, method, reduced, marks)
     return ReadingResults(
         scale=scale,
@@ -122,7 +126,7 @@ def reduce_indents(
         mean_diagonal=diagonal,
         strength=value,
         plastic_strain=np.full(len(readings), np.nan),
-        weight=np.repeat(1.0 / count, count),
+        weight=weight,
         marks=marks.bits,
     )
 
@@ -195,7 +199,39 @@ def _note_readings(indents: _Indents, diagonal: _Floats, method: Method, marks: 
         marks.note(rules.DWELL_TIME, *rules.dwell_outside(readings.column("dwell_s")))
 
 
-def _refuse_mixtures(indents: _Indents, nominal: _Floats, reduced: Reduced, marks: Marks) -> None:
+def _join_forces(
+    indents: _Indents,
+    nominal: _Floats,
+    value: _Floats,
+    tester: NDArray[np.int64],
+    reduced: Reduced,
+    told: tuple[NDArray[np.int64], _Floats],
+) -> None:
+    """Join several forces on the pyramid (relation 3); tell each indent's cell and weight."""
+    rows = np.flatnonzero(indents.scale == HV)
+    if not rows.size:
+        return
+    coupon = indents.readings.coupon[rows]
+    made = Indented(coupon, value[rows], indents.force[rows], nominal[rows], tester[rows])
+    cell, weight = told
+    inside, weight[rows] = join_forces(made, reduced)
+    cell[rows] = inside + len(cell)
+
+
+def _note_outliers(value: _Floats, cell: NDArray[np.int64], marks: Marks) -> None:
+    """Find readings that stand out among those of their coupon at their force."""
+    count = np.bincount(cell)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        deviation = value - (np.bincount(cell, value) / count)[cell]
+        sd = np.sqrt(np.bincount(cell, deviation**2) / (count - 1))
+        distance = np.abs(deviation) / sd[cell]
+    critical = grubbs_critical(count)[cell]
+    marks.note(rules.OUTLYING_READING, distance > critical, distance, critical)
+
+
+def _refuse_mixtures(
+    indents: _Indents, nominal: _Floats, reduced: Reduced, marks: Marks, *, sized: bool
+) -> None:
     """Take the mean away where readings of one coupon have no common one."""
     readings, scale = indents.readings, indents.scale
     starts = readings.starts
@@ -208,8 +244,10 @@ def _refuse_mixtures(indents: _Indents, nominal: _Floats, reduced: Reduced, mark
         return np.logical_or.reduceat(apart, starts)
 
     scales = differs(scale, 0.0)
-    sized = np.where(scale == HBW, indents.ball, 0.0)
-    forces = (differs(nominal, _SAME) | differs(sized, _SAME)) & ~scales
+    balls = np.where(scale == HBW, indents.ball, 0.0)
+    forces = (differs(nominal, _SAME) | differs(balls, _SAME)) & ~scales
+    if sized:
+        forces &= scale[starts] != HV
     for rule, mixed in (
         (coupon_rules.MIXED_SCALES, scales),
         (coupon_rules.MIXED_FORCES, forces),

@@ -1,12 +1,48 @@
 """What the readings of each coupon come to: the table that all later stages work on."""
 
-from dataclasses import dataclass, field
+from collections.abc import Sequence
+from dataclasses import dataclass, field, fields, replace
 from typing import Self
 
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["ReadingResults", "Reduced"]
+__all__ = ["ForceCells", "ReadingResults", "Reduced"]
+
+
+@dataclass(frozen=True)
+class ForceCells:
+    """What coupons read at one force each, m cells; a coupon has one for every force.
+
+    Attributes
+    ----------
+    coupon : ndarray of int64, shape (m,)
+        Row of ``coupons.csv``.
+    force : ndarray, shape (m,)
+        Nominal force. [N]
+    count : ndarray of int64, shape (m,)
+        Indents.
+    hardness, depth : ndarray, shape (m,)
+        Mean hardness, corrected for the tester, and the depth that goes with it. [Pa], [m]
+    squares : ndarray, shape (m,)
+        Sum of the squared relative deviations from the mean. [1]
+    """
+
+    coupon: NDArray[np.int64]
+    force: NDArray[np.float64]
+    count: NDArray[np.int64]
+    hardness: NDArray[np.float64]
+    depth: NDArray[np.float64]
+    squares: NDArray[np.float64]
+
+    @classmethod
+    def joined(cls, parts: "Sequence[ForceCells]") -> Self:
+        """Put the cells of several stretches together."""
+        return cls(*(np.concatenate([getattr(p, f.name) for p in parts]) for f in fields(cls)))
+
+    def take(self, rows: NDArray[np.intp]) -> Self:
+        """Pick cells."""
+        return replace(self, **{f.name: getattr(self, f.name)[rows] for f in fields(self)})
 
 
 @dataclass
@@ -41,6 +77,12 @@ class Reduced:
         where no curve did. [Pa]
     machine : dict of str to ndarray, shape (n,)
         Derivative of such a mean by the machine's inputs. [Pa per SI of the input]
+    cells : list of ForceCells
+        Readings by coupon and force, where a size effect is taken out. There `mean` of a
+        coupon with several forces is the hardness at `mean_diagonal`, and `applied_force`
+        the force that goes with both.
+    line : ndarray of int64, shape (n,)
+        Which fitted size effect is the coupon's, -1 where there is none.
     """
 
     used: NDArray[np.int64]
@@ -57,6 +99,8 @@ class Reduced:
     shares: dict[str, NDArray[np.float64]]
     own_u: NDArray[np.float64] | None = None
     machine: dict[str, NDArray[np.float64]] = field(default_factory=dict)
+    cells: list[ForceCells] = field(default_factory=list)
+    line: NDArray[np.int64] = field(default_factory=lambda: np.zeros(0, dtype=np.int64))
 
     @classmethod
     def empty(cls, coupons: int, testers: tuple[str, ...]) -> Self:
@@ -78,6 +122,7 @@ class Reduced:
             applied_force=blank(),
             temperature=blank(),
             shares={name: np.zeros(coupons) for name in testers},
+            line=np.full(coupons, -1, dtype=np.int64),
         )
 
     def __len__(self) -> int:

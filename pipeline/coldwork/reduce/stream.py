@@ -17,10 +17,12 @@ from coldwork.reduce.indents import reduce_indents
 from coldwork.reduce.marks import Marks
 from coldwork.reduce.readings import Readings, ScatteredCoupons, regrouped, whole_coupons
 from coldwork.reduce.reduced import ReadingResults, Reduced
+from coldwork.reduce.shallow import shallow
 from coldwork.rules.findings import Findings
-from coldwork.rules.reasons import REPEATED_READING
+from coldwork.rules.reasons import REPEATED_READING, SHALLOW_INDENT
+from coldwork.rules.rule import Reason
 
-__all__ = ["Byproducts", "Keep", "put_repeats_aside", "reduce_batch"]
+__all__ = ["Byproducts", "Keep", "put_aside", "reduce_batch"]
 
 _NUMBER: Final = {"indents": "indent_no", "flow_stress": "reading_no", "curves": "point_no"}
 
@@ -86,8 +88,16 @@ def reduce_batch(
     def run(stretches: Iterable[tuple[Readings, Readings]]) -> Reduced:
         reduced = Reduced.empty(len(coupons), tuple(t.id for t in method.testers))
         reduce = reduce_flow if method.laws.route == "flow" else reduce_indents
-        for readings, repeats in stretches:
-            put_repeats_aside(repeats, files, coupons, beside.set_aside)
+        for whole, repeats in stretches:
+            put_aside(repeats, REPEATED_READING, files, coupons, beside.set_aside)
+            small = shallow(whole, method)
+            readings = whole
+            if small.any():
+                readings = whole.take(np.flatnonzero(~small))
+                aside = whole.take(np.flatnonzero(small))
+                put_aside(aside, SHALLOW_INDENT, files, coupons, beside.set_aside)
+                if not len(readings):
+                    continue
             marks = Marks(readings, beside.findings, files.names)
             results = reduce(readings, method, reduced, marks)
             if beside.keep is not None:
@@ -101,15 +111,18 @@ def reduce_batch(
         return run(regrouped(iter(stream)))
 
 
-def put_repeats_aside(
-    repeats: Readings, files: TableFiles, coupons: Coupons, set_aside: SetAside
+def put_aside(
+    found: Readings, reason: Reason, files: TableFiles, coupons: Coupons, set_aside: SetAside
 ) -> None:
-    """Set aside readings that repeat a number which their coupon already had.
+    """Set readings aside that were read well and cannot be used all the same.
 
     Parameters
     ----------
-    repeats : Readings
+    found : Readings
         They.
+    reason : Reason
+        ``REPEATED_READING`` for a number that their coupon already had, or
+        ``SHALLOW_INDENT``.
     files : TableFiles
         The files that they came from.
     coupons : Coupons
@@ -118,14 +131,14 @@ def put_repeats_aside(
         Where they go.
     """
     table = files.contract.table
-    column = _NUMBER[table]
-    for file in dict.fromkeys(repeats.file.tolist()):
-        here = np.flatnonzero(repeats.file == file)
-        part = repeats.take(here)
+    for file in dict.fromkeys(found.file.tolist()):
+        here = np.flatnonzero(found.file == file)
+        part = found.take(here)
+        column = _NUMBER[table] if reason is REPEATED_READING else _size_column(part)
         own = files.raw_name(file, column)
         raw = part.raw[own] if own in part.raw.column_names else None
         set_aside.add(
-            REPEATED_READING,
+            reason,
             table=table,
             file=files.names[file],
             lines=part.lines,
@@ -135,3 +148,8 @@ def put_repeats_aside(
             coupon_ids=coupons.ids.take(pa.array(part.coupon, pa.int32())),
             reading_no=part.number,
         )
+
+
+def _size_column(part: Readings) -> str:
+    """Give the column that tells how large indents are."""
+    return "d1_um" if np.isfinite(part.column("d1_um")).all() else "hardness"

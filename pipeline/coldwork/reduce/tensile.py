@@ -32,9 +32,10 @@ from coldwork.reduce.curve_reduction import reduce_curve
 from coldwork.reduce.picture import Picture, picture_of
 from coldwork.reduce.readings import Readings, ScatteredCoupons, regrouped, whole_coupons
 from coldwork.reduce.reduced import Reduced
-from coldwork.reduce.stream import Byproducts, put_repeats_aside
+from coldwork.reduce.stream import Byproducts, put_aside
 from coldwork.rules import curve as rules
 from coldwork.rules.coupon import NO_FLOW_STRESS_AT_STRAIN
+from coldwork.rules.reasons import REPEATED_READING
 from coldwork.rules.rule import Level, Rule
 
 __all__ = [
@@ -296,7 +297,7 @@ class _Shell:
         summaries: dict[int, CurveSummary] = {}
         causes: list[Cause] = []
         for readings, repeats in stretches:
-            put_repeats_aside(repeats, self._files, self._coupons, self._beside.set_aside)
+            put_aside(repeats, REPEATED_READING, self._files, self._coupons, self._beside.set_aside)
             for points in _coupon_by_coupon(readings):
                 causes += self._split_causes(points)
                 summaries[int(points.coupon[0])] = self._reduced(points)

@@ -28,6 +28,8 @@ __all__ = [
     "NO_READINGS",
     "NO_SHEAR_MODULUS",
     "SCALE_WITHOUT_CONSTANTS",
+    "SIZE_EFFECT_TOO_LARGE",
+    "SIZE_EFFECT_UNFITTED",
     "STORED_FRACTION_IMPOSSIBLE",
     "STRESS_PAST_BRANCH",
 ]
@@ -63,6 +65,27 @@ MIXED_FORCES: Final = Rule(
     "W. D. Nix, H. Gao, J. Mech. Phys. Solids 46 (1998) 411",
     "Small indents read harder, so the mean over several forces belongs to none of them.",
     ("hardness", "hardness_scale", *STRENGTH_ON),
+)
+SIZE_EFFECT_UNFITTED: Final = Rule(
+    "size-effect-unfitted",
+    Level.ERROR,
+    "no coupon of the condition was read with more than one force often enough to fit its size"
+    " effect",
+    None,
+    None,
+    "W. D. Nix, H. Gao, J. Mech. Phys. Solids 46 (1998) 411",
+    "A line of H^2 over 1/h needs two depths in one coupon, and more indents than it has numbers.",
+    STRENGTH_ON,
+)
+SIZE_EFFECT_TOO_LARGE: Final = Rule(
+    "size-effect-too-large",
+    Level.ERROR,
+    "the size effect would account for all of the hardness; value as the hardness",
+    None,
+    "kgf/mm2",
+    "W. D. Nix, H. Gao, J. Mech. Phys. Solids 46 (1998) 411",
+    "H^2 less size strength over depth leaves nothing: force, strength or depth is wrong.",
+    STRENGTH_ON,
 )
 MIXED_TEMPERATURES: Final = Rule(
     "mixed-temperatures",
@@ -206,6 +229,8 @@ COUPON_ERRORS: Final = (
     NO_READINGS,
     MIXED_SCALES,
     MIXED_FORCES,
+    SIZE_EFFECT_UNFITTED,
+    SIZE_EFFECT_TOO_LARGE,
     MIXED_TEMPERATURES,
     NO_SHEAR_MODULUS,
     SCALE_WITHOUT_CONSTANTS,

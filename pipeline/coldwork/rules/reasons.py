@@ -21,6 +21,7 @@ __all__ = [
     "REPEATED_READING",
     "REQUIRED_EMPTY",
     "ROW_WIDTH",
+    "SHALLOW_INDENT",
     "SHOWN_OTHERWISE",
     "UNKNOWN_SCALE",
     "UNLISTED_COUPON",
@@ -138,6 +139,12 @@ REPEATED_READING: Final = Reason(
     "number the readings of a coupon without repeats; the first one was used",
     _TIDY,
 )
+SHALLOW_INDENT: Final = Reason(
+    "shallow-indent",
+    "the indent is less than 0.2 um deep, where the law of the size effect no longer holds",
+    "indent with a larger force",
+    "W. D. Nix, H. Gao, J. Mech. Phys. Solids 46 (1998) 411; the depth is common practice",
+)
 
 REASONS: Final = (
     ROW_WIDTH,
@@ -158,4 +165,5 @@ REASONS: Final = (
     IMPOSSIBLE_INDENT,
     EXCLUDED,
     REPEATED_READING,
+    SHALLOW_INDENT,
 )
