@@ -6,6 +6,7 @@ of the other.
 
 from collections.abc import Iterator
 from dataclasses import replace
+from itertools import cycle, islice
 from math import inf, nan
 from typing import Any
 
@@ -41,6 +42,7 @@ PER_ROW: dict[str, list[Any]] = {  # what the general filling below cannot know
 PER_TABLE: dict[str, dict[str, list[Any]]] = {
     "in/exclusions": {"excluded_by": ["operator-1"] * ROWS, "excluded_at": ["2026-03-01"] * ROWS},
     "out/set_aside": {"reason": ["scratch under the indent", None, None]},
+    "out/compare_choices": {"choice_no": [1, 2, 3]},
     "out/decisions": {"rule": ["simple", "guarded", "probability"]},
 }
 SAMPLE = {"datetime": "2026-03-01T10:00:00Z", "string": "text", "boolean": True}
@@ -61,7 +63,7 @@ def _good(contract: Contract, field: Field) -> list[Any]:
         if key in known:
             return known[key]
     if field.type == "string" and (field.name in contract.primary_key or field.unique):
-        return list(field.enum or ("=7/A ä<b>", "NA", "0012"))[:ROWS]
+        return list(islice(cycle(field.enum or ("=7/A ä<b>", "NA", "0012")), ROWS))
     if field.numeric:
         return [1 if field.type == "integer" else 0.5] * ROWS
     return [field.enum[0] if field.enum else SAMPLE[field.type]] * ROWS
