@@ -9,6 +9,7 @@ import pyarrow as pa
 from coldwork import contracts
 from coldwork.jobs.curve_frames import curve_frames
 from coldwork.jobs.gather import Gathered
+from coldwork.jobs.size_frames import size_frames
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -110,6 +111,9 @@ class Drawing:
         }
         beside = {"scatter": self._scatter(), "coupons_in": self._coupons_in()}
         curves = self._batch.curves
+        if "readings" in frames:
+            b = self._batch
+            beside |= size_frames(b.method, b.reduced, b.coupons, frames["readings"])
         return frames | beside | (curve_frames(curves, self._batch.coupons) if curves else {})
 
     def _scatter(self) -> "pd.DataFrame":

@@ -17,6 +17,7 @@ from coldwork.plots import (
     hardening,
     readings,
     scatter,
+    size_effect,
     stored_energy,
 )
 from coldwork.plots.columns import Frames
@@ -32,6 +33,7 @@ _SUBJECTS = (
     ("uncertainty", budget.draw),
     ("scatter", scatter.draw),
     ("drift", drift.draw),
+    ("size-effect", size_effect.draw),
     ("curves", curves.draw),
     ("hardening-rate", hardening.draw),
     ("density-along-strain", evolution.draw_density),
@@ -49,8 +51,10 @@ def draw_all(frames: Frames, context: Context) -> Iterator[tuple[str, Figure]]:
         `decisions`, `quantities`, `flags`), columns in their contracts' units; `scatter`
         with `coupon_id`, `n`, `relative_s`, `pooled_relative_s`, `limit_relative_s`,
         `left_pool` and `group`; `coupons_in` with `coupon_id` and `prior_true_strain`.
-        A batch with curves has `tensile`, `evolution`, `curve_lines`, `curve_slopes` and
-        `curve_rates` too, as `curves` and `hardening` say. A table that is not there is empty.
+        A batch whose small indents are corrected has `size_points`, `size_lines` and
+        `size_conditions`, as `size_effect` says. A batch with curves has `tensile`,
+        `evolution`, `curve_lines`, `curve_slopes` and `curve_rates` too, as `curves` and
+        `hardening` say. A table that is not there is empty.
     context : Context
         The batch.
 
