@@ -5,6 +5,7 @@ from typing import Annotated
 
 import typer
 
+from coldwork.cli.numbers import number
 from coldwork.cli.reporting import note, reporting, show, show_json
 
 __all__ = ["calibrate"]
@@ -40,7 +41,9 @@ def calibrate(
     area: Annotated[str, typer.Option(help="Of its pressure: contact or projected.")] = "contact",
     strain: Annotated[
         float | None,
-        typer.Option(metavar="EPS", help="Plastic strain of the flow stresses, for hardness."),
+        typer.Option(
+            metavar="EPS", help="Plastic strain of the flow stresses, for hardness.", parser=number
+        ),
     ] = None,
     sheet: Annotated[
         Path | None,

@@ -5,6 +5,7 @@ from typing import Annotated
 
 import typer
 
+from coldwork.cli.numbers import number
 from coldwork.cli.reporting import reporting, show, show_json
 
 __all__ = ["contrast"]
@@ -26,7 +27,9 @@ def contrast(
     ] = None,
     margin: Annotated[
         float | None,
-        typer.Option(metavar="REL", help="Relative difference that would not matter, as 0.05."),
+        typer.Option(
+            metavar="REL", help="Relative difference that would not matter, as 0.05.", parser=number
+        ),
     ] = None,
     correction: Annotated[
         str, typer.Option(help="Of several comparisons: holm, bonferroni or none.")

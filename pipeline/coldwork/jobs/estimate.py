@@ -1,7 +1,7 @@
 """One value from options: a density, a stress or a hardness to stored energy."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from math import isfinite
 from pathlib import Path
 from typing import Any, Final
@@ -18,7 +18,9 @@ from coldwork.interval.combine import Spread, combine
 from coldwork.interval.reach import LATE
 from coldwork.jobs.evaluate import REPEATABILITY, evaluate, inputs_of
 from coldwork.jobs.options import method_of_options
+from coldwork.jobs.remarks import NOTHING, UNJUDGED, remarks
 from coldwork.jobs.tables import unit_of
+from coldwork.judge.coupon_rules import State
 from coldwork.measured import Measured, Value, value_of
 from coldwork.rules.forces import SCALES, SECTIONS
 from coldwork.statistics.rounding import with_uncertainty
@@ -27,7 +29,6 @@ from coldwork.statistics.student import student_quantile
 __all__ = ["Estimate", "Known", "estimate"]
 
 _DENSITY: Final = "dislocation density"  # as the name of an input
-_NOTHING: Final = np.array([np.nan])
 _CAUTION: Final = (
     "Stored energy in dislocations alone: calorimetry finds more, since point defects and stacking "
     "faults also release heat. An estimate releases no part by itself."
@@ -71,7 +72,8 @@ class Estimate:
     core : str
         What the core radius means, with or without an energy of the core.
     remark : str
-        What a person must know about it, empty where there is nothing.
+        What a person must know about it, a line for all that a batch would flag; empty where
+        there is nothing.
     """
 
     flow_stress_mpa: Known
@@ -188,10 +190,11 @@ def estimate(
     method = method_of_options(material, kind, sheet, settings)
     inputs, spreads = inputs_of(method)
     if kind == "density":
-        figures = _from_density(method, inputs, spreads, given)
+        figures, state = _from_density(method, inputs, spreads, given)
     else:
-        figures = _from_strength(method, inputs, spreads, given)
-    return _finished(method, inputs, figures, kind, volume_mm3)
+        figures, state = _from_strength(method, inputs, spreads, given)
+    remark = remarks(method, state, from_density=kind == "density")
+    return _finished(method, inputs, figures, remark, volume_mm3)
 
 
 @dataclass(frozen=True)
@@ -240,6 +243,7 @@ def _refuse_odd(given: _Given, volume_mm3: float | None) -> None:
         if number is not None and not low <= number < np.inf:
             message = f"{name} must be a positive number, not {number:g}"
             raise UsageError(message)
+    _refuse_idle(given)
     if given.scale not in SCALES:
         message = f"no hardness scale is called {given.scale!r}; there are {', '.join(SCALES)}"
         raise UsageError(message)
@@ -250,8 +254,15 @@ def _refuse_odd(given: _Given, volume_mm3: float | None) -> None:
 
 
 def _refuse_size_effect(method: Method, given: _Given) -> None:
-    """Refuse a size effect of one number alone, and one without the force that gives a depth."""
+    """Refuse a size effect of one number alone or without a force, and a force without one."""
+    if given.scale == "HBW":
+        return
     if given.scale != "HV" or method.laws.size_effect == "none":
+        if given.force_n is not None:
+            message = (
+                f"force belongs to HBW or to a size effect, and neither is here: {given.scale}"
+            )
+            raise UsageError(message)
         return
     if method.laws.size_effect == "fitted":
         message = "a size effect cannot be fitted to one number: say its length or strength"
@@ -261,9 +272,20 @@ def _refuse_size_effect(method: Method, given: _Given) -> None:
         raise UsageError(message)
 
 
+def _refuse_idle(given: _Given) -> None:
+    """Refuse what cannot act on the number that is given."""
+    sized = given.force_n is not None or given.ball_mm is not None
+    if given.kind != "hardness" and (sized or given.scale != SCALES[0]):
+        message = f"scale, force and ball belong to a hardness, and a {given.kind} was given"
+        raise UsageError(message)
+    if given.ball_mm is not None and given.scale in SCALES and given.scale != "HBW":
+        message = f"ball belongs to HBW, and a hardness {given.scale} was given"
+        raise UsageError(message)
+
+
 def _from_strength(
     method: Method, inputs: Mapping[str, Value], spreads: Mapping[str, Spread], given: _Given
-) -> dict[str, Known]:
+) -> tuple[dict[str, Known], State]:
     unit, code = "MPa", -1
     if given.kind == "hardness":
         unit, code = "kgf/mm2", SCALES.index(given.scale)
@@ -276,17 +298,17 @@ def _from_strength(
     start = Start(
         Measured(np.array([mean]), {REPEATABILITY: np.asarray(1.0)}),
         np.array([code], dtype=np.int8),
-        _NOTHING if given.force_n is None else np.array([given.force_n]),
-        _NOTHING if given.ball_mm is None else units.to_si(np.array([given.ball_mm]), "mm"),
-        _NOTHING,
-        _NOTHING,
+        NOTHING if given.force_n is None else np.array([given.force_n]),
+        NOTHING if given.ball_mm is None else units.to_si(np.array([given.ball_mm]), "mm"),
+        NOTHING,
+        NOTHING,
         method.plastic_strain,
         method.test_temperature,
         method.reference_temperature,
     )
     own = Spread(u, shared=False, degrees_of_freedom=np.inf)
     found = evaluate(method, inputs, {**spreads, REPEATABILITY: own}, start)
-    return {
+    figures = {
         name: Known(
             float(found.results[name].value[0]),
             float(found.combined[name].u[0]),
@@ -295,11 +317,27 @@ def _from_strength(
         )
         for name in (*_STRESSES, *LATE)
     }
+    saturation = method.inputs.get("indentation.saturation_stress_mpa")
+    state = replace(
+        UNJUDGED,
+        route=method.laws.route,
+        stress=found.stress.value,
+        u_stress=found.reach.u_stress.u,
+        upper_stress_end=found.ends["dislocation_stress_mpa"].upper,
+        unwinding=method.laws.unwinding,
+        unwound=found.strength.unwound,
+        indented_stress=value_of(found.strength.tested_stress),
+        saturation_stress=np.nan if saturation is None else saturation.value,
+        density=found.results["dislocation_density_per_m2"].value,
+        radius_ratio=found.reach.radius_ratio,
+        densest=found.reach.densest,
+    )
+    return figures, state
 
 
 def _from_density(
     method: Method, inputs: Mapping[str, Value], spreads: Mapping[str, Spread], given: _Given
-) -> dict[str, Known]:
+) -> tuple[dict[str, Known], State]:
     """From a density there is no stress to take ends in: y exp(-+ k u / y) is the interval."""
     if method.laws.structure == "cells" and method.laws.taylor.startswith("logarithmic"):
         message = (
@@ -308,12 +346,13 @@ def _from_density(
         )
         raise UsageError(message)
     nowhere = np.array([-1], dtype=np.int8)
-    start = Start(_NOTHING, nowhere, _NOTHING, _NOTHING, _NOTHING, _NOTHING, method.plastic_strain)
+    start = Start(NOTHING, nowhere, NOTHING, NOTHING, NOTHING, NOTHING, method.plastic_strain)
     known = {**spreads, _DENSITY: Spread(given.u, shared=False, degrees_of_freedom=np.inf)}
     rho = Measured(np.array([given.value]), {_DENSITY: np.asarray(1.0)})
     figures = dict.fromkeys(_STRESSES, Known(float("nan")))
     k = float(student_quantile((1.0 + method.coverage) / 2.0, np.array([np.inf]))[0])
-    for name, x in line(method.laws, inputs, rho, start).items():
+    found = line(method.laws, inputs, rho, start)
+    for name, x in found.items():
         if name not in LATE or not isinstance(x, Measured):
             continue
         size = float(combine(x, known).u[0])
@@ -321,14 +360,20 @@ def _from_density(
         with np.errstate(invalid="ignore"):
             factor = float(np.exp(k * size / y))
         figures[name] = Known(y, size, y / factor, y * factor)
-    return figures
+    state = replace(
+        UNJUDGED,
+        density=rho.value,
+        densest=value_of(found.get("wall_density_per_m2", rho)),
+        radius_ratio=value_of(found["radius_ratio"]),
+    )
+    return figures, state
 
 
 def _finished(
     method: Method,
     inputs: Mapping[str, Value],
     figures: Mapping[str, Known],
-    kind: str,
+    remark: str,
     volume_mm3: float | None,
 ) -> Estimate:
     told = {name: _published(name, known) for name, known in figures.items()}
@@ -347,23 +392,8 @@ def _finished(
         total_line_length_m=_times(figures["dislocation_density_per_m2"], volume),
         total_stored_energy_j=_times(figures["stored_energy_j_per_m3"], volume),
         core=core_words(method.inputs, core_alone(method.laws, inputs)),
-        remark=_remark(method, figures, kind),
+        remark=remark,
     )
-
-
-def _remark(method: Method, figures: Mapping[str, Known], kind: str) -> str:
-    stress = figures["dislocation_stress_mpa"].value
-    if kind != "density" and not stress > 0.0:
-        return (
-            "The strength is at or below the baseline: there is no density, and the upper ends are "
-            "what the uncertainty allows."
-        )
-    if kind == "hardness" and not method.laws.unwinding:
-        return (
-            "The state includes the strain that the indent itself put in. Say "
-            "initial_hardening_mpa and saturation_stress_mpa of [indentation] to take it out."
-        )
-    return ""
 
 
 def _times(known: Known, factor: float) -> Known:
