@@ -242,6 +242,19 @@ def test_a_new_metal_needs_its_constants(refusals: Refusals, sheet: str) -> None
     assert "does not give poisson_ratio, burgers_vector_nm, mass_density_kg_per_m3" in cause
 
 
+def test_a_mistyped_name_is_told_once_and_not_as_a_missing_one(
+    refusals: Refusals, sheet: str
+) -> None:
+    (cause,) = refusals(sheet.replace("baseline_mpa", "baselin_mpa"))
+    assert "unknown key 'baselin_mpa'" in cause
+    assert "nearest known name is 'baseline_mpa'" in cause
+    (cause,) = refusals(sheet.replace("id = ", "idd = "))
+    assert "unknown key 'idd'" in cause
+    unknown, missing = refusals(sheet.replace("baseline_mpa", "xyz"))  # like nothing known
+    assert "unknown key 'xyz'" in unknown + missing
+    assert "none of friction_mpa" in unknown + missing
+
+
 def test_says_everything_at_once_and_once_each(refusals: Refusals, sheet: str) -> None:
     text = sheet.replace("edge = 0.5", "edge = 0.4").replace('"copper"', '"coper"')
     text = text.replace("[strength]", "[strength]\nsuperposition_exponent = 3").replace(

@@ -182,6 +182,8 @@ def test_trace_says_which_curve_and_which_lines(make: Make, tmp_path: Path) -> N
     assert 0.002 <= strain - Strip(100.0).stress(0.002) / 118e3 <= 0.0022
     assert found.record["repeatability"]["basis"] == "curve"
     assert found.record["readings"] == []
+    assert "points used 600" in told
+    assert "Readings used" not in told  # the curve's points are told with the curve
     assert {"tensile.force_u_rel"} <= set(found.record["steps"][0]["from"])
 
 
@@ -328,7 +330,7 @@ def test_points_on_request_and_scattered_curves_give_the_same(make: Make, tmp_pa
     found = []
     for name, table in (("straight", curves), ("mixed", mixed)):
         folder = make(sheet, name=name, coupons=coupons, curves=table)
-        outcome = run(folder, tmp_path / name / "results", plots=False)
+        outcome = run(folder, tmp_path / "results" / name, plots=False)
         points = points_of(outcome.path).sort_values(["coupon_id", "point_no"])
         table_out = pd.read_csv(outcome.path / "tensile.csv")
         drop = ["file", "first_line", "last_line", "line"]

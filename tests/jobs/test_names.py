@@ -82,7 +82,7 @@ def results(tmp_path_factory: pytest.TempPathFactory) -> Processed:
         rows += [[HARMLESS[name], i, 98.07, 90 + place + i / 10, "operator-1"] for i in range(5)]
     rows.append([HARMLESS[NAMES[0]], 9, 98.07, "=2*45", "operator-1"])  # set aside, raw text kept
     write("indents.csv", rows)
-    return coldwork.process(folder, folder / "results", plots=True)
+    return coldwork.process(folder, folder.parent / f"{folder.name}-results", plots=True)
 
 
 def raw(results: Processed, table: str) -> list[dict[str, str]]:

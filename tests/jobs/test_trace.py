@@ -214,6 +214,7 @@ def test_a_coupon_with_nothing_has_an_account_too(results: Path) -> None:
     text = trace(results, "NA").text()
     assert "coupon NA" in text
     assert "Readings used: 0" in text
+    assert "from grain_size_um: not given" in text
     assert "Decision: no limit was given" in text
 
 
@@ -236,6 +237,11 @@ def test_an_unknown_coupon_is_answered_with_the_nearest_names(results: Path) -> 
     with pytest.raises(UsageError, match=r"called '=7/A ä<c>'. The nearest: '=7/A ä<b>'") as caught:
         trace(results, "=7/A ä<c>")
     assert caught.value.exit is Exit.USAGE
+
+
+def test_an_unknown_coupon_with_no_near_name_is_answered_with_all_of_few(results: Path) -> None:
+    with pytest.raises(UsageError, match=r"'zz'. There are '=7/A ä<b>', 'NA', '0012'\."):
+        trace(results, "zz")
 
 
 def test_a_folder_without_results_is_told(results: Path, tmp_path: Path) -> None:

@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from coldwork.statistics.rounding import rounded, with_uncertainty
+from coldwork.statistics.rounding import counted, interval_ends, rounded, with_uncertainty
 
 
 def test_the_guides_own_example() -> None:
@@ -70,6 +70,27 @@ def test_the_unit_follows() -> None:
     assert with_uncertainty(183.127, 1.23, "MPa") == "183.1 ± 1.2 MPa"
     assert with_uncertainty(183.127, None, "MPa") == "183.1 MPa"
     assert with_uncertainty(0.25, 0.01, "1") == "0.250 ± 0.010"
+
+
+@pytest.mark.parametrize(
+    ("lower", "upper", "u", "shown"),
+    [
+        (4.1e-5, 1.55e-3, 3.5e-4, ("0.00004", "0.00155")),  # both as the larger end asks for it
+        (3.7e12, 1.02e15, None, ("0.003700e15", "1.020e15")),
+        (0.0, 3.0e12, None, ("0", "3.000e12")),
+        (-2.0e6, 10.0, 1e5, ("-2.00e6", "0.00e6")),
+        (79.8, np.inf, 0.75, ("79.80", "")),
+        (np.nan, np.nan, None, ("", "")),
+    ],
+)
+def test_the_ends_of_an_interval_share_a_power_of_ten(
+    lower: float, upper: float, u: float | None, shown: tuple[str, str]
+) -> None:
+    assert interval_ends(lower, upper, u) == shown
+
+
+def test_nouns_go_with_their_number() -> None:
+    assert [counted(n, "coupon") for n in (0, 1, 2)] == ["0 coupons", "1 coupon", "2 coupons"]
 
 
 def test_takes_numpy_scalars() -> None:

@@ -1,6 +1,6 @@
 """Hold a sheet against its schema and say in plain words what does not fit."""
 
-from collections.abc import Callable, Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping, Set
 from datetime import date, datetime
 from typing import Any, Final
 
@@ -10,7 +10,7 @@ from coldwork.contracts import document
 from coldwork.inputs.causes import Causes
 from coldwork.inputs.keys import spec_of
 from coldwork.inputs.positions import KeyPath
-from coldwork.inputs.words import listed, nearest, shown
+from coldwork.inputs.words import listed, near, nearest, shown
 
 __all__ = ["refuse_misfits"]
 
@@ -37,11 +37,29 @@ def refuse_misfits(causes: Causes, schema: str = "batch_sheet") -> None:
     """
     validator = jsonschema.Draft202012Validator(document(schema))
     instance = _with_dates_as_text(causes.sheet.tables)
-    for error in validator.iter_errors(instance):
-        if not _is_about_a_number(error):
-            for path, what, why, mend in _explained(error):
-                if not causes.within(path):
-                    causes.add(path, what, why, mend)
+    errors = [each for each in validator.iter_errors(instance) if not _is_about_a_number(each)]
+    meant = {path for error in errors for path in _meant(error)}
+    for error in errors:
+        for path, what, why, mend in _explained(error):
+            if not (causes.within(path) or _is_but_a_typo(error, path, meant)):
+                causes.add(path, what, why, mend)
+
+
+def _meant(error: jsonschema.ValidationError) -> Iterable[KeyPath]:
+    """Give the keys that unknown ones stand for, where a known name is near."""
+    if error.validator == "additionalProperties":
+        known = list(_schema(error).get("properties", {}))
+        for key in _found(error):
+            name = None if key in known else near(key, known)
+            if name is not None:
+                yield (*error.absolute_path, name)
+
+
+def _is_but_a_typo(error: jsonschema.ValidationError, path: KeyPath, meant: Set[KeyPath]) -> bool:
+    """Tell whether a key is missing only since its name was mistyped, which is told anyway."""
+    if error.validator == "required":
+        return path in meant
+    return error.validator == "anyOf" and any(key[:-1] == path[:-1] for key in meant)
 
 
 def _with_dates_as_text(tables: dict[str, Any]) -> dict[str, Any]:

@@ -6,7 +6,7 @@ from typing import Final
 
 from coldwork.inputs.positions import KeyPath
 
-__all__ = ["key_text", "listed", "nearest", "shown"]
+__all__ = ["key_text", "listed", "near", "nearest", "shown"]
 
 _LONGEST: Final = 60  # characters of a value that a message repeats
 
@@ -14,13 +14,19 @@ _LONGEST: Final = 60  # characters of a value that a message repeats
 def nearest(name: str, known: Iterable[str]) -> str:
     """Give ``the nearest known name is 'x'``, or the whole choice when nothing is near."""
     choice = sorted(known)
-    lower = {each.lower(): each for each in reversed(choice)}
-    close = get_close_matches(name.lower(), list(lower), n=1, cutoff=0.6)
-    if close:
-        return f"The nearest known name is '{lower[close[0]]}'."
+    close = near(name, choice)
+    if close is not None:
+        return f"The nearest known name is '{close}'."
     if not choice:
         return "There is none to choose from."
     return f"Known are {listed(choice)}."
+
+
+def near(name: str, known: Iterable[str]) -> str | None:
+    """Give the known name that is nearest, None when nothing is near."""
+    lower = {each.lower(): each for each in sorted(known, reverse=True)}
+    close = get_close_matches(name.lower(), list(lower), n=1, cutoff=0.6)
+    return lower[close[0]] if close else None
 
 
 def listed(names: Sequence[str], most: int = 24) -> str:

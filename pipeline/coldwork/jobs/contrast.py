@@ -13,7 +13,7 @@ from coldwork.interval.contrast import Contrast, Side, contrast
 from coldwork.jobs.contrast_sides import BY, Group, Store
 from coldwork.jobs.tables import unit_of
 from coldwork.statistics.one_way import OneWay
-from coldwork.statistics.rounding import rounded, with_uncertainty
+from coldwork.statistics.rounding import interval_ends, rounded, with_uncertainty
 from coldwork.statistics.several import CORRECTIONS, corrected
 
 __all__ = ["QUANTITIES", "STRESS", "Compared", "Contrasts", "contrasts"]
@@ -151,7 +151,7 @@ class Contrasts:
         for side in (a, b):
             yield f"  {side.name}: {with_uncertainty(side.value, _u(side), unit)}"
         told = with_uncertainty(found.difference, found.u_difference, unit)
-        low, high = (rounded(x, None)[0] for x in each.interval)
+        low, high = interval_ends(*each.interval, None)
         yield f"  difference: {told}; {percent} interval {low} to {high}"
         alone = rounded(found.difference, found.u_if_independent)[1]
         yield f"    (if nothing were shared, u would come out as {alone})"

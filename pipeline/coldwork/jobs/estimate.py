@@ -23,7 +23,7 @@ from coldwork.jobs.tables import unit_of
 from coldwork.judge.coupon_rules import State
 from coldwork.measured import Measured, Value, value_of
 from coldwork.rules.forces import SCALES, SECTIONS
-from coldwork.statistics.rounding import with_uncertainty
+from coldwork.statistics.rounding import interval_ends, with_uncertainty
 from coldwork.statistics.student import student_quantile
 
 __all__ = ["Estimate", "Known", "estimate"]
@@ -408,8 +408,7 @@ def _published(name: str, known: Known) -> Known:
 
 def _told(known: Known, unit: str, coverage: float) -> str:
     value = with_uncertainty(known.value, known.u, unit) if isfinite(known.value) else "no value"
-    low = with_uncertainty(known.lower, None, "1") if isfinite(known.lower) else "none"
-    high = with_uncertainty(known.upper, None, "1") if isfinite(known.upper) else "none"
+    low, high = (end or "none" for end in interval_ends(known.lower, known.upper, None))
     nothing = not isfinite(known.lower) and not isfinite(known.upper)
     if nothing or known.lower == known.upper:
         return value

@@ -25,6 +25,7 @@ Retrace: TypeAlias = Callable[[Path, str], Mapping[str, Any]]
 
 _NAMES_COMPARED: Final = 20_000
 _NAMES_SHOWN: Final = 3
+_NAMES_LISTED: Final = 40  # of a result that is small enough to name all of them
 
 
 @dataclass(frozen=True)
@@ -127,8 +128,11 @@ def _find(results: Path, coupon: str) -> tuple[int, dict[str, Any]]:
             return start + place, {name: None if x == "" else x for name, x in row.items()}
         seen.append(ids)
         start += len(ids)
-    near = get_close_matches(coupon, _candidates(seen, coupon), n=_NAMES_SHOWN, cutoff=0.5)
+    names = _candidates(seen, coupon)
+    near = get_close_matches(coupon, names, n=_NAMES_SHOWN, cutoff=0.5)
     hint = f"The nearest: {', '.join(map(repr, near))}." if near else "No name is near it."
+    if not near and start <= _NAMES_LISTED:
+        hint = f"There are {', '.join(map(repr, names))}."
     message = f"{shown(results)}: no coupon is called {coupon!r}. {hint}"
     raise UsageError(message)
 

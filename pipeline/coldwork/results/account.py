@@ -5,12 +5,13 @@ itself holds every digit.
 """
 
 from collections.abc import Iterator, Mapping, Sequence
+from math import nan
 from textwrap import wrap
 from typing import Any, Final, TypeAlias
 
 from coldwork import contracts
 from coldwork.results.curve_account import curve_lines
-from coldwork.statistics.rounding import rounded, with_uncertainty
+from coldwork.statistics.rounding import interval_ends, rounded, with_uncertainty
 
 __all__ = ["HEADING", "account"]
 
@@ -45,13 +46,16 @@ def account(row: _Row, record: _Row, method: _Row) -> str:
     str
         Lines of text, from the answer over raw cells and steps to the decision.
     """
-    curve = record.get("curve")
+    curve, readings = record.get("curve"), record["readings"]
+    of_curve = curve and not readings  # told above: its points are no readings of their own
+    used = (f"Readings used: {len(readings)}", _readings(readings))
+    noun = "Points" if of_curve else "Readings"
     parts = (
         ("", _answer(row, record)),
         ("Coupon as listed", _listed(record["coupon"])),
         *([("Curve", map(_shown, curve_lines(curve)))] if curve else []),
-        (f"Readings used: {len(record['readings'])}", _readings(record["readings"])),
-        (f"Readings set aside: {len(record['set_aside'])}", _set_aside(record["set_aside"])),
+        *([] if of_curve else [used]),
+        (f"{noun} set aside: {len(record['set_aside'])}", _set_aside(record["set_aside"])),
         ("Repeatability of the mean", _facts(record["repeatability"])),
         ("The steps", _steps(record, method)),
         ("Results", _results(record["quantities"])),
@@ -150,6 +154,7 @@ def _steps(record: _Row, method: _Row) -> Iterator[str]:
 def _of_coupon(name: str, value: object, record: _Row, method: _Row) -> str:
     """Tell an input that is neither of the method nor an earlier step."""
     judged, raw = record["repeatability"], record["coupon"]["raw"]
+    of_cell = name in contracts.load("in/coupons").columns
     name = _own_name(name, record["coupon"]["file"], method)
     if value is not None:
         return f"{_number(value)} of this coupon"
@@ -157,7 +162,7 @@ def _of_coupon(name: str, value: object, record: _Row, method: _Row) -> str:
         return f"u {with_uncertainty(judged['u'], None, judged.get('unit') or '1')}, as above"
     if raw.get(name):
         return f"{_shown(raw[name])} ({_place(record['coupon'])})"
-    return "of this coupon"
+    return "not given" if of_cell else "of this coupon"
 
 
 def _own_name(name: str, file: str, method: _Row) -> str:
@@ -238,9 +243,11 @@ def _interval(quantity: _Row) -> str:
     lower, upper = quantity.get("lower"), quantity.get("upper")
     if lower is None and upper is None:
         return ""
-    u = quantity.get("u")
-    low = "no lower end" if lower is None else f"from {rounded(lower, u)[0]}"
-    high = "" if upper is None else f" to {rounded(upper, u)[0]}"
+    low, high = interval_ends(
+        nan if lower is None else lower, nan if upper is None else upper, quantity.get("u")
+    )
+    low = f"from {low}" if low else "no lower end"
+    high = f" to {high}" if high else ""
     coverage, unit = quantity.get("coverage"), quantity.get("unit") or "1"
     share = "" if coverage is None else f"{100 * coverage:g} % "
     ending = ", without an upper end" if upper is None else ""

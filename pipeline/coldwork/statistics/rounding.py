@@ -11,7 +11,7 @@ from decimal import Decimal, localcontext
 from math import isfinite
 from typing import Final
 
-__all__ = ["counted", "rounded", "with_uncertainty"]
+__all__ = ["counted", "interval_ends", "rounded", "with_uncertainty"]
 
 _DIGITS_OF_U: Final = 2
 _DIGITS_ALONE: Final = 4  # of a value whose uncertainty is not known
@@ -55,6 +55,36 @@ def rounded(value: float, u: float | None) -> tuple[str, str]:
     return (mantissa + tail if mantissa else "", spread + tail if spread else "")
 
 
+def interval_ends(lower: float, upper: float, u: float | None) -> tuple[str, str]:
+    """Round both ends of an interval and write them with one power of ten.
+
+    Parameters
+    ----------
+    lower, upper : float
+        The ends; one that is not a finite number comes out empty. [any unit]
+    u : float or None
+        Standard uncertainty of what lies between, as for `rounded`. [unit of `lower`]
+
+    Returns
+    -------
+    lower, upper : str
+
+    Examples
+    --------
+    >>> interval_ends(8.22e13, 1.217e14, None)
+    ('0.8220e14', '1.217e14')
+    """
+    with localcontext(prec=_ALL_DIGITS):
+        ends = [
+            _to_places(Decimal(repr(float(x))), u)[0] if isfinite(x) else None
+            for x in (lower, upper)
+        ]
+        exponent = _exponent(max((abs(x) for x in ends if x is not None), default=Decimal(0)))
+        tail = f"e{exponent}" if exponent else ""
+        low, high = ("" if x is None else f"{_plain(x.scaleb(-exponent)):f}{tail}" for x in ends)
+    return low if lower else "0", high if upper else "0"
+
+
 def with_uncertainty(value: float, u: float | None, unit: str = "1") -> str:
     """Write a value with its uncertainty and its unit.
 
@@ -93,12 +123,15 @@ def _parts(value: float, u: float | None) -> tuple[str, str, int]:
         return "", "", 0
     with localcontext(prec=_ALL_DIGITS):
         x, spread = _to_places(Decimal(repr(float(value))), u)
-        largest = max(abs(x), spread or Decimal(0))
-        exponent = largest.adjusted() if largest else 0
-        if _SMALL <= exponent < _LARGE:
-            exponent = 0
+        exponent = _exponent(max(abs(x), spread or Decimal(0)))
         shown = "" if spread is None else f"{spread.scaleb(-exponent):f}"
         return f"{_plain(x.scaleb(-exponent)):f}", shown, exponent
+
+
+def _exponent(largest: Decimal) -> int:
+    """Give the power of ten that numbers up to a size are written with, 0 for none."""
+    exponent = largest.adjusted() if largest else 0
+    return 0 if _SMALL <= exponent < _LARGE else exponent
 
 
 def _to_places(x: Decimal, u: float | None) -> tuple[Decimal, Decimal | None]:
