@@ -73,6 +73,7 @@ from coldwork.units import to_si
 __all__ = [
     "Start",
     "Strength",
+    "baseline_stress",
     "core_alone",
     "dislocation_stress",
     "energy",
@@ -197,7 +198,7 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
     """
     n = np.shape(value_of(start.mean))
     bulk, pressure, strain, tested = _tested(laws, inputs, start)
-    baseline = _baseline(laws, inputs, start.grain_size)
+    baseline = baseline_stress(laws, inputs, start.grain_size)
     at_reference = _at_reference(laws, inputs, tested, start)
     excess = at_reference - baseline
     as_tested, stress = dislocation_stress(laws, inputs, excess, strain)
@@ -222,6 +223,32 @@ def strength(laws: Laws, inputs: Mapping[str, Value], start: Start) -> Strength:
         held,
         unwound,
     )
+
+
+def baseline_stress(laws: Laws, inputs: Mapping[str, Value], grain_size: Value) -> Value:
+    """Give what dislocations do not carry of a flow stress (relation 4).
+
+    Parameters
+    ----------
+    laws, inputs
+        As for `strength`.
+    grain_size : Value, shape (n,)
+        Prior grain. [m]
+
+    Returns
+    -------
+    Value
+        The baseline, obstacles aside. [Pa]
+    """
+    if laws.baseline == "given":
+        return inputs["strength.baseline_mpa"]
+    parts = [v for name, v in inputs.items() if name.startswith("strength.terms_mpa.")]
+    if "strength.friction_mpa" in inputs:
+        parts.append(inputs["strength.friction_mpa"])
+    if "strength.hall_petch_mpa_m05" in inputs:
+        coefficient = inputs["strength.hall_petch_mpa_m05"]
+        parts.append(apply(HALL_PETCH_STRESS, grain_size=grain_size, coefficient=coefficient))
+    return reduce(add, parts)
 
 
 def dislocation_stress(
@@ -500,18 +527,6 @@ def core_alone(laws: Laws, inputs: Mapping[str, Value]) -> float:
             value_of(_energy_factor(laws, plain)),
         )
     )
-
-
-def _baseline(laws: Laws, inputs: Mapping[str, Value], grain_size: Value) -> Value:
-    if laws.baseline == "given":
-        return inputs["strength.baseline_mpa"]
-    parts = [v for name, v in inputs.items() if name.startswith("strength.terms_mpa.")]
-    if "strength.friction_mpa" in inputs:
-        parts.append(inputs["strength.friction_mpa"])
-    if "strength.hall_petch_mpa_m05" in inputs:
-        coefficient = inputs["strength.hall_petch_mpa_m05"]
-        parts.append(apply(HALL_PETCH_STRESS, grain_size=grain_size, coefficient=coefficient))
-    return reduce(add, parts)
 
 
 def _by_scale(inputs: Mapping[str, Value], scale: NDArray[np.int8], key: str) -> Value:

@@ -20,6 +20,7 @@ from scenario import (
     faults_of_rows,
     faults_of_size,
     faults_of_temperature,
+    faults_of_work,
 )
 from scenario.tables import Table
 
@@ -65,6 +66,7 @@ def files() -> dict[str, str | bytes]:
         faults_of_branch.batch(),
         faults_of_temperature.batch(),
         faults_of_size.batch(),
+        faults_of_work.batch(),
         faults_of_calibration.batch(),
         faults_of_checks.batch(),
         faults_of_curves.pulled_batch(),

@@ -102,15 +102,23 @@ class Batch:
         Tidy files of readings, indents or points; the first one is written to first.
     flow : bool
         Whether the readings are points of flow curves.
+    more : sequence of str, optional
+        Further columns of its coupons.
     """
 
     def __init__(
-        self, folder: str, sheet: str, readings: Sequence[str], *, flow: bool = False
+        self,
+        folder: str,
+        sheet: str,
+        readings: Sequence[str],
+        *,
+        flow: bool = False,
+        more: Sequence[str] = (),
     ) -> None:
         self.folder = folder
         self.faults: list[Fault] = []
         self._sheet = sheet
-        self._coupons = Table(_COUPON_COLUMNS)
+        self._coupons = Table((*_COUPON_COLUMNS, *more))
         columns = _POINT_COLUMNS if flow else _INDENT_COLUMNS
         self._readings = {name: Table(columns) for name in readings}
         self._file = readings[0] if readings else ""

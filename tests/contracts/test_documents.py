@@ -99,6 +99,8 @@ DEFAULTS = {
     "indentation.intercept_mpa": 0.0,
     "indentation.representative_strain": {"value": 0.08, "u": 0.005},
     "indentation.size_effect": "none",
+    "prior_work.from": "stated",
+    "prior_work.initial_stress_mpa": 0.0,
     "indentation.HBW.area": "projected",
     "indentation.HBW.constraint_factor": {"value": 2.8, "u": 0.15},
     "indentation.HBW.intercept_mpa": 0.0,

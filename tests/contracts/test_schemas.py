@@ -60,7 +60,8 @@ ALONG_THE_STRAIN = [
 COLUMNS = {
     "in/coupons": "coupon_id lot_id condition prior_true_strain prior_plastic_work_j_per_m3 "
     "thickness_mm grain_size_um u_grain_size_um sampled_at gauge_length_mm initial_diameter_mm "
-    "width_mm final_diameter_mm neck_radius_mm",
+    "width_mm final_diameter_mm neck_radius_mm rolled_from_mm rolled_to_mm drawn_from_mm "
+    "drawn_to_mm upset_from_mm upset_to_mm",
     "in/indents": "coupon_id indent_no scale force_n d1_um d2_um hardness ball_mm x_mm y_mm "
     "edge_mm dwell_s temperature_c measured_at operator tester",
     "in/flow_stress": "coupon_id reading_no plastic_strain flow_stress_mpa strain_rate_per_s "

@@ -23,6 +23,7 @@ from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.calibrations import judge_ranges
 from coldwork.judge.coupon_rules import State, judge_coupon_cells, judge_coupons, judge_scales
 from coldwork.judge.printed import judge_printed
+from coldwork.judge.prior import judge_prior
 from coldwork.judge.size_effects import judge_size_effects
 from coldwork.judge.temperatures import judge_temperatures
 from coldwork.reduce.flow import reduce_flow
@@ -326,6 +327,19 @@ def sized(effect: str, line: int, bulk: float) -> Fires:
     return run
 
 
+def worked(strain: float, work: float, *, impossible: bool = False) -> Fires:
+    """A coupon whose dimensions say 0.3 and whose curve says 60 MJ/m3."""
+
+    def run() -> Findings:
+        findings = Findings(1)
+        stated, found = np.array([[strain], [work]]), np.array([[0.3], [6e7]])
+        pairs = (stated[0], stated[1]), (found[0], found[1])
+        judge_prior(findings, coupons(20.0), *pairs, np.array([impossible]))
+        return findings
+
+    return run
+
+
 DUE: Final = date(1970, 1, 11)  # the last day covered is day 10 of the epoch
 T1: Final = Machine("T1", an_input("tester:T1", 0.0), DUE)
 CHECKED: Final = Machine(  # checked on days 4 and 8 of the epoch, the second time out of limits
@@ -351,6 +365,9 @@ CASES: Final[list[tuple[Rule, Fires, Fires]]] = [
     (C.NO_READINGS, judged(readings_used=0), judged(readings_used=1)),
     (C.MIXED_SCALES, two_scales, indents()),
     (C.MIXED_FORCES, indents(force_n=[98.07, 98.07, 49.03]), indents(force_n=[98.07, 98.0, 98.1])),
+    (C.PRIOR_DIMENSIONS, worked(NAN, NAN, impossible=True), worked(NAN, NAN)),
+    (C.PRIOR_STRAIN_DIFFERS, worked(0.316, 6e7), worked(0.314, 6e7)),
+    (C.PRIOR_WORK_DIFFERS, worked(0.3, 7.3e7), worked(0.3, 7.1e7)),
     (C.SIZE_EFFECT_UNFITTED, sized("fitted", -1, NAN), sized("fitted", 0, 0.9e9)),
     (C.SIZE_EFFECT_TOO_LARGE, sized("strength", -1, NAN), sized("strength", -1, 1e5)),
     (C.SCALE_WITHOUT_CONSTANTS, scales(method(), HK), scales(WITH_C, HK)),

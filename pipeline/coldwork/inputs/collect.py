@@ -169,6 +169,8 @@ def _used_keys(laws: Laws, given: Mapping[KeyName, Given], *, curves: bool) -> l
     unread = set() if laws.route == "indent" else {"indentation"}
     if not curves:
         unread.add("tensile")
+    if laws.prior_work == "stated":
+        unread.add("prior_work")
     keys = [*number_specs(), *(key for key in given if key[:2] == TERMS)]
     return [key for key in keys if key not in unused and key[0] not in unread]
 

@@ -57,6 +57,7 @@ WINDOWS: Final[Mapping[str, tuple[float, float]]] = {
     "size_strength_gpa2_um": (0.0, 1e4),
     "initial_hardening_mpa": (1e-3, 1e6),
     "saturation_stress_mpa": (1e-3, 1e6),
+    "initial_stress_mpa": (0.0, 1e5),
     "taylor_factor": (0.1, 100.0),
     "coefficient": (1e-3, 100.0),
     "slope_n_per_m": (1e-3, 1e5),

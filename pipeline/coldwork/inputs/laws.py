@@ -70,6 +70,7 @@ def laws_of(tables: Mapping[str, Any], crystal: Crystal | None = None) -> Laws:
         structure=choice(tables, "structure", "kind"),
         core=choice(tables, "line_energy", "core_energy_from"),
         temperature=_temperature(tables),
+        prior_work=choice(tables, "prior_work", "from"),
         size_effect=choice(tables, "indentation", "size_effect") if route == "indent" else "none",
     )
 

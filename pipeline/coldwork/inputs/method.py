@@ -61,6 +61,9 @@ class Laws:
     size_effect : str
         What is taken out of small Vickers indents: ``none``, the ``fitted`` effect of each
         condition, or that of a characteristic ``length`` or of a ``strength``.
+    prior_work : str
+        Where the work of the prior deformation comes from: ``stated``, or a ``voce`` curve
+        where none is.
     """
 
     route: str
@@ -81,6 +84,7 @@ class Laws:
     core: str = "sheet"
     temperature: str = "none"
     size_effect: str = "none"
+    prior_work: str = "stated"
 
 
 @dataclass(frozen=True)

@@ -22,6 +22,7 @@ from coldwork.inputs.limits import limits_of, refuse_bad_limits, refuse_bad_test
 from coldwork.inputs.metal import Metal, metal_of
 from coldwork.inputs.method import Laws, Method
 from coldwork.inputs.numbers import Given, as_number, refuse_unreal_numbers
+from coldwork.inputs.prior_work import refuse_bad_prior_work
 from coldwork.inputs.ranges import refuse_bad_ranges
 from coldwork.inputs.size_effect import refuse_bad_size_effect
 from coldwork.inputs.source import Sheet, read_sheet
@@ -99,6 +100,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_bad_mix(causes)
     refuse_bad_ranges(causes, given)
     refuse_bad_temperature(causes, given, material)
+    refuse_bad_prior_work(causes)
     refuse_bad_core(causes, material)
     crystal = crystal_of(causes, given, material)
     refuse_bad_testers(causes)

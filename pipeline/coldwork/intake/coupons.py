@@ -33,6 +33,12 @@ _DIMENSIONS: Final = (
     "width_mm",
     "final_diameter_mm",
     "neck_radius_mm",
+    "rolled_from_mm",
+    "rolled_to_mm",
+    "drawn_from_mm",
+    "drawn_to_mm",
+    "upset_from_mm",
+    "upset_to_mm",
 )
 _U_WITHOUT_VALUE: Final = "give the grain size that this is the uncertainty of"
 
@@ -87,8 +93,12 @@ class Coupons:
     sources : tuple of SourceFile
         What was read.
     dimensions : mapping of str to ndarray of float64, shape (n,)
-        By column what a tensile or compression test needs of the coupon's shape; columns
-        that no file has are left out. [m]
+        By column what a tensile or compression test needs of the coupon's shape, and what
+        the metal was rolled, drawn or upset from and to; columns that no file has are left
+        out. [m]
+    work_stated : ndarray of bool, shape (n,), or None
+        Where `prior_plastic_work` is that of the table and was not computed; None before
+        anything was.
     """
 
     ids: pa.StringArray
@@ -107,6 +117,7 @@ class Coupons:
     sources: tuple[SourceFile, ...]
     lookup: Lookup = field(repr=False, compare=False)
     dimensions: Mapping[str, NDArray[np.float64]] = field(default_factory=dict)
+    work_stated: NDArray[np.bool_] | None = None
 
     def __len__(self) -> int:
         """Give the number of coupons."""

@@ -13,6 +13,7 @@ __all__ = [
     "INDENT",
     "MEAN_DENSITY",
     "OVER_BASELINE",
+    "PRIOR_WORK",
     "REGIONS",
     "REPORTED",
     "TEMPERATURE",
@@ -154,6 +155,13 @@ BULK: Final = Line(
     "bulk_hardness",
     "the mean hardness without the effect of size, {size}",
     ("hardness", "<size>"),
+)
+PRIOR_WORK: Final = Line(
+    "plastic work before the test",
+    "relation 9; Voce 1948",
+    "prior_plastic_work_j_per_m3",
+    "as coupons.csv states it, or along the Voce curve over the prior strain where it states none",
+    ("baseline_stress_mpa", "<prior>"),
 )
 TEMPERATURE: Final = Line(
     "temperature of the test",

@@ -13,7 +13,8 @@ from coldwork.intake.coupons import Coupons
 from coldwork.interval.before import before_superposition
 from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_ends
 from coldwork.interval.reach import LATE, Reach
-from coldwork.measured import Measured, Value, broadcast, value_of
+from coldwork.jobs.prior import work_of
+from coldwork.measured import Measured, Value, broadcast, kept_where, select, value_of
 from coldwork.reduce.reduced import Reduced
 from coldwork.sampling.sampler import Sampled
 from coldwork.scatter import Repeatability
@@ -156,11 +157,9 @@ def start_of(
     if np.nansum(coupons.u_grain_size) > 0.0:
         grain = Measured.of_input(GRAIN, coupons.grain_size[rows])
         own[GRAIN] = Spread(u_grain, shared=False, degrees_of_freedom=np.inf)
-    work = np.where(  # an annealed coupon's work is 0, and no fraction of it is stored
-        coupons.prior_plastic_work[rows] > 0.0, coupons.prior_plastic_work[rows], np.nan
-    )
+    work = _prior_work(method, coupons, rows, grain)
     if method.laws.route == "indent" and not method.laws.unwinding:
-        work = np.full(work.shape, np.nan)  # the state includes the indent's own strain
+        work = np.full(mean.shape, np.nan)  # the state includes the indent's own strain
     start = Start(
         Measured(mean, slopes),
         reduced.scale[rows],
@@ -174,6 +173,18 @@ def start_of(
         reduced.line[rows],
     )
     return start, own
+
+
+def _prior_work(method: Method, coupons: Coupons, rows: slice, grain: Value) -> Value:
+    """Give the work as it is stated, else along the curve; none of an annealed coupon's is 0."""
+    value = coupons.prior_plastic_work[rows]
+    work = np.where(value > 0.0, value, np.nan)
+    stated = coupons.work_stated
+    if method.laws.prior_work == "stated" or stated is None or bool(stated[rows].all()):
+        return work
+    curve = work_of(method, inputs_of(method)[0], coupons.prior_true_strain[rows], grain)
+    curve = kept_where(curve, value > 0.0)
+    return select(stated[rows].astype(np.int8), {1: work, 0: curve})
 
 
 def _temperature(method: Method, tested: NDArray[np.float64]) -> NDArray[np.float64]:

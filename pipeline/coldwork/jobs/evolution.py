@@ -82,7 +82,9 @@ def evolution_table(batch: Gathered, rows: slice) -> pa.Table:
 
 def _prior_work(batch: Gathered, rows: slice) -> FloatArray:
     """Work before the test; 0 where no strain came before it. [J/m^3]."""
-    work = batch.coupons.prior_plastic_work[rows]
+    work, stated = batch.coupons.prior_plastic_work[rows], batch.coupons.work_stated
+    if stated is not None:  # one along a curve has an uncertainty that a column cannot hold
+        work = np.where(stated[rows], work, np.nan)
     unstrained = batch.coupons.prior_true_strain[rows] == 0.0
     return np.where(np.isnan(work) & unstrained, 0.0, work)
 

@@ -24,10 +24,12 @@ from coldwork.intake.sources import check_headers
 from coldwork.jobs.curves import CurveReading, check_curves, read_curves
 from coldwork.jobs.drawn import Pools
 from coldwork.jobs.kept import KeptReadings
+from coldwork.jobs.prior import prior_of, with_prior
 from coldwork.jobs.verification import verified
 from coldwork.judge.batch_rules import judge_inputs
 from coldwork.judge.coupon_rules import judge_coupon_cells, judge_scales
 from coldwork.judge.printed import judge_printed
+from coldwork.judge.prior import judge_prior
 from coldwork.reduce.reduced import Reduced
 from coldwork.reduce.size_lines import with_size_lines
 from coldwork.reduce.stream import Byproducts, reduce_batch
@@ -197,6 +199,8 @@ def gather(
     excluding = _files(method, "exclusions", method.exclusions)
     curves = _how_curves(method, block_bytes, pictures=pictures, keep=points)
     coupons = _coupons(method, (files, excluding), curves, block_bytes)
+    prior = prior_of(method, coupons)
+    coupons = with_prior(coupons, prior)
     exclusions = (
         read_exclusions(excluding, coupons, method.timezone) if excluding.paths else no_exclusions()
     )
@@ -218,6 +222,8 @@ def gather(
     scatter = repeatability(method, found.reduced, coupons.conditions)
     _note_scatter(beside.findings, scatter)
     judge_coupon_cells(beside.findings, method, coupons)
+    stated, found_of = (prior.stated_strain, prior.stated_work), (prior.strain, prior.work)
+    judge_prior(beside.findings, coupons, stated, found_of, prior.impossible)
     judge_scales(beside.findings, method, found.reduced.scale)
     judge_inputs(beside.findings, method)
     judge_printed(beside.findings, found.printed, files.names)

@@ -26,6 +26,7 @@ from coldwork.jobs.chain_words import (
     INDENT,
     MEAN_DENSITY,
     OVER_BASELINE,
+    PRIOR_WORK,
     REGIONS,
     REPORTED,
     TEMPERATURE,
@@ -69,6 +70,7 @@ _WITHOUT_COLUMN: Final = {
     "reference_stress_mpa": "MPa",
     "bulk_hardness": "kgf/mm2",
     "excess_mpa": "MPa",
+    "prior_plastic_work_j_per_m3": "J/m3",
     "tested_stress_mpa": "MPa",
     "test_temperature_c": "Cel",
     "wall_density_per_m2": "m-2",
@@ -220,7 +222,7 @@ def _brought_to_reference(laws: Laws, lines: tuple[Line, ...]) -> tuple[Line, ..
 
 
 def _at_one_temperature(laws: Laws) -> tuple[Line, ...]:
-    energy = (*_densities(laws), *ENERGY)
+    energy = (*_densities(laws), *_energies(laws))
     if laws.flow_from == "curves":
         return (*FLOW_OF_CURVE, *OVER_BASELINE[laws.superposed], *energy)
     if laws.route == "flow":
@@ -237,6 +239,15 @@ def _indented(laws: Laws) -> tuple[Line, ...]:
     several = f"{mean.explanation}; of several forces the root of the mean square"
     mean = mean._replace(explanation=several)
     return (mean, BULK, pressure._replace(inputs=("bulk_hardness",)), *rest)
+
+
+def _energies(laws: Laws) -> tuple[Line, ...]:
+    """Put the work before the fraction of it, where a curve may have given it."""
+    if laws.prior_work == "stated":
+        return ENERGY
+    *energies, fraction = ENERGY
+    told = fraction._replace(explanation="over the plastic work before the test")
+    return (*energies, PRIOR_WORK, told)
 
 
 def _densities(laws: Laws) -> tuple[Line, ...]:
@@ -258,6 +269,7 @@ def _values(evaluated: Evaluated) -> Mapping[str, Value]:
     """Give every quantity of the chain by name, in SI, those too that no table has."""
     half = evaluated.strength
     return {
+        "prior_plastic_work_j_per_m3": evaluated.start.plastic_work,
         "bulk_hardness": np.nan if half.bulk_hardness is None else half.bulk_hardness,
         "pressure_mpa": np.nan if half.pressure is None else half.pressure,
         "test_temperature_c": evaluated.start.temperature,
@@ -297,12 +309,21 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
         "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
         "<unwinding>": _of_indentation(method, *unwinding),
         "<radius>": radius,
+        "<prior>": _of_curve(method),
         "<size>": tuple(
             n for n in method.inputs if n in _SIZE_INPUTS or n.startswith("size_effect:")
         ),
         "<structure>": tuple(structure),
         "<elasticity>": tuple(name for name in method.inputs if name in _ELASTICITY),
     }
+
+
+def _of_curve(method: Method) -> tuple[str, ...]:
+    """Give the constants of the Voce curve of the prior work."""
+    own = tuple(n for n in method.inputs if n.startswith("prior_work."))
+    return (
+        own if method.laws.route == "flow" else (*own, *_of_indentation(method, *_FOR_ALL_SCALES))
+    )
 
 
 def _of_indentation(method: Method, *keys: str) -> tuple[str, ...]:

@@ -54,6 +54,9 @@ __all__ = [
     "NO_REPEATABILITY",
     "NO_SHEAR_MODULUS",
     "OUTSIDE_CALIBRATION",
+    "PRIOR_DIMENSIONS",
+    "PRIOR_STRAIN_DIFFERS",
+    "PRIOR_WORK_DIFFERS",
     "SCALE_WITHOUT_CONSTANTS",
     "SCATTER",
     "SIZE_EFFECT_TOO_LARGE",
@@ -222,6 +225,36 @@ STORED_FRACTION_UNUSUAL: Final = Rule(
     "Work, baseline or Taylor coefficient may be off.",
     upper=0.15,
 )
+PRIOR_DIMENSIONS: Final = Rule(
+    "prior-dimensions",
+    Level.WARNING,
+    "the dimensions of the prior deformation give no strain: one of a pair is missing, or the"
+    " metal would have grown thicker",
+    None,
+    None,
+    "volume is kept in plastic deformation (common practice)",
+    "Before and after may have changed places; no strain is taken from them.",
+)
+PRIOR_STRAIN_DIFFERS: Final = Rule(
+    "prior-strain-differs",
+    Level.WARNING,
+    "the prior strain that is stated differs by more than 5 % from that of the dimensions;"
+    " limit as the dimensions have it",
+    None,
+    "1",
+    "R. von Mises, Nachr. Ges. Wiss. Goettingen (1913) 582; the 5 % are common practice",
+    "It may be a reduction or a thickness strain and no equivalent one. What is stated is used.",
+)
+PRIOR_WORK_DIFFERS: Final = Rule(
+    "prior-work-differs",
+    Level.WARNING,
+    "the prior plastic work that is stated differs by more than a fifth from that along the Voce"
+    " curve; limit as the curve has it",
+    None,
+    "J/m3",
+    "E. Voce, J. Inst. Met. 74 (1948) 537; the fifth is common practice",
+    "Work, strain or curve is off, and the stored fraction with it. What is stated is used.",
+)
 
 COUPON_RULES: Final = (
     *COUPON_ERRORS,
@@ -237,6 +270,9 @@ COUPON_RULES: Final = (
     FEW_CORE_RADII,
     OUTSIDE_CALIBRATION,
     BAD_COUPON_CELL,
+    PRIOR_DIMENSIONS,
+    PRIOR_STRAIN_DIFFERS,
+    PRIOR_WORK_DIFFERS,
     UNDER_FIVE_READINGS,
     INDENT_ADDS_STRAIN,
     DENSITY_UNUSUAL,
