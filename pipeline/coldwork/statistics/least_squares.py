@@ -88,7 +88,7 @@ def fit_least_squares(
 
     References
     ----------
-    More, in Numerical Analysis, Lecture Notes in Mathematics 630 (1978) 105-116,
+    More, in Numerical Analysis, Springer LNM 630 (1978) 105-116,
     doi:10.1007/BFb0067700 (Levenberg-Marquardt as it is used here).
     """
     observed, first = finite("y", y), finite("start", start)
