@@ -88,19 +88,6 @@ def test_a_lone_reading_without_a_pool_asks_for_a_person(
     assert "asks for a person: 1 incomplete" in result.stderr
 
 
-def test_results_do_not_stand_among_inputs(cw: Cw, batch: Batch, tmp_path: Path) -> None:
-    folder = batch()
-    before = sorted(folder.iterdir())
-    (tmp_path / "link").symlink_to(folder, target_is_directory=True)
-    for into in (folder, folder / "results", tmp_path / "link" / "deep" / "er"):
-        result = process(cw, folder, "--into", into)
-        assert result.exit_code == 2
-        assert "among inputs" in result.stderr
-    result = cw("compare", folder, "--vary", "structure.kind=uniform", "--into", folder / "x")
-    assert result.exit_code == 2
-    assert sorted(folder.iterdir()) == before
-
-
 @pytest.mark.parametrize(
     "words",
     [

@@ -23,7 +23,6 @@ from coldwork.jobs.gather import Gathered, gather
 from coldwork.jobs.judging import find_in_slice
 from coldwork.jobs.tables import unit_of
 from coldwork.results.apart import open_apart
-from coldwork.results.target import refuse_among
 from coldwork.units import from_si
 
 __all__ = ["QUANTITIES", "Compared", "compare", "compared"]
@@ -141,8 +140,6 @@ def compare(
         If the folder is there already or cannot be written.
     """
     sheet = read_sheet(folder)
-    if into is not None:
-        refuse_among(folder, into)
     method = method_of(sheet, folder)
     choices = choices_of(read_sheet(folder), method, varied)
     batch, _ = gather(method)

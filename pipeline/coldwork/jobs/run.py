@@ -24,7 +24,7 @@ from coldwork.results.documents import dump
 from coldwork.results.lines import LineWriter
 from coldwork.results.records import Common, Slice, build, seal
 from coldwork.results.tables import TableWriter
-from coldwork.results.target import open_target, refuse_among
+from coldwork.results.target import open_target
 
 __all__ = ["Outcome", "record_again", "run"]
 
@@ -118,8 +118,6 @@ def run(
 
     Raises
     ------
-    UsageError
-        If results would come to stand among the batch's own files.
     BatchRefused
         If the batch cannot be trusted as a whole; nothing is written.
     ResultsNotWritten
@@ -128,7 +126,6 @@ def run(
     tell = progress or _silent
     started = datetime.now(UTC)
     method = read_method(folder)
-    refuse_among(folder, into / method.batch_id)
     with open_target(into, method.batch_id, replace=replace, reason=reason) as target:
         full = method.detail == "full"
         tell("reading")

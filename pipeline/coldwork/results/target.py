@@ -15,14 +15,14 @@ from itertools import count
 from pathlib import Path
 from typing import Final
 
-from coldwork.errors import ResultsNotWritten, UsageError
+from coldwork.errors import ResultsNotWritten
 from coldwork.results.disk import HashedFile, Output, shown, sync_folder, writing
 from coldwork.results.documents import dump
 from coldwork.results.lines import LineWriter
 from coldwork.results.staging import PREFIX, make_folder, staging
 from coldwork.results.tables import TableWriter
 
-__all__ = ["REPLACED", "Target", "open_target", "refuse_among"]
+__all__ = ["REPLACED", "Target", "open_target"]
 
 REPLACED: Final = "replaced"
 _MANIFEST: Final = "manifest.json"
@@ -69,29 +69,6 @@ def open_target(
             yield target
         finally:
             target.abandon()
-
-
-def refuse_among(inputs: Path, results: Path) -> None:
-    """Refuse to put results among the files that they are made from.
-
-    Parameters
-    ----------
-    inputs : Path
-        Folder of what comes in.
-    results : Path
-        Where results are to stand.
-
-    Raises
-    ------
-    UsageError
-        If that is the folder itself or lies in it.
-    """
-    if results.resolve().is_relative_to(inputs.resolve()):
-        message = (
-            f"{shown(results)}: lies in the batch folder {shown(inputs)}, and results do not stand "
-            "among inputs. Choose another folder with --into."
-        )
-        raise UsageError(message)
 
 
 class Target:
