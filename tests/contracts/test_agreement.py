@@ -43,6 +43,7 @@ PER_TABLE: dict[str, dict[str, list[Any]]] = {
     "in/exclusions": {"excluded_by": ["operator-1"] * ROWS, "excluded_at": ["2026-03-01"] * ROWS},
     "out/set_aside": {"reason": ["scratch under the indent", None, None]},
     "out/compare_choices": {"choice_no": [1, 2, 3]},
+    "out/plan": {"indents_per_coupon": [1, 2, 3]},
     "out/decisions": {"rule": ["simple", "guarded", "probability"]},
 }
 SAMPLE = {"datetime": "2026-03-01T10:00:00Z", "string": "text", "boolean": True}

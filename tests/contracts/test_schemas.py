@@ -130,6 +130,8 @@ COLUMNS = {
     "out/compare": "coupon_id choice_no dislocation_density_per_m2 u_dislocation_density_per_m2 "
     "ratio_dislocation_density_per_m2 stored_energy_j_per_g u_stored_energy_j_per_g "
     "ratio_stored_energy_j_per_g",
+    "out/plan": "quantity force_n indents_per_coupon coupons relative_u half_width risk "
+    "cost cheapest",
     "out/compare_choices": "choice_no choice quantity coupons median_ratio least_ratio "
     "greatest_ratio relative_u relative_u_of_choice beyond_u",
 }

@@ -13,6 +13,7 @@ from coldwork.cli import (
     inspect,
     materials,
     new,
+    plan,
     process,
     trace,
 )
@@ -37,6 +38,7 @@ for command in (
     trace,
     compare,
     contrast,
+    plan,
     anneal,
     estimate,
     calibrate,

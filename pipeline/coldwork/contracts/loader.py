@@ -46,6 +46,7 @@ _ORDER: Final = {
         "anneal",
         "compare",
         "compare_choices",
+        "plan",
     ),
     "documents": (
         "batch_sheet",

@@ -192,18 +192,28 @@ class Store:
         mean = {name: Part(part.size / n, part.degrees_of_freedom) for name, part in shared.items()}
         return Side(group.name, float(values.mean()), tuple(parts), mean), beyond
 
-    def _parts(
-        self, coupons: Sequence[str], quantity: str
-    ) -> tuple[list[list[Part]], dict[str, Part]]:
-        """Give own contributions coupon by coupon, and sums of the shared ones by identity."""
+    def budget_rows(self, coupons: Sequence[str], quantity: str) -> list[dict[str, Any]]:
+        """Give the rows of the budget that are about some coupons and one quantity."""
         budget = self._budget
         wanted = pc.and_(
             pc.is_in(budget.column("quantity"), pa.array([quantity], pa.string())),
             pc.is_in(budget.column("coupon_id"), pa.array(coupons, pa.string())),
         )
+        return list(budget.filter(wanted).to_pylist())
+
+    def readings_of(self, group: Group) -> pa.Table:
+        """Give the used readings of a group's coupons."""
+        readings = read_table(self._folder, "readings")
+        wanted = pc.is_in(readings.column("coupon_id"), pa.array(group.coupons, pa.string()))
+        return readings.filter(wanted)
+
+    def _parts(
+        self, coupons: Sequence[str], quantity: str
+    ) -> tuple[list[list[Part]], dict[str, Part]]:
+        """Give own contributions coupon by coupon, and sums of the shared ones by identity."""
         own: dict[str, list[Part]] = {name: [] for name in coupons}
         shared: dict[str, Part] = {}
-        for row in budget.filter(wanted).to_pylist():
+        for row in self.budget_rows(coupons, quantity):
             size, freedom = row["contribution"], row["degrees_of_freedom"]
             part = Part(float("nan") if size is None else size, inf if freedom is None else freedom)
             if row["own_or_shared"] == "own":
@@ -234,9 +244,7 @@ class Store:
 
         Points of a flow curve are no repeats, so this is for hardness readings alone.
         """
-        readings = read_table(self._folder, "readings")
-        wanted = pc.is_in(readings.column("coupon_id"), pa.array(group.coupons, pa.string()))
-        table = readings.filter(wanted)
+        table = self.readings_of(group)
         values = np.asarray(
             table.column("hardness").to_numpy(zero_copy_only=False), dtype=np.float64
         )
