@@ -139,7 +139,7 @@ def test_the_sheet_that_is_changed_fits() -> None:
     assert isinstance(read(as_toml(VALID)), Method)
 
 
-@settings(max_examples=400, deadline=None)
+@settings(max_examples=200, deadline=None)
 @given(st.sampled_from(PLACES), st.sampled_from(KEYS), values, st.booleans())
 def test_any_value_anywhere(
     path: tuple[str | int, ...],
@@ -150,7 +150,7 @@ def test_any_value_anywhere(
     read(as_toml(changed(path, key, value, add=add)))
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=60, deadline=None)
 @given(st.dictionaries(st.sampled_from(KEYS) | texts, values, max_size=5))
 def test_any_document(tables: dict[str, Any]) -> None:
     assert isinstance(read(as_toml(tables)), BatchRefused)
@@ -166,7 +166,7 @@ def test_any_key_may_be_missing(path: tuple[str | int, ...]) -> None:
     read(as_toml(tables))
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(st.binary(max_size=80) | st.text(max_size=80).map(str.encode))
 def test_any_bytes(data: bytes) -> None:
     with tempfile.TemporaryDirectory() as place:

@@ -313,7 +313,7 @@ def cells_of(stream: ReadingStream) -> list[list[Any]]:
     return found
 
 
-@settings(deadline=None, max_examples=150, suppress_health_check=[HealthCheck.too_slow])
+@settings(deadline=None, max_examples=80, suppress_health_check=[HealthCheck.too_slow])
 @given(batches(), st.sampled_from([64, 2 << 20]))
 def test_what_was_written_through_a_layout_is_read_back(
     batch: tuple[Plan, list[dict[str, Cell]]], block_bytes: int

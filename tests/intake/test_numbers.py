@@ -108,7 +108,7 @@ def test_a_part_of_a_longer_array() -> None:
     assert parse_counts(cells("x", "", "7", "8").slice(1)).values.tolist() == [-1, 7, 8]
 
 
-@settings(deadline=None, max_examples=300)
+@settings(deadline=None, max_examples=150)
 @given(st.lists(st.floats(allow_nan=False, allow_infinity=False), min_size=1, max_size=8))
 def test_gives_back_every_double_as_python_writes_it(numbers: list[float]) -> None:
     parsed = parse_floats(cells(*map(repr, numbers)))
@@ -116,7 +116,7 @@ def test_gives_back_every_double_as_python_writes_it(numbers: list[float]) -> No
     assert parsed.values.tobytes() == np.array(numbers).tobytes()  # to the last bit, and -0.0
 
 
-@settings(deadline=None, max_examples=500)
+@settings(deadline=None, max_examples=150)
 @given(st.lists(st.from_regex(GRAMMAR, fullmatch=True), min_size=1, max_size=4))
 def test_takes_the_whole_grammar(texts: list[str]) -> None:
     parsed = parse_floats(cells(*texts))
@@ -128,7 +128,7 @@ def test_takes_the_whole_grammar(texts: list[str]) -> None:
         assert bad or value == expected
 
 
-@settings(deadline=None, max_examples=500)
+@settings(deadline=None, max_examples=150)
 @given(
     st.lists(
         st.one_of(st.text("0123456789.eE+-", max_size=8), st.text(max_size=6)),

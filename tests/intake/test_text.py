@@ -100,7 +100,7 @@ CELLS = st.text(st.characters(exclude_characters="\r\n\0", exclude_categories=["
 FORMS = st.sampled_from([csv.QUOTE_MINIMAL, csv.QUOTE_ALL])
 
 
-@settings(deadline=None, max_examples=150)
+@settings(deadline=None, max_examples=80)
 @given(
     st.lists(st.tuples(CELLS, CELLS, CELLS), max_size=12),
     st.lists(st.integers(0, 2), min_size=12, max_size=12),

@@ -253,7 +253,7 @@ def both(found: Inspected) -> None:
     json.dumps(found.as_json(), allow_nan=False).encode("utf-8")
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=60, deadline=None)
 @given(
     data=st.binary(max_size=400), mark=st.sampled_from([b"", b"PK\3\4", b"\xff\xfe", b"\xd0\xcf"])
 )
@@ -265,7 +265,7 @@ def test_no_bytes_upset_it(
     both(inspect(path))
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=60, deadline=None)
 @given(
     text=st.text(alphabet="0123456789.,;\t |-:/\r\n\"'#eEAPM%", max_size=200),
     encoding=st.sampled_from(["utf-8", "utf-16", "utf-16-le", "cp1252"]),
