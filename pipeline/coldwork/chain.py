@@ -158,7 +158,8 @@ class Strength:
     flow_stress, baseline_stress, dislocation_stress : Value
         As their columns say. [Pa]
     strain : Value
-        What the test itself added: the indent's representative strain. [1]
+        What the test itself added and unwinding takes out: the indent's representative
+        strain, or the reported strain of a flow curve that is unwound beside it. [1]
     test_strain : ndarray, shape (n,)
         Plastic strain of the test in the state that the row describes. [1]
     unwound : ndarray of bool, shape (n,)
@@ -570,7 +571,7 @@ def _tested(
 ) -> tuple[Value | None, Value | None, Value, Value]:
     """Give hardness without the effect of size, pressure, strain and flow stress as tested."""
     if laws.route == "flow":
-        return None, None, 0.0, start.mean
+        return None, None, start.plastic_strain if laws.unwinding else 0.0, start.mean
     present = [k for k in range(len(SCALES)) if bool((start.scale == k).any())]
     bulk = select(start.scale, {k: _bulk_hardness(laws, inputs, k, start) for k in present})
     sized = replace(start, mean=bulk)

@@ -17,6 +17,7 @@ from scenario import (
     faults_of_grains,
     faults_of_indents,
     faults_of_instruments,
+    faults_of_routes,
     faults_of_rows,
     faults_of_size,
     faults_of_temperature,
@@ -72,6 +73,7 @@ def files() -> dict[str, str | bytes]:
         faults_of_curves.pulled_batch(),
         faults_of_curves.pressed_batch(),
         faults_of_instruments.batch(),
+        faults_of_routes.batch(),
     )
     found: dict[str, str | bytes] = {"planted-faults/house.toml": _HOUSE}
     table = Table(("batch", "coupon_id", "reading_no", "rule_or_reason", "file", "line", "planted"))

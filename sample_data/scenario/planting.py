@@ -104,6 +104,8 @@ class Batch:
         Whether the readings are points of flow curves.
     more : sequence of str, optional
         Further columns of its coupons.
+    points : sequence of str
+        Tidy files of points that stand beside indents.
     """
 
     def __init__(
@@ -114,6 +116,7 @@ class Batch:
         *,
         flow: bool = False,
         more: Sequence[str] = (),
+        points: Sequence[str] = (),
     ) -> None:
         self.folder = folder
         self.faults: list[Fault] = []
@@ -121,6 +124,7 @@ class Batch:
         self._coupons = Table((*_COUPON_COLUMNS, *more))
         columns = _POINT_COLUMNS if flow else _INDENT_COLUMNS
         self._readings = {name: Table(columns) for name in readings}
+        self._readings |= {name: Table(_POINT_COLUMNS) for name in points}
         self._file = readings[0] if readings else ""
         self._extra: dict[str, Table] = {}
         self._whole: dict[str, str | bytes] = {}

@@ -123,6 +123,10 @@ COLUMNS = {
     "out/expected_heat": "coupon_id stored_energy_j_per_g expected_heat_j_per_g "
     "u_own_expected_heat_j_per_g u_shared_expected_heat_j_per_g u_expected_heat_j_per_g "
     "lower_expected_heat_j_per_g upper_expected_heat_j_per_g",
+    "out/routes": "coupon_id test_strain_indent dislocation_stress_indent_mpa "
+    "u_dislocation_stress_indent_mpa test_strain_flow dislocation_stress_flow_mpa "
+    "u_dislocation_stress_flow_mpa difference_mpa u_difference_mpa degrees_of_freedom coverage "
+    "normalised_error weight_indent taken",
     "out/curve_points": "coupon_id point_no time_s engineering_stress_mpa engineering_strain "
     "true_stress_mpa true_plastic_strain file line",
     "out/anneal": "coupon_id state quantity fraction at_temperature_c at_time_s value unit u_own "

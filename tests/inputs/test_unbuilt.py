@@ -16,7 +16,6 @@ NOT_YET = "not built yet"
 @pytest.mark.parametrize(
     ("old", "new", "words"),
     [
-        ('route = "indent"', 'route = "both"', "Comparing the indent and the flow route"),
         ("{ value = 50.0, u = 15.0 }", '{ from_coupon = "A0" }', "taken from a coupon"),
         (
             "shear_modulus_gpa",

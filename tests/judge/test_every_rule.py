@@ -51,6 +51,7 @@ def state(**changes: float | str | bool) -> State:
     """One sound coupon of rolled copper, with what the case changes. SI."""
     usual: dict[str, float | str | bool] = {
         "route": "indent",
+        "routes_error": NAN,
         "unwinding": True,
         "saturation_stress": 320e6,
         "readings_used": 7,
@@ -379,6 +380,7 @@ CASES: Final[list[tuple[Rule, Fires, Fires]]] = [
     (C.NO_SHEAR_MODULUS, warm(1358.1), warm(1357.9)),
     (C.TEMPERATURE_FAR, warm(76.9), warm(77.1)),
     (C.NO_FLOW_STRESS_AT_STRAIN, flow(0.003, 0.004), flow(0.001, 0.004)),
+    (C.ROUTES_DISAGREE, judged(routes_error=1.01), judged(routes_error=1.0)),
     (
         C.BAD_COUPON_CELL_NEEDED,
         cells(PARTS, coupons(NAN, ("grain_size_um", "25,0"))),

@@ -43,6 +43,7 @@ _ORDER: Final = {
         "evolution",
         "curve_points",
         "expected_heat",
+        "routes",
         "anneal",
         "compare",
         "compare_choices",

@@ -102,6 +102,7 @@ def with_testers(document: Mapping[str, object], testers: Sequence[Tester]) -> d
 def _laws(method: Method) -> dict[str, object]:
     laws = method.laws
     return asdict(laws) | {
+        "route": method.route,
         "slip": None if laws.slip is None else laws.slip.text,
         "area": dict(laws.area),
         "angles_deg": list(laws.angles_deg),
@@ -202,7 +203,7 @@ def _defaults(
     for name, given in numbers.items():
         if given.input.origin == "default":
             yield name
-    unread = {"flow" if method.laws.route == "indent" else "indentation"}
+    unread = {{"indent": "flow", "flow": "indentation", "both": ""}[method.route]}
     if method.tensile is None:
         unread.add("tensile")
     for key in _choices((), schema_of(())):

@@ -46,7 +46,7 @@ def laws_of(tables: Mapping[str, Any], crystal: Crystal | None = None) -> Laws:
     """Read the choices of a sheet that fits its schema; of its crystal where that matters."""
     strength, character = tables["strength"], tables["character"]
     indentation, hardening = tables.get("indentation", {}), tables.get("hardening", {})
-    route = strength["route"]
+    route = "flow" if strength["route"] == "flow" else "indent"  # both begin with the indents
     angles, fractions = _mix(character)
     return Laws(
         route=route,

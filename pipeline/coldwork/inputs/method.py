@@ -303,6 +303,9 @@ class Method:
         Those that numbers are taken from.
     mixes : mapping of str to mapping of str to float
         By input: its sensitivities to components, where it was calibrated with others. [SI]
+    both : bool
+        Whether flow curves are read beside the indents and joined with them; the laws are
+        those of the indents then.
     """
 
     folder: Path
@@ -340,6 +343,12 @@ class Method:
     calibrations: tuple[Calibration, ...] = ()
     verification: tuple[Path, ...] = ()
     mixes: Mapping[str, Mapping[str, float]] = field(default_factory=dict)
+    both: bool = False
+
+    @property
+    def route(self) -> str:
+        """The route that the sheet names: ``indent``, ``flow`` or ``both``."""
+        return "both" if self.both else self.laws.route
 
     @property
     def used_layouts(self) -> tuple[Layout, ...]:

@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from coldwork.errors import BatchRefused
+from coldwork.inputs.both import refuse_bad_both, refuse_two_strains
 from coldwork.inputs.calibrated import Calibrations
 from coldwork.inputs.causes import Causes
 from coldwork.inputs.collect import (
@@ -108,6 +109,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
     refuse_bad_tensile(causes)
     calibrations.refuse_conflicts(causes)
     refuse_bad_draws(causes)
+    refuse_bad_both(causes)
     files = tables_of(causes, home) if with_files else Tables()
     inside = [*metal.causes, *calibrations.causes, *files.causes]
     if causes.found or inside:
@@ -125,6 +127,7 @@ def method_of(sheet: Sheet, folder: Path, *, with_files: bool = True) -> Method:
         mixes=calibrations.mixes(),
     )
     refuse_draws_beyond_memory(causes, method)
+    refuse_two_strains(causes, method)
     if causes.found:
         raise BatchRefused(str(folder), causes.all())
     return replace(method, document=method_document(method, sheet.tables, numbers))
@@ -178,6 +181,7 @@ def _method(
         tensile=tensile_of(tables),
         draws=draws_of(tables),
         layouts=found.layouts,
+        both=tables["strength"]["route"] == "both",
     )
 
 

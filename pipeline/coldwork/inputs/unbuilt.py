@@ -10,15 +10,9 @@ from typing import Any, Final
 
 from coldwork.inputs.causes import Causes
 from coldwork.inputs.positions import KeyPath
-from coldwork.inputs.words import shown
 
 __all__ = ["refuse_unbuilt"]
 
-_CHOICES: Final[Mapping[KeyPath, Mapping[str, str]]] = {
-    ("strength", "route"): {
-        "both": "Comparing the indent and the flow route of one coupon is not built yet.",
-    },
-}
 _KEYS: Final[Mapping[KeyPath, str]] = {
     ("strength", "baseline_from_coupon"): "A baseline from a coupon is not built yet.",
 }
@@ -33,8 +27,6 @@ _ORIGINS: Final[Mapping[str, str]] = {
 
 def refuse_unbuilt(causes: Causes) -> None:
     """Refuse, each by its own name, the choices that do not work yet; cut them out."""
-    for path, choices in _CHOICES.items():
-        _refuse_choice(causes, path, choices)
     for path, why in _KEYS.items():
         _refuse_key(causes, path, why)
     for key, job in _CONSTANTS.items():
@@ -48,14 +40,6 @@ def _table(causes: Causes, path: KeyPath) -> dict[Any, Any]:
     for part in path:
         at = at.get(part) if isinstance(at, dict) else None
     return at if isinstance(at, dict) else {}
-
-
-def _refuse_choice(causes: Causes, path: KeyPath, choices: Mapping[str, str]) -> None:
-    table = _table(causes, path[:-1])
-    value = table.get(path[-1])
-    if isinstance(value, str) and value in choices:
-        causes.add(path, f"{shown(value)} cannot be chosen", choices[value], "Choose another.")
-        del table[path[-1]]
 
 
 def _refuse_key(causes: Causes, path: KeyPath, why: str) -> None:

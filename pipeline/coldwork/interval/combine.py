@@ -17,6 +17,7 @@ __all__ = [
     "Combined",
     "Ends",
     "Spread",
+    "acting",
     "combine",
     "strength_ends",
     "strength_probability_above",
@@ -100,6 +101,7 @@ def combine(result: Measured, spreads: Mapping[str, Spread], *, own_only: bool =
         spread = spreads[name]
         if spread.shared and own_only:
             continue
+        spread = acting(c, spread)
         part = np.abs(c * spread.u)
         if spread.shared:
             shared = shared + part**2
@@ -115,6 +117,30 @@ def combine(result: Measured, spreads: Mapping[str, Spread], *, own_only: bool =
         u,
         np.broadcast_to(welch_satterthwaite(parts, freedom), shape),
     )
+
+
+def acting(c: NDArray[np.float64], spread: Spread) -> Spread:
+    """Take out the spread of an input where a quantity does not depend on it.
+
+    A coupon's reading by a route that was not taken may have none that is known.
+
+    Parameters
+    ----------
+    c : ndarray
+        Sensitivity to the input.
+    spread : Spread
+        Of the input.
+
+    Returns
+    -------
+    Spread
+        With u 0 and infinite degrees of freedom where `c` is 0.
+    """
+    if not (np.ndim(c) and np.ndim(spread.u)) or bool(np.all(c)):
+        return spread
+    idle = c == 0.0
+    u, nu = np.where(idle, 0.0, spread.u), np.where(idle, np.inf, spread.degrees_of_freedom)
+    return Spread(u, spread.shared, nu)
 
 
 def strength_ends(value: NDArray[np.float64], combined: Combined, probability: float) -> Ends:

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from coldwork.chain import Start, with_obstacle
 from coldwork.inputs.method import Laws
 from coldwork.interval.before import before_superposition
-from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_ends
+from coldwork.interval.combine import Combined, Ends, Spread, acting, combine, strength_ends
 from coldwork.interval.reach import LATE, Reach
 from coldwork.measured import Measured, Value, value_of
 
@@ -117,8 +117,9 @@ class LotSums:
             slope = np.where(known, c, 0.0)
             _gather(sums.slopes, source, self._sum(lot, slope))
             if not spreads[source].shared:
-                part = np.where(known, (c * spreads[source].u) ** 2, 0.0)
-                freedom = np.broadcast_to(spreads[source].degrees_of_freedom, part.shape)
+                spread = acting(c, spreads[source])
+                part = np.where(known, (c * spread.u) ** 2, 0.0)
+                freedom = np.broadcast_to(spread.degrees_of_freedom, part.shape)
                 over = np.where(np.isfinite(freedom) & (part > 0), part**2 / freedom, 0.0)
                 if self._pooled:
                     over = np.where(np.isfinite(freedom) & (part > 0), part / freedom, 0.0)

@@ -11,6 +11,7 @@ __all__ = [
     "FLOW",
     "FLOW_OF_CURVE",
     "INDENT",
+    "JOINED",
     "MEAN_DENSITY",
     "OVER_BASELINE",
     "PRIOR_WORK",
@@ -186,6 +187,54 @@ REPORTED: Final = {
         ),
     ),
 }
+_BY_INDENTS: Final = "indent_dislocation_stress_mpa"
+_BY_FLOW: Final = "curve_dislocation_stress_mpa"
+JOINED: Final = (  # after the dislocation stress by the indents, of a batch of both routes
+    Line(
+        "flow stress of the flow curve",
+        "mean of the readings",
+        "curve_stress_mpa",
+        "at a plastic strain of {strain}: the mean of the repeats there, or interpolated between "
+        "the neighbours; corrected for the tester",
+        ("<points>",),
+    ),
+    Line(
+        "dislocation stress by the flow curve",
+        "relations 4, 6 and 10",
+        _BY_FLOW,
+        "brought to the reference temperature where the sheet asks for it, less the baseline, "
+        "{joined}",
+        ("curve_stress_mpa", "baseline_stress_mpa", "<temperature>", "<hardening>"),
+    ),
+    Line(
+        "difference of the two routes",
+        "JCGM 100:2008, 5.2",
+        "difference_mpa",
+        "by the indents less by the flow curve; inputs that both share are counted once",
+        (_BY_INDENTS, _BY_FLOW),
+    ),
+    Line(
+        "normalised error",
+        "E_n of ISO 13528 (from memory)",
+        "normalised_error",
+        "the difference over its expanded uncertainty; above 1 the routes disagree",
+        ("difference_mpa",),
+    ),
+    Line(
+        "weight of the indents",
+        "Aitken 1936",
+        "weight_indent",
+        "by generalised least squares; 1 or 0 where one route alone is taken",
+        (_BY_INDENTS, _BY_FLOW),
+    ),
+    Line(
+        "dislocation stress",
+        "Aitken 1936",
+        "dislocation_stress_mpa",
+        "weighted mean of the two routes, or the one that there is",
+        (_BY_INDENTS, _BY_FLOW, "weight_indent"),
+    ),
+)
 _PARTS: Final = (
     "dislocation_stress_mpa",
     "hardening.taylor_factor",

@@ -59,9 +59,9 @@ class Checked:
     def text(self) -> str:
         """Tell it to a person."""
         method, counts = self.batch.method, self._counts()
-        without = int(np.count_nonzero(self.batch.reduced.used == 0))
+        without = int(np.count_nonzero(self.batch.used_per_coupon == 0))
         lines = [
-            f"{method.batch_id}: {method.material}, {method.laws.route} route",
+            f"{method.batch_id}: {method.material}, {method.route} route{'s' * method.both}",
             f"{counted(len(self.batch.coupons), 'coupon')}, "
             f"{without} of them without a usable reading",
             f"{counted(counts['read'], 'reading')} read: {counts['used']} can be used, "
@@ -126,13 +126,22 @@ def check(batch: str | Path) -> Checked:
     """
     gathered, _ = gather(read_method(Path(batch)))
     reduced, coupons = gathered.reduced, np.arange(len(gathered.coupons))
-    judge_readings(
-        gathered.findings,
-        coupons,
-        reduced.used,
-        gathered.repeatability,
-        route=gathered.method.laws.route,
-    )
+    flow = gathered.flow
+    if flow is None:
+        route = gathered.method.laws.route
+        judge_readings(
+            gathered.findings, coupons, reduced.used, gathered.repeatability, route=route
+        )
+    else:
+        alone = reduced.used == 0
+        judge_readings(
+            gathered.findings,
+            coupons,
+            np.where(alone, flow.reduced.used, reduced.used),
+            gathered.repeatability,
+            route=np.where(alone, "flow", "indent"),
+        )
+        judge_temperatures(flow.told.findings, flow.method, coupons, flow.reduced.temperature)
     judge_temperatures(gathered.findings, gathered.method, coupons, reduced.temperature)
     judge_thickness(
         gathered.findings,

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 import coldwork
 from coldwork import contracts
+from coldwork.errors import UsageError
 from coldwork.inputs.sheet import method_of
 from coldwork.inputs.source import read_sheet
 from coldwork.jobs.choices import Choice, choices_of
@@ -141,6 +142,12 @@ def compare(
     """
     sheet = read_sheet(folder)
     method = method_of(sheet, folder)
+    if method.both:
+        message = (
+            f"{method.batch_id} joins both routes, and comparing choices for those is not built. "
+            'Compare them by one route: route = "indent" or "flow" in [strength].'
+        )
+        raise UsageError(message)
     choices = choices_of(read_sheet(folder), method, varied)
     batch, _ = gather(method)
     if into is None:

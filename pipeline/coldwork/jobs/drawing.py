@@ -5,6 +5,7 @@ from typing import TYPE_CHECKING, Final
 
 import numpy as np
 import pyarrow as pa
+import pyarrow.compute as pc
 
 from coldwork import contracts
 from coldwork.jobs.curve_frames import curve_frames
@@ -56,6 +57,8 @@ class Drawing:
 
     def add(self, name: str, table: pa.Table) -> None:
         """Keep a slice of a table."""
+        if name == "readings" and self._batch.method.both:  # the plot of readings is of indents
+            table = table.filter(pc.equal(table["route"], pa.scalar("indent")))
         if self.wanted and name in self._parts:
             self._parts[name].append(table)
 
@@ -69,7 +72,7 @@ class Drawing:
         context = Context(
             batch_id=method.batch_id,
             material=method.material,
-            route=method.laws.route,
+            route=method.route,
             coverage=method.coverage,
             limits=[
                 {
@@ -97,6 +100,9 @@ class Drawing:
         method = self._batch.method
         if method.laws.route == "flow":
             return f"State at a plastic strain of {method.plastic_strain:g}."
+        if method.both:
+            state = "before the tests" if method.laws.unwinding else "under the indent"
+            return f"State {state}; indents and flow curves joined, see routes.csv."
         if method.laws.unwinding:
             return "State before the test: the strain of the indent is taken out."
         return "State under the indent: its own strain is included."

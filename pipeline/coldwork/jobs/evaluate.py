@@ -14,12 +14,14 @@ from coldwork.interval.before import before_superposition
 from coldwork.interval.combine import Combined, Ends, Spread, combine, strength_ends
 from coldwork.interval.reach import LATE, Reach
 from coldwork.jobs.prior import work_of
+from coldwork.jobs.routes import Beside, Routes, join_routes
 from coldwork.measured import Measured, Value, broadcast, kept_where, select, value_of
 from coldwork.reduce.reduced import Reduced
 from coldwork.sampling.sampler import Sampled
 from coldwork.scatter import Repeatability
 
 __all__ = [
+    "FLOW_REPEATABILITY",
     "GRAIN",
     "QUANTITIES",
     "REPEATABILITY",
@@ -32,6 +34,7 @@ __all__ = [
 ]
 
 REPEATABILITY: Final = "repeatability"  # name of the input that the readings' scatter makes
+FLOW_REPEATABILITY: Final = "repeatability:flow"  # that of a flow curve beside indents
 GRAIN: Final = "grain_size_um"  # and of that which a coupon's grain size makes
 STRENGTHS: Final = (
     "hardness",
@@ -66,6 +69,8 @@ class Evaluated:
         The intervals by first order, where `ends` are those of draws.
     sampled, own : Sampled or None
         What draws say, of all inputs and with shared ones taken as exact.
+    routes : Routes or None
+        The two routes apart, where both are joined.
     """
 
     start: Start
@@ -78,6 +83,7 @@ class Evaluated:
     first_order: Mapping[str, Ends] | None = None
     sampled: Sampled | None = None
     own: Sampled | None = None
+    routes: Routes | None = None
 
     @property
     def stress(self) -> Measured:
@@ -139,7 +145,9 @@ def start_of(
 ) -> tuple[Start, dict[str, Spread]]:
     """Make what a slice of coupons brings to the chain, and the spread of its own inputs."""
     mean = reduced.mean[rows]
-    slopes: dict[str, NDArray[np.float64]] = {REPEATABILITY: np.asarray(1.0)}
+    beside = method.both and method.laws.route == "flow"
+    repeats = FLOW_REPEATABILITY if beside else REPEATABILITY
+    slopes: dict[str, NDArray[np.float64]] = {repeats: np.asarray(1.0)}
     for tester in method.testers:
         share = reduced.shares[tester.id][rows]
         if tester.bias.u > 0.0 and reduced.shares[tester.id].any():
@@ -148,7 +156,7 @@ def start_of(
         if method.inputs[name].u > 0.0 and slope[rows].any():
             slopes[name] = slope[rows]
     own = {
-        REPEATABILITY: Spread(
+        repeats: Spread(
             scatter.u[rows], shared=False, degrees_of_freedom=scatter.degrees_of_freedom[rows]
         )
     }
@@ -198,6 +206,7 @@ def evaluate(
     spreads: Mapping[str, Spread],
     start: Start,
     with_ends: Collection[str] = QUANTITIES,
+    beside: Beside | None = None,
 ) -> Evaluated:
     """Run a slice of coupons through the chain and take the intervals.
 
@@ -213,13 +222,18 @@ def evaluate(
         The slice.
     with_ends : collection of str, optional
         Quantities whose intervals are wanted; the others' ends are NaN.
+    beside : Beside, optional
+        The flow curves of a slice of both routes, which meet the indents at the
+        dislocation stress.
 
     Returns
     -------
     Evaluated
         Everything about the slice, SI.
     """
-    half = strength(method.laws, inputs, start)
+    half, routes = strength(method.laws, inputs, start), None
+    if beside is not None:
+        half, routes = join_routes(method, inputs, spreads, half, beside)
     n = start.scale.shape[0]
     stress = _measured(half.dislocation_stress, n)
     before = before_superposition(method.laws, inputs, value_of(half.excess), value_of(half.strain))
@@ -240,7 +254,7 @@ def evaluate(
             ends[name] = reach.stress_interval(probability)
         else:
             ends[name] = strength_ends(result.value, combined[name], probability)
-    return Evaluated(start, half, reach, results, combined, ends, spreads)
+    return Evaluated(start, half, reach, results, combined, ends, spreads, routes=routes)
 
 
 def _strengths(method: Method, start: Start, half: Strength, n: int) -> dict[str, Measured]:

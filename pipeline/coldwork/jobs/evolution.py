@@ -102,7 +102,7 @@ def _state(batch: Gathered, rows: slice, strain: float, prior: FloatArray) -> _S
     start = _at(start, stress, total, strain)
     evaluated = evaluate(method, inputs, spreads, start, _OF_CHAIN)
     findings = Findings(len(reasons))
-    _judge(findings, method.laws.route, evaluated)
+    _judge(findings, evaluated)
     figures = figures_of(evaluated, findings.bits)
     figures[_WORK_COLUMN] = _figures_of_work(work, spreads, method.coverage)
     return _State(strain, figures, reasons, findings.text())
@@ -160,7 +160,7 @@ def _at(start: Start, stress: Measured, work: Value, strain: float) -> Start:
     )
 
 
-def _judge(findings: Findings, route: str, evaluated: Evaluated) -> None:
+def _judge(findings: Findings, evaluated: Evaluated) -> None:
     """Hold a state against the rules that empty impossible densities and energies."""
     results, n = evaluated.results, len(evaluated.stress.value)
     nothing = np.full(n, np.nan)
@@ -168,7 +168,7 @@ def _judge(findings: Findings, route: str, evaluated: Evaluated) -> None:
         findings,
         State(
             coupon=np.arange(n),
-            route=route,
+            route="flow",
             readings_used=np.ones(n, dtype=np.int64),
             repeatability=np.zeros(n),
             scale=np.full(n, -1, dtype=np.int8),

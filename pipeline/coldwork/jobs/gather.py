@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from coldwork import contracts
 from coldwork.errors import BatchRefused, Cause
+from coldwork.inputs.both import flow_of
 from coldwork.inputs.method import Method
 from coldwork.intake.coupons import Coupons, read_coupons
 from coldwork.intake.exclusions import Exclusions, no_exclusions, read_exclusions
@@ -35,14 +36,42 @@ from coldwork.reduce.size_lines import with_size_lines
 from coldwork.reduce.stream import Byproducts, reduce_batch
 from coldwork.reduce.tensile import CurveKeep, Curves, flow_of_curves
 from coldwork.rules import RULES, Level
-from coldwork.rules.bits import with_error
+from coldwork.rules.bits import rule_ids, with_error
 from coldwork.rules.coupon import SCATTER
 from coldwork.rules.findings import Findings
 from coldwork.scatter import Repeatability, repeatability
 
-__all__ = ["Gathered", "gather"]
+__all__ = ["FlowSide", "Gathered", "gather"]
 
 _READINGS: Final = frozenset({"indents", "flow_stress", "curves"})
+
+
+@dataclass(frozen=True)
+class FlowSide:
+    """Flow curves beside the indents of a batch of both routes.
+
+    Attributes
+    ----------
+    method : Method
+        By the flow route.
+    reduced : Reduced
+        One row per coupon of the batch.
+    scatter : Repeatability
+        How well each mean is known.
+    told : Byproducts
+        What was found on them and set aside.
+    files : tuple of str
+        Names of the files that hold them.
+    kept : KeptReadings or None
+        Their points, where those are kept.
+    """
+
+    method: Method
+    reduced: Reduced
+    scatter: Repeatability
+    told: Byproducts
+    files: tuple[str, ...]
+    kept: KeptReadings | None
 
 
 @dataclass(frozen=True)
@@ -69,6 +98,8 @@ class Gathered:
         Every table that was read, with digest and counts.
     curves : Curves or None
         What its curves came to; they give the flow stresses, or stand beside the readings.
+    flow : FlowSide or None
+        Its flow curves, where they are joined with indents.
     """
 
     method: Method
@@ -80,6 +111,7 @@ class Gathered:
     files: tuple[str, ...]
     sources: tuple[SourceFile, ...]
     curves: Curves | None = None
+    flow: FlowSide | None = None
 
     @property
     def readings_read(self) -> int:
@@ -89,8 +121,25 @@ class Gathered:
     @property
     def readings_used(self) -> int:
         """Those that were used."""
-        beside = 0 if self._beside is None or self.curves is None else self.curves.points
-        return int(self.reduced.used.sum()) + beside
+        return int(self.used_per_coupon.sum()) + self._points_beside
+
+    @property
+    def used_per_coupon(self) -> NDArray[np.int64]:
+        """Readings of each coupon that were used."""
+        used = self.reduced.used
+        return used if self.flow is None else used + self.flow.reduced.used
+
+    @property
+    def set_aside_per_coupon(self) -> NDArray[np.int64]:
+        """Readings of each coupon that were not."""
+        aside = self.set_aside.per_coupon
+        return aside if self.flow is None else aside + self.flow.told.set_aside.per_coupon
+
+    def rules_on(self, rows: slice) -> pa.StringArray:
+        """Give the ids of the rules that fired on each coupon of a slice, or on its readings."""
+        if self.flow is None:
+            return self.findings.text(rows)
+        return rule_ids(self.findings.bits[rows] | self.flow.told.findings.bits[rows])
 
     @property
     def readings_set_aside(self) -> int:
@@ -152,8 +201,15 @@ class Gathered:
         return pa.concat_tables([own, beside])
 
     @property
+    def _points_beside(self) -> int:
+        apart = self.curves is not None and self.curves.beside.findings is not self.findings
+        return self.curves.points if self.curves is not None and apart else 0
+
+    @property
     def _beside(self) -> Byproducts | None:
         """What was found on curves that stand beside the readings."""
+        if self.flow is not None:
+            return self.flow.told
         if self.curves is None or self.curves.beside.findings is self.findings:
             return None
         return self.curves.beside
@@ -197,8 +253,9 @@ def gather(
     method, checked = verified(method)
     files = _reading_files(method)
     excluding = _files(method, "exclusions", method.exclusions)
+    apart = (files, excluding, *((_reading_files(flow_of(method)),) if method.both else ()))
     curves = _how_curves(method, block_bytes, pictures=pictures, keep=points)
-    coupons = _coupons(method, (files, excluding), curves, block_bytes)
+    coupons = _coupons(method, apart, curves, block_bytes)
     prior = prior_of(method, coupons)
     coupons = with_prior(coupons, prior)
     exclusions = (
@@ -215,11 +272,16 @@ def gather(
             found = _with_curves(found, curves, method, coupons)
     if kept is not None:
         kept.close(len(coupons))
-    causes = [*found.causes, *_nothing_left(found.reduced.used)]
+    flow, more = _flow_side(method, coupons, keep, block_bytes) if method.both else (None, ())
+    used = found.reduced.used if flow is None else found.reduced.used + flow.reduced.used
+    causes = [*found.causes, *_nothing_left(used)]
     if causes:
         raise BatchRefused(str(method.folder), causes)
     method = with_size_lines(method, found.reduced, coupons.conditions)
-    scatter = repeatability(method, found.reduced, coupons.conditions)
+    of_points = None if method.both else method.repeatability_rel  # which is of flow curves
+    scatter = repeatability(
+        replace(method, repeatability_rel=of_points), found.reduced, coupons.conditions
+    )
     _note_scatter(beside.findings, scatter)
     judge_coupon_cells(beside.findings, method, coupons)
     stated, found_of = (prior.stated_strain, prior.stated_work), (prior.strain, prior.work)
@@ -235,10 +297,28 @@ def gather(
         beside.findings,
         beside.set_aside,
         files.names,
-        (*coupons.sources, *exclusions.sources, *checked, *found.sources),
+        (*coupons.sources, *exclusions.sources, *checked, *found.sources, *more),
         found.curves,
+        flow,
     )
     return gathered, kept
+
+
+def _flow_side(
+    method: Method, coupons: Coupons, keep: Path | None, block_bytes: int
+) -> tuple[FlowSide, tuple[SourceFile, ...]]:
+    """Read and reduce the flow curves of a batch of both routes, apart from its indents."""
+    by_flow = flow_of(method)
+    files = _reading_files(by_flow)
+    kept = None if keep is None else KeptReadings(keep.with_stem("flow"), files.raw_names())
+    told = Byproducts(Findings(len(coupons)), SetAside(len(coupons)), kept)
+    found = _read(files, by_flow, coupons, no_exclusions(), told, block_bytes)
+    if kept is not None:
+        kept.close(len(coupons))
+    scatter = repeatability(by_flow, found.reduced, coupons.conditions)
+    _note_scatter(told.findings, scatter)
+    judge_printed(told.findings, found.printed, files.names)
+    return FlowSide(by_flow, found.reduced, scatter, told, files.names, kept), found.sources
 
 
 @dataclass(frozen=True)

@@ -24,7 +24,7 @@ from coldwork.jobs.figures import Figures
 from coldwork.jobs.gather import Gathered
 from coldwork.jobs.tables import unit_of
 from coldwork.judge.calibrations import judge_ranges
-from coldwork.judge.coupon_rules import State, judge_coupons
+from coldwork.judge.coupon_rules import Route, State, judge_coupons
 from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
 from coldwork.judge.size_effects import judge_size_effects
 from coldwork.judge.temperatures import judge_temperatures
@@ -52,6 +52,7 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
         The slice.
     """
     method, reduced = batch.method, batch.reduced
+    route, used, repeatability = _as_taken(batch, rows, evaluated)
     saturation = method.inputs.get("indentation.saturation_stress_mpa")
     results, half = evaluated.results, evaluated.strength
     judge_temperatures(
@@ -70,9 +71,9 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
         batch.findings,
         State(
             coupon=np.arange(rows.start, rows.stop),
-            route=method.laws.route,
-            readings_used=reduced.used[rows],
-            repeatability=batch.repeatability[rows],
+            route=route,
+            readings_used=used,
+            repeatability=repeatability,
             scale=reduced.scale[rows],
             thickness=batch.coupons.thickness[rows],
             mean_diagonal=reduced.mean_diagonal[rows],
@@ -88,6 +89,7 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
             radius_ratio=evaluated.reach.radius_ratio,
             stored_fraction=results["stored_fraction_of_work"].value,
             densest=evaluated.reach.densest,
+            routes_error=None if evaluated.routes is None else evaluated.routes.agreement.error,
         ),
     )
     if method.calibrations:
@@ -95,6 +97,23 @@ def find_in_slice(batch: Gathered, rows: slice, evaluated: Evaluated) -> None:
         values["grain_size_um"] = units.from_si(batch.coupons.grain_size[rows], "um")
         place = np.arange(rows.start, rows.stop)
         judge_ranges(batch.findings, method.calibrations, place, values, reduced.scale[rows])
+
+
+def _as_taken(
+    batch: Gathered, rows: slice, evaluated: Evaluated
+) -> tuple[Route, NDArray[np.int64], _Floats]:
+    """Give route, readings and repeatability of what each coupon's stress is from."""
+    used, u = batch.reduced.used[rows], batch.repeatability[rows]
+    routes, flow = evaluated.routes, batch.flow
+    if routes is None or flow is None:
+        return batch.method.laws.route, used, u
+    alone = routes.flow_alone
+    by_flow = np.where(np.isfinite(flow.reduced.mean[rows]), flow.scatter.u[rows], 0.0)
+    return (
+        np.where(alone, "flow", "indent"),
+        np.where(alone, flow.reduced.used[rows], used),
+        np.where(alone, by_flow, u).astype(np.float64),
+    )
 
 
 @dataclass(frozen=True)
@@ -219,7 +238,9 @@ def _evidence(
         if sampled is None
         else sampled.bounds[limit.quantity]
     )
-    added = method.laws.route == "indent" and not method.laws.unwinding
+    added = np.full(len(bits), method.laws.route == "indent" and not method.laws.unwinding)
+    if evaluated.routes is not None:
+        added = added & ~evaluated.routes.flow_alone
     value = units.from_si(found.result.value, unit)
     return Evidence(
         value=value,
@@ -233,7 +254,7 @@ def _evidence(
         if sampled is None
         else _drawn_above(limit.upper, limit.quantity, unit, sampled).upper,
         blocked=emptied(limit.quantity, bits, ends=True),
-        with_indent=np.full(len(bits), added),
+        with_indent=added,
         coverage=method.coverage,
         unit=unit,
     )

@@ -19,6 +19,7 @@ from coldwork.jobs.gather import Gathered, gather
 from coldwork.jobs.kept import KeptReadings
 from coldwork.jobs.lots import Lots
 from coldwork.jobs.manifest import manifest_of
+from coldwork.jobs.routes import ROUTES_TABLE
 from coldwork.jobs.slices import Sliced, work_slice
 from coldwork.results.documents import dump
 from coldwork.results.lines import LineWriter
@@ -135,7 +136,8 @@ def run(
         drawing = Drawing(batch, wanted=plots)
         lots = Lots(batch)
         heat = (HEAT_TABLE,) if has_heat(method) else ()
-        names = (*_ALWAYS, *heat, *_of_curves(batch), *(_FULL if full else ()))
+        both = (ROUTES_TABLE,) if method.both else ()
+        names = (*_ALWAYS, *heat, *both, *_of_curves(batch), *(_FULL if full else ()))
         tables = _Tables({name: target.table(name, method.tables) for name in names}, drawing)
         target.write("method.json", dump("method", batch.method.document))
         records = target.lines("records.jsonl") if full else None

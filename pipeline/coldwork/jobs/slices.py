@@ -13,6 +13,7 @@ from coldwork import contracts
 from coldwork.interval.combine import Spread
 from coldwork.jobs.drawn import verdicts, with_draws
 from coldwork.jobs.evaluate import (
+    FLOW_REPEATABILITY,
     GRAIN,
     QUANTITIES,
     REPEATABILITY,
@@ -29,10 +30,11 @@ from coldwork.jobs.expected_heat import (
     has_heat,
 )
 from coldwork.jobs.figures import Figures, figures_of
-from coldwork.jobs.gather import Gathered
+from coldwork.jobs.gather import FlowSide, Gathered
 from coldwork.jobs.judging import Held, decide_slice, decisions_table, find_in_slice
 from coldwork.jobs.kept import KeptReadings
 from coldwork.jobs.offered import Baseline
+from coldwork.jobs.routes import ROUTES_TABLE, Beside, routes_table
 from coldwork.jobs.steps import repeatability_of, steps_of
 from coldwork.jobs.tables import (
     WITH_UNCERTAINTY,
@@ -43,6 +45,7 @@ from coldwork.jobs.tables import (
 )
 from coldwork.jobs.tensile import baselines, curve_records, tensile_table
 from coldwork.judge.decisions import Worst, decision_texts, worst
+from coldwork.judge.temperatures import judge_temperatures
 from coldwork.measured import value_of
 from coldwork.results.records import Step
 from coldwork.rules.bits import emptied
@@ -116,7 +119,7 @@ class Sliced:
             "coupons": coupons.set_column(place, "record_sha256", shas),
             "decisions": self._decisions,
         }
-        return found | self._of_heat | self._of_curves | self._details
+        return found | self._of_heat | self._of_curves | self._of_routes | self._details
 
     @cached_property
     def _coupons(self) -> pa.Table:
@@ -128,13 +131,16 @@ class Sliced:
         gone = emptied("dislocation_stress_mpa", batch.findings.bits[self.rows])
         rest: dict[str, _Column] = {
             "p_below_baseline": pa.array(np.where(gone, np.nan, below)),
-            "readings_set_aside": pa.array(batch.set_aside.per_coupon[self.rows]),
+            "readings_used": pa.array(batch.used_per_coupon[self.rows]),
+            "readings_set_aside": pa.array(batch.set_aside_per_coupon[self.rows]),
             "decision": decision_texts(worst_one.code),
             "deciding_limit": names.take(deciding),
             "conformance_probability": pa.array(worst_one.probability),
-            "flags": batch.findings.text(self.rows),
+            "flags": batch.rules_on(self.rows),
             "record_sha256": pa.nulls(self.n, pa.string()),
         }
+        if self.evaluated.routes is not None:
+            rest["route"] = pa.array(self.evaluated.routes.taken.tolist(), pa.string())
         return coupons_table(batch, self.rows, self.figures, self._test_strain, rest)
 
     @cached_property
@@ -152,13 +158,34 @@ class Sliced:
             REPEATABILITY: value_of(self.evaluated.start.mean),
             GRAIN: batch.coupons.grain_size[self.rows],
         }
-        return {
-            "readings": KeptReadings.published(
+        readings = [
+            KeptReadings.published(
                 self.kept, batch.coupons, batch.method.laws.route, list(batch.files)
-            ),
+            )
+        ]
+        if self._points is not None and batch.flow is not None:
+            files = list(batch.flow.files)
+            readings.append(KeptReadings.published(self._points, batch.coupons, "flow", files))
+        if self.evaluated.routes is not None:
+            own[FLOW_REPEATABILITY] = value_of(self.evaluated.routes.beside.start.mean)
+        return {
+            "readings": pa.concat_tables(readings),
             "quantities": quantities_table(batch, self.rows, self.figures),
             "budget": budget_table(batch, self.rows, self.figures, self.spreads, own),
         }
+
+    @cached_property
+    def _points(self) -> pa.Table | None:
+        """The points of the flow curves beside indents, where those are kept."""
+        flow = self.batch.flow
+        return None if flow is None or flow.kept is None else flow.kept.of(self.rows)
+
+    @cached_property
+    def _of_routes(self) -> dict[str, pa.Table]:
+        routes = self.evaluated.routes
+        if routes is None:
+            return {}
+        return {ROUTES_TABLE: routes_table(self.batch.method, self.ids, routes)}
 
     @cached_property
     def _of_heat(self) -> dict[str, pa.Table]:
@@ -201,7 +228,8 @@ class Sliced:
     @property
     def raw_readings(self) -> pa.Table:
         """The readings' cells as written, row for row with the table of readings."""
-        return KeptReadings.raw(self.kept) if self.kept is not None else pa.table({})
+        raw = [KeptReadings.raw(kept) for kept in (self.kept, self._points) if kept is not None]
+        return pa.concat_tables(raw, promote_options="default") if raw else pa.table({})
 
     def flags(self) -> pa.Table:
         """Give the findings on the slice's coupons."""
@@ -210,7 +238,15 @@ class Sliced:
     def repeatability(self) -> list[dict[str, object]]:
         """Tell what each coupon's scatter was judged by."""
         unit = unit_of_mean(self.batch.method)
-        return repeatability_of(self.batch.scatter, self.rows, unit)
+        told = repeatability_of(self.batch.scatter, self.rows, unit)
+        flow = self.batch.flow
+        if flow is None:
+            return told
+        others = repeatability_of(flow.scatter, self.rows, unit_of_mean(flow.method))
+        return [
+            one | {f"flow_{name}": x for name, x in other.items()}
+            for one, other in zip(told, others, strict=True)
+        ]
 
     def steps(self) -> list[Step]:
         """Tell the chain step by step."""
@@ -219,7 +255,10 @@ class Sliced:
     @property
     def _test_strain(self) -> NDArray[np.float64]:
         strain = self.evaluated.strength.test_strain
-        return np.where(np.isnan(value_of(self.evaluated.start.mean)), np.nan, strain)
+        mean = value_of(self.evaluated.start.mean)
+        if self.evaluated.routes is not None:
+            mean = self.evaluated.stress.value
+        return np.where(np.isnan(mean), np.nan, strain)
 
 
 def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -> Sliced:
@@ -243,7 +282,11 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
     inputs, spreads = inputs_of(method)
     start, own = start_of(method, batch.coupons, batch.reduced, batch.scatter, rows)
     with_ends = WITH_UNCERTAINTY if kept is None else QUANTITIES
-    evaluated = evaluate(method, inputs, {**spreads, **own}, start, with_ends)
+    beside = None
+    if batch.flow is not None:
+        beside, of_flow = _beside(batch, batch.flow, rows)
+        own |= of_flow
+    evaluated = evaluate(method, inputs, {**spreads, **own}, start, with_ends, beside)
     if batch.pools is not None:
         names = [str(name) for name in batch.coupons.ids[rows].to_pylist()]
         evaluated = with_draws(method, batch.pools, names, evaluated, with_ends)
@@ -261,6 +304,17 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
         worst([held.decided for held in decided], n),
         None if kept is None else kept.of(rows),
     )
+
+
+def _beside(batch: Gathered, flow: FlowSide, rows: slice) -> tuple[Beside, dict[str, Spread]]:
+    """Bring the flow curves of a slice of both routes, and say which of them are sound."""
+    findings, place = flow.told.findings, np.arange(rows.start, rows.stop)
+    judge_temperatures(findings, flow.method, place, flow.reduced.temperature[rows])
+    start, own = start_of(flow.method, batch.coupons, flow.reduced, flow.scatter, rows)
+    sound, indents_sound = (
+        ~emptied("dislocation_stress_mpa", found.bits[rows]) for found in (findings, batch.findings)
+    )
+    return Beside(start, sound, indents_sound), own
 
 
 def _empty(name: str) -> pa.Table:

@@ -24,6 +24,7 @@ from coldwork.jobs.chain_words import (
     FLOW,
     FLOW_OF_CURVE,
     INDENT,
+    JOINED,
     MEAN_DENSITY,
     OVER_BASELINE,
     PRIOR_WORK,
@@ -33,7 +34,7 @@ from coldwork.jobs.chain_words import (
     UNWOUND,
     Line,
 )
-from coldwork.jobs.evaluate import REPEATABILITY, Evaluated
+from coldwork.jobs.evaluate import FLOW_REPEATABILITY, REPEATABILITY, Evaluated
 from coldwork.jobs.tables import unit_of
 from coldwork.measured import Value, value_of
 from coldwork.results.records import Step
@@ -73,6 +74,12 @@ _WITHOUT_COLUMN: Final = {
     "prior_plastic_work_j_per_m3": "J/m3",
     "tested_stress_mpa": "MPa",
     "test_temperature_c": "Cel",
+    "indent_dislocation_stress_mpa": "MPa",
+    "curve_stress_mpa": "MPa",
+    "curve_dislocation_stress_mpa": "MPa",
+    "difference_mpa": "MPa",
+    "normalised_error": "1",
+    "weight_indent": "1",
     "wall_density_per_m2": "m-2",
     "interior_density_per_m2": "m-2",
 }
@@ -125,11 +132,12 @@ def steps_of(method: Method, evaluated: Evaluated) -> list[Step]:
         "reference": f"{units.from_si(method.reference_temperature, 'Cel'):.6g}",
         "size": _SIZES[laws.size_effect],
         "thermal": _THERMAL.get(laws.temperature, ""),
+        "joined": "and its own strain unwound" if laws.unwinding else "at the strain of the indent",
     }
     groups = _groups(method)
     values = _values(evaluated)
     steps = []
-    for line in _lines(laws):
+    for line in _joined(_lines(laws)) if method.both else _lines(laws):
         inputs = tuple(name for entry in line.inputs for name in groups.get(entry, (entry,)))
         unit = _unit(line.quantity)
         value = np.broadcast_to(value_of(values[line.quantity]), scale.shape)
@@ -206,6 +214,15 @@ def _lines(laws: Laws) -> tuple[Line, ...]:
     return lines if laws.temperature == "none" else _brought_to_reference(laws, lines)
 
 
+def _joined(lines: tuple[Line, ...]) -> tuple[Line, ...]:
+    """Put the flow curve and the two together after the dislocation stress by the indents."""
+    place = [line.quantity for line in lines].index("dislocation_stress_mpa")
+    by_indents = lines[place]._replace(
+        step="dislocation stress by the indents", quantity="indent_dislocation_stress_mpa"
+    )
+    return (*lines[:place], by_indents, *JOINED, *lines[place + 1 :])
+
+
 def _brought_to_reference(laws: Laws, lines: tuple[Line, ...]) -> tuple[Line, ...]:
     """Put relation 10 before the baseline, which then is taken off what it gives."""
     place = [line.quantity for line in lines].index("baseline_stress_mpa")
@@ -267,10 +284,21 @@ def _densities(laws: Laws) -> tuple[Line, ...]:
 
 def _values(evaluated: Evaluated) -> Mapping[str, Value]:
     """Give every quantity of the chain by name, in SI, those too that no table has."""
-    half = evaluated.strength
+    half, routes = evaluated.strength, evaluated.routes
+    of_both: dict[str, Value] = {}
+    if routes is not None:
+        of_both = {
+            "indent_dislocation_stress_mpa": routes.by_indent,
+            "curve_stress_mpa": routes.flow.indented_stress,
+            "curve_dislocation_stress_mpa": routes.by_flow,
+            "difference_mpa": routes.agreement.difference,
+            "normalised_error": routes.agreement.error,
+            "weight_indent": routes.agreement.weight,
+        }
     return {
         "prior_plastic_work_j_per_m3": evaluated.start.plastic_work,
         "bulk_hardness": np.nan if half.bulk_hardness is None else half.bulk_hardness,
+        **of_both,
         "pressure_mpa": np.nan if half.pressure is None else half.pressure,
         "test_temperature_c": evaluated.start.temperature,
         "indented_stress_mpa": half.indented_stress,
@@ -302,11 +330,13 @@ def _groups(method: Method) -> Mapping[str, tuple[str, ...]]:
     unwinding = (*_FOR_ALL_SCALES, "representative_strain", "strain_ratio")
     return {
         "<mean>": (REPEATABILITY, *(tester.bias.name for tester in method.testers)),
+        "<points>": (FLOW_REPEATABILITY, *(tester.bias.name for tester in method.testers)),
         "<curve>": (REPEATABILITY, *(n for n in method.inputs if n.startswith("tensile."))),
         "<baseline>": tuple(baseline),
         "<temperature>": tuple(name for name in method.inputs if name in _TEMPERATURE_INPUTS),
         "<obstacle>": tuple(name for name in method.inputs if name in _OBSTACLE_INPUTS),
         "<constraint>": _of_indentation(method, "intercept_mpa", "constraint_factor"),
+        "<hardening>": _of_indentation(method, *_FOR_ALL_SCALES),
         "<unwinding>": _of_indentation(method, *unwinding),
         "<radius>": radius,
         "<prior>": _of_curve(method),

@@ -12,7 +12,7 @@ from coldwork import contracts, units
 from coldwork.inputs.method import Method
 from coldwork.interval.combine import Spread
 from coldwork.interval.lots import LotMean
-from coldwork.jobs.evaluate import GRAIN, QUANTITIES, REPEATABILITY
+from coldwork.jobs.evaluate import FLOW_REPEATABILITY, GRAIN, QUANTITIES, REPEATABILITY
 from coldwork.jobs.figures import Figures
 from coldwork.jobs.gather import Gathered
 from coldwork.rules.bits import emptied
@@ -94,7 +94,6 @@ def coupons_table(
         "material": pa.repeat(method.material, n),
         "route": pa.repeat(method.laws.route, n),
         "test_strain": pa.array(np.where(emptied("test_strain", bits), np.nan, test_strain)),
-        "readings_used": pa.array(reduced.used[rows]),
         "hardness_scale": pc.if_else(gone, pa.scalar(None, pa.string()), label),
         **rest,
     }
@@ -306,6 +305,8 @@ def _input_unit(method: Method, source: str) -> str:
         return "um"
     if source == REPEATABILITY:
         return unit_of_mean(method)
+    if source == FLOW_REPEATABILITY:
+        return unit_of("flow_stress_mpa")
     return method.inputs[source].unit
 
 

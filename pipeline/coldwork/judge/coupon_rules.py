@@ -5,7 +5,7 @@ are reduced, `scatter` where they are pooled.
 """
 
 from dataclasses import dataclass
-from typing import Final
+from typing import Final, TypeAlias
 
 import numpy as np
 import pyarrow as pa
@@ -21,6 +21,7 @@ from coldwork.rules.rule import Rule
 from coldwork.rules.spacing import least_thickness_ratio, too_thin
 
 __all__ = [
+    "Route",
     "State",
     "judge_coupon_cells",
     "judge_coupons",
@@ -31,6 +32,7 @@ __all__ = [
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
+Route: TypeAlias = str | NDArray[np.str_]
 
 _GRAIN_COLUMNS: Final = ("grain_size_um", "u_grain_size_um")
 
@@ -43,8 +45,8 @@ class State:
     ----------
     coupon : ndarray of int
         Index of each coupon in the batch.
-    route : str
-        ``indent`` or ``flow``.
+    route : str, or ndarray of str
+        ``indent`` or ``flow``; of both routes, ``indent`` where indents took part.
     readings_used : ndarray of int64
         Readings used. [1]
     repeatability : ndarray of float64
@@ -68,6 +70,8 @@ class State:
         Dislocation density. [1/m^2]
     densest : ndarray of float64, optional
         That of the densest region, where there are several. [1/m^2]
+    routes_error : ndarray of float64, optional
+        Normalised error of two routes, NaN where a coupon has one. [1]
     radius_ratio : ndarray of float64
         Outer over core radius. [1]
     stored_fraction : ndarray of float64
@@ -75,7 +79,7 @@ class State:
     """
 
     coupon: NDArray[np.int64] | NDArray[np.int32]
-    route: str
+    route: Route
     readings_used: NDArray[np.int64]
     repeatability: FloatArray
     scale: NDArray[np.int8]
@@ -93,6 +97,7 @@ class State:
     radius_ratio: FloatArray
     stored_fraction: FloatArray
     densest: FloatArray | None = None
+    routes_error: FloatArray | None = None
 
 
 def judge_coupons(findings: Findings, state: State) -> None:
@@ -111,6 +116,9 @@ def judge_coupons(findings: Findings, state: State) -> None:
     judge_thickness(
         findings, state.coupon, state.thickness, state.scale, state.mean_diagonal, state.ball
     )
+    if state.routes_error is not None:
+        apart = rules.ROUTES_DISAGREE.above(state.routes_error)
+        _note(findings, state, rules.ROUTES_DISAGREE, apart, state.routes_error)
     _stress(findings, state)
     _indent_strain(findings, state)
     _density(findings, state)
@@ -203,7 +211,7 @@ def judge_readings(
     used: NDArray[np.int64],
     repeatability: FloatArray,
     *,
-    route: str,
+    route: Route,
 ) -> None:
     """Find coupons with too few readings; nothing need be computed for it.
 
@@ -219,16 +227,19 @@ def judge_readings(
         Readings used. [1]
     repeatability : ndarray of float64, shape (n,)
         Standard uncertainty of the mean reading, NaN where nothing tells it. [Pa]
-    route : str
+    route : str, or ndarray of str, shape (n,)
         ``indent`` or ``flow``.
     """
     count = used.astype(np.float64)
     none = count == 0.0
-    found = [(rules.NO_READINGS, none)]
-    if route == "indent":
-        few = ~none & rules.FEW_READINGS.below(count)
-        under = ~none & ~few & rules.UNDER_FIVE_READINGS.below(count)
-        found += [(rules.FEW_READINGS, few), (rules.UNDER_FIVE_READINGS, under)]
+    indents = ~none & (np.asarray(route) == "indent")
+    few = indents & rules.FEW_READINGS.below(count)
+    under = indents & ~few & rules.UNDER_FIVE_READINGS.below(count)
+    found = (
+        (rules.NO_READINGS, none),
+        (rules.FEW_READINGS, few),
+        (rules.UNDER_FIVE_READINGS, under),
+    )
     for rule, fired in found:
         rows = np.flatnonzero(fired)
         findings.add(rule, coupon[rows], value=count[rows])
@@ -277,9 +288,9 @@ def _stress(findings: Findings, state: State) -> None:
 
 
 def _indent_strain(findings: Findings, state: State) -> None:
-    if state.route != "indent":
-        return
-    strong = np.isfinite(state.indented_stress)
+    strong = np.isfinite(state.indented_stress) & (
+        (np.asarray(state.route) == "indent") | state.unwinding
+    )
     if not state.unwinding:
         _note(findings, state, rules.INDENT_ADDS_STRAIN, strong)
         return

@@ -17,7 +17,7 @@ class Context:
     material : str
         The metal.
     route : str
-        `indent` or `flow`.
+        `indent`, `flow` or `both`.
     coverage : float
         Probability that the published intervals are made for. [1]
     limits : sequence of mapping

@@ -80,7 +80,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
         One figure; none where no two readings can be compared.
     """
     coupons, readings = frame_of(frames, "coupons"), frame_of(frames, "readings")
-    column = "hardness" if context.route == "indent" else "flow_stress_mpa"
+    column = "hardness" if context.route != "flow" else "flow_stress_mpa"
     value, weight = numbers(readings, column), numbers(readings, "weight")
     place = aligned(texts(coupons, "coupon_id"), texts(readings, "coupon_id"))
     used = (place >= 0) & np.isfinite(value) & (weight != 0.0)

@@ -78,7 +78,7 @@ def draw(frames: Frames, context: Context) -> list[Figure]:
     list of Figure
         Pages in order; none where no reading was used.
     """
-    column = "hardness" if context.route == "indent" else "flow_stress_mpa"
+    column = "hardness" if context.route != "flow" else "flow_stress_mpa"
     coupons = frame_of(frames, "coupons")
     if not 0 < len(coupons) <= MOST_COUPONS:
         return []
@@ -225,7 +225,7 @@ def _outside(values: FloatArray, scale: Scale) -> NDArray[np.bool_]:
 
 
 def _scales(coupons_scales: list[str], route: str) -> list[str]:
-    if route != "indent":
+    if route == "flow":
         return [""] * len(coupons_scales)
     counts = Counter(filter(None, coupons_scales))
     usual = counts.most_common(1)[0][0] if counts else ""

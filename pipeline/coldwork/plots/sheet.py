@@ -106,7 +106,7 @@ def _batch(context: Context | None) -> list[str]:
         return []
     name = fitted(shown(context.batch_id), Sizes.words, 3.5)
     metal = fitted(shown(context.material), Sizes.words, 2.0)
-    return [f"Batch {name}", metal, f"{context.route} route"]
+    return [f"Batch {name}", metal, f"{context.route} route{'s' * (context.route == 'both')}"]
 
 
 def _key_shape(labels: Sequence[str], room: float) -> tuple[int, int]:

@@ -158,8 +158,10 @@ def _of_coupon(name: str, value: object, record: _Row, method: _Row) -> str:
     name = _own_name(name, record["coupon"]["file"], method)
     if value is not None:
         return f"{_number(value)} of this coupon"
-    if name == "repeatability" and judged.get("u") is not None:
-        return f"u {with_uncertainty(judged['u'], None, judged.get('unit') or '1')}, as above"
+    of = {"repeatability": "", "repeatability:flow": "flow_"}.get(name)
+    if of is not None and judged.get(f"{of}u") is not None:
+        unit = judged.get(f"{of}unit") or "1"
+        return f"u {with_uncertainty(judged[f'{of}u'], None, unit)}, as above"
     if raw.get(name):
         return f"{_shown(raw[name])} ({_place(record['coupon'])})"
     return "not given" if of_cell else "of this coupon"

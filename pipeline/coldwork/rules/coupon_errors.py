@@ -27,6 +27,7 @@ __all__ = [
     "NO_LINE_ENERGY",
     "NO_READINGS",
     "NO_SHEAR_MODULUS",
+    "ROUTES_DISAGREE",
     "SCALE_WITHOUT_CONSTANTS",
     "SIZE_EFFECT_TOO_LARGE",
     "SIZE_EFFECT_UNFITTED",
@@ -126,6 +127,18 @@ NO_FLOW_STRESS_AT_STRAIN: Final = Rule(
     "1",
     "common practice",
     "A flow curve is interpolated and never extrapolated.",
+    STRENGTH_ON,
+)
+ROUTES_DISAGREE: Final = Rule(
+    "routes-disagree",
+    Level.ERROR,
+    "indents and flow curve differ by more than the uncertainty of their difference;"
+    " value as normalised error E_n",
+    1.0,
+    "1",
+    "ISO 13528 and ISO/IEC 17043: |E_n| above 1 is unsatisfactory (from memory)",
+    "One of the two is wrong, or a constant between them, and a mean of both would hide it;"
+    " at a coverage of 95 % one honest pair in twenty comes out here.",
     STRENGTH_ON,
 )
 BAD_COUPON_CELL_NEEDED: Final = Rule(
@@ -235,6 +248,7 @@ COUPON_ERRORS: Final = (
     NO_SHEAR_MODULUS,
     SCALE_WITHOUT_CONSTANTS,
     NO_FLOW_STRESS_AT_STRAIN,
+    ROUTES_DISAGREE,
     BAD_COUPON_CELL_NEEDED,
     BAD_COUPON_CELL_NEEDED_RADIUS,
     GRAIN_SIZE_MISSING,
