@@ -280,7 +280,7 @@ BROKEN: list[tuple[str, str, dict[str, list[Any]]]] = [
     ("limits-in-order", "out/decisions", {"upper_limit": [0.9, None, None]}),
     ("exclusion-is-whole", "out/set_aside", {"excluded_by": ["operator-1", "operator-2", None]}),
     ("only-errors-empty", "out/flags", {"empties": [None, "hardness", None]}),
-    ("route-has-its-columns", "out/readings", {"force_n": [9.8, None, 9.8]}),
+    ("route-has-its-columns", "out/readings", {"force_n": [None, 9.8, 9.8]}),
     (
         "route-has-its-columns",
         "out/readings",
