@@ -245,6 +245,19 @@ def test_at_one_strain_nothing_need_be_unwound(make: Make) -> None:
     assert "indent-adds-strain" not in row_of(coupons, "curve")["flags"]
 
 
+def test_an_error_on_the_indents_empties_the_coupon_whatever_the_curve_says(make: Make) -> None:
+    content = tables()
+    content["indents"][0]["force_n"] = 49.03
+    frames = coldwork.process(make(SHEET + UNWOUND, **content)).frames
+    row = row_of(frames["routes"].set_index("coupon_id"), "joined")
+    coupon = row_of(frames["coupons"].set_index("coupon_id"), "joined")
+    assert "mixed-forces" in coupon["flags"]
+    assert isnan(coupon[STRESS])
+    assert isnan(row["dislocation_stress_indent_mpa"])
+    assert row["dislocation_stress_flow_mpa"] > 0.0
+    assert not isinstance(row["taken"], str) or row["taken"] == ""
+
+
 def test_comparing_choices_is_refused(folder: Path) -> None:
     with pytest.raises(UsageError, match="joins both routes"):
         compare(folder, ["hardening.coefficient=0.3,0.4"])

@@ -15,7 +15,6 @@ from coldwork.inputs.method import Method
 from coldwork.interval.combine import Spread, combine
 from coldwork.interval.routes import Agreement, agreement, joined
 from coldwork.measured import Measured, Value, broadcast, value_of
-from coldwork.rules.coupon import ROUTES_DISAGREE
 
 __all__ = ["ROUTES_TABLE", "Beside", "Routes", "join_routes", "routes_table"]
 
@@ -136,7 +135,7 @@ def join_routes(
     return both, routes
 
 
-def routes_table(method: Method, ids: pa.StringArray, routes: Routes) -> pa.Table:
+def routes_table(method: Method, ids: pa.StringArray, routes: Routes, emptied: _Bools) -> pa.Table:
     """Build a slice of ``routes.csv``.
 
     Parameters
@@ -147,6 +146,8 @@ def routes_table(method: Method, ids: pa.StringArray, routes: Routes) -> pa.Tabl
         The coupons.
     routes : Routes
         Theirs.
+    emptied : ndarray of bool, shape (n,)
+        Where an error leaves the coupon without a stress, whatever the routes say.
 
     Returns
     -------
@@ -157,7 +158,7 @@ def routes_table(method: Method, ids: pa.StringArray, routes: Routes) -> pa.Tabl
     apart, there = found.of_difference, np.isfinite(found.error)
     of_one = np.isfinite(routes.by_indent.value), np.isfinite(routes.by_flow.value)
     freedom = np.where(np.isinf(apart.degrees_of_freedom), np.nan, apart.degrees_of_freedom)
-    told = (of_one[0] | of_one[1]) & ~ROUTES_DISAGREE.above(found.error)
+    told = (of_one[0] | of_one[1]) & ~emptied
     numbers = {
         "test_strain_indent": np.where(of_one[0], routes.indent_strain, np.nan),
         "dislocation_stress_indent_mpa": routes.by_indent.value,

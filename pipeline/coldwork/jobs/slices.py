@@ -185,7 +185,8 @@ class Sliced:
         routes = self.evaluated.routes
         if routes is None:
             return {}
-        return {ROUTES_TABLE: routes_table(self.batch.method, self.ids, routes)}
+        gone = emptied("dislocation_stress_mpa", self.batch.findings.bits[self.rows])
+        return {ROUTES_TABLE: routes_table(self.batch.method, self.ids, routes, gone)}
 
     @cached_property
     def _of_heat(self) -> dict[str, pa.Table]:
