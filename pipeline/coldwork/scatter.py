@@ -54,6 +54,8 @@ class Repeatability:
     basis : ndarray of int8
         0 nothing, 1 own, 2 pooled, 3 stated in the sheet, 4 resolution of the diagonal,
         5 noise of the curve.
+    floor : ndarray
+        What `u` does not fall below, however many readings there are. [Pa]
     """
 
     u: NDArray[np.float64]
@@ -67,6 +69,7 @@ class Repeatability:
     ratio_limit: NDArray[np.float64]
     left: NDArray[np.bool_]
     basis: NDArray[np.int8]
+    floor: NDArray[np.float64]
 
 
 BASES: Final = ("nothing", "own", "pooled", "stated", "resolution", "curve")
@@ -133,6 +136,7 @@ def repeatability(method: Method, reduced: Reduced, conditions: pa.StringArray) 
         ratio_limit=ratio_limit,
         left=left,
         basis=np.where(coarse, np.int8(4), basis),
+        floor=floor,
     )
 
 
@@ -152,6 +156,7 @@ def _of_curves(u: NDArray[np.float64]) -> Repeatability:
         ratio_limit=blank,
         left=np.zeros(n, dtype=bool),
         basis=np.where(known, 5, 0).astype(np.int8),
+        floor=u,
     )
 
 

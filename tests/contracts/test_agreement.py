@@ -44,7 +44,10 @@ PER_TABLE: dict[str, dict[str, list[Any]]] = {
     "out/set_aside": {"reason": ["scratch under the indent", None, None]},
     "out/compare_choices": {"choice_no": [1, 2, 3]},
     "out/plan": {"indents_per_coupon": [1, 2, 3]},
-    "out/decisions": {"rule": ["simple", "guarded", "probability"]},
+    "out/decisions": {
+        "rule": ["simple", "guarded", "probability"],
+        "to_settle": ["no number of readings", "7 more readings", None],
+    },
 }
 SAMPLE = {"datetime": "2026-03-01T10:00:00Z", "string": "text", "boolean": True}
 

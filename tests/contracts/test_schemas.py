@@ -100,7 +100,7 @@ COLUMNS = {
     "out/flags": "level coupon_id lot_id reading_no rule statement value limit unit empties source "
     "file line detail",
     "out/decisions": "coupon_id limit_id quantity value u lower_limit upper_limit bound rule basis "
-    "coverage probability decision reason",
+    "coverage probability decision reason to_settle",
     "out/tensile": "coupon_id lot_id condition mode strain_from file first_line last_line "
     "points_used "
     "points_set_aside slope_gpa toe_strain proof_stress_0_2_mpa upper_yield_mpa lower_yield_mpa "

@@ -19,23 +19,26 @@ from coldwork.interval.combine import (
 )
 from coldwork.interval.reach import LATE, Reach
 from coldwork.jobs.drawn import by_draws
-from coldwork.jobs.evaluate import Evaluated
+from coldwork.jobs.evaluate import REPEATABILITY, Evaluated
 from coldwork.jobs.figures import Figures
 from coldwork.jobs.gather import Gathered
 from coldwork.jobs.tables import unit_of
 from coldwork.judge.calibrations import judge_ranges
 from coldwork.judge.coupon_rules import Route, State, judge_coupons
 from coldwork.judge.decisions import Decided, Evidence, decide, decision_texts
+from coldwork.judge.settling import Averaging, more_readings, settling_texts
 from coldwork.judge.size_effects import judge_size_effects
 from coldwork.judge.temperatures import judge_temperatures
 from coldwork.measured import value_of
 from coldwork.rules.bits import emptied
 from coldwork.sampling.sampler import Sampled
+from coldwork.scatter import BASES
 
 __all__ = ["Held", "decide_slice", "decisions_table", "find_in_slice"]
 
 _Floats = NDArray[np.float64]
 _Column: TypeAlias = "pa.Array[Any]"
+_REPEATS: Final = tuple(BASES.index(name) for name in ("own", "pooled", "stated", "resolution"))
 _STRESS: Final = "dislocation_stress_mpa"
 
 
@@ -128,15 +131,19 @@ class Held:
         What is known of the quantity, on the limit's basis and in its unit.
     decided : Decided
         What follows.
+    to_settle : pyarrow.StringArray
+        What would settle each undecided coupon, null where there is nothing to say.
     """
 
     limit: Limit
     evidence: Evidence
     decided: Decided
+    to_settle: pa.StringArray
 
 
 def decide_slice(
-    method: Method,
+    batch: Gathered,
+    rows: slice,
     evaluated: Evaluated,
     figures: Mapping[str, Figures],
     bits: NDArray[np.uint64],
@@ -145,8 +152,10 @@ def decide_slice(
 
     Parameters
     ----------
-    method : Method
-        Limits and coverage.
+    batch : Gathered
+        The batch, with its limits, coverage and scatter.
+    rows : slice
+        Place of the slice in it.
     evaluated : Evaluated
         The slice.
     figures : mapping of str to Figures
@@ -161,11 +170,42 @@ def decide_slice(
         is left out.
     """
     held = []
-    for limit in method.limits:
+    for limit in batch.method.limits:
         if limit.quantity in figures:
-            evidence = _evidence(limit, method, evaluated, figures[limit.quantity], bits)
-            held.append(Held(limit, evidence, decide(limit, evidence)))
+            found = figures[limit.quantity]
+            on_basis = _on_basis(limit, evaluated, found)
+            evidence = _evidence(limit, batch.method, evaluated, found, on_basis, bits)
+            decided = decide(limit, evidence)
+            averaging = _averaging(batch, rows, limit, found, on_basis[0])
+            more = more_readings(limit, evidence, decided.code, averaging)
+            held.append(Held(limit, evidence, decided, settling_texts(more)))
     return held
+
+
+def _on_basis(limit: Limit, evaluated: Evaluated, found: Figures) -> tuple[Combined, Reach]:
+    """Give uncertainty and reach on the limit's basis."""
+    if limit.basis != "own":
+        return found.combined, evaluated.reach
+    reach = evaluated.reach.with_shared_exact()
+    if limit.quantity in LATE:
+        return reach.combined[limit.quantity], reach
+    return combine(found.result, evaluated.spreads, own_only=True), reach
+
+
+def _averaging(
+    batch: Gathered, rows: slice, limit: Limit, found: Figures, combined: Combined
+) -> Averaging:
+    """Tell what more readings would do to a quantity; nothing where u is no scatter of repeats."""
+    scatter, unit = batch.scatter, unit_of(limit.quantity)
+    slope = found.result.sensitivities.get(REPEATABILITY, np.float64(0.0))
+    known = np.isin(scatter.basis[rows], _REPEATS)
+    part = np.where(known, np.abs(slope) * scatter.u[rows], np.nan)
+    return Averaging(
+        batch.reduced.effective[rows],
+        units.from_si(part, unit),
+        units.from_si(np.abs(slope) * scatter.floor[rows], unit),
+        combined.degrees_of_freedom,
+    )
 
 
 def decisions_table(method: Method, ids: pa.StringArray, decided: Sequence[Held]) -> pa.Table:
@@ -213,6 +253,7 @@ def _of_one_limit(method: Method, ids: pa.StringArray, held: Held) -> pa.Table:
         "probability": pa.array(one.probability),
         "decision": decision_texts(one.code),
         "reason": one.reason,
+        "to_settle": held.to_settle,
     }
     return pa.table(columns)
 
@@ -222,16 +263,11 @@ def _evidence(
     method: Method,
     evaluated: Evaluated,
     found: Figures,
+    on_basis: tuple[Combined, Reach],
     bits: NDArray[np.uint64],
 ) -> Evidence:
     unit = unit_of(limit.quantity)
-    own = limit.basis == "own"
-    reach = evaluated.reach.with_shared_exact() if own else evaluated.reach
-    combined = found.combined
-    if own and limit.quantity in LATE:
-        combined = reach.combined[limit.quantity]
-    elif own:
-        combined = combine(found.result, evaluated.spreads, own_only=True)
+    combined, reach = on_basis
     sampled = by_draws(evaluated, limit.basis)
     bounds = (
         _one_sided(limit.quantity, found, combined, reach, method.coverage)

@@ -294,7 +294,7 @@ def work_slice(batch: Gathered, rows: slice, kept: KeptReadings | None = None) -
     find_in_slice(batch, rows, evaluated)
     bits = batch.findings.bits[rows]
     figures = figures_of(evaluated, bits)
-    decided = decide_slice(method, evaluated, figures, bits)
+    decided = decide_slice(batch, rows, evaluated, figures, bits)
     n = int(rows.stop - rows.start)
     return Sliced(
         batch,

@@ -232,6 +232,9 @@ def _decisions(record: _Row) -> Iterator[str]:
             f"({decision['rule']}, basis {decision['basis']}{told})"
         )
         yield from _indented(_shown(decision["reason"]))
+        if decision.get("to_settle"):
+            told = f"{decision['to_settle']} would settle it, if the mean stays where it is"
+            yield from _indented(told)
 
 
 def _quantity(quantity: _Row) -> str:
