@@ -1,6 +1,7 @@
 """Units that files are written in, against an independent units library (pint)."""
 
 from fractions import Fraction
+from typing import Any
 
 import pint
 import pytest
@@ -33,7 +34,7 @@ PINT = {  # what pint calls them; its definitions come from NIST SP 811 and CODA
     "C": "degC",
     "F": "degF",
 }
-REGISTRY = pint.UnitRegistry(non_int_type=Fraction)
+REGISTRY: Any = pint.UnitRegistry(non_int_type=Fraction)  # its types differ from release to release
 PAIRS = [
     (one.name, other.name)
     for one in UNITS.values()

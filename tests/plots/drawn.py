@@ -26,7 +26,7 @@ CASES: dict[str, Callable[[], Batch]] = {
     "35": lambda: batch(35),
     "200, strains": lambda: batch(200).without("readings", "scatter", "budget", "decisions"),
     "5 odd": lambda: batch(5, odd=True, strains=False),
-    "35 odd": lambda: batch(35, odd=True, strains=False, timed=False, testers=(), operators=()),
+    "9 odd": lambda: batch(9, odd=True, strains=False, timed=False, testers=(), operators=()),
     "200 odd": lambda: batch(200, odd=True, strains=False, testers=("T1",)),
     "700, no names": lambda: batch(700, conditions=False, strains=False),
     "awkward": awkward,
