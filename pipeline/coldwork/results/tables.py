@@ -27,8 +27,8 @@ from coldwork.results.lanes import Lane
 __all__ = ["FORMS", "TableWriter", "arrow_schema"]
 
 FORMS: Final = ("csv", "parquet")
-_ROWS_AT_ONCE: Final = 16384  # checked and formatted in one go: 17 MB of text for the widest table
-_ROW_GROUP: Final = 65536  # rows; fixed, so that slices leave no mark on the bytes
+_ROWS_AT_ONCE: Final = 8192  # checked and formatted in one go: 9 MB of text for the widest table
+_ROW_GROUP: Final = 16384  # rows; fixed, so that slices leave no mark on the bytes
 _VIOLATIONS_SHOWN: Final = 5
 
 
